@@ -9,8 +9,7 @@ type Lab struct {
 	View    model.Rotation
 	Release model.Release
 	Optics  Optics
-	// Calibration lists the settings that carry an uncertainty. Settings without one are
-	// not in the list, and a number that needs one of those gets no calibration error.
+	// Calibration lists the settings whose errors the numbers carry.
 	Calibration []Calibration
 }
 
@@ -24,9 +23,12 @@ type Optics struct {
 	Stray      float64 // fraction of the counted light that atoms cannot absorb
 }
 
-// Calibration is one uncertain setting. Apply returns the laboratory with that setting
-// moved by k standard deviations, and the flight (s) likewise.
+// Calibration is one setting that could be wrong. Apply returns the laboratory with that
+// setting moved by k standard deviations, and the flight (s) likewise. Known is false
+// where nobody stated an uncertainty: Apply then moves by a nominal one percent, which
+// only serves to find the numbers that need it.
 type Calibration struct {
 	Name  string
+	Known bool
 	Apply func(lab Lab, flight float64, k float64) (Lab, float64)
 }
