@@ -1,6 +1,9 @@
 package model
 
-import "math"
+import (
+	"fmt"
+	"math"
+)
 
 // Trap is a harmonic trap V = (m/2) Σ ω_i² x_i², by its angular frequencies in
 // rad/s along the trap axes 1, 2 and 3. Axis 3 is the line of sight unless the
@@ -25,4 +28,14 @@ func (t Trap) ArithmeticMean() float64 {
 // Length returns the oscillator length ā = √(ħ/mω̄) in m of a particle of the given mass in kg.
 func (t Trap) Length(mass float64) float64 {
 	return math.Sqrt(HBar / (mass * t.GeometricMean()))
+}
+
+// Validate returns an error unless all three frequencies are positive and finite.
+func (t Trap) Validate() error {
+	for i, w := range t.Omega {
+		if !(w > 0) || math.IsInf(w, 0) {
+			return fmt.Errorf("trap frequency %d is %g Hz: it must be positive", i+1, w/(2*math.Pi))
+		}
+	}
+	return nil
 }

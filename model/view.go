@@ -109,3 +109,9 @@ func (s Shape) Principal(near float64) (first, second, angle float64) {
 	}
 	return first, second, math.Remainder(angle, math.Pi)
 }
+
+// Quadratic returns rᵀ S⁻¹ r at r = (x, y), which is 1 on the contour of S; not finite
+// for a singular shape.
+func (s Shape) Quadratic(x, y float64) float64 {
+	return (s.YY*x*x - 2*s.XY*x*y + s.XX*y*y) / s.Det()
+}
