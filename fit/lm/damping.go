@@ -9,7 +9,7 @@ type damping struct {
 
 const (
 	lambdaFloor = 1e-14 // below it λ is 0: a Gauss-Newton step
-	lambdaBack  = 1e-6  // where λ starts to grow again from below
+	lambdaBack  = 1e-12  // where λ starts to grow again from below
 	lambdaTop   = 1e20
 )
 
@@ -20,25 +20,21 @@ func (c *damping) start(lambda float64) {
 	case lambda < 0:
 		lambda = 0
 	}
-	*c = damping{lambda: lambda, growth: 4}
+	*c = damping{lambda: lambda, growth: 2}
 }
 
 func (c *damping) good(gain float64) {
-	switch {
-	case gain > 0.75:
-		c.lambda *= 0.05
-	case gain < 0.25:
-		c.lambda = max(c.lambda, lambdaBack) * 4
-	}
+	u := 2*gain - 1
+	c.lambda *= max(0.2, 1-u*u*u)
 	if c.lambda < lambdaFloor {
 		c.lambda = 0
 	}
-	c.growth = 4
+	c.growth = 2
 }
 
 func (c *damping) bad() {
 	c.lambda = max(c.lambda, lambdaBack) * c.growth
-	c.growth = min(2*c.growth, 64)
+	c.growth = 2*c.growth
 }
 
 func (c *damping) exhausted() bool { return c.lambda > lambdaTop }

@@ -86,7 +86,8 @@ func (l *loop) iterate() Termination {
 	if l.hold(l.x, g, l.free, l.res.AtBound) == 0 {
 		return l.nothingFree()
 	}
-	l.lin.norms(l.scale)
+	l.lin.norms(l.y)
+	for i,v:=range l.y { l.scale[i]=max(l.scale[i],v) }
 	if l.upright(g) {
 		return SmallGradient
 	}

@@ -1,0 +1,98 @@
+package fit
+
+import "math"
+
+// render fills dst with κ = k T, the part of the reference that the model lets through to
+// each bin of the level, blurred inside the room; or on a linear level with the density and
+// its background.
+func (p *problem) render(q *params, dst []float64) {
+	geo := p.geometry(q, p.blur2)
+	in := p.room.bounds(p.level)
+	l := p.level
+	for j := range l.h {
+		for i := range l.w {
+			if j >= in.y0 && j < in.y1 && i >= in.x0 && i < in.x1 {
+				continue
+			}
+			dst[j*l.w+i] = p.sharpPixel(&geo, i, j)
+		}
+	}
+	if in.x1 <= in.x0 {
+		return
+	}
+	b := &p.buf.region
+	bin := float64(l.bin)
+	b.taps = blurTaps(b.taps, p.blur2/(bin*bin))
+	pad := len(b.taps) - 1
+	w, h := in.x1-in.x0+2*pad, in.y1-in.y0+2*pad
+	b.size(w*h, max(w, h))
+	sharp := p.geometry(q, 0)
+	p.paint(q, &sharp, in.x0-pad, in.y0-pad, w, h, false)
+	b.blur(b.images[imageT], w, h)
+	for j := in.y0; j < in.y1; j++ {
+		for i := in.x0; i < in.x1; i++ {
+			t := b.images[imageT][(j-in.y0+pad)*w+i-in.x0+pad]
+			if l.linear {
+				dst[j*l.w+i] = t + geo.plane(l.at(i), l.at(j))
+			} else {
+				dst[j*l.w+i] = t * geo.scale(l.at(i), l.at(j))
+			}
+		}
+	}
+}
+
+func (p *problem) sharpPixel(geo *geometry, i, j int) float64 {
+	l := p.level
+	x, y := l.at(i), l.at(j)
+	dx, dy := x-geo.x0, y-geo.y0
+	tau := dx*(0.5*geo.axx*dx+geo.axy*dy) + 0.5*geo.ayy*dy*dy + geo.alpha
+	d := 0.0
+	if tau < farTau+geo.alpha {
+		g, _ := boseFast(tau)
+		d = geo.ampGrown * g * geo.norm
+	}
+	t, _, _ := p.transmission(geo, j*l.w+i, x, y, d)
+	if l.linear {
+		return t + geo.plane(x, y)
+	}
+	return t * geo.scale(x, y)
+}
+
+// freeze sets the variance of the atoms frame from the model: the counts it expects plus
+// read noise. dst is scratch of the level's size.
+func (p *problem) freeze(q *params, dst []float64) {
+	l := p.level
+	if l.linear {
+		return
+	}
+	p.render(q, dst)
+	for o, k := range dst[:l.w*l.h] {
+		l.varAtoms[o] = math.Max(0, k*l.smooth[o]) + l.readVariance(o)
+	}
+}
+
+// freezeData sets the variance from the counts themselves, for a first guess only.
+func (l *level) freezeData() {
+	if l.linear {
+		return
+	}
+	for o, a := range l.atoms {
+		l.varAtoms[o] = math.Max(a, 0.05*l.smooth[o]) + l.readVariance(o)
+	}
+}
+
+// residuals fills dst with the residual of each bin in standard deviations, NaN where it does
+// not count, from the κ in kappa.
+func (p *problem) residuals(kappa, dst []float64) {
+	l := p.level
+	for o, k := range kappa[:l.w*l.h] {
+		switch {
+		case l.count[o] == 0:
+			dst[o] = math.NaN()
+		case l.linear:
+			dst[o] = (l.atoms[o] - k) * math.Sqrt(l.count[o]) / l.sigma
+		default:
+			dst[o], _ = l.residual(o, k)
+		}
+	}
+}

@@ -1,0 +1,24 @@
+package fit
+
+import "fallshadow/fit/lm"
+
+// Workspace is the memory of one worker. It is not safe for concurrent use; results do not
+// hang on what it was used for before.
+type Workspace struct {
+	lm    lm.Workspace
+	buf   buffers
+	h     [numParams * numParams]float64
+	g     [numParams]float64
+	kappa []float64
+	resid []float64
+}
+
+// NewWorkspace returns an empty workspace.
+func NewWorkspace() *Workspace { return new(Workspace) }
+
+func (w *Workspace) size(n int) {
+	if cap(w.kappa) < n {
+		w.kappa, w.resid = make([]float64, n), make([]float64, n)
+	}
+	w.kappa, w.resid = w.kappa[:n], w.resid[:n]
+}
