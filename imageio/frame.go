@@ -19,15 +19,13 @@ const (
 
 // Frame is one picture, row by row from the top, in counts as the camera wrote them
 // (after the file's own scaling). Float32 carries every 16-bit count exactly and a
-// larger one to 6e-8, far below its shot noise.
+// larger one to 6e-8, far below its shot noise. NonFinite counts the pixels that are not
+// a number or infinite, which floating files may hold; they stay in Pix.
 type Frame struct {
 	Width, Height int
 	Pix           []float32
+	NonFinite     int
 }
-
-// Metadata is what came with a shot: header cards, parts of the file name, cells of
-// a side table. Numbers keep the text they were written with.
-type Metadata map[string]string
 
 // Raw is a shot as read: frames by role, absent roles nil, all of one size.
 type Raw struct {
@@ -38,33 +36,19 @@ type Raw struct {
 }
 
 // Shot is one cycle of the machine as found in a night's folder. Name is its path in
-// the night without ending, with forward slashes. Problem is set when the shot cannot
-// be read as it stands (a frame missing, two layouts mixed); such a shot still has a row.
+// the night without ending, with forward slashes. Meta is what the name and the side
+// table say. Problem is set when the shot cannot be read as it stands (a frame missing,
+// two files of one name); such a shot still has a row.
 type Shot struct {
 	Name    string
 	Files   []ShotFile
+	Meta    Metadata
 	Problem error
 }
 
-// ShotFile is one file of a shot: its path relative to the night's folder and the role
-// it plays, or -1 when the planes or extensions inside decide.
+// ShotFile is one file of a shot: its path relative to the night's folder, with forward
+// slashes, and the role it plays, or Unused when the planes or extensions inside decide.
 type ShotFile struct {
 	Path string
 	Role Role
-}
-
-// Layout says what makes a shot.
-type Layout struct {
-	// Kind is "cube" (one file, planes of one array), "extensions" (one file, image
-	// extensions), "files" (one file a frame) or "density" (one file with a density image).
-	Kind string
-	// Planes is the order of the frames in a cube or in the extensions, such as
-	// atoms, light, dark; two frames take the dark from the night.
-	Planes []Role
-	// Suffix gives, for Kind "files", the end of the file name before its ending, by role
-	// ("_atoms"); or a folder name where it ends in "/".
-	Suffix map[Role]string
-	// Pattern, where set, is a regular expression over the path in the night; its named
-	// groups become metadata and files that do not match are not shots.
-	Pattern string
 }

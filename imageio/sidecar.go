@@ -1,0 +1,172 @@
+package imageio
+
+import (
+	"bytes"
+	"encoding/csv"
+	"errors"
+	"fmt"
+	"io"
+	"os"
+	"path"
+	"path/filepath"
+	"strings"
+
+	"fallshadow/imageio/fault"
+)
+
+// maxSidecar is the size in bytes above which a side table is refused.
+const maxSidecar = 64 << 20
+
+// sidecar is a side table: its rows by their key, and by the number that the key is.
+type sidecar struct {
+	byText   map[string]Metadata
+	byNumber map[string]Metadata
+}
+
+// readSidecar reads the side table of a layout, nil where it has none: CSV with one
+// header line, separated by the first of tab, semicolon and comma that the header
+// contains. Empty cells say nothing. It fails on a row with a wrong number of cells and
+// on a key that stands twice.
+func readSidecar(dir string, layout Layout) (*sidecar, error) {
+	if layout.Sidecar == "" {
+		return nil, nil
+	}
+	side, err := parseSidecar(filepath.Join(dir, filepath.FromSlash(layout.Sidecar)), layout.SidecarKey)
+	if err != nil {
+		return nil, fmt.Errorf("side table %s: %w", layout.Sidecar, err)
+	}
+	return side, nil
+}
+
+func parseSidecar(file, key string) (*sidecar, error) {
+	f, err := os.Open(file)
+	if err != nil {
+		return nil, cause(err)
+	}
+	defer f.Close()
+	all, err := io.ReadAll(io.LimitReader(f, maxSidecar+1))
+	if err != nil {
+		return nil, cause(err)
+	}
+	if len(all) > maxSidecar {
+		return nil, fmt.Errorf("%w: larger than %d bytes", fault.Unsupported, maxSidecar)
+	}
+	all = bytes.TrimPrefix(all, []byte("\ufeff"))
+	r := csv.NewReader(bytes.NewReader(all))
+	line, _, _ := bytes.Cut(all, []byte("\n"))
+	r.Comma = ','
+	for _, c := range "\t;" {
+		if bytes.ContainsRune(line, c) {
+			r.Comma = c
+			break
+		}
+	}
+	r.TrimLeadingSpace = true
+	return readRows(r, key)
+}
+
+func readRows(r *csv.Reader, key string) (*sidecar, error) {
+	head, err := r.Read()
+	if errors.Is(err, io.EOF) {
+		return nil, fmt.Errorf("%w: no header line", fault.Truncated)
+	} else if err != nil {
+		return nil, fmt.Errorf("%w: %w", fault.Broken, err)
+	}
+	column := 0
+	for i := range head {
+		head[i] = strings.TrimSpace(head[i])
+		if head[i] == key && key != "" {
+			column = i
+		}
+	}
+	if key != "" && head[column] != key {
+		return nil, fmt.Errorf("no column %q among %s", key, strings.Join(head, ", "))
+	}
+	side := &sidecar{make(map[string]Metadata), make(map[string]Metadata)}
+	for {
+		row, err := r.Read()
+		if errors.Is(err, io.EOF) {
+			return side, nil
+		} else if err != nil {
+			return nil, fmt.Errorf("%w: %w", fault.Broken, err)
+		}
+		if err := side.add(head, row, column); err != nil {
+			line, _ := r.FieldPos(0)
+			return nil, fmt.Errorf("line %d: %w", line, err)
+		}
+	}
+}
+
+func (s *sidecar) add(head, row []string, column int) error {
+	key := strings.TrimSpace(row[column])
+	if key == "" {
+		return fmt.Errorf("%w: the column %s is empty", fault.Broken, head[column])
+	}
+	m := Metadata{}
+	for i, cell := range row {
+		if cell = strings.TrimSpace(cell); cell != "" && head[i] != "" {
+			m.first(head[i], cell)
+		}
+	}
+	number := wholeNumber(key)
+	if s.byText[key] != nil || number != "" && s.byNumber[number] != nil {
+		return fmt.Errorf("%w: a second row for %s", fault.Broken, key)
+	}
+	s.byText[key] = m
+	if number != "" {
+		s.byNumber[number] = m
+	}
+	return nil
+}
+
+// metadata returns the cells of a shot: the row whose key is the shot's name or the last
+// part of it, a path or a file name of one of its files, or its number, which is the last
+// run of digits in its name.
+func (s *sidecar) metadata(shot Shot) Metadata {
+	m := Metadata{}
+	if s == nil {
+		return m
+	}
+	keys := []string{shot.Name, path.Base(shot.Name)}
+	for _, f := range shot.Files {
+		keys = append(keys, f.Path, path.Base(f.Path))
+	}
+	for _, k := range keys {
+		if row := s.byText[k]; row != nil {
+			m.under(row)
+			return m
+		}
+	}
+	m.under(s.byNumber[lastNumber(path.Base(shot.Name))])
+	return m
+}
+
+// wholeNumber returns the digits of a key that is nothing but a whole number, without
+// leading zeros, else "".
+func wholeNumber(key string) string {
+	digits, rest := leadingDigits(key)
+	if digits == "" || strings.Trim(rest, "0") != "" && rest != "." || strings.Trim(rest, ".0") != "" {
+		return ""
+	}
+	return normal(digits)
+}
+
+// lastNumber returns the last run of digits in a name, without leading zeros, or "".
+func lastNumber(name string) string {
+	end := strings.LastIndexAny(name, "0123456789") + 1
+	start := end
+	for start > 0 && digit(name[start-1]) {
+		start--
+	}
+	if start == end {
+		return ""
+	}
+	return normal(name[start:end])
+}
+
+func normal(digits string) string {
+	if t := strings.TrimLeft(digits, "0"); t != "" {
+		return t
+	}
+	return "0"
+}
