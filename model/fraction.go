@@ -28,7 +28,7 @@ func FiniteSizeFraction(t, n float64, trap Trap) float64 {
 //	η = μ(T=0)/kTc⁰ = ½ ζ(3)^{1/3} (15 n^{1/6} a/ā)^{2/5},
 //
 // of a repulsive gas, a ≥ 0 in m; NaN for a < 0. Source: Dalfovo et al. (1999), Eq. (120).
-func Eta(n, a, mass float64, trap Trap) float64 {
+func Eta(n, mass, a float64, trap Trap) float64 {
 	return math.Cbrt(bose.Zeta3) / 2 * math.Pow(15*math.Pow(n, 1./6)*a/trap.Length(mass), 0.4)
 }
 

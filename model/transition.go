@@ -44,7 +44,7 @@ func FiniteSizeShift(n float64, trap Trap) float64 {
 // Self-consistent mean field gives less: at n = 1e6 the coefficient is −1.298 for
 // a/ā = 1e-3 and −1.089 for 1e-2. Source: Giorgini, Pitaevskii, Stringari, Phys. Rev. A
 // 54, R4633 (1996).
-func InteractionShift(n, a, mass float64, trap Trap) float64 {
+func InteractionShift(n, mass, a float64, trap Trap) float64 {
 	return shiftPerLength * a / trap.Length(mass) * math.Pow(n, 1./6)
 }
 
@@ -55,15 +55,15 @@ func InteractionShift(n, a, mass float64, trap Trap) float64 {
 //
 // for 0 ≤ x up to 0.05 or so. Source: Smith, Campbell, Tammuz, Hadzibabic, Phys. Rev.
 // Lett. 106, 250403 (2011); the 46 is quoted from memory.
-func BeyondMeanFieldShift(n, a, mass float64, trap Trap) float64 {
-	x := InteractionShift(n, a, mass, trap) / shiftPerWavelength
+func BeyondMeanFieldShift(n, mass, a float64, trap Trap) float64 {
+	x := InteractionShift(n, mass, a, trap) / shiftPerWavelength
 	return x * (shiftPerWavelength + shiftSecondOrder*x)
 }
 
 // TransitionTemperature returns Tc⁰ with its finite-size and first-order interaction
 // shifts added up, in K; NaN where they add up to −1 or less, far outside their domain.
-func TransitionTemperature(n, a, mass float64, trap Trap) float64 {
-	factor := 1 + FiniteSizeShift(n, trap) + InteractionShift(n, a, mass, trap)
+func TransitionTemperature(n, mass, a float64, trap Trap) float64 {
+	factor := 1 + FiniteSizeShift(n, trap) + InteractionShift(n, mass, a, trap)
 	if factor <= 0 {
 		return math.NaN()
 	}

@@ -6,10 +6,6 @@ import (
 	"fallshadow/model"
 )
 
-// collapse is the critical N0|a|/ā of an attractive condensate in an isotropic trap
-// (Roberts et al., Phys. Rev. Lett. 86, 4211 (2001): 0.574; here computed).
-const collapse = 0.574966
-
 // Derive returns the numbers that follow from a measurement in a laboratory whose
 // settings are taken at their word. A sum Σσ0n becomes atoms as Σσ0n p²/σ0, p the pixel.
 // An Alpha below 0, as an error may make it, counts as 0.
@@ -41,8 +37,10 @@ func (d *Derived) condense(m Measured, lab Lab) float64 {
 	d.Mu = m.Mu
 	d.ThomasFermiParameter = d.Condensate * a / lab.Trap.Length(mass)
 	if a < 0 {
-		d.Collapse = -d.ThomasFermiParameter / collapse
-		return math.NaN()
+		d.Collapse = d.Condensate / model.CriticalNumber(lab.Trap, mass, a)
+	}
+	if a <= 0 {
+		return gaussianPeak(d.Condensate, lab)
 	}
 	mu, err := model.Mu(d.Condensate, mass, a, lab.Trap)
 	if err != nil {
@@ -53,13 +51,23 @@ func (d *Derived) condense(m Measured, lab Lab) float64 {
 	return mu / model.Coupling(mass, a)
 }
 
+// gaussianPeak returns the peak density in the trap of a condensate that has no
+// Thomas-Fermi form; NaN beyond collapse.
+func gaussianPeak(n0 float64, lab Lab) float64 {
+	w, err := model.VariationalWidths(n0, lab.Species.Mass, lab.Species.ScatteringLength, lab.Trap)
+	if err != nil {
+		return math.NaN()
+	}
+	return n0 / (math.Pow(math.Pi, 1.5) * w[0] * w[1] * w[2])
+}
+
 // heat fills in what the thermal part tells and returns its peak density in the trap.
 func (d *Derived) heat(m Measured, lab Lab) float64 {
 	mass, a := lab.Species.Mass, lab.Species.ScatteringLength
 	alpha := math.Max(0, m.Alpha)
 	d.T = m.T
 	d.Reduced = d.T / d.Tc0
-	d.ReducedCorrected = d.T / model.TransitionTemperature(d.Atoms, a, mass, lab.Trap)
+	d.ReducedCorrected = d.T / model.TransitionTemperature(d.Atoms, mass, a, lab.Trap)
 	d.Fugacity = math.Exp(-alpha)
 	d.ThermalOverSaturated = d.Thermal / model.ThermalNumber(d.T, 0, lab.Trap)
 	d.EntropyPerAtom = (1 - d.Fraction) * model.ThermalEntropy(alpha)

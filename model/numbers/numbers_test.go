@@ -336,6 +336,29 @@ func TestErrorsNearSaturation(t *testing.T) {
 	near(t, "fugacity beyond 1", Derive(m, lab).Fugacity, 1, 0)
 }
 
+// Bradley, Sackett, Hulet, Phys. Rev. Lett. 78, 985 (1997) predict about 1400 atoms at
+// collapse in this trap (frequencies from memory); with the same numbers the
+// Gross-Pitaevskii equation gives 1256.
+func TestAttractive(t *testing.T) {
+	s, err := model.LookupSpecies("7Li")
+	if err != nil {
+		t.Fatal(err)
+	}
+	s.ScatteringLength = -27.3 * model.A0
+	lab := Lab{Species: s, Trap: model.TrapHz(150.6, 152.6, 131.5), Pixel: 3e-6}
+	atoms := func(n float64) Measured {
+		return Measured{CondensateSum: n * s.Sigma0() / (lab.Pixel * lab.Pixel), T: math.NaN(), Mu: math.NaN()}
+	}
+	d := Derive(atoms(628.2), lab)
+	near(t, "collapse", d.Collapse, 0.5, 2e-3)
+	isNaN(t, "Thomas-Fermi mu", d.MuFromAtoms)
+	a := lab.Trap.Length(s.Mass)
+	if ideal := 628.2 / math.Pow(math.Sqrt(math.Pi)*a, 3); !(d.PeakDensity > 1.1*ideal && d.PeakDensity < 3*ideal) {
+		t.Errorf("peak density %g of an attractive gas, %g of an ideal one", d.PeakDensity, ideal)
+	}
+	isNaN(t, "peak density beyond collapse", Derive(atoms(3000), lab).PeakDensity)
+}
+
 func TestQuantitiesCoverEveryField(t *testing.T) {
 	var d Derived
 	var r Result
