@@ -33,9 +33,12 @@ func (r Release) sudden() bool {
 	return r.Ramp == "" || r.Ramp == "sudden" || r.Duration == 0
 }
 
-// strength returns s(t) for a release that is not sudden.
+// strength returns s(t) for t > 0.
 func (r Release) strength(t float64) float64 {
-	if r.Ramp == "exponential" {
+	switch {
+	case r.sudden():
+		return 0
+	case r.Ramp == "exponential":
 		return math.Exp(-t / r.Duration)
 	}
 	return math.Max(0, 1-t/r.Duration)
@@ -83,14 +86,6 @@ func ExpandThermal(trap Trap, flight float64, rel Release) ([3]float64, error) {
 	return s.B, err
 }
 
-// ExpandHydrodynamic returns the scaling of a thermal cloud in which collisions are so
-// frequent that it stays in local equilibrium: d²b_i/dt² = ω_i²(0)/[b_i (b1b2b3)^(2/3)] −
-// ω_i²(t) b_i, with the invariant Σ(b_i'/ω_i)² + 3(b1b2b3)^(−2/3) = 3 after a sudden
-// release. P. Pedri, D. Guéry-Odelin, S. Stringari, Phys. Rev. A 68, 043608 (2003).
-func ExpandHydrodynamic(trap Trap, flight float64, rel Release) (Scaling, error) {
-	return expand(trap, flight, rel, forces{pressure: squares(trap.Omega)})
-}
-
 // forces are the terms k_i/b_i³ + m_i/(b_i b1b2b3) + p_i/[b_i (b1b2b3)^(2/3)] of the
 // acceleration of b_i in 1/s²: free flight or quantum pressure, mean field, local
 // pressure of a gas.
@@ -109,7 +104,7 @@ func expand(trap Trap, flight float64, rel Release, f forces) (Scaling, error) {
 	if err := validExpansion(trap, flight, rel); err != nil {
 		return Scaling{}, err
 	}
-	unit := max(trap.Omega[0], trap.Omega[1], trap.Omega[2])
+	unit := trap.largest()
 	y := odeState{1, 1, 1}
 	if err := integrateRelease(f.right(trap, unit, rel), 6, flight, unit, rel, &y); err != nil {
 		return Scaling{}, err
@@ -147,13 +142,12 @@ func integrateRelease(right odeRight, dim int, flight, unit float64, rel Release
 
 // right is the equation of motion of (b, db/dτ) in the time τ = unit·t.
 func (f forces) right(trap Trap, unit float64, rel Release) odeRight {
-	omega2 := squares(trap.Omega)
+	omega2 := squares(trap.in(unit))
 	for i := range 3 {
-		for _, v := range []*[3]float64{&omega2, &f.kinetic, &f.meanField, &f.pressure} {
+		for _, v := range []*[3]float64{&f.kinetic, &f.meanField, &f.pressure} {
 			v[i] /= unit * unit
 		}
 	}
-	sudden := rel.sudden()
 	return func(tau float64, y, dy *odeState) {
 		volume := y[0] * y[1] * y[2]
 		field, pressure := 1/volume, 0.0
@@ -161,10 +155,7 @@ func (f forces) right(trap Trap, unit float64, rel Release) odeRight {
 			c := math.Cbrt(field)
 			pressure = c * c
 		}
-		s := 0.0
-		if !sudden {
-			s = rel.strength(tau / unit)
-		}
+		s := rel.strength(tau / unit)
 		for i := range 3 {
 			b := y[i]
 			dy[i] = y[i+3]

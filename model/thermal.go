@@ -59,12 +59,3 @@ func ThermalColumn(n, alpha float64, s Shape, x, y float64) float64 {
 func ThermalPeakLine(n, alpha, v float64) float64 {
 	return n / math.Sqrt(2*math.Pi*v) * bose.G52(alpha) / bose.G3(alpha)
 }
-
-// CollisionRate returns the mean rate γ = n0 σ v̄/2 = N m σ ω̄³/(2π²kT) in 1/s at which an
-// atom of a classical cloud of n atoms at t collides, with σ = 8πa² and v̄ = √(8kT/πm).
-// The release is free of collisions while γ is far below every ω_i.
-func CollisionRate(n, t, mass, a float64, trap Trap) float64 {
-	w := trap.GeometricMean()
-	sigma := 8 * math.Pi * a * a
-	return n * mass * sigma * w * w * w / (2 * math.Pi * math.Pi * KB * t)
-}

@@ -39,3 +39,10 @@ func (t Trap) Validate() error {
 	}
 	return nil
 }
+
+// in returns the frequencies in the given unit (rad/s).
+func (t Trap) in(unit float64) [3]float64 {
+	return [3]float64{t.Omega[0] / unit, t.Omega[1] / unit, t.Omega[2] / unit}
+}
+
+func (t Trap) largest() float64 { return max(t.Omega[0], t.Omega[1], t.Omega[2]) }
