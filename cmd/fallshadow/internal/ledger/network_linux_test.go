@@ -1,0 +1,51 @@
+package ledger
+
+import (
+	"strings"
+	"testing"
+
+	"golang.org/x/sys/unix"
+)
+
+// Lines as proc_pid_mountinfo(5) describes them.
+const mounts = `36 35 98:0 /mnt1 /mnt2 rw,noatime master:1 - ext3 /dev/root rw,errors=continue
+40 35 0:50 / /home/me/share rw,nosuid,nodev,relatime shared:30 - fuse.sshfs host:/data rw,user_id=0
+41 35 0:51 / /mnt/usb rw - fuse.ntfs-3g /dev/sdb1 rw
+42 35 0:52 / /mnt/odd rw master:1 shared:2 - fuse.rclone remote: rw
+short
+`
+
+func TestFuseKind(t *testing.T) {
+	for device, want := range map[string]string{"98:0": "", "0:50": "fuse.sshfs", "0:51": "", "0:52": "fuse.rclone", "9:9": ""} {
+		if got := fuseKind(strings.NewReader(mounts), device); got != want {
+			t.Errorf("device %s is %q, want %q", device, got, want)
+		}
+	}
+}
+
+func TestNetworkRefusal(t *testing.T) {
+	dir := t.TempDir()
+	if err := refuseNetwork(dir + "/not/there/yet"); err != nil {
+		t.Errorf("a local folder: %v", err)
+	}
+	// The file system of the folder plays a network share.
+	kind := magicOf(t, dir)
+	networkMagic[kind] = "played share"
+	defer delete(networkMagic, kind)
+	err := refuseNetwork(dir + "/not/there/yet")
+	if err == nil || !strings.Contains(err.Error(), "played share") || !strings.Contains(err.Error(), "--out") {
+		t.Errorf("a network share: %v", err)
+	}
+}
+
+func magicOf(t *testing.T, dir string) uint32 {
+	t.Helper()
+	var fs unix.Statfs_t
+	if err := unix.Statfs(dir, &fs); err != nil {
+		t.Fatal(err)
+	}
+	if name, known := networkMagic[uint32(fs.Type)]; known {
+		t.Skipf("the test runs on %s", name)
+	}
+	return uint32(fs.Type)
+}

@@ -1,0 +1,115 @@
+package ledger
+
+import (
+	"context"
+	"database/sql"
+	"errors"
+	"fmt"
+	"os"
+	"path/filepath"
+	"slices"
+
+	"fallshadow/imageio"
+)
+
+// Reader is a ledger open for reading, at any time and beside a writer.
+type Reader struct{ read *sql.DB }
+
+// OpenReader opens the ledger in the folder dir for reading. It fails where there is
+// none, and on a network file system.
+func OpenReader(ctx context.Context, dir string) (*Reader, error) {
+	if err := refuseNetwork(dir); err != nil {
+		return nil, err
+	}
+	file := filepath.Join(dir, Name)
+	if _, err := os.Stat(file); err != nil {
+		return nil, fmt.Errorf("no ledger in %s (run batch first): %w", dir, err)
+	}
+	db, err := openForReading(ctx, file, "mode=ro&_pragma=busy_timeout(10000)")
+	if err != nil && !exists(file+"-wal") {
+		// A folder that cannot be written to has no place for the shared memory of the
+		// log; a ledger at rest can be read without.
+		db, err = openForReading(ctx, file, "mode=ro&immutable=1")
+	}
+	if err != nil {
+		return nil, unreadable(file, err)
+	}
+	return &Reader{db}, nil
+}
+
+func openForReading(ctx context.Context, file, query string) (*sql.DB, error) {
+	db, err := open(file, query)
+	if err != nil {
+		return nil, err
+	}
+	db.SetMaxOpenConns(4)
+	was, err := versionOf(ctx, db)
+	if err == nil && was != version {
+		err = fmt.Errorf("the ledger has schema %d: run batch once to bring it to %d", was, version)
+	}
+	if err != nil {
+		return nil, errors.Join(err, db.Close())
+	}
+	return db, nil
+}
+
+func exists(file string) bool {
+	_, err := os.Stat(file)
+	return err == nil
+}
+
+// Close lets go of the ledger.
+func (r *Reader) Close() error { return r.read.Close() }
+
+// Night returns the absolute path of the night that the ledger was made from, "" for a
+// ledger that was never written to.
+func (r *Reader) Night(ctx context.Context) (string, error) {
+	var path string
+	err := r.read.QueryRowContext(ctx, "SELECT path FROM night").Scan(&path)
+	if errors.Is(err, sql.ErrNoRows) {
+		return "", nil
+	}
+	return path, wrap("find the night", err)
+}
+
+// Rows returns the rows of the shots that are in the folder, in natural order of the
+// shots, with Duplicate and Bad filled in.
+func (r *Reader) Rows(ctx context.Context) ([]Row, error) {
+	list, err := r.rows(ctx, "SELECT "+stored+" FROM row WHERE present")
+	if err != nil {
+		return nil, wrap("read the rows", err)
+	}
+	slices.SortFunc(list, func(a, b Row) int { return imageio.Natural(a.Shot, b.Shot) })
+	markDuplicates(list)
+	words, err := r.verdicts(ctx)
+	if err != nil {
+		return nil, wrap("read the verdicts", err)
+	}
+	for i := range list {
+		list[i].Bad = words[list[i].Content]
+	}
+	return list, nil
+}
+
+// History returns the rows that once stood under the name of the shot, oldest first.
+func (r *Reader) History(ctx context.Context, shot string) ([]Row, error) {
+	list, err := r.rows(ctx, "SELECT "+stored+" FROM history WHERE shot = ? ORDER BY id", shot)
+	return list, wrap("read the history of "+shot, err)
+}
+
+func (r *Reader) rows(ctx context.Context, query string, args ...any) ([]Row, error) {
+	rows, err := r.read.QueryContext(ctx, query, args...)
+	if err != nil {
+		return nil, err
+	}
+	defer rows.Close()
+	var list []Row
+	for rows.Next() {
+		row, err := scanRow(rows)
+		if err != nil {
+			return nil, err
+		}
+		list = append(list, row)
+	}
+	return list, rows.Err()
+}
