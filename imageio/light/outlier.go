@@ -1,0 +1,142 @@
+package light
+
+import (
+	"math"
+	"slices"
+)
+
+// Limits of an outlier among its eight neighbours: spikeSigmas standard deviations and
+// spikeShare of the neighbours' level. The share allows for the crests of fine fringes
+// and bright rings round a dense cloud; a plane slope of any size needs no allowance,
+// because half of the neighbours lie above it.
+const (
+	spikeSigmas = 7
+	spikeShare  = 0.1
+)
+
+// outliers marks in bad the pixels of an image, electrons, that stand above the fourth
+// highest of their neighbours (with holes also below the fourth lowest) by more than
+// shot noise, read noise (variance readVar) and the share allow. Pixels already bad are
+// neither judged nor asked. The fourth lets two by two struck pixels be seen. With base,
+// smooth and positive, neighbours are compared as fractions of it.
+func outliers(pix, base []float64, width int, readVar float64, holes bool, bad []bool) {
+	found := []int(nil)
+	at := func(i, j int) float64 { return pix[j] * base[i] / base[j] }
+	if base == nil {
+		at = func(_, j int) float64 { return pix[j] }
+	}
+	height := len(pix) / width
+	var near [8]float64
+	for y := range height {
+		for x := range width {
+			i := y*width + x
+			if bad[i] || !suspect(pix, width, height, x, y, readVar, holes) {
+				continue
+			}
+			n := 0
+			for v := max(y-1, 0); v <= min(y+1, height-1); v++ {
+				for u := max(x-1, 0); u <= min(x+1, width-1); u++ {
+					if j := v*width + u; j != i && !bad[j] {
+						near[n] = at(i, j)
+						n++
+					}
+				}
+			}
+			if n < 3 {
+				continue
+			}
+			s := near[:n]
+			slices.Sort(s)
+			high, low := s[n/2], s[(n-1)/2]
+			if pix[i]-high > allowance(high, readVar) || holes && low-pix[i] > allowance(low, readVar) {
+				found = append(found, i)
+			}
+		}
+	}
+	for _, i := range found {
+		bad[i] = true
+	}
+}
+
+// allowance is how far from a level of v electrons a pixel may lie. The two electrons²
+// keep a level read as nothing from promising a count of nothing.
+func allowance(v, readVar float64) float64 {
+	v = max(v, 0)
+	return spikeSigmas*math.Sqrt(v+readVar+2) + spikeShare*v
+}
+
+// suspect is a cheap test that nearly every pixel fails: whether any of the four next
+// neighbours differs from the pixel by the read noise part of the allowance and more
+// than the shot noise of the lower of the two.
+func suspect(pix []float64, width, height, x, y int, readVar float64, holes bool) bool {
+	i := y*width + x
+	far := func(j int) bool {
+		low, high := pix[j], pix[i]
+		if holes && low > high {
+			low, high = high, low
+		}
+		d := high - low
+		return d > 0 && d*d > spikeSigmas*spikeSigmas*(max(low, 0)+readVar)
+	}
+	return x > 0 && far(i-1) || x < width-1 && far(i+1) || y > 0 && far(i-width) || y < height-1 && far(i+width)
+}
+
+// fill writes into each bad pixel the median of the good ones round it, taken from the
+// smallest square of up to 15 pixels that holds three; 0 where there are none. A filled
+// pixel stays bad; filling keeps sums over blocks and bins smooth.
+func fill(pix []float64, width int, bad []bool) {
+	height := len(pix) / width
+	var near []float64
+	for i, b := range bad {
+		if !b {
+			continue
+		}
+		x, y := i%width, i/width
+		near = near[:0]
+		for r := 1; r <= 7 && len(near) < 3; r++ {
+			near = near[:0]
+			for v := max(y-r, 0); v <= min(y+r, height-1); v++ {
+				for u := max(x-r, 0); u <= min(x+r, width-1); u++ {
+					if j := v*width + u; !bad[j] {
+						near = append(near, pix[j])
+					}
+				}
+			}
+		}
+		pix[i] = median(near)
+	}
+}
+
+// median sorts its argument and returns its middle, 0 for nothing.
+func median(v []float64) float64 {
+	if len(v) == 0 {
+		return 0
+	}
+	slices.Sort(v)
+	return (v[(len(v)-1)/2] + v[len(v)/2]) / 2
+}
+
+// smooth returns the mean over three by three pixels, never below floor.
+func smooth(pix []float64, width int, floor float64) []float64 {
+	height := len(pix) / width
+	out := make([]float64, len(pix))
+	column := make([]float64, width)
+	for y := range height {
+		clear(column)
+		top, end := max(y-1, 0), min(y+1, height-1)
+		for v := top; v <= end; v++ {
+			for x, p := range pix[v*width : (v+1)*width] {
+				column[x] += p
+			}
+		}
+		for x := range width {
+			left, right := max(x-1, 0), min(x+1, width-1)
+			sum := 0.0
+			for _, p := range column[left : right+1] {
+				sum += p
+			}
+			out[y*width+x] = max(sum/float64((end-top+1)*(right-left+1)), floor)
+		}
+	}
+	return out
+}

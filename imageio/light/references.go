@@ -1,0 +1,178 @@
+package light
+
+import (
+	"container/list"
+	"context"
+	"fmt"
+	"sync"
+
+	"fallshadow/imageio"
+)
+
+// Cloud is what an earlier fit of a shot says of where its atoms are, in the pixels of
+// the exposure. Mask is true where atoms may be and the light must not be compared; all
+// false says that the picture is empty. Transmission, where not nil, is the fitted atoms
+// frame over the fitted light, positive; the atoms frame is divided by it first, so that
+// wings outside the mask do not pull the reference.
+type Cloud struct {
+	Mask         []bool
+	Transmission []float64
+}
+
+// References holds the light frames of a night and finds the best light for a shot. It
+// may be used by many goroutines; what it returns does not depend on how many.
+//
+// Memory: the light frames of at most k+8 shots as float32 with their block means, 4.5
+// bytes a pixel, and the sums of their products, 8 bytes for each pair and tile of 16x16
+// pixels: for k = 40 and 500x500 pixels 54 MB and 9 MB.
+type References struct {
+	night *Night
+	k     int
+	shots int
+	load  func(ctx context.Context, shot int) (*imageio.Raw, error)
+	tiles *tiling
+
+	mu     sync.Mutex
+	recent *list.List // of *lightFrame, the latest used first
+	at     map[int]*list.Element
+}
+
+// NewReferences prepares the references of a night of so many shots in natural order, k
+// light frames to a shot. load reads a shot by its place in that order, again and again
+// where memory is short; it must give the same frames each time, and an error or no
+// light frame for shots that cannot be used.
+func NewReferences(n *Night, k, shots int, load func(ctx context.Context, shot int) (*imageio.Raw, error)) *References {
+	return &References{
+		night: n, k: k, shots: shots, load: load,
+		tiles:  newTiling(n.win.width/n.win.bin, n.win.height/n.win.bin),
+		recent: list.New(), at: map[int]*list.Element{},
+	}
+}
+
+// lightFrame is the light frame of one shot, filled and rebinned, electrons.
+type lightFrame struct {
+	shot     int
+	ready    sync.Once
+	err      error
+	pix      []float32
+	blocks   []float64
+	mean     float64 // of its blocks
+	darkVar  float64 // variance of its own dark, 0 where the night's was subtracted
+	products map[int][]float64
+	guard    sync.Mutex // of products
+}
+
+// frame returns the light frame of a shot, from memory or read again.
+func (r *References) frame(ctx context.Context, shot int) (*lightFrame, error) {
+	f := r.entry(shot)
+	f.ready.Do(func() { f.err = r.read(ctx, f) })
+	if f.err != nil && ctx.Err() != nil {
+		r.forget(shot)
+		return nil, ctx.Err()
+	}
+	return f, f.err
+}
+
+func (r *References) entry(shot int) *lightFrame {
+	r.mu.Lock()
+	defer r.mu.Unlock()
+	if e, ok := r.at[shot]; ok {
+		r.recent.MoveToFront(e)
+		return e.Value.(*lightFrame)
+	}
+	f := &lightFrame{shot: shot, products: map[int][]float64{}}
+	r.at[shot] = r.recent.PushFront(f)
+	for r.recent.Len() > r.k+8 {
+		last := r.recent.Back()
+		delete(r.at, last.Value.(*lightFrame).shot)
+		r.recent.Remove(last)
+	}
+	return f
+}
+
+func (r *References) forget(shot int) {
+	r.mu.Lock()
+	defer r.mu.Unlock()
+	if e, ok := r.at[shot]; ok {
+		delete(r.at, shot)
+		r.recent.Remove(e)
+	}
+}
+
+// read fills a light frame in.
+func (r *References) read(ctx context.Context, f *lightFrame) error {
+	raw, err := r.load(ctx, f.shot)
+	if err != nil {
+		return err
+	}
+	if raw == nil {
+		return refuse(NoLight, "")
+	}
+	n := r.night
+	l, err := n.lit(raw, imageio.Light)
+	if err != nil {
+		return err
+	}
+	outliers(l.pix, nil, n.win.width, n.readVar(), true, l.bad)
+	fill(l.pix, n.win.width, l.bad)
+	if l.saturated*1000 > len(l.pix) {
+		return refuse(Saturated, "light: %d pixels", l.saturated)
+	}
+	if l.dark.own {
+		f.darkVar = l.dark.variance * float64(n.win.bin*n.win.bin)
+	}
+	pix := n.win.sum(l.pix)
+	f.blocks = r.tiles.average(func(i int) float64 { return pix[i] })
+	for _, b := range f.blocks {
+		f.mean += b / float64(len(f.blocks))
+	}
+	if !(f.mean > 0) {
+		return refuse(EmptyProbe, "mean %.2g electrons a pixel", f.mean)
+	}
+	f.pix = make([]float32, len(pix))
+	for i, v := range pix {
+		f.pix[i] = float32(v)
+	}
+	return nil
+}
+
+// nearest returns the light frames of the k shots nearest to a shot in natural order, the
+// shot itself among them, ties to the earlier, shots without a usable light frame passed
+// over; the nearest stands first.
+func (r *References) nearest(ctx context.Context, shot int) ([]*lightFrame, error) {
+	if shot < 0 || shot >= r.shots {
+		return nil, fmt.Errorf("shot %d is not one of the %d shots of the night", shot, r.shots)
+	}
+	var frames []*lightFrame
+	for d := 0; d < r.shots && len(frames) < r.k; d++ {
+		for _, s := range []int{shot - d, shot + d} {
+			if s < 0 || s >= r.shots || d == 0 && len(frames) > 0 || len(frames) == r.k {
+				continue
+			}
+			f, err := r.frame(ctx, s)
+			if ctx.Err() != nil {
+				return nil, ctx.Err()
+			}
+			if err == nil {
+				frames = append(frames, f)
+			}
+		}
+	}
+	return frames, nil
+}
+
+// productsOf returns the sums over tiles of the products of two light frames; they are
+// kept with the later of the two.
+func (r *References) productsOf(a, b *lightFrame) []float64 {
+	if a.shot < b.shot {
+		a, b = b, a
+	}
+	a.guard.Lock()
+	defer a.guard.Unlock()
+	p, ok := a.products[b.shot]
+	if !ok {
+		p = r.tiles.products(a.blocks, b.blocks)
+		a.products[b.shot] = p
+	}
+	return p
+}
