@@ -1,4 +1,4 @@
-package model_test
+package model
 
 import (
 	"math"
@@ -6,7 +6,6 @@ import (
 
 	"gonum.org/v1/gonum/integrate/quad"
 
-	"fallshadow/model"
 	"fallshadow/model/bose"
 )
 
@@ -15,21 +14,21 @@ import (
 func TestTransitionHandbook(t *testing.T) {
 	trap := unitTrap(1, 1, 1)
 	const n, scattering = 1e6, 1e-9
-	lambda := model.ThermalWavelength(model.CriticalTemperature(n, trap), rubidium)
+	lambda := ThermalWavelength(CriticalTemperature(n, trap), rubidium)
 	perAtom := math.Cbrt(n)
-	topTrap := model.TrapHz(373/math.Sqrt(8), 373/math.Sqrt(8), 373)
-	long := model.TrapHz(413, 413, 8.69)
+	topTrap := TrapHz(373/math.Sqrt(8), 373/math.Sqrt(8), 373)
+	long := TrapHz(413, 413, 8.69)
 	for id, got := range map[string]float64{
-		"W01": model.KB * model.CriticalTemperature(n, trap) / (model.HBar * perAtom),
-		"W02": model.CriticalTemperature(n, model.TrapHz(100, 100, 100)) / perAtom * 1e9,
-		"W03": -model.FiniteSizeShift(n, trap) * perAtom,
-		"W04": model.InteractionShift(n, rubidium, scattering, trap) * lambda / scattering,
-		"W05": model.InteractionShift(n, rubidium, scattering, trap) / scattering * trap.Length(rubidium) / math.Pow(n, 1./6),
-		"W15": model.InteractionShift(1, rubidium, 5.31e-9, long),
-		"W16": model.CriticalTemperature(40000, topTrap) * 1e9,
-		"W17": model.TransitionTemperature(40000, rubidium, 100.4*model.A0, topTrap) / model.CriticalTemperature(40000, topTrap),
+		"W01": KB * CriticalTemperature(n, trap) / (HBar * perAtom),
+		"W02": CriticalTemperature(n, TrapHz(100, 100, 100)) / perAtom * 1e9,
+		"W03": -FiniteSizeShift(n, trap) * perAtom,
+		"W04": InteractionShift(n, rubidium, scattering, trap) * lambda / scattering,
+		"W05": InteractionShift(n, rubidium, scattering, trap) / scattering * trap.Length(rubidium) / math.Pow(n, 1./6),
+		"W15": InteractionShift(1, rubidium, 5.31e-9, long),
+		"W16": CriticalTemperature(40000, topTrap) * 1e9,
+		"W17": TransitionTemperature(40000, rubidium, 100.4*A0, topTrap) / CriticalTemperature(40000, topTrap),
 	} {
-		expected, tolerance := worked(t, id)
+		expected, tolerance := workedExample(t, id)
 		within(t, id, got, expected, tolerance)
 	}
 }
@@ -42,16 +41,16 @@ func TestInteractionShiftFromDensity(t *testing.T) {
 	}
 	integral := 4 / math.Sqrt(math.Pi) * (quad.Fixed(integrand, 0, 2, 60, nil, 0) + quad.Fixed(integrand, 2, 7, 60, nil, 0))
 	want := -4. / 3 / bose.Zeta3 * integral
-	trap := model.TrapHz(20, 120, 90)
+	trap := TrapHz(20, 120, 90)
 	const n, a = 3e5, 5e-9
-	lambda := model.ThermalWavelength(model.CriticalTemperature(n, trap), rubidium)
-	within(t, "per a/λ0", model.InteractionShift(n, rubidium, a, trap)*lambda/a, want, 1e-12)
+	lambda := ThermalWavelength(CriticalTemperature(n, trap), rubidium)
+	within(t, "per a/λ0", InteractionShift(n, rubidium, a, trap)*lambda/a, want, 1e-12)
 	x := a / lambda
-	within(t, "second order", model.BeyondMeanFieldShift(n, rubidium, a, trap), want*x+46*x*x, 1e-14)
+	within(t, "second order", BeyondMeanFieldShift(n, rubidium, a, trap), want*x+46*x*x, 1e-14)
 }
 
 func TestTransitionTemperatureOutsideItsDomain(t *testing.T) {
-	if got := model.TransitionTemperature(0.1, rubidium, 0, unitTrap(1, 1, 1)); !math.IsNaN(got) {
+	if got := TransitionTemperature(0.1, rubidium, 0, unitTrap(1, 1, 1)); !math.IsNaN(got) {
 		t.Errorf("a tenth of an atom condenses at %g K", got)
 	}
 }
