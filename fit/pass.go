@@ -21,6 +21,7 @@ type problem struct {
 	blur2 float64 // variance of the blur, px²: resolution and pixel width
 	room  room    // where the cloud is blurred pixel by pixel
 	skip  []bool  // pixels of the level that a fit of the wings leaves out, or nil
+	pull  *pull   // a measured number that is held, or nil
 	buf   *buffers
 }
 

@@ -16,8 +16,9 @@ type kind struct {
 	free                bool // every width of its own; otherwise one T and one μ
 	alpha               bool // fugacity free; otherwise 1
 	angle               bool
-	fixWidth            bool // T stays: the profile of its likelihood
-	fixCondensate       bool // N0 stays: the profile of its likelihood
+	fixWidth            bool
+	fixThermal          bool
+	fixCondensate       bool
 	fixRadius           bool
 	fixCentre           bool
 }
@@ -50,7 +51,7 @@ func (k kind) tie() tie {
 	add(any && !k.fixCentre, pX)
 	add(any && !k.fixCentre, pY)
 	add(any && k.angle, pAngle)
-	add(k.thermal, pThermal)
+	add(k.thermal && !k.fixThermal, pThermal)
 	add(k.condensate && !k.fixCondensate, pCondensate)
 	if k.free {
 		add(k.thermal && !k.fixWidth, pWidth1)
@@ -68,6 +69,7 @@ func (k kind) tie() tie {
 // search is one minimisation in normal form; it implements lm.Problem.
 type search struct {
 	*problem
+	kind kind
 	tie  tie
 	base params
 	h, g []float64
@@ -80,11 +82,12 @@ func (s *search) Dim() int { return s.tie.n }
 func (s *search) Normal(y []float64, h, g []float64) float64 {
 	q := s.expand(y)
 	if h == nil {
-		return s.normal(&q, nil, nil)
+		return s.normal(&q, nil, nil) + s.pulled(&q, nil, nil)
 	}
 	clear(s.h)
 	clear(s.g)
 	f := s.normal(&q, s.h, s.g)
+	f += s.pulled(&q, s.h, s.g)
 	clear(h)
 	clear(g)
 	for i, a := range s.tie.slot {
@@ -99,6 +102,13 @@ func (s *search) Normal(y []float64, h, g []float64) float64 {
 		}
 	}
 	return f
+}
+
+func (s *search) pulled(q *params, h, g []float64) float64 {
+	if s.pull == nil {
+		return 0
+	}
+	return s.pull.add(s, q, h, g)
 }
 
 func (s *search) expand(y []float64) params {
@@ -169,7 +179,7 @@ const (
 
 // minimize runs one fit at p from start. tol is the decrease of χ² below which it ends.
 func (w *Workspace) minimize(ctx context.Context, p *problem, k kind, start params, tol float64) (*state, error) {
-	s := &search{problem: p, tie: k.tie(), base: start, h: w.h[:], g: w.g[:]}
+	s := &search{problem: p, kind: k, tie: k.tie(), base: start, h: w.h[:], g: w.g[:]}
 	y0 := make([]float64, s.tie.n)
 	set := lm.Settings{
 		Lower: make([]float64, s.tie.n), Upper: make([]float64, s.tie.n), MaxStep: make([]float64, s.tie.n),

@@ -79,8 +79,9 @@ func (b *box) stop(x, d []float64, free []bool) bool {
 	return any
 }
 
-// shorten scales the step d so that no parameter changes by more than its limit.
-func (b *box) shorten(x, d []float64) {
+// shorten scales the step d so that no parameter changes by more than its limit, and says
+// whether it had to.
+func (b *box) shorten(x, d []float64) bool {
 	f := 1.0
 	for i, v := range d {
 		if v == 0 {
@@ -93,11 +94,13 @@ func (b *box) shorten(x, d []float64) {
 			f = min(f, b.relStep[i]*math.Abs(x[i]/v))
 		}
 	}
-	if f < 1 {
-		for i := range d {
-			d[i] *= f
-		}
+	if f >= 1 {
+		return false
 	}
+	for i := range d {
+		d[i] *= f
+	}
+	return true
 }
 
 // move fills dst with x + d, exactly at a bound where it would lie beyond.

@@ -6,8 +6,8 @@ import (
 	"math"
 )
 
-// loop is the state of one minimisation: from the model at x it takes a damped step within
-// the bounds, evaluates there, keeps or drops the point, and adapts the damping.
+// loop is the state of one minimisation: from the model at x it takes a step within radius
+// and bounds, evaluates there, keeps or drops the point, and adapts the radius.
 type loop struct {
 	box
 	set   Settings
@@ -15,9 +15,10 @@ type loop struct {
 	damp  damping
 	x, y  []float64 // centre and point tried
 	d     []float64 // step
-	scale []float64 // squared column norms
+	scale []float64 // squares of D: largest squared column norm so far
 	free  []bool
-	moves []bool // free entries of this step
+	moves []bool  // free entries that a bound does not stop in this step
+	rest  float64 // length of the last step within rounding
 	res   Result
 }
 
@@ -31,36 +32,25 @@ func (l *loop) run(ctx context.Context, lin linear, x0 []float64, s *Settings) (
 	l.reset(lin, x0, s)
 	l.res.F = l.evaluate(l.x)
 	if !finite(l.res.F) || !lin.accept() {
-		l.finish(StartOutside)
+		l.res.Reason = StartOutside
 		return l.res, fmt.Errorf("lm: %s", StartOutside.Sentence())
 	}
-	reason := Unfinished
-	for reason == Unfinished {
+	for l.res.Reason == Unfinished {
 		if err := ctx.Err(); err != nil {
-			l.finish(Cancelled)
+			l.res.Reason = Cancelled
 			return l.res, fmt.Errorf("lm: %s: %w", Cancelled.Sentence(), err)
 		}
-		reason = l.iterate()
+		l.res.Reason = l.iterate()
 	}
-	l.finish(reason)
+	l.lin.normal(l.res.H)
+	l.res.Lambda = l.damp.lambda
 	return l.res, nil
 }
 
 func (l *loop) reset(lin linear, x0 []float64, s *Settings) {
 	n := len(x0)
-	l.lin, l.set = lin, *s
+	l.lin, l.set, l.damp, l.rest = lin, s.complete(), damping{}, math.Inf(1)
 	l.box = box{s.Lower, s.Upper, s.Fixed, s.MaxStep, s.RelStep}
-	standard := func(v *float64, d float64) {
-		if *v == 0 {
-			*v = d
-		}
-	}
-	standard(&l.set.XTol, 1e-10)
-	standard(&l.set.FTol, 1e-12)
-	if l.set.MaxIterations == 0 {
-		l.set.MaxIterations = 200
-	}
-	l.damp.start(s.Lambda)
 	l.x, l.y, l.d, l.scale = grow(l.x, n), grow(l.y, n), grow(l.d, n), grow(l.scale, n)
 	l.free, l.moves = grow(l.free, n), grow(l.moves, n)
 	copy(l.x, x0)
@@ -73,13 +63,6 @@ func (l *loop) evaluate(x []float64) float64 {
 	return l.lin.try(x)
 }
 
-func (l *loop) finish(reason Termination) {
-	l.res.Reason, l.res.Lambda = reason, l.damp.lambda
-	if reason != StartOutside {
-		l.lin.normal(l.res.H)
-	}
-}
-
 // iterate takes one step, or says why there is none to take.
 func (l *loop) iterate() Termination {
 	g := l.lin.gradient()
@@ -87,111 +70,61 @@ func (l *loop) iterate() Termination {
 		return l.nothingFree()
 	}
 	l.lin.norms(l.y)
-	for i,v:=range l.y { l.scale[i]=max(l.scale[i],v) }
-	if l.upright(g) {
+	if l.upright(g, l.y) {
 		return SmallGradient
+	}
+	for i, v := range l.y {
+		l.scale[i] = max(l.scale[i], v)
 	}
 	if l.res.Iterations >= l.set.MaxIterations {
 		return IterationLimit
 	}
 	l.res.Iterations++
-	promise, ok := l.step(l.damp.lambda)
+	promise, newton, ok := l.step()
 	if !ok {
-		l.damp.bad()
-		return l.stalled()
-	}
-	end := l.converged(promise)
-	if end != Unfinished && l.damp.lambda > 0 {
-		// A strong damping makes any step small: what counts is the undamped one.
-		copy(l.y, l.d)
-		if p, ok := l.step(0); ok {
-			promise, end = p, l.converged(p)
-		} else {
-			copy(l.d, l.y)
-		}
+		return Stalled
 	}
 	l.move(l.y, l.x, l.d)
+	end := Unfinished
+	if newton { // damping makes any step small: only the undamped one can end the search
+		end = l.converged(promise)
+	}
 	if end != Unfinished && l.set.AcceptPredicted {
 		copy(l.x, l.y)
 		l.res.F -= promise
 		return end
 	}
-	return l.judge(promise, end)
+	return l.judge(promise, newton, end)
 }
 
-// judge evaluates F at the point tried and moves there if that is lower.
-func (l *loop) judge(promise float64, end Termination) Termination {
-	f := l.evaluate(l.y)
-	gain := (l.res.F - f) / promise
-	if !(f <= l.res.F) || !(promise > 0) || !l.lin.accept() {
-		if end != Unfinished {
-			return end
-		}
-		l.damp.bad()
-		return l.stalled()
-	}
-	copy(l.x, l.y)
-	l.res.F = f
-	l.damp.good(gain)
-	return end
-}
+// rounding is the relative error that F is granted: sums over many data, and residuals
+// that are small against the data, leave it far above that of one operation.
+const rounding = 1e-11
 
-func (l *loop) nothingFree() Termination {
-	for i := range l.x {
-		if !l.res.fixed[i] {
-			return SmallGradient
-		}
-	}
-	return NothingFree
-}
-
-func (l *loop) stalled() Termination {
-	if l.damp.exhausted() {
-		return Stalled
-	}
-	return Unfinished
-}
-
-// upright says whether every free column of J is at a right angle to ρ within GTol.
-func (l *loop) upright(g []float64) bool {
-	for i, f := range l.free {
-		if f && math.Abs(g[i]) > max(l.set.GTol, 0)*math.Sqrt(l.scale[i]*l.res.F) {
-			return false
-		}
-	}
-	return true
-}
-
-// step fills d with the damped step over the free parameters and returns the decrease of
-// F that it promises. What would cross a bound ends there and the rest is solved again.
-func (l *loop) step(lambda float64) (promise float64, ok bool) {
-	clear(l.d)
-	copy(l.moves, l.free)
-	for again := true; again; again = l.stop(l.x, l.d, l.moves) {
-		if !l.lin.solve(l.d, l.moves, lambda, l.scale) || !allFinite(l.d) {
-			return 0, false
-		}
-	}
-	l.shorten(l.x, l.d)
-	return l.lin.decrease(l.d), true
-}
-
-// converged says whether the step d with the promised decrease of F ends the search.
-func (l *loop) converged(promise float64) Termination {
-	dd, xx := 0.0, 0.0
-	for i, s := range l.scale {
-		dd += s * l.d[i] * l.d[i]
-		xx += s * l.x[i] * l.x[i]
+// judge evaluates F at the point tried and moves there if that is lower. F cannot judge
+// what its rounding hides, but the Gauss-Newton step is more exact than F: there it is
+// followed as long as it shrinks.
+func (l *loop) judge(promise float64, newton bool, end Termination) Termination {
+	f, length := l.evaluate(l.y), l.length()
+	hidden := newton && promise <= rounding*l.res.F && math.Abs(f-l.res.F) <= rounding*l.res.F
+	shrinks := hidden && length < 0.8*l.rest
+	gain := math.Inf(-1)
+	if (f <= l.res.F && promise > 0 || shrinks) && l.lin.accept() {
+		gain = (l.res.F - f) / promise
+		copy(l.x, l.y)
+		l.res.F = f
 	}
 	switch {
-	case promise <= l.set.PredictTol && l.set.PredictTol > 0:
-		return PredictedDecrease
-	case l.set.FTol > 0 && promise <= l.set.FTol*l.res.F:
-		return SmallDecrease
-	case l.set.XTol > 0 && math.Sqrt(dd) <= l.set.XTol*math.Sqrt(xx):
-		return SmallStep
-	case promise <= epsilon*l.res.F:
+	case end != Unfinished:
+		return end
+	case shrinks:
+		l.rest = length
+		return Unfinished
+	case hidden && !(gain >= 0):
 		return RoundingLimit
+	case !newton && promise <= epsilon*l.res.F:
+		return Stalled
 	}
+	l.damp.adapt(gain, length)
 	return Unfinished
 }

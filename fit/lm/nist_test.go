@@ -52,7 +52,7 @@ func TestNIST(t *testing.T) {
 	t.Logf("%-9s %5s %28s   %28s", "", "start", "QR: digits (errors)", "normal form: digits (errors)")
 	for _, p := range allNIST(t) {
 		for k, x0 := range p.start {
-			s := &Settings{XTol: 1e-13, FTol: -1, MaxIterations: 2000, Lambda: 1}
+			s := &Settings{XTol: 1e-11, FTol: -1, MaxIterations: 3000}
 			r, err := MinimizeDense(ctx, p, x0, s)
 			if err != nil {
 				t.Errorf("%s start %d: %v", p.name, k+1, err)

@@ -1,6 +1,7 @@
 // Package lm minimises sums of squares, F(x) = Σρᵢ(x)², by the Levenberg-Marquardt
-// method: each step minimises |ρ + J d|² + λ|D d|², where D holds the column norms of the
-// Jacobian J, and λ follows the ratio of the decrease that came to the one predicted.
+// method: each step minimises |ρ + J d|² + λ|D d|², where J is the Jacobian, D holds its
+// largest column norms so far, and λ keeps |D d| within a radius that follows the ratio of
+// the decrease that came to the one predicted; near the minimum λ is 0.
 // Parameters may be fixed, bounded, tied linearly (Tied) and limited in their step.
 //
 // A problem comes in one of two forms. In normal form (Problem) it hands over JᵀJ and Jᵀρ,
@@ -55,8 +56,8 @@ type Settings struct {
 	// Result.F is then the predicted one and Result.H that of the point before.
 	AcceptPredicted bool
 
-	MaxIterations int     // linear solves; 0 means 200
-	Lambda        float64 // damping at the start; 0 means 1e-3, negative none (Gauss-Newton)
+	MaxIterations int     // steps tried; 0 means 200
+	Lambda        float64 // damping λ of the first step; 0 is a Gauss-Newton step
 }
 
 // Result is what a minimisation found. X, H and AtBound belong to the Workspace and hold
@@ -65,9 +66,9 @@ type Result struct {
 	X           []float64
 	F           float64
 	Reason      Termination
-	Iterations  int // linear solves
-	Evaluations int // of F
-	Lambda      float64
+	Iterations  int       // steps tried
+	Evaluations int       // of F
+	Lambda      float64   // of the last step
 	H           []float64 // JᵀJ at X over all parameters, n×n row-major
 	AtBound     []bool    // held at a bound by the gradient
 	fixed       []bool

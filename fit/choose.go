@@ -1,0 +1,106 @@
+package fit
+
+import (
+	"math"
+)
+
+// candidates are the best fits of each kind at one level under the same variances.
+type candidates struct{ none, thermal, both, alone *state }
+
+func (c *candidates) list() []*state { return []*state{c.thermal, c.both, c.alone} }
+
+// best returns the candidate of least χ², which sets the variances.
+func (c *candidates) best() *state {
+	b := c.none
+	for _, st := range c.list() {
+		if st.used() && (b == nil || st.chi2 < b.chi2) {
+			b = st
+		}
+	}
+	return b
+}
+
+// explore finds the candidates on the coarsest level from a first look, then follows them
+// down to the level of choices.
+func (s *session) explore() (*candidates, guess, error) {
+	top := len(s.levels) - 1
+	p := s.problem(top, &params{}, kind{})
+	p.level.freezeData()
+	g := p.look()
+	c := new(candidates)
+	if err := s.first(top, p, g, c); err != nil {
+		return nil, g, err
+	}
+	for i := top; i >= s.work; i-- {
+		if b := c.best(); b != nil {
+			s.freeze(i, b)
+		}
+		if err := s.follow(i, c); err != nil {
+			return nil, g, err
+		}
+	}
+	return c, g, nil
+}
+
+// first tries every start of every kind.
+func (s *session) first(top int, p *problem, g guess, c *candidates) error {
+	none, err := s.run(top, kind{}, params{pLight: g.light}, 0.5)
+	if err != nil {
+		return err
+	}
+	c.none = none
+	for _, t := range []struct {
+		k  kind
+		to **state
+	}{{s.opt.thermal(), &c.thermal}, {s.opt.both(), &c.both}, {s.opt.alone(), &c.alone}} {
+		for _, q := range p.starts(g, t.k) {
+			st, err := s.run(top, t.k, q, 0.5)
+			if err != nil {
+				return err
+			}
+			if st.used() && (*t.to == nil || st.chi2 < (*t.to).chi2) {
+				*t.to = st
+			}
+		}
+	}
+	return nil
+}
+
+// follow minimises every candidate again at level i.
+func (s *session) follow(i int, c *candidates) error {
+	for _, to := range []**state{&c.none, &c.thermal, &c.both, &c.alone} {
+		if *to == nil {
+			continue
+		}
+		st, err := s.run(i, (*to).kind, (*to).p, 0.02)
+		if err != nil {
+			return err
+		}
+		*to = st
+	}
+	return nil
+}
+
+// choose takes the simplest model that the picture does not refuse: a second part must lower
+// χ² by a stated amount, and so must any cloud. A condensate beside a thermal part is only
+// believed where its column stands above its own error.
+func (s *session) choose(c *candidates) (*state, string) {
+	chi := func(st *state) float64 {
+		if !st.used() {
+			return math.Inf(1)
+		}
+		return st.chi2
+	}
+	single, name := c.thermal, ModelThermal
+	if chi(c.alone) < chi(c.thermal) {
+		single, name = c.alone, ModelCondensate
+	}
+	if c.both.used() && c.both.p[pCondensate] > 0 && c.both.p[pThermal] > 0 &&
+		chi(c.thermal)-chi(c.both) > s.opt.CondensateChi2 && chi(c.alone)-chi(c.both) > s.opt.ThermalChi2 {
+		return c.both, ModelBimodal
+	}
+	if chi(c.none)-chi(single) > s.opt.CloudChi2 {
+		return single, name
+	}
+	return c.none, ModelNone
+}

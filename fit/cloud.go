@@ -1,0 +1,150 @@
+package fit
+
+import (
+	"context"
+	"fmt"
+	"math"
+
+	"fallshadow/model/numbers"
+)
+
+// Cloud fits the cloud in a picture after a flight (s) and returns what it is, with errors,
+// comparisons and flags; it needs no first guess. It picks between a thermal part, both
+// parts, a condensate and none by Options. ws is the worker's memory. The error says what
+// is wrong with the input, that no minimum was found, or that ctx was done.
+func Cloud(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt Options, ws *Workspace) (*Result, error) {
+	s, err := newSession(ctx, pic, lab, flight, opt, ws)
+	if err != nil {
+		return nil, err
+	}
+	c, g, err := s.explore()
+	if err != nil {
+		return nil, err
+	}
+	chosen, model := s.choose(c)
+	if !chosen.used() {
+		if chosen == nil {
+			return nil, fmt.Errorf("no fit found a minimum")
+		}
+		return nil, stateError("the fit found no minimum", chosen)
+	}
+	r := &Result{Model: model, Form: s.form(chosen.kind)}
+	if err := s.finish(c, chosen, r); err != nil {
+		return nil, err
+	}
+	r.Iterations = s.iterations
+	r.Flags = append(r.Flags, s.warnings(g, r)...)
+	return r, nil
+}
+
+// finish refines the chosen model on the full picture and fills the result.
+func (s *session) finish(c *candidates, chosen *state, r *Result) error {
+	if s.opt.Free && r.Model != ModelNone {
+		k := chosen.kind
+		k.free = true
+		free, err := s.run(s.work, k, chosen.p, 1e-3)
+		if err != nil {
+			return err
+		}
+		if free.used() {
+			chosen = free
+		}
+	}
+	full, err := s.refine(chosen)
+	if err != nil {
+		return err
+	}
+	r.clear()
+	s.residuals(full, r)
+	if r.Model == ModelNone {
+		return s.limitNone(c, r)
+	}
+	if err := s.fillShape(full, r); err != nil {
+		return err
+	}
+	if err := s.compare(chosen, full, r); err != nil {
+		return err
+	}
+	return s.limits(c, full, r)
+}
+
+// refine minimises on the full picture, its variances taken from the model until that no
+// longer moves the parameters: two rounds after the coarse levels have agreed.
+func (s *session) refine(st *state) (*state, error) {
+	for round := range 4 {
+		s.freeze(0, st)
+		next, err := s.run(0, st.kind, st.p, 1e-4)
+		if err != nil {
+			return nil, err
+		}
+		if !next.used() {
+			return nil, stateError("the fit of the full picture found no minimum", next)
+		}
+		moved := next.moved(st)
+		st = next
+		if round > 0 && moved < 0.01 {
+			break
+		}
+	}
+	return st, nil
+}
+
+// moved is the largest step from o in standard deviations.
+func (s *state) moved(o *state) float64 {
+	most := 0.0
+	for i := range numParams {
+		if v := s.variance(i); v > 0 {
+			most = math.Max(most, math.Abs(s.p[i]-o.p[i])/math.Sqrt(v))
+		}
+	}
+	return most
+}
+
+// fillShape turns parameters into lengths and numbers.
+func (s *session) fillShape(st *state, r *Result) error {
+	q, px := &st.p, s.tmpl.pixel
+	r.X, r.Y = q[pX], q[pY]
+	r.Angle = s.tmpl.angle + q[pAngle]
+	if st.kind.thermal {
+		for i, v := range s.tmpl.thermalOf(q).square {
+			r.Width[i] = math.Sqrt(v) * px
+		}
+	}
+	if st.kind.condensate {
+		for i, v := range s.tmpl.condensateOf(q).square {
+			r.Radius[i] = math.Sqrt(v) * px
+		}
+	}
+	r.PeakOD = q[pThermal] + q[pCondensate]
+	if st.cov == nil {
+		return fmt.Errorf("the picture does not determine the parameters of the %s fit: the normal matrix is singular", r.Model)
+	}
+	m, j := s.tmpl.measured(q, st.kind)
+	cov := matrix(st.spread(j[:]))
+	shifts, err := s.shifts(st, m)
+	if err != nil {
+		return err
+	}
+	r.Numbers = numbers.Compute(m, cov, shifts, s.numbersLab(s.lab))
+	return nil
+}
+
+func matrix(c [][]float64) (m [numbers.NumMeasured][numbers.NumMeasured]float64) {
+	for i := range m {
+		copy(m[i][:], c[i])
+	}
+	return m
+}
+
+func (s *session) numbersLab(lab *Lab) numbers.Lab {
+	return numbers.Lab{Species: lab.Species, Trap: lab.Trap, Pixel: lab.Optics.Pixel}
+}
+
+// clear sets every number of a result to 'not told'.
+func (r *Result) clear() {
+	nan := math.NaN()
+	r.X, r.Y, r.Angle, r.PeakOD, r.ChiPerDof, r.ChiCloud, r.Sum, r.SumErr = nan, nan, nan, nan, nan, nan, nan, nan
+	r.Width, r.Radius = [2]float64{nan, nan}, [2]float64{nan, nan}
+	r.Checks = Checks{nan, nan, nan, nan, nan, nan, nan, nan, nan, nan, nan, 0, nan}
+	r.Numbers = numbers.Nothing()
+}

@@ -1,0 +1,308 @@
+package fit
+
+import (
+	"math"
+)
+
+// residuals fills the goodness of the fit: χ² over the whole picture, and that of the cloud,
+// the worse of the condensate's ellipse and of 8×8 blocks under the cloud.
+func (s *session) residuals(st *state, r *Result) {
+	p := s.problem(0, &st.p, st.kind)
+	p.render(&st.p, s.ws.kappa)
+	p.residuals(s.ws.kappa, s.ws.resid)
+	l := s.levels[0]
+	sum, n := 0.0, 0
+	for _, v := range s.ws.resid {
+		if !math.IsNaN(v) {
+			sum += v * v
+			n++
+		}
+	}
+	r.ChiPerDof = sum / float64(max(1, n-st.tie.n))
+	r.ChiCloud = math.NaN()
+	if st.kind.condensate {
+		r.ChiCloud = s.chiInside(l, st)
+	}
+	if b := s.chiBlocks(l, st); !math.IsNaN(b) {
+		r.ChiCloud = math.Max(b, nanLow(r.ChiCloud))
+	}
+}
+
+func nanLow(x float64) float64 {
+	if math.IsNaN(x) {
+		return math.Inf(-1)
+	}
+	return x
+}
+
+// reach returns r ᵀS⁻¹r of an ellipse as a function of position.
+func (e ellipse) reach(x0, y0 float64) func(x, y float64) float64 {
+	inv := e.shape().Inverse()
+	return func(x, y float64) float64 {
+		dx, dy := x-x0, y-y0
+		return dx*(inv.XX*dx+2*inv.XY*dy) + inv.YY*dy*dy
+	}
+}
+
+// chiInside is χ² a pixel inside the condensate.
+func (s *session) chiInside(l *level, st *state) float64 {
+	in := s.tmpl.condensateOf(&st.p).reach(st.p[pX], st.p[pY])
+	most := 1.0
+	if s.tmpl.gaussian {
+		most = 4
+	}
+	sum, n := 0.0, 0
+	for o, v := range s.ws.resid {
+		if !math.IsNaN(v) && in(float64(o%l.w), float64(o/l.w)) < most {
+			sum += v * v
+			n++
+		}
+	}
+	if n == 0 {
+		return math.NaN()
+	}
+	return sum / float64(n)
+}
+
+// chiBlocks is the mean square of the blocks' summed residuals, each over √(its pixels), of the
+// blocks whose centre lies within 2.5 widths or 1.2 radii of the cloud; 1 for white noise.
+func (s *session) chiBlocks(l *level, st *state) float64 {
+	const side = 8
+	thermal := s.tmpl.thermalOf(&st.p).reach(st.p[pX], st.p[pY])
+	cond := s.tmpl.condensateOf(&st.p).reach(st.p[pX], st.p[pY])
+	most := 1.44
+	if s.tmpl.gaussian {
+		most = 6
+	}
+	sum, n := 0.0, 0
+	for j := 0; j+side <= l.h; j += side {
+		for i := 0; i+side <= l.w; i += side {
+			x, y := float64(i)+3.5, float64(j)+3.5
+			if !(st.kind.thermal && thermal(x, y) < 6.25) && !(st.kind.condensate && cond(x, y) < most) {
+				continue
+			}
+			if v, ok := s.block(l, i, j, side); ok {
+				sum += v
+				n++
+			}
+		}
+	}
+	if n < 2 {
+		return math.NaN()
+	}
+	return sum / float64(n)
+}
+
+func (s *session) block(l *level, i, j, side int) (float64, bool) {
+	sum, n := 0.0, 0
+	for y := j; y < j+side; y++ {
+		for x := i; x < i+side; x++ {
+			if v := s.ws.resid[y*l.w+x]; !math.IsNaN(v) {
+				sum += v
+				n++
+			}
+		}
+	}
+	return sum * sum / math.Max(1, float64(n)), n >= side*side/2
+}
+
+// compare fills the checks in which two routes lead to one number.
+func (s *session) compare(chosen, full *state, r *Result) error {
+	c := &r.Checks
+	if v := r.Numbers.MuOverMuAtoms; !math.IsNaN(v.V) {
+		c.MuOverMuAtoms, c.MuOverMuAtomsErr = v.V, v.Err
+	}
+	if full.kind.condensate && full.kind.thermal {
+		c.ThermalOverSaturated, c.ThermalOverSatErr = r.Numbers.ThermalOverSaturated.V, r.Numbers.ThermalOverSaturated.Err
+	}
+	if err := s.compareFree(chosen, c); err != nil {
+		return err
+	}
+	if err := s.compareWings(full, c); err != nil {
+		return err
+	}
+	s.sum(full, r)
+	return nil
+}
+
+// compareFree fits every width by itself and notes the ratios between the axes.
+func (s *session) compareFree(tied *state, c *Checks) error {
+	k := tied.kind
+	k.free = !k.free
+	st, err := s.run(s.work, k, tied.p, 0.01)
+	if err != nil {
+		return err
+	}
+	free := st
+	if tied.kind.free {
+		st, free = tied, tied
+	}
+	if !free.used() || free.cov == nil {
+		return nil
+	}
+	c.TiedOverFree = math.Abs(tied.chi2 - st.chi2)
+	s.shown = s.shapeOf(free)
+	c.TiedOverFreeDof = 0
+	ratio := func(a, b int) (v, e float64) {
+		j := [][numParams]float64{{}}
+		v = math.Exp(2 * (free.p[a] - free.p[b]))
+		j[0][a], j[0][b] = 2*v, -2*v
+		return v, math.Sqrt(free.spread(j)[0][0])
+	}
+	if k.thermal {
+		c.TRatio, c.TRatioErr = ratio(pWidth1, pWidth2)
+		c.TiedOverFreeDof++
+	}
+	if k.condensate {
+		c.MuRatio, c.MuRatioErr = ratio(pRadius1, pRadius2)
+		c.TiedOverFreeDof++
+	}
+	return nil
+}
+
+// shapeOf notes what a free fit shows, with the errors of the ratios between its parts.
+func (s *session) shapeOf(st *state) *measuredShape {
+	m := &measuredShape{thermal: st.kind.thermal, condensate: st.kind.condensate}
+	m.width, m.radius = s.tmpl.thermalOf(&st.p).square, s.tmpl.condensateOf(&st.p).square
+	sums, j := s.tmpl.measured(&st.p, st.kind)
+	m.thermalSum, m.condenSum = sums.ThermalSum, sums.CondensateSum
+	var logs [numRatios][numParams]float64
+	logs[ratioT][pWidth1], logs[ratioT][pWidth2] = 2, -2
+	logs[ratioMu][pRadius1], logs[ratioMu][pRadius2] = 2, -2
+	for i := range numParams {
+		logs[ratioMuN][i] = j[atMu][i]/sums.Mu - 0.4*j[atCondensate][i]/sums.CondensateSum
+		logs[ratioSat][i] = j[atThermal][i]/sums.ThermalSum - 3*j[atT][i]/sums.T
+	}
+	c := st.spread(logs[:])
+	for i := range m.errs {
+		if m.errs[i] = math.Sqrt(c[i][i]); math.IsNaN(m.errs[i]) {
+			m.errs[i] = 0
+		}
+	}
+	return m
+}
+
+// compareWings fits the temperature outside the condensate alone, or outside one width of a
+// thermal cloud, with the centre held.
+func (s *session) compareWings(st *state, c *Checks) error {
+	if !st.kind.thermal {
+		return nil
+	}
+	l := s.levels[s.work]
+	in, most := s.tmpl.thermalOf(&st.p).reach(st.p[pX], st.p[pY]), 1.0
+	if st.kind.condensate {
+		in, most = s.tmpl.condensateOf(&st.p).reach(st.p[pX], st.p[pY]), 1.3
+		if s.tmpl.gaussian {
+			most = 12
+		}
+	}
+	skip := make([]bool, l.w*l.h)
+	for o := range skip {
+		skip[o] = in(l.at(o%l.w), l.at(o/l.w)) < most
+	}
+	k := st.kind
+	k.condensate, k.alpha, k.fixCentre = false, false, true
+	start := st.p
+	start[pCondensate] = 0
+	p := s.problem(s.work, &start, k)
+	p.skip = skip
+	w, err := s.ws.minimize(s.ctx, p, k, start, 0.01)
+	if err != nil {
+		return err
+	}
+	if w.used() && w.cov != nil && w.p[pThermal] > 0 {
+		m, j := s.tmpl.measured(&w.p, k)
+		c.WingsT, c.WingsTErr = m.T, math.Sqrt(w.spread(j[2:3])[0][0])
+	}
+	return nil
+}
+
+// sum adds up the density pixel by pixel inside a window that holds the cloud, each by the
+// inverted law; bad and black pixels take the model's density. The bias of a logarithm of
+// noisy counts is taken off: ⟨od⟩−od = α[v_A/2A² − v_L/2L²].
+func (s *session) sum(st *state, r *Result) {
+	l := s.levels[0]
+	window := s.window(st)
+	model := s.densityOf(st)
+	p := s.problem(0, &st.p, st.kind)
+	geo := p.geometry(&st.p, p.blur2)
+	var total, fitted, variance, pull float64
+	for o := range l.atoms {
+		x, y := float64(o%l.w), float64(o/l.w)
+		if !window(x, y) {
+			continue
+		}
+		d := model(x, y)
+		fitted += d
+		if l.count[o] == 0 {
+			total += d
+			continue
+		}
+		v, e, k := s.pixelDensity(p, &geo, o, x, y, d)
+		total += v
+		variance += e
+		pull += k
+	}
+	scale := s.tmpl.pixel * s.tmpl.pixel / s.lab.Species.Sigma0()
+	r.Sum = total * scale
+	r.SumErr = math.Sqrt(variance+pull*pull*st.variance(pLight)) * scale
+	r.Checks.AtomsOverSum = fitted / total
+}
+
+// pixelDensity returns σ0 n of one good pixel by the inverted law, its variance, and its
+// derivative to the light's logarithm. d is the model's density there.
+func (s *session) pixelDensity(p *problem, geo *geometry, o int, x, y, d float64) (v, variance, pull float64) {
+	l := p.level
+	if l.linear {
+		return l.atoms[o] - geo.plane(x, y), l.sigma * l.sigma, 1
+	}
+	k := geo.scale(x, y)
+	sat := k * l.smooth[o] * l.saturate
+	t, _, _ := p.law.transmit(d, sat)
+	vl, vd := l.variances(o)
+	a := math.Max(k*t*l.smooth[o], 1)
+	light := k * math.Max(l.smooth[o], 1)
+	da, dl := p.law.a/a+sat/light, p.law.a/light+sat/light
+	va := a + l.readVariance(o)
+	variance = da*da*va + dl*dl*k*k*vl + (p.law.a/a-p.law.a/light)*(p.law.a/a-p.law.a/light)*vd
+	if l.atoms[o] < 3*math.Sqrt(l.readVariance(o)) || l.light[o] <= 0 {
+		return d, variance, 0
+	}
+	v = p.law.od(l.atoms[o]/(k*l.light[o]), k*l.light[o]*l.saturate)
+	if !finite(v) {
+		return d, variance, 0
+	}
+	v -= p.law.a * (va/(2*a*a) - k*k*vl/(2*light*light))
+	return v, variance, p.law.a + sat*(1-t)
+}
+
+// window says whether a place belongs to the cloud: 4.5 widths or 1.4 radii.
+func (s *session) window(st *state) func(x, y float64) bool {
+	thermal := s.tmpl.thermalOf(&st.p).reach(st.p[pX], st.p[pY])
+	cond := s.tmpl.condensateOf(&st.p).reach(st.p[pX], st.p[pY])
+	most := 2.0
+	if s.tmpl.gaussian {
+		most = 20
+	}
+	return func(x, y float64) bool {
+		return st.kind.thermal && thermal(x, y) < 20.25 || st.kind.condensate && cond(x, y) < most
+	}
+}
+
+// densityOf returns the model's σ0 n as a function of place, without blur.
+func (s *session) densityOf(st *state) func(x, y float64) float64 {
+	p := s.problem(0, &st.p, st.kind)
+	geo := p.geometry(&st.p, p.blur2)
+	e := s.tmpl.condensateOf(&st.p)
+	inv := e.shape().Inverse()
+	return func(x, y float64) float64 {
+		dx, dy := x-geo.x0, y-geo.y0
+		g, _ := boseFast(dx*(0.5*geo.axx*dx+geo.axy*dy) + 0.5*geo.ayy*dy*dy + geo.alpha)
+		d := geo.ampGrown * g * geo.norm
+		if st.p[pCondensate] > 0 {
+			c, _ := p.condensate(dx, dy, &inv)
+			d += st.p[pCondensate] * c
+		}
+		return d
+	}
+}

@@ -1,0 +1,142 @@
+package fit
+
+import "math"
+
+// Flag is a reason to distrust a shot.
+type Flag struct {
+	Name     string // a word, as it stands in the table
+	Sentence string // what it means and what to do, for a person
+}
+
+// The names of the flags.
+const (
+	FlagNoCloud            = "no_cloud"
+	FlagNoThermal          = "no_thermal"
+	FlagDense              = "dense"
+	FlagMisfit             = "misfit"
+	FlagNoise              = "noise"
+	FlagCut                = "cut"
+	FlagSmall              = "small_condensate"
+	FlagHot                = "poor_temperature"
+	FlagWidths             = "axes_disagree"
+	FlagWings              = "wings_disagree"
+	FlagSum                = "sum_disagrees"
+	FlagRatios             = "ratios_disagree"
+	FlagFrequencyUnit      = "suspect_frequency_unit"
+	FlagAxes               = "suspect_axes"
+	FlagAxis1              = "suspect_axis1"
+	FlagAxis2              = "suspect_axis2"
+	FlagSight              = "suspect_sight"
+	FlagFlight             = "suspect_flight"
+	FlagPixel              = "suspect_pixel"
+	FlagNumber             = "suspect_cross_section"
+	FlagBlurred            = "blurred"
+	FlagAttractive         = "attractive"
+	FlagCollapse           = "beyond_collapse"
+	FlagDensityNoReference = "density_image"
+)
+
+// Flags is the one table of flags that a fit can raise.
+var Flags = []Flag{
+	{FlagNoCloud, "no cloud stands out of the noise; the number of atoms is an upper limit"},
+	{FlagNoThermal, "no thermal wing can be told from the noise; T is an upper limit that assumes a saturated thermal part"},
+	{FlagDense, "the peak optical density is above 3: multiple scattering and stray light bend the law there; lengthen the flight or detune"},
+	{FlagMisfit, "the residuals under the cloud are above their noise: shape, blur, fringes or a saturated camera do not fit the model"},
+	{FlagNoise, "the residuals of the whole picture do not match the stated noise: check electrons_per_count and read_noise_electrons"},
+	{FlagCut, "the cloud reaches beyond the picture or over many bad pixels; numbers lean on the model there"},
+	{FlagSmall, "the condensate holds too few atoms for the Thomas-Fermi form (N0 a/ā below 10): mu from its radius is low in trust"},
+	{FlagHot, "the temperature is known to worse than a fifth; T_nK_low and T_nK_high give the interval"},
+	{FlagWidths, "the widths along the two axes do not follow from one T and one mu: check trap frequencies, angle and flight; heating or hydrodynamic expansion look alike"},
+	{FlagWings, "the wings alone give another temperature than the whole cloud"},
+	{FlagSum, "the fitted atom number and the plain sum of the density disagree"},
+	{FlagRatios, "mu from radius and from number, or the thermal number and its saturated value, disagree, and no single setting mends it"},
+	{FlagFrequencyUnit, "the ratios agree if the trap frequencies are in rad/s: settings take Hz (axis1_hz, axis2_hz, sight_hz)"},
+	{FlagAxes, "the ratios agree if two trap axes are exchanged: check which of axis1_hz, axis2_hz, sight_hz is which, and angle_deg"},
+	{FlagAxis1, "the ratios agree with another frequency along axis 1: check axis1_hz"},
+	{FlagAxis2, "the ratios agree with another frequency along axis 2: check axis2_hz"},
+	{FlagSight, "the ratios agree with another frequency along the line of sight: check sight_hz"},
+	{FlagFlight, "the ratios agree with another flight: check the flight's source and unit, and zero_ms"},
+	{FlagPixel, "the ratios agree with another pixel in the object plane: check pixel_um, binning and magnification"},
+	{FlagNumber, "the ratios agree with another cross-section: check alpha, detuning_gamma and counts_per_isat"},
+	{FlagBlurred, "the blur is above a third of the smallest radius or width: the resolution decides the result"},
+	{FlagAttractive, "the gas is attractive: Thomas-Fermi does not exist; the condensate is a gaussian of the variational width and has no mu from a radius"},
+	{FlagCollapse, "N0 is above the number at which an attractive condensate collapses: check the scattering length and the cross-section"},
+	{FlagDensityNoReference, "a density image without raw frames: noise is estimated, saturation and black pixels cannot be seen"},
+}
+
+// warnings raises the flags of a result.
+func (s *session) warnings(g guess, r *Result) []string {
+	var f []string
+	raise := func(on bool, name string) {
+		if on {
+			f = append(f, name)
+		}
+	}
+	n, c := &r.Numbers, &r.Checks
+	raise(r.Model == ModelNone, FlagNoCloud)
+	raise(r.Model == ModelCondensate, FlagNoThermal)
+	raise(s.levels[0].linear, FlagDensityNoReference)
+	raise(r.PeakOD > 3*s.law.a, FlagDense)
+	raise(r.ChiCloud > 1.6, FlagMisfit)
+	raise(math.Abs(r.ChiPerDof-1) > 0.25, FlagNoise)
+	if r.Model == ModelNone {
+		return f
+	}
+	raise(s.isCut(r), FlagCut)
+	raise(r.Model != ModelThermal && n.ThomasFermiParameter.V < 10, FlagSmall)
+	raise(n.T.Err > poor*n.T.V, FlagHot)
+	size := math.Min(math.Min(orInf(r.Width[0]), orInf(r.Width[1])), math.Min(orInf(r.Radius[0]), orInf(r.Radius[1])))
+	raise(s.lab.Optics.Blur > size/3, FlagBlurred)
+	raise(s.tmpl.gaussian && r.Model != ModelThermal, FlagAttractive)
+	raise(n.Collapse.V > 1, FlagCollapse)
+	raise(off(c.WingsT/n.T.V, c.WingsTErr/n.T.V, 0.1), FlagWings)
+	raise(off(c.AtomsOverSum, r.SumErr/r.Sum, 0.05), FlagSum)
+	return append(f, s.suspects(r)...)
+}
+
+func orInf(x float64) float64 {
+	if math.IsNaN(x) {
+		return math.Inf(1)
+	}
+	return x
+}
+
+// off says that a ratio that should be 1 is not: by more than the tolerance and five errors.
+func off(ratio, err, tol float64) bool {
+	d := math.Abs(ratio - 1)
+	return d > tol && d > 5*err
+}
+
+// isCut says that two widths or the radius of the cloud reach over the border, or that many
+// pixels inside one width or radius are bad.
+func (s *session) isCut(r *Result) bool {
+	px := s.tmpl.pixel
+	size := func(i int) float64 {
+		v := 0.0
+		if !math.IsNaN(r.Width[i]) {
+			v = 2 * r.Width[i] / px
+		}
+		if !math.IsNaN(r.Radius[i]) {
+			v = math.Max(v, r.Radius[i]/px)
+		}
+		return v
+	}
+	e := ellipse{[2]float64{size(0) * size(0), size(1) * size(1)}, r.Angle}
+	sh := e.shape()
+	dx, dy := math.Sqrt(sh.XX), math.Sqrt(sh.YY)
+	l := s.levels[0]
+	if r.X-dx < 0 || r.Y-dy < 0 || r.X+dx > float64(l.w-1) || r.Y+dy > float64(l.h-1) {
+		return true
+	}
+	in := e.reach(r.X, r.Y)
+	bad, all := 0, 0
+	for o, c := range l.count {
+		if in(float64(o%l.w), float64(o/l.w)) < 0.25 {
+			all++
+			if c == 0 {
+				bad++
+			}
+		}
+	}
+	return bad*10 > all
+}

@@ -1,0 +1,249 @@
+package fit
+
+import (
+	"math"
+
+	"fallshadow/model"
+	"fallshadow/model/numbers"
+)
+
+// poor is the ratio of error to value beyond which an interval by profile likelihood takes
+// the place of a symmetric error.
+const poor = 0.2
+
+// The places of numbers in a Measured.
+const (
+	atThermal = iota
+	atCondensate
+	atT
+	atMu
+)
+
+// pull draws one measured number to a target with the width eps, so that a minimisation
+// follows the profile of the likelihood along that number.
+type pull struct {
+	at          int
+	target, eps float64
+}
+
+func (u *pull) add(s *search, q *params, h, g []float64) float64 {
+	m, j := s.tmpl.measured(q, s.kind)
+	r := (*measuredAt(&m, u.at) - u.target) / u.eps
+	if !finite(r) {
+		return math.Inf(1)
+	}
+	if h == nil {
+		return r * r
+	}
+	for i := range numParams {
+		g[i] += r * j[u.at][i] / u.eps
+		for l := range numParams {
+			h[i*numParams+l] += j[u.at][i] * j[u.at][l] / (u.eps * u.eps)
+		}
+	}
+	return r * r
+}
+
+func measuredAt(m *numbers.Measured, i int) *float64 {
+	return [...]*float64{&m.ThermalSum, &m.CondensateSum, &m.T, &m.Mu, &m.Alpha}[i]
+}
+
+// limits gives an interval to numbers that the picture knows poorly and upper limits to the
+// parts that were not found.
+func (s *session) limits(c *candidates, full *state, r *Result) error {
+	n := &r.Numbers
+	switch r.Model {
+	case ModelBimodal:
+		if err := s.interval(c.both, atT, &n.T, 1); err != nil {
+			return err
+		}
+		return s.interval(c.both, atCondensate, &n.Condensate, s.perSum())
+	case ModelThermal:
+		if err := s.interval(c.thermal, atT, &n.T, 1); err != nil {
+			return err
+		}
+		return s.limitCondensate(c.thermal, n)
+	case ModelCondensate:
+		return s.limitThermal(c.alone, n)
+	}
+	return nil
+}
+
+// perSum turns a sum of σ0 n over pixels into atoms.
+func (s *session) perSum() float64 {
+	return s.tmpl.pixel * s.tmpl.pixel / s.lab.Species.Sigma0()
+}
+
+// interval replaces a symmetric error by where χ² has risen by 1 on either side.
+func (s *session) interval(st *state, at int, v *numbers.Value, unit float64) error {
+	if !(v.Err > poor*math.Abs(v.V)) || st.cov == nil {
+		return nil
+	}
+	m, j := s.tmpl.measured(&st.p, st.kind)
+	best := *measuredAt(&m, at)
+	sigma := math.Sqrt(st.spread(j[at : at+1])[0][0])
+	low, err := s.side(st, at, best, sigma, -1)
+	if err != nil {
+		return err
+	}
+	high, err := s.side(st, at, best, sigma, 1)
+	if err != nil {
+		return err
+	}
+	v.Low, v.High = math.Max(0, v.V+(low-best)*unit), v.V+(high-best)*unit
+	return nil
+}
+
+// side finds on one side the value at which the profile of χ² has risen by one, by secant
+// steps on its signed root; it returns 0 where even nothing costs less.
+func (s *session) side(st *state, at int, best, sigma, sign float64) (float64, error) {
+	rest, err := s.run(s.work, st.kind, st.p, 1e-3)
+	if err != nil || !rest.used() {
+		return best, err
+	}
+	x0, r0 := best, 0.0
+	x1 := best + sign*sigma
+	for range 8 {
+		if x1 <= 0.02*best {
+			x1 = 0.02 * best
+		}
+		chi, err := s.profile(rest, at, x1, 1e-3*sigma)
+		if err != nil {
+			return best, err
+		}
+		r1 := math.Sqrt(math.Max(0, chi-rest.chi2))
+		if math.Abs(r1-1) < 0.02 {
+			return x1, nil
+		}
+		if x1 <= 0.02*best && r1 < 1 {
+			return 0, nil
+		}
+		slope := (r1 - r0) / (x1 - x0)
+		if sign*slope <= 0 || r1 == 0 {
+			x0, r0, x1 = x1, r1, x1+sign*sigma
+			continue
+		}
+		step := clamp((1-r1)/slope, 2*sigma)
+		x0, r0, x1 = x1, r1, x1+step
+	}
+	return x1, nil
+}
+
+// profile is χ² at its least with one measured number held at x.
+func (s *session) profile(st *state, at int, x, eps float64) (float64, error) {
+	p := s.problem(s.work, &st.p, st.kind)
+	p.pull = &pull{at, x, eps}
+	got, err := s.ws.minimize(s.ctx, p, st.kind, st.p, 1e-3)
+	if err != nil {
+		return 0, err
+	}
+	return got.chi2, nil
+}
+
+// oneSided is the rise of χ² at a one-sided 95 % limit.
+const oneSided = 2.706
+
+// limitCondensate sets the upper limit of N0 in a thermal cloud: a condensate of N0 atoms
+// with the μ that they have in Thomas-Fermi, raised until χ² stands 2.7 above its least.
+func (s *session) limitCondensate(st *state, n *numbers.Result) error {
+	if s.tmpl.gaussian {
+		return nil
+	}
+	k := st.kind
+	k.condensate, k.fixCondensate, k.fixRadius = true, true, true
+	set := func(q *params, atoms float64) {
+		m, err := model.Mu(atoms, s.lab.Species.Mass, s.lab.Species.ScatteringLength, s.lab.Trap)
+		if err != nil {
+			return
+		}
+		l := 0.5 * math.Log(m/templateMu)
+		q[pRadius1], q[pRadius2] = l, l
+		e := s.tmpl.condensateOf(q)
+		size := math.Sqrt(e.square[0] * e.square[1])
+		q[pCondensate] = atoms / s.perSum() / (s.tmpl.condensateArea() * size)
+	}
+	limit, err := s.raise(st, k, set, 1e-4*n.Thermal.V, n.Thermal.V)
+	if err != nil || math.IsNaN(limit) {
+		return err
+	}
+	n.Condensate.High = limit
+	n.Fraction.High = limit / (limit + n.Thermal.V)
+	return nil
+}
+
+// limitThermal sets the upper limits of T and N_th beside a condensate: a saturated thermal
+// part at T, raised until χ² stands 2.7 above its least.
+func (s *session) limitThermal(st *state, n *numbers.Result) error {
+	k := st.kind
+	k.thermal, k.fixWidth, k.fixThermal = true, true, true
+	set := func(q *params, t float64) {
+		l := 0.5 * math.Log(t/templateT)
+		q[pWidth1], q[pWidth2], q[pAlpha] = l, l, 0
+		m, _ := s.tmpl.measured(&params{pThermal: 1, pWidth1: l, pWidth2: l}, kind{thermal: true})
+		q[pThermal] = model.ThermalNumber(t, 0, s.lab.Trap) / s.perSum() / m.ThermalSum
+	}
+	tc := n.Tc0.V
+	limit, err := s.raise(st, k, set, 0.02*tc, 2*tc)
+	if err != nil || math.IsNaN(limit) {
+		return err
+	}
+	n.T.High = limit
+	n.Thermal.High = model.ThermalNumber(limit, 0, s.lab.Trap)
+	return nil
+}
+
+// raise grows one number from low until χ² stands oneSided above the least it had, by steps
+// and a bisection in its logarithm; NaN where even most costs less.
+func (s *session) raise(st *state, k kind, set func(*params, float64), low, most float64) (float64, error) {
+	start := st.p
+	cost := func(x float64) (float64, error) {
+		q := start
+		set(&q, x)
+		got, err := s.run(s.work, k, q, 0.02)
+		if err != nil {
+			return 0, err
+		}
+		return got.chi2, nil
+	}
+	least := st.chi2
+	a, b := low, low
+	for {
+		c, err := cost(b)
+		if err != nil {
+			return math.NaN(), err
+		}
+		least = math.Min(least, c)
+		if c-least > oneSided {
+			break
+		}
+		if a = b; b >= most {
+			return math.NaN(), nil
+		}
+		b *= 1.6
+	}
+	for range 6 {
+		mid := math.Sqrt(a * b)
+		c, err := cost(mid)
+		if err != nil {
+			return math.NaN(), err
+		}
+		if c-least > oneSided {
+			b = mid
+		} else {
+			a = mid
+		}
+	}
+	return b, nil
+}
+
+// limitNone says how much of a cloud of the size of the best thermal fit could hide.
+func (s *session) limitNone(c *candidates, r *Result) error {
+	r.Numbers.Atoms.V = 0
+	if !c.thermal.used() || c.thermal.cov == nil {
+		return nil
+	}
+	m, j := s.tmpl.measured(&c.thermal.p, c.thermal.kind)
+	sigma := math.Sqrt(c.thermal.spread(j[:1])[0][0])
+	r.Numbers.Atoms.High = (math.Max(0, m.ThermalSum) + 1.645*sigma) * s.perSum()
+	return nil
+}

@@ -1,0 +1,70 @@
+package fit
+
+// Options are the choices of a fit. The zero value is the default: a Bose-enhanced thermal
+// part, all widths tied to one T and one μ, the angle that the settings give.
+type Options struct {
+	Gaussian  bool // thermal part a plain gaussian instead of the Bose-enhanced form
+	Free      bool // report the fit in which every width is its own parameter
+	FreeAngle bool // turn both parts to the best angle
+
+	// CondensateChi2 and ThermalChi2 are the decrease of χ² that a second part must bring
+	// to be believed; CloudChi2 the one that any cloud must bring. 0 means the defaults.
+	CondensateChi2, ThermalChi2, CloudChi2 float64
+}
+
+// The decreases of χ² asked for by default. A condensate beside a thermal part brings two
+// numbers (N0 and μ) and can sit on any size, so the threshold is above that of two degrees
+// of freedom at the same rate (15 would be 1 in 1800); any cloud brings at least four.
+const (
+	defaultCondensateChi2 = 18
+	defaultThermalChi2    = 12
+	defaultCloudChi2      = 30
+)
+
+func (o Options) filled() Options {
+	for _, d := range []struct {
+		p *float64
+		v float64
+	}{{&o.CondensateChi2, defaultCondensateChi2}, {&o.ThermalChi2, defaultThermalChi2}, {&o.CloudChi2, defaultCloudChi2}} {
+		if *d.p == 0 {
+			*d.p = d.v
+		}
+	}
+	return o
+}
+
+// gaussianAlpha is a −ln z at which the Bose-enhanced form is a gaussian to 1e-10.
+const gaussianAlpha = 20
+
+func (o Options) thermal() kind { return kind{thermal: true, alpha: !o.Gaussian, angle: o.FreeAngle} }
+func (o Options) both() kind    { return kind{thermal: true, condensate: true, angle: o.FreeAngle} }
+func (o Options) alone() kind   { return kind{condensate: true, angle: o.FreeAngle} }
+
+// form names the profiles of a kind of fit.
+func (s *session) form(k kind) string {
+	thermal, condensate := "bose", "tf"
+	switch {
+	case s.opt.Gaussian:
+		thermal = "gauss"
+	case k.alpha:
+		thermal = "bose-z"
+	}
+	if s.tmpl.gaussian {
+		condensate = "gauss"
+	}
+	form := ""
+	switch {
+	case k.thermal && k.condensate:
+		form = thermal + "+" + condensate
+	case k.thermal:
+		form = thermal
+	case k.condensate:
+		form = condensate
+	default:
+		return ""
+	}
+	if s.opt.Free {
+		form += ",free"
+	}
+	return form
+}

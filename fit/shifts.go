@@ -1,0 +1,79 @@
+package fit
+
+import (
+	"math"
+
+	"fallshadow/model/numbers"
+)
+
+// shifts returns by how much the answer of a fit moves when each calibration moves up by one
+// standard deviation, and the laboratory as it then is. The picture stays: with the gradient
+// Jᵀρ of the moved laboratory at the old parameters, the parameters move by −(JᵀJ)⁻¹Jᵀρ.
+func (s *session) shifts(st *state, m numbers.Measured) ([]numbers.Shift, error) {
+	var out []numbers.Shift
+	rest, err := s.answer(st, s.lab, s.flight)
+	if err != nil {
+		return nil, err
+	}
+	for _, c := range s.lab.Calibration {
+		lab, flight := c.Apply(*s.lab, s.flight, 1)
+		sh := numbers.Shift{Name: c.Name, Known: c.Known, Lab: s.numbersLab(&lab)}
+		moved, err := s.answer(st, &lab, flight)
+		if err != nil {
+			return nil, err
+		}
+		sh.Delta = numbers.Measured{
+			ThermalSum: moved.ThermalSum - rest.ThermalSum, CondensateSum: moved.CondensateSum - rest.CondensateSum,
+			T: moved.T - rest.T, Mu: moved.Mu - rest.Mu, Alpha: moved.Alpha - rest.Alpha,
+		}
+		out = append(out, sh)
+	}
+	return out, nil
+}
+
+// answer takes one Gauss-Newton step from st in another laboratory, on the level of choices.
+func (s *session) answer(st *state, lab *Lab, flight float64) (numbers.Measured, error) {
+	tmpl, err := newTemplate(lab, flight)
+	if err != nil {
+		return numbers.Measured{}, err
+	}
+	p := s.problem(s.work, &st.p, st.kind)
+	b := lab.Optics.Blur / lab.Optics.Pixel
+	level := *p.level
+	level.saturate = 0
+	if !math.IsInf(lab.Optics.Saturation, 1) {
+		level.saturate = 1 / lab.Optics.Saturation
+	}
+	p.level, p.tmpl, p.law, p.blur2 = &level, &tmpl, newLaw(&lab.Optics), b*b+1.0/12
+	q := st.p
+	// The same cloud in pixels: only what the shapes do not share with the template is left
+	// to the step.
+	for i := range 2 {
+		q[pWidth1+i] += 0.5 * math.Log(s.tmpl.thermal.square[i]/tmpl.thermal.square[i])
+		q[pRadius1+i] += 0.5 * math.Log(s.tmpl.condensate.square[i]/tmpl.condensate.square[i])
+	}
+	if !st.kind.free {
+		q[pWidth1] = (q[pWidth1] + q[pWidth2]) / 2
+		q[pRadius1] = (q[pRadius1] + q[pRadius2]) / 2
+		q[pWidth2], q[pRadius2] = q[pWidth1], q[pRadius1]
+	}
+	sr := &search{problem: p, kind: st.kind, tie: st.tie, base: q, h: s.ws.h[:], g: s.ws.g[:]}
+	y := make([]float64, st.tie.n)
+	for i, a := range st.tie.slot {
+		if a >= 0 {
+			y[a] = q[i]
+		}
+	}
+	h, g := make([]float64, len(y)*len(y)), make([]float64, len(y))
+	sr.Normal(y, h, g)
+	for a := range y {
+		for b := range g {
+			y[a] -= st.cov[a*len(y)+b] * g[b]
+		}
+	}
+	q = sr.expand(y)
+	q[pThermal], q[pCondensate] = math.Max(0, q[pThermal]), math.Max(0, q[pCondensate])
+	q[pAlpha] = math.Max(0, q[pAlpha])
+	m, _ := tmpl.measured(&q, st.kind)
+	return m, nil
+}
