@@ -43,7 +43,7 @@ func (p *nist) Jacobian(b []float64, j *mat.Dense) {
 }
 
 // readNIST reads the block of parameters and the data of a file.
-func readNIST(t *testing.T, path string) *nist {
+func readNIST(t testing.TB, path string) *nist {
 	t.Helper()
 	text, err := os.ReadFile(path)
 	if err != nil {
