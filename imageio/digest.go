@@ -20,7 +20,7 @@ func Digest(frames ...*Frame) [32]byte {
 			continue
 		}
 		kind := byte('f')
-		if counts16(f.Pix) {
+		if whole16(f.Pix) {
 			kind = 'u'
 		}
 		head := binary.LittleEndian.AppendUint64([]byte{kind}, uint64(f.Width))
@@ -31,15 +31,17 @@ func Digest(frames ...*Frame) [32]byte {
 }
 
 func hashPixels(h hash.Hash, buf []byte, pix []float32, short bool) {
-	const chunk = 1 << 13
 	for len(pix) > 0 {
-		n := min(chunk, len(pix))
-		buf = buf[:0]
-		for _, v := range pix[:n] {
-			if short {
-				buf = binary.LittleEndian.AppendUint16(buf, uint16(v))
-			} else {
-				buf = binary.LittleEndian.AppendUint32(buf, math.Float32bits(v))
+		n := min(cap(buf)/4, len(pix))
+		if short {
+			buf = buf[:2*n]
+			for i, v := range pix[:n] {
+				binary.LittleEndian.PutUint16(buf[2*i:], uint16(v))
+			}
+		} else {
+			buf = buf[:4*n]
+			for i, v := range pix[:n] {
+				binary.LittleEndian.PutUint32(buf[4*i:], math.Float32bits(v))
 			}
 		}
 		h.Write(buf)
@@ -47,11 +49,11 @@ func hashPixels(h hash.Hash, buf []byte, pix []float32, short bool) {
 	}
 }
 
-// counts16 reports whether every pixel is a whole number from 0 to 65535. Negative zero
-// counts as zero.
-func counts16(pix []float32) bool {
+// whole16 reports whether every pixel is a whole number from 0 to 65535: only such a
+// number survives the way there and back. Negative zero counts as zero.
+func whole16(pix []float32) bool {
 	for _, v := range pix {
-		if !(v >= 0 && v <= math.MaxUint16) || float32(int32(v)) != v {
+		if float32(uint16(int32(v))) != v {
 			return false
 		}
 	}

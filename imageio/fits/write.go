@@ -26,7 +26,7 @@ func Integer(key string, value int, comment string) Card {
 // same number back. Not a number and infinity are refused when the card is written.
 func Number(key string, value float64, comment string) Card {
 	text := strconv.FormatFloat(value, 'G', -1, 64)
-	if !strings.ContainsAny(text, ".E") {
+	if strings.Trim(text, "-0123456789") == "" {
 		text += ".0"
 	}
 	return Card{Key: key, Value: text, Comment: comment}
