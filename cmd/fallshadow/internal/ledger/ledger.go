@@ -120,7 +120,7 @@ func (l *Ledger) Put(ctx context.Context, r *Row) error {
 		if err := keep(ctx, tx, r); err != nil {
 			return err
 		}
-		_, err := tx.ExecContext(ctx, "INSERT OR REPLACE INTO row ("+stored+", present) VALUES (?,?,?,?,?,?,?,?,?,?,?,?,?, 1)", args...)
+		_, err := tx.ExecContext(ctx, "INSERT OR REPLACE INTO row ("+stored+", present) VALUES (?,?,?,?,?,?,?,?,?,?,?,?,?,?, 1)", args...)
 		return err
 	})
 }

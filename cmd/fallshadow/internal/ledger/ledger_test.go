@@ -32,6 +32,7 @@ func row(shot string, content byte) *Row {
 	r.SetNumber("limit", math.Inf(1))
 	r.SetWord("model", "bimodal")
 	r.SetWord("form", "")
+	r.Shifts = map[string]Shift{"alpha": {Known: true, Change: map[string]float64{"atoms": 1e3, "T": -1e-9}}}
 	return r
 }
 

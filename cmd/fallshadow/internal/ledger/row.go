@@ -32,6 +32,14 @@ func (c Currency) Same(d Currency) bool {
 		c.Analysis == d.Analysis && c.Reference.Same(d.Reference)
 }
 
+// Shift is the change of numbers, by the names and in the SI units of package numbers,
+// when one calibration moves up by one standard deviation. The signs keep the correlation
+// of calibration errors between numbers and over the shots of a night.
+type Shift struct {
+	Known  bool               `json:"known"` // somebody stated the uncertainty
+	Change map[string]float64 `json:"change"`
+}
+
 // Row is what the ledger knows of a shot.
 type Row struct {
 	Shot        string   // its path in the night
@@ -46,6 +54,8 @@ type Row struct {
 	// empty is absent. Numbers are finite.
 	Numbers map[string]float64
 	Words   map[string]string
+	// Shifts tells by how much each calibration moves the numbers, by its name.
+	Shifts map[string]Shift
 
 	// The rest is found when rows are read and is not stored with the row.
 

@@ -41,6 +41,7 @@ CREATE TABLE row (
 	meta        TEXT NOT NULL,
 	numbers     TEXT NOT NULL,
 	words       TEXT NOT NULL,
+	shifts      TEXT NOT NULL,
 	present     INTEGER NOT NULL DEFAULT 1
 );
 CREATE INDEX row_content ON row (content);
@@ -59,7 +60,8 @@ CREATE TABLE history (
 	flags       TEXT NOT NULL,
 	meta        TEXT NOT NULL,
 	numbers     TEXT NOT NULL,
-	words       TEXT NOT NULL
+	words       TEXT NOT NULL,
+	shifts      TEXT NOT NULL
 );
 CREATE INDEX history_shot ON history (shot);
 CREATE TABLE verdict (

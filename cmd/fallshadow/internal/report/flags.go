@@ -1,0 +1,51 @@
+// Package report makes what people and other programs read of a night: the columns of
+// the table, the file results.csv, and the summary on the terminal.
+package report
+
+import (
+	"slices"
+
+	"fallshadow/cmd/fallshadow/internal/ledger"
+	"fallshadow/fit"
+	"fallshadow/imageio/light"
+)
+
+// The flags that come from the ledger and not from a picture.
+const (
+	FlagDuplicate   = "duplicate"
+	FlagProvisional = "provisional"
+	FlagStale       = "stale"
+)
+
+var ledgerFlags = []fit.Flag{
+	{Name: FlagDuplicate, Sentence: "another shot before it in the night has the same pixels: the same file was saved or copied twice"},
+	{Name: FlagProvisional, Sentence: "fitted while the night was being taken, with the light frames of that moment: batch makes it final"},
+	{Name: FlagStale, Sentence: "fitted with other settings, frames or program than those of now: batch fits it again"},
+}
+
+// Flags returns the flags of a row: those of its picture, then those that follow from the
+// ledger.
+func Flags(r *ledger.Row) []string {
+	flags := slices.Clone(r.Flags)
+	for _, f := range []struct {
+		on   bool
+		name string
+	}{{r.Duplicate != "", FlagDuplicate}, {r.Provisional, FlagProvisional}, {r.Stale, FlagStale}} {
+		if f.on {
+			flags = append(flags, f.name)
+		}
+	}
+	return flags
+}
+
+// AllFlags returns every flag that a row can have, with its sentence: those of the fit,
+// of the frames, and of the ledger.
+func AllFlags() []fit.Flag {
+	all := slices.Clone(fit.Flags)
+	for _, p := range light.Problems {
+		if !p.Fatal {
+			all = append(all, fit.Flag{Name: p.Word, Sentence: p.What + ": " + p.Do})
+		}
+	}
+	return append(all, ledgerFlags...)
+}
