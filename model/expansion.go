@@ -76,14 +76,18 @@ func CondensateInvariant(trap Trap, s Scaling) float64 {
 // ExpandThermal returns the factors b_i by which the widths of an ideal thermal cloud
 // grow in a flight (s ≥ 0) without collisions: d²b_i/dt² = ω_i²(0)/b_i³ − ω_i²(t) b_i, so
 // b_i² = 1 + ω_i² t² after a sudden release.
-func ExpandThermal(trap Trap, flight float64, rel Release) ([3]float64, error) {
-	s, err := expand(trap, flight, rel, forces{kinetic: squares(trap.Omega)})
-	if err == nil && rel.sudden() {
-		for i, w := range trap.Omega {
-			s.B[i] = math.Hypot(1, w*flight)
-		}
+func ExpandThermal(trap Trap, flight float64, rel Release) (b [3]float64, err error) {
+	if !rel.sudden() {
+		s, err := expand(trap, flight, rel, forces{kinetic: squares(trap.Omega)})
+		return s.B, err
 	}
-	return s.B, err
+	if err := validExpansion(trap, flight, rel); err != nil {
+		return b, err
+	}
+	for i, w := range trap.Omega {
+		b[i] = math.Hypot(1, w*flight)
+	}
+	return b, nil
 }
 
 // forces are the terms k_i/b_i³ + m_i/(b_i b1b2b3) + p_i/[b_i (b1b2b3)^(2/3)] of the

@@ -29,7 +29,7 @@ func integrate(f odeRight, dim int, t0, t1, tol float64, y *odeState) error {
 	if t1 == t0 {
 		return nil
 	}
-	t, first := t0, true
+	t, hold := t0, true // hold: the step must not grow now
 	h := math.Min(t1-t0, 0.05)
 	f(t, y, &k[0])
 	for range odeMaxStep {
@@ -48,7 +48,7 @@ func integrate(f odeRight, dim int, t0, t1, tol float64, y *odeState) error {
 			if t+h == t {
 				return errTooManySteps
 			}
-			first = true
+			hold = true
 			continue
 		}
 		t, *y = t+h, next
@@ -57,10 +57,10 @@ func integrate(f odeRight, dim int, t0, t1, tol float64, y *odeState) error {
 		}
 		f(t, y, &k[0])
 		grow := 0.9 * math.Pow(math.Max(e, 1e-9), -0.125)
-		if first {
+		if hold {
 			grow = math.Min(grow, 1)
 		}
-		first = false
+		hold = false
 		h *= math.Min(math.Max(grow, 0.2), 8)
 	}
 	return errTooManySteps
