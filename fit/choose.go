@@ -20,6 +20,18 @@ func (c *candidates) best() *state {
 	return b
 }
 
+// beaten is the χ² by which a kind must be worse on a coarse level to be given up.
+const beaten = 300
+
+// drop gives up the kinds that the picture has refused; none stays, to measure against.
+func (c *candidates) drop(best float64) {
+	for _, to := range []**state{&c.thermal, &c.both, &c.alone} {
+		if *to != nil && (!(*to).used() || (*to).chi2 > best+beaten) {
+			*to = nil
+		}
+	}
+}
+
 // explore finds the candidates on the coarsest level from a first look, then follows them
 // down to the level of choices.
 func (s *session) explore() (*candidates, guess, error) {
@@ -32,9 +44,9 @@ func (s *session) explore() (*candidates, guess, error) {
 		return nil, g, err
 	}
 	for i := top; i >= s.work; i-- {
-		if b := c.best(); b != nil {
-			s.freeze(i, b)
-		}
+		b := c.best()
+		s.freeze(i, b)
+		c.drop(b.chi2)
 		if err := s.follow(i, c); err != nil {
 			return nil, g, err
 		}

@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"math"
 
+	"fallshadow/model"
 	"fallshadow/model/numbers"
 )
 
@@ -23,14 +24,17 @@ func Cloud(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt Opti
 	}
 	chosen, model := s.choose(c)
 	if !chosen.used() {
-		if chosen == nil {
-			return nil, fmt.Errorf("no fit found a minimum")
-		}
 		return nil, stateError("the fit found no minimum", chosen)
 	}
 	r := &Result{Model: model, Form: s.form(chosen.kind)}
 	if err := s.finish(c, chosen, r); err != nil {
 		return nil, err
+	}
+	if r.Model == ModelBimodal && s.impossible(r) && c.alone.used() {
+		r = &Result{Model: ModelCondensate, Form: s.form(c.alone.kind)}
+		if err := s.finish(c, c.alone, r); err != nil {
+			return nil, err
+		}
 	}
 	r.Iterations = s.iterations
 	r.Flags = append(r.Flags, s.warnings(g, r)...)
@@ -66,6 +70,21 @@ func (s *session) finish(c *candidates, chosen *state, r *Result) error {
 		return err
 	}
 	return s.limits(c, full, r)
+}
+
+// impossible says that a poorly known thermal part is not one: even at the high end of its
+// interval of T the trap could not hold two thirds of its atoms, semi-ideal ones included.
+func (s *session) impossible(r *Result) bool {
+	n := &r.Numbers
+	if math.IsNaN(n.T.High) || s.tmpl.gaussian {
+		return false
+	}
+	most := model.ThermalNumber(n.T.High, 0, s.lab.Trap)
+	sp := &s.lab.Species
+	if mix, err := model.SemiIdealAt(n.T.High, n.Mu.V, sp.Mass, sp.ScatteringLength, s.lab.Trap); err == nil {
+		most = mix.Thermal
+	}
+	return n.Thermal.V > 1.5*most
 }
 
 // refine minimises on the full picture, its variances taken from the model until that no

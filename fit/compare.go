@@ -141,7 +141,11 @@ func (s *session) compareFree(tied *state, c *Checks) error {
 		return nil
 	}
 	c.TiedOverFree = math.Abs(tied.chi2 - st.chi2)
-	s.shown = s.shapeOf(free)
+	if s.shown = s.shapeOf(free); c.TiedOverFree > hopeless {
+		if err := s.exploreFree(); err != nil {
+			return err
+		}
+	}
 	c.TiedOverFreeDof = 0
 	ratio := func(a, b int) (v, e float64) {
 		j := [][numParams]float64{{}}
@@ -157,6 +161,26 @@ func (s *session) compareFree(tied *state, c *Checks) error {
 		c.MuRatio, c.MuRatioErr = ratio(pRadius1, pRadius2)
 		c.TiedOverFreeDof++
 	}
+	return nil
+}
+
+// hopeless is the χ² between the tied and the free fit at which the ties, not the cloud, decide
+// what was found.
+const hopeless = 200
+
+// exploreFree looks at the picture again with every width free, so that the search of a wrong
+// setting sees both parts of a cloud that the tied forms could not take apart.
+func (s *session) exploreFree() error {
+	t := *s
+	t.opt.Free, t.opt.searchFree = true, true
+	c, _, err := t.explore()
+	if err != nil {
+		return err
+	}
+	if st, _ := t.choose(c); st.used() && st.cov != nil && (st.kind.thermal || st.kind.condensate) {
+		s.shown = s.shapeOf(st)
+	}
+	s.iterations = t.iterations
 	return nil
 }
 

@@ -21,8 +21,8 @@ func newLaw(o *Optics) law {
 }
 
 // transmit returns the transmitted fraction, its derivative to d = σ0 n, and s times its
-// derivative to s. Newton steps on the concave depth equation start below the root and
-// rise to it; four leave 1e-12 at any d.
+// derivative to s. Newton steps on the concave depth equation start below the root and rise
+// to it; a short step takes e^−u along by its series. The error is below 1e-11 of 1.
 func (l *law) transmit(d, s float64) (t, td, ts float64) {
 	as := l.a + s
 	u := d / as
@@ -30,23 +30,23 @@ func (l *law) transmit(d, s float64) (t, td, ts float64) {
 	switch {
 	case math.Abs(d) < 1e-3*as:
 		r := s / as
-		// The series of the root in u0 = d/(a+s), good to u0⁴ ~ 1e-12.
 		u += u * u * r * (0.5 + u*(0.5*r-1.0/6))
 		e = 1 - u*(1-u*(0.5-u*(1.0/6-u*(1.0/24))))
 	case s == 0:
 		e = math.Exp(-u)
 	default:
 		e = math.Exp(-u)
-		for range 8 {
-			f := l.a*u + s*(1-e) - d
-			step := f / (l.a + s*e)
+		for range 20 {
+			step := (l.a*u + s*(1-e) - d) / (l.a + s*e)
 			u -= step
-			if math.Abs(step) < 1e-5 {
-				// one step more than e follows: e^−u to second order in the step
-				e *= 1 + step*(1+step*0.5)
+			if math.Abs(step) > 0.05 {
+				e = math.Exp(-u)
+				continue
+			}
+			e *= 1 + step*(1+step*(0.5+step*(1.0/6+step*(1.0/24+step*(1.0/120)))))
+			if math.Abs(step) < 1e-6 {
 				break
 			}
-			e = math.Exp(-u)
 		}
 	}
 	n := 1 / (l.a + s*e)

@@ -10,6 +10,8 @@ type Options struct {
 	// CondensateChi2 and ThermalChi2 are the decrease of χ² that a second part must bring
 	// to be believed; CloudChi2 the one that any cloud must bring. 0 means the defaults.
 	CondensateChi2, ThermalChi2, CloudChi2 float64
+
+	searchFree bool // explore with free widths
 }
 
 // The decreases of χ² asked for by default. A condensate beside a thermal part brings two
@@ -36,9 +38,17 @@ func (o Options) filled() Options {
 // gaussianAlpha is a −ln z at which the Bose-enhanced form is a gaussian to 1e-10.
 const gaussianAlpha = 20
 
-func (o Options) thermal() kind { return kind{thermal: true, alpha: !o.Gaussian, angle: o.FreeAngle} }
-func (o Options) both() kind    { return kind{thermal: true, condensate: true, angle: o.FreeAngle} }
-func (o Options) alone() kind   { return kind{condensate: true, angle: o.FreeAngle} }
+func (o Options) thermal() kind {
+	return kind{thermal: true, alpha: !o.Gaussian, angle: o.FreeAngle, free: o.searchFree}
+}
+
+func (o Options) both() kind {
+	return kind{thermal: true, condensate: true, angle: o.FreeAngle, free: o.searchFree}
+}
+
+func (o Options) alone() kind {
+	return kind{condensate: true, angle: o.FreeAngle, free: o.searchFree}
+}
 
 // form names the profiles of a kind of fit.
 func (s *session) form(k kind) string {

@@ -22,6 +22,7 @@ type problem struct {
 	room  room    // where the cloud is blurred pixel by pixel
 	skip  []bool  // pixels of the level that a fit of the wings leaves out, or nil
 	pull  *pull   // a measured number that is held, or nil
+	ties  *tie    // what steers the fit; nil: every parameter by itself
 	buf   *buffers
 }
 

@@ -59,6 +59,7 @@ const (
 type regionBuffers struct {
 	images [numImages][]float64
 	line   []float64
+	spare  []float64
 	taps   []float64
 }
 
@@ -72,11 +73,17 @@ func (b *regionBuffers) size(n, line int) {
 	if cap(b.line) < line {
 		b.line = make([]float64, line)
 	}
+	if cap(b.spare) < n {
+		b.spare = make([]float64, n)
+	}
 }
 
 // blurTaps returns the taps 0..r of a symmetric kernel of variance v (in pixels of its grid):
 // samples of a gaussian, or for a narrow one five taps with its second and fourth moment.
 func blurTaps(dst []float64, v float64) []float64 {
+	if v == 0 {
+		return append(dst[:0], 1)
+	}
 	if v < 0.5 {
 		w2 := (3*v*v - v) / 24
 		w1 := (v - 8*w2) / 2
@@ -108,18 +115,17 @@ func (p *problem) regionNormal(q *params, geo *geometry, in box, h, g []float64)
 	pad := len(b.taps) - 1
 	w, ht := in.x1-in.x0+2*pad, in.y1-in.y0+2*pad
 	b.size(w*ht, max(w, ht))
-	images := numImages
-	if h == nil {
-		images = imageFirst - 1
-	}
 	sharp := p.geometry(q, 0)
 	p.paint(q, &sharp, in.x0-pad, in.y0-pad, w, ht, h != nil)
-	for i := range images {
-		if h == nil || p.used(q, i) {
+	for i := range numImages {
+		if pad > 0 && (i == imageT || h != nil && p.used(i)) {
 			b.blur(b.images[i], w, ht)
 		}
 	}
 	var acc accumulator
+	for c := range acc.used {
+		acc.used[c] = p.used(imageFirst + c)
+	}
 	for j := in.y0; j < in.y1; j++ {
 		for i := in.x0; i < in.x1; i++ {
 			o := j*l.w + i
@@ -135,13 +141,18 @@ func (p *problem) regionNormal(q *params, geo *geometry, in box, h, g []float64)
 	return acc.rr
 }
 
-// used says whether image i can be other than zero.
-func (p *problem) used(q *params, i int) bool {
-	switch i - imageFirst {
-	case pRadius1, pRadius2:
-		return q[pCondensate] != 0
+// used says whether image i steers the fit: a parameter that is held has none, and of two
+// that are tied the first carries both.
+func (p *problem) used(i int) bool {
+	if i == imageTS {
+		return p.level.saturate > 0
 	}
-	return true
+	i -= imageFirst
+	t := p.ties
+	if t == nil || i < 0 {
+		return true
+	}
+	return t.slot[i] >= 0 && !(t.merged(i) && (i == pWidth2 || i == pRadius2))
 }
 
 // paint fills the images with the unblurred cloud over a w×h rectangle from pixel (i0,j0).
@@ -151,6 +162,7 @@ func (p *problem) paint(q *params, geo *geometry, i0, j0, w, h int, full bool) {
 	cond := p.tmpl.condensateOf(q)
 	inv := ellipse{[2]float64{1 / cond.square[0], 1 / cond.square[1]}, cond.angle}.shape()
 	cs, sn := math.Cos(cond.angle), math.Sin(cond.angle)
+	tied1, tied2 := p.ties.merged(pWidth1), p.ties.merged(pRadius1)
 	for j := range h {
 		y := l.at(j0+j) - geo.y0
 		jj := min(max(j0+j, 0), l.h-1)
@@ -181,6 +193,12 @@ func (p *problem) paint(q *params, geo *geometry, i0, j0, w, h int, full bool) {
 			im[imageFirst+pY][n] = mt*(geo.axy*x+geo.ayy*y) + mc*(inv.XY*x+inv.YY*y)
 			im[imageFirst+pAngle][n] = -mt*u1*u2*(1/geo.v[0]-1/geo.v[1]) - mc*w1*w2*(1/cond.square[0]-1/cond.square[1])
 			im[imageFirst+pAlpha][n] = geo.amp * (gt*geo.slope - ht) * td
+			if tied1 {
+				im[imageFirst+pWidth1][n] += im[imageFirst+pWidth2][n]
+			}
+			if tied2 {
+				im[imageFirst+pRadius1][n] += im[imageFirst+pRadius2][n]
+			}
 		}
 	}
 }
@@ -242,7 +260,9 @@ func (p *problem) regionPixel(geo *geometry, b *regionBuffers, o, i, j, n int, f
 	}
 	var v [numParams]float64
 	for c := range firstLight {
-		v[c] = slope * b.images[imageFirst+c][n]
+		if acc.used[c] {
+			v[c] = slope * b.images[imageFirst+c][n]
+		}
 	}
 	v[pLight], v[pLightX], v[pLightY] = bb, bb*(x-geo.xc)*geo.iw, bb*(y-geo.yc)*geo.ih
 	acc.pixel(&v, rho)
@@ -253,6 +273,8 @@ type accumulator struct {
 	h  [numParams][numParams]float64
 	g  [numParams]float64
 	rr float64
+
+	used [firstLight]bool
 }
 
 func (a *accumulator) pixel(v *[numParams]float64, rho float64) {
@@ -281,27 +303,33 @@ func (a *accumulator) add(h, g []float64) {
 	}
 }
 
-// blur convolves an image in place along rows and columns; beyond its border it repeats the
-// last pixel.
+// blur convolves an image in place along rows and columns. Within reach of its border it is
+// not right there; the images are painted with a margin that wide.
 func (b *regionBuffers) blur(v []float64, w, h int) {
+	r := len(b.taps) - 1
+	line := b.line[:w]
 	for j := range h {
-		b.blurLine(v[j*w:], 1, w)
+		row := v[j*w : (j+1)*w]
+		copy(line, row)
+		b.mix(row[r:w-r], func(k int) []float64 { return line[r+k : w-r+k] })
 	}
-	for i := range w {
-		b.blurLine(v[i:], w, h)
+	out := b.spare[:w*h]
+	for j := r; j < h-r; j++ {
+		b.mix(out[j*w:(j+1)*w], func(k int) []float64 { return v[(j+k)*w : (j+k+1)*w] })
 	}
+	copy(v[r*w:(h-r)*w], out[r*w:(h-r)*w])
 }
 
-func (b *regionBuffers) blurLine(v []float64, step, n int) {
-	line := b.line[:n]
-	for i := range line {
-		line[i] = v[i*step]
+// mix sets dst to Σ_k tap(|k|) src(k) over the kernel.
+func (b *regionBuffers) mix(dst []float64, src func(k int) []float64) {
+	t := b.taps[0]
+	for i, x := range src(0)[:len(dst)] {
+		dst[i] = t * x
 	}
-	for i := range line {
-		s := b.taps[0] * line[i]
-		for k := 1; k < len(b.taps); k++ {
-			s += b.taps[k] * (line[max(i-k, 0)] + line[min(i+k, n-1)])
+	for k := 1; k < len(b.taps); k++ {
+		t, lo, hi := b.taps[k], src(-k)[:len(dst)], src(k)[:len(dst)]
+		for i := range dst {
+			dst[i] += t * (lo[i] + hi[i])
 		}
-		v[i*step] = s
 	}
 }

@@ -28,7 +28,9 @@ func (p *problem) render(q *params, dst []float64) {
 	b.size(w*h, max(w, h))
 	sharp := p.geometry(q, 0)
 	p.paint(q, &sharp, in.x0-pad, in.y0-pad, w, h, false)
-	b.blur(b.images[imageT], w, h)
+	if pad > 0 {
+		b.blur(b.images[imageT], w, h)
+	}
 	for j := in.y0; j < in.y1; j++ {
 		for i := in.x0; i < in.x1; i++ {
 			t := b.images[imageT][(j-in.y0+pad)*w+i-in.x0+pad]

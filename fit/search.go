@@ -66,6 +66,20 @@ func (k kind) tie() tie {
 	return t
 }
 
+// merged says whether a width or radius shares its place with that of the other axis.
+func (t *tie) merged(i int) bool {
+	if t == nil || t.slot[i] < 0 {
+		return false
+	}
+	switch i {
+	case pWidth1, pWidth2:
+		return t.slot[pWidth1] == t.slot[pWidth2]
+	case pRadius1, pRadius2:
+		return t.slot[pRadius1] == t.slot[pRadius2]
+	}
+	return false
+}
+
 // search is one minimisation in normal form; it implements lm.Problem.
 type search struct {
 	*problem
@@ -180,6 +194,7 @@ const (
 // minimize runs one fit at p from start. tol is the decrease of χ² below which it ends.
 func (w *Workspace) minimize(ctx context.Context, p *problem, k kind, start params, tol float64) (*state, error) {
 	s := &search{problem: p, kind: k, tie: k.tie(), base: start, h: w.h[:], g: w.g[:]}
+	p.ties = &s.tie
 	y0 := make([]float64, s.tie.n)
 	set := lm.Settings{
 		Lower: make([]float64, s.tie.n), Upper: make([]float64, s.tie.n), MaxStep: make([]float64, s.tie.n),

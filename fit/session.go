@@ -126,6 +126,9 @@ func (lab *Lab) check() error {
 // problem returns the problem at level i with the room of the parameters.
 func (s *session) problem(i int, q *params, k kind) *problem {
 	p := &problem{level: s.levels[i], tmpl: &s.tmpl, law: s.law, blur2: s.blur2, buf: &s.ws.buf}
+	if i > s.work {
+		p.blur2 = 0 // a first look
+	}
 	p.room = s.roomFor(i, q, k)
 	return p
 }

@@ -58,6 +58,7 @@ func (s *session) answer(st *state, lab *Lab, flight float64) (numbers.Measured,
 		q[pWidth2], q[pRadius2] = q[pWidth1], q[pRadius1]
 	}
 	sr := &search{problem: p, kind: st.kind, tie: st.tie, base: q, h: s.ws.h[:], g: s.ws.g[:]}
+	p.ties = &sr.tie
 	y := make([]float64, st.tie.n)
 	for i, a := range st.tie.slot {
 		if a >= 0 {

@@ -142,7 +142,8 @@ func (m *measuredShape) bestScore(s *slip, lab *Lab, flight float64) float64 {
 	return best
 }
 
-// The score at which the ratios are believed to be off, and below which a slip explains them.
+// The score at which the ratios are believed to be off, and below which a slip explains them;
+// where they are very far off the fit itself suffers, and a thirtieth of the score will do.
 const (
 	scoreOff  = 25
 	scoreFine = 14
@@ -170,7 +171,7 @@ func (s *session) suspects(r *Result) []string {
 		f = append(f, FlagWidths)
 	}
 	// Two widths of a thermal cloud alone cannot tell one setting from another.
-	if best > scoreFine || best > before/2 || !m.condensate {
+	if best > math.Max(scoreFine, before/30) || best > before/2 || !m.condensate {
 		if len(f) == 0 {
 			f = append(f, FlagRatios)
 		}
