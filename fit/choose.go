@@ -2,6 +2,8 @@ package fit
 
 import (
 	"math"
+
+	"fallshadow/fit/lm"
 )
 
 // candidates are the best fits of each kind at one level under the same variances.
@@ -29,6 +31,16 @@ func (c *candidates) drop(best float64) {
 		if *to != nil && (!(*to).used() || (*to).chi2 > best+beaten) {
 			*to = nil
 		}
+	}
+}
+
+// idle is the least gain in χ² on the coarsest level that makes a condensate beside a thermal
+// part worth a closer look: summing bins loses little of a small core.
+const idle = 1
+
+func (c *candidates) dropIdle() {
+	if c.both.used() && c.thermal.used() && c.thermal.chi2-c.both.chi2 < idle {
+		c.both = nil
 	}
 }
 
@@ -61,19 +73,28 @@ func (s *session) first(top int, p *problem, g guess, c *candidates) error {
 		return err
 	}
 	c.none = none
+	defer c.dropIdle()
 	for _, t := range []struct {
 		k  kind
 		to **state
-	}{{s.opt.thermal(), &c.thermal}, {s.opt.both(), &c.both}, {s.opt.alone(), &c.alone}} {
+	}{{s.thermal(), &c.thermal}, {s.both(), &c.both}, {s.alone(), &c.alone}} {
 		for _, q := range p.starts(g, t.k) {
 			st, err := s.run(top, t.k, q, 0.5)
 			if err != nil {
 				return err
 			}
-			if st.used() && (*t.to == nil || st.chi2 < (*t.to).chi2) {
+			if st.reason != lm.StartOutside && (*t.to == nil || st.chi2 < (*t.to).chi2) {
 				*t.to = st
 			}
 		}
+		if *t.to == nil {
+			continue
+		}
+		st, err := s.run(top, t.k, (*t.to).p, 0.1)
+		if err != nil {
+			return err
+		}
+		*t.to = st
 	}
 	return nil
 }
@@ -84,7 +105,7 @@ func (s *session) follow(i int, c *candidates) error {
 		if *to == nil {
 			continue
 		}
-		st, err := s.run(i, (*to).kind, (*to).p, 0.02)
+		st, err := s.runWidth(i, (*to).kind, (*to).p, 0.02)
 		if err != nil {
 			return err
 		}

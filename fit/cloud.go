@@ -87,12 +87,16 @@ func (s *session) impossible(r *Result) bool {
 	return n.Thermal.V > 1.5*most
 }
 
-// refine minimises on the full picture, its variances taken from the model until that no
-// longer moves the parameters: two rounds after the coarse levels have agreed.
+// settled is the step in standard deviations after which variances taken from the model anew
+// would move the parameters by less than a thousandth of one.
+const settled = 0.3
+
+// refine minimises on the full picture, its variances taken from the model, until that has
+// settled.
 func (s *session) refine(st *state) (*state, error) {
-	for round := range 4 {
+	for range 5 {
 		s.freeze(0, st)
-		next, err := s.run(0, st.kind, st.p, 1e-4)
+		next, err := s.runWidth(0, st.kind, st.p, 1e-4)
 		if err != nil {
 			return nil, err
 		}
@@ -101,7 +105,7 @@ func (s *session) refine(st *state) (*state, error) {
 		}
 		moved := next.moved(st)
 		st = next
-		if round > 0 && moved < 0.01 {
+		if moved < settled {
 			break
 		}
 	}

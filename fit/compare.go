@@ -128,7 +128,7 @@ func (s *session) compare(chosen, full *state, r *Result) error {
 // compareFree fits every width by itself and notes the ratios between the axes.
 func (s *session) compareFree(tied *state, c *Checks) error {
 	k := tied.kind
-	k.free = !k.free
+	k.free, k.fixRadius = !k.free, false
 	st, err := s.run(s.work, k, tied.p, 0.01)
 	if err != nil {
 		return err
@@ -157,7 +157,7 @@ func (s *session) compareFree(tied *state, c *Checks) error {
 		c.TRatio, c.TRatioErr = ratio(pWidth1, pWidth2)
 		c.TiedOverFreeDof++
 	}
-	if k.condensate {
+	if k.condensate && !s.tmpl.gaussian {
 		c.MuRatio, c.MuRatioErr = ratio(pRadius1, pRadius2)
 		c.TiedOverFreeDof++
 	}

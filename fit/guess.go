@@ -233,13 +233,15 @@ func (p *problem) starts(g guess, k kind) []params {
 	c := p.tmpl.condensate.square
 	core := g.core / 0.6 / math.Sqrt(math.Sqrt(c[0]*c[1]))
 	whole := math.Sqrt(7 * (g.moment[0] + g.moment[2]) / (c[0] + c[1]))
-	base[pWidth1], base[pRadius1] = math.Log(wide), math.Log(core)
+	base[pWidth1] = math.Log(wide)
 	var list []params
 	add := func(thermal, width, condensate, radius float64) {
 		q := base
 		q[pThermal], q[pCondensate] = thermal*g.peak, condensate*g.peak
 		q[pWidth1] += math.Log(width)
-		q[pRadius1] = math.Log(radius)
+		if !k.fixRadius {
+			q[pRadius1] = math.Log(radius)
+		}
 		q[pWidth2], q[pRadius2] = q[pWidth1], q[pRadius1]
 		list = append(list, q)
 	}

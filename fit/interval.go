@@ -162,7 +162,7 @@ func (s *session) limitCondensate(st *state, n *numbers.Result) error {
 		size := math.Sqrt(e.square[0] * e.square[1])
 		q[pCondensate] = atoms / s.perSum() / (s.tmpl.condensateArea() * size)
 	}
-	limit, err := s.raise(st, k, set, 1e-4*n.Thermal.V, n.Thermal.V)
+	limit, err := s.raise(st, k, set, 3e-3*n.Thermal.V, n.Thermal.V)
 	if err != nil || math.IsNaN(limit) {
 		return err
 	}
@@ -182,8 +182,7 @@ func (s *session) limitThermal(st *state, n *numbers.Result) error {
 		m, _ := s.tmpl.measured(&params{pThermal: 1, pWidth1: l, pWidth2: l}, kind{thermal: true})
 		q[pThermal] = model.ThermalNumber(t, 0, s.lab.Trap) / s.perSum() / m.ThermalSum
 	}
-	tc := n.Tc0.V
-	limit, err := s.raise(st, k, set, 0.02*tc, 2*tc)
+	limit, err := s.climb(st, k, set, 0.05*n.Tc0.V, 2*n.Tc0.V)
 	if err != nil || math.IsNaN(limit) {
 		return err
 	}
@@ -192,48 +191,58 @@ func (s *session) limitThermal(st *state, n *numbers.Result) error {
 	return nil
 }
 
-// raise grows one number from low until χ² stands oneSided above the least it had, by steps
-// and a bisection in its logarithm; NaN where even most costs less.
-func (s *session) raise(st *state, k kind, set func(*params, float64), low, most float64) (float64, error) {
-	start := st.p
-	cost := func(x float64) (float64, error) {
-		q := start
+// raise finds how far one number can grow from start until χ² stands oneSided above the
+// least it had, by steps along the square root of the rise, which is nearly straight; NaN
+// where even most costs less.
+func (s *session) raise(st *state, k kind, set func(*params, float64), start, most float64) (float64, error) {
+	least, x := st.chi2, start
+	inside, rise := 0.0, 0.0
+	for range 12 {
+		q := st.p
 		set(&q, x)
-		got, err := s.run(s.work, k, q, 0.02)
-		if err != nil {
-			return 0, err
-		}
-		return got.chi2, nil
-	}
-	least := st.chi2
-	a, b := low, low
-	for {
-		c, err := cost(b)
+		got, err := s.run(s.work, k, q, 0.1)
 		if err != nil {
 			return math.NaN(), err
 		}
-		least = math.Min(least, c)
-		if c-least > oneSided {
-			break
+		least = math.Min(least, got.chi2)
+		r := math.Sqrt((got.chi2 - least) / oneSided)
+		if math.Abs(r-1) < 0.05 {
+			return x, nil
 		}
-		if a = b; b >= most {
-			return math.NaN(), nil
+		if r < 1 {
+			if x >= most {
+				return math.NaN(), nil
+			}
+			inside, rise = x, r
 		}
-		b *= 1.6
+		next := inside + (x-inside)*(1-rise)/math.Max(r-rise, 0.1)
+		if r < 1 {
+			next = x * math.Min(4, 1/math.Max(r, 0.25))
+		}
+		x = math.Min(next, most)
 	}
-	for range 6 {
-		mid := math.Sqrt(a * b)
-		c, err := cost(mid)
+	return x, nil
+}
+
+// climb is raise for a χ² that may first fall: it walks up in steps of a fifth and takes the
+// last crossing on a straight line of the root.
+func (s *session) climb(st *state, k kind, set func(*params, float64), low, most float64) (float64, error) {
+	least, before := math.Inf(1), 0.0
+	for x := low; x < most; x *= 1.2 {
+		q := st.p
+		set(&q, x)
+		got, err := s.run(s.work, k, q, 0.1)
 		if err != nil {
 			return math.NaN(), err
 		}
-		if c-least > oneSided {
-			b = mid
-		} else {
-			a = mid
+		least = math.Min(least, got.chi2)
+		r := math.Sqrt((got.chi2 - least) / oneSided)
+		if r > 1 {
+			return x / math.Pow(1.2, (r-1)/math.Max(r-before, 1e-9)), nil
 		}
+		before = r
 	}
-	return b, nil
+	return math.NaN(), nil
 }
 
 // limitNone says how much of a cloud of the size of the best thermal fit could hide.

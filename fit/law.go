@@ -28,10 +28,12 @@ func (l *law) transmit(d, s float64) (t, td, ts float64) {
 	u := d / as
 	e := 0.0
 	switch {
-	case math.Abs(d) < 1e-3*as:
-		r := s / as
-		u += u * u * r * (0.5 + u*(0.5*r-1.0/6))
-		e = 1 - u*(1-u*(0.5-u*(1.0/6-u*(1.0/24))))
+	case math.Abs(u) < 0.05:
+		r, u0 := s/as, u
+		for range 5 {
+			u = u0 + r*u*u*(0.5-u*(1.0/6-u*(1.0/24-u*(1.0/120))))
+		}
+		e = 1 - u*(1-u*(0.5-u*(1.0/6-u*(1.0/24-u*(1.0/120-u*(1.0/720))))))
 	case s == 0:
 		e = math.Exp(-u)
 	default:

@@ -44,12 +44,13 @@ func fullLevel(pic *Picture, o *Optics) *level {
 		l.noise.LightRead += l.noise.Dark
 		l.noise.Dark = 0
 	}
-	if !math.IsInf(o.Saturation, 1) {
-		l.saturate = 1 / o.Saturation
-	}
+	l.saturate = o.perElectron()
 	l.smooth = smoothed(l.light, l.count, l.w, l.h, 2)
 	return l
 }
+
+// perElectron is I/Isat of the light that atoms can absorb for one electron of a pixel.
+func (o *Optics) perElectron() float64 { return 1 / (o.Saturation * (1 + o.Stray)) }
 
 // halved bins a level by two.
 func (l *level) halved() *level {

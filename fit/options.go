@@ -38,16 +38,19 @@ func (o Options) filled() Options {
 // gaussianAlpha is a −ln z at which the Bose-enhanced form is a gaussian to 1e-10.
 const gaussianAlpha = 20
 
-func (o Options) thermal() kind {
-	return kind{thermal: true, alpha: !o.Gaussian, angle: o.FreeAngle, free: o.searchFree}
+// The kinds of fit that a picture is offered.
+func (s *session) thermal() kind {
+	return kind{thermal: true, alpha: !s.opt.Gaussian, angle: s.opt.FreeAngle, free: s.opt.searchFree}
 }
 
-func (o Options) both() kind {
-	return kind{thermal: true, condensate: true, angle: o.FreeAngle, free: o.searchFree}
+func (s *session) alone() kind {
+	return kind{condensate: true, angle: s.opt.FreeAngle, free: s.opt.searchFree, fixRadius: s.tmpl.gaussian && !s.opt.searchFree}
 }
 
-func (o Options) alone() kind {
-	return kind{condensate: true, angle: o.FreeAngle, free: o.searchFree}
+func (s *session) both() kind {
+	k := s.alone()
+	k.thermal = true
+	return k
 }
 
 // form names the profiles of a kind of fit.

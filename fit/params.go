@@ -57,9 +57,11 @@ type template struct {
 	pixel               float64
 }
 
-// newTemplate projects the expanded shapes onto the picture. flight is in s. It fails where
-// the expansion does: a negative or non-finite flight, a trap that is none.
-func newTemplate(lab *Lab, flight float64) (template, error) {
+// newTemplate projects the expanded shapes onto the picture. flight is in s. The condensate of
+// an attractive gas takes the variational width of n0 atoms, at most of those that the trap can
+// hold; n0 does not matter otherwise. It fails where the expansion does: a negative or
+// non-finite flight, a trap that is none.
+func newTemplate(lab *Lab, flight, n0 float64) (template, error) {
 	t := template{pixel: lab.Optics.Pixel, angle: math.Atan2(lab.View[1][0], lab.View[0][0])}
 	bt, err := model.ExpandThermal(lab.Trap, flight, lab.Release)
 	if err != nil {
@@ -68,12 +70,9 @@ func newTemplate(lab *Lab, flight float64) (template, error) {
 	px2 := t.pixel * t.pixel
 	shape := lab.View.Project(model.ThermalVariances(templateT, lab.Species.Mass, lab.Trap, bt)).Scale(1 / px2)
 	t.thermal = principal(shape, t.angle)
-	if a := lab.Species.ScatteringLength; a < 0 {
+	if lab.Species.ScatteringLength < 0 {
 		t.gaussian = true
-		// The width of an attractive condensate hangs on its own number; the template is that
-		// of a single atom, which the interaction only makes smaller.
-		shape, err = gaussianShape(lab, flight)
-		if err != nil {
+		if shape, err = gaussianShape(lab, flight, n0); err != nil {
 			return t, err
 		}
 		t.condensate = principal(shape.Scale(1/px2), t.angle)
@@ -91,18 +90,19 @@ func newTemplate(lab *Lab, flight float64) (template, error) {
 	return t, nil
 }
 
-// gaussianShape is the expanded shape (variances of the density, m²) of a condensate without
-// interaction: the ground state of the trap let go.
-func gaussianShape(lab *Lab, flight float64) (model.Shape, error) {
-	b, err := model.ExpandThermal(lab.Trap, flight, lab.Release)
+// gaussianShape is the expanded shape (variances of the density, m²) of an attractive condensate.
+func gaussianShape(lab *Lab, flight, n0 float64) (model.Shape, error) {
+	sp := &lab.Species
+	n0 = math.Min(n0, 0.999*model.GaussianCriticalNumber(lab.Trap, sp.Mass, sp.ScatteringLength))
+	w, err := model.VariationalWidths(n0, sp.Mass, sp.ScatteringLength, lab.Trap)
+	if err != nil {
+		return model.Shape{}, fmt.Errorf("condensate: %w", err)
+	}
+	b, err := model.ExpandGaussian(n0, sp.Mass, sp.ScatteringLength, lab.Trap, flight, lab.Release)
 	if err != nil {
 		return model.Shape{}, fmt.Errorf("expand the condensate: %w", err)
 	}
-	var d [3]float64
-	for i, w := range lab.Trap.Omega {
-		d[i] = model.HBar / (2 * lab.Species.Mass * w) * b[i] * b[i]
-	}
-	return lab.View.Project(d), nil
+	return lab.View.Project(model.GaussianVariances(w, b)), nil
 }
 
 func principal(s model.Shape, near float64) ellipse {

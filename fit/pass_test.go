@@ -31,7 +31,7 @@ func testLab(t testing.TB) *Lab {
 // testPicture draws noise around a model, its light uneven, a few pixels bad.
 func testProblem(t testing.TB, lab *Lab, linear bool, q params, r room) *problem {
 	t.Helper()
-	tmpl, err := newTemplate(lab, 0.018)
+	tmpl, err := newTemplate(lab, 0.018, 0)
 	if err != nil {
 		t.Fatal(err)
 	}

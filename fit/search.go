@@ -191,6 +191,14 @@ const (
 	alphaMost = 7
 )
 
+// iterations is how many steps a minimisation may take: few for a first look.
+func iterations(tol float64) int {
+	if tol > 0.2 {
+		return 10
+	}
+	return 60
+}
+
 // minimize runs one fit at p from start. tol is the decrease of χ² below which it ends.
 func (w *Workspace) minimize(ctx context.Context, p *problem, k kind, start params, tol float64) (*state, error) {
 	s := &search{problem: p, kind: k, tie: k.tie(), base: start, h: w.h[:], g: w.g[:]}
@@ -198,7 +206,7 @@ func (w *Workspace) minimize(ctx context.Context, p *problem, k kind, start para
 	y0 := make([]float64, s.tie.n)
 	set := lm.Settings{
 		Lower: make([]float64, s.tie.n), Upper: make([]float64, s.tie.n), MaxStep: make([]float64, s.tie.n),
-		PredictTol: tol, AcceptPredicted: true, MaxIterations: 60, Lambda: 1e-3,
+		PredictTol: tol, AcceptPredicted: true, MaxIterations: iterations(tol), Lambda: 1e-3,
 	}
 	lower, upper, step := limits(p, &start)
 	for i, a := range s.tie.slot {

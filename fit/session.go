@@ -22,6 +22,7 @@ type session struct {
 	work   int      // the level of choices and checks
 
 	iterations int
+	condensed  float64        // N0 of the template of an attractive gas
 	shown      *measuredShape // from the free fit, for the search of a wrong setting
 }
 
@@ -42,7 +43,7 @@ func newSession(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt
 	}
 	s := &session{ctx: ctx, pic: pic, lab: lab, flight: flight, opt: opt.filled(), ws: ws, law: newLaw(&lab.Optics)}
 	var err error
-	if s.tmpl, err = newTemplate(lab, flight); err != nil {
+	if s.tmpl, err = newTemplate(lab, flight, 0); err != nil {
 		return nil, err
 	}
 	b := lab.Optics.Blur / lab.Optics.Pixel
@@ -175,6 +176,30 @@ func (s *session) run(i int, k kind, start params, tol float64) (*state, error) 
 	}
 	s.iterations += st.iterations
 	return st, nil
+}
+
+// runWidth is run for an attractive gas, too: the width of its condensate follows from its
+// number, so that both are found in turn until they agree.
+func (s *session) runWidth(i int, k kind, start params, tol float64) (*state, error) {
+	st, err := s.run(i, k, start, tol)
+	if !s.tmpl.gaussian || !k.condensate || !k.fixRadius {
+		return st, err
+	}
+	n0 := s.condensed
+	for turn := 0; err == nil && turn < 30; turn++ {
+		m, _ := s.tmpl.measured(&st.p, k)
+		n := m.CondensateSum * s.perSum()
+		if math.Abs(n-n0) <= 1e-3*n {
+			break
+		}
+		n0 = n
+		if s.tmpl, err = newTemplate(s.lab, s.flight, n0); err != nil {
+			return nil, fmt.Errorf("width of %.3g condensed atoms: %w", n0, err)
+		}
+		s.condensed = n0
+		st, err = s.run(i, k, st.p, tol)
+	}
+	return st, err
 }
 
 // freeze sets the variances of level i from the parameters of st.

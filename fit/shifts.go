@@ -33,24 +33,23 @@ func (s *session) shifts(st *state, m numbers.Measured) ([]numbers.Shift, error)
 
 // answer takes one Gauss-Newton step from st in another laboratory, on the level of choices.
 func (s *session) answer(st *state, lab *Lab, flight float64) (numbers.Measured, error) {
-	tmpl, err := newTemplate(lab, flight)
+	tmpl, err := newTemplate(lab, flight, s.condensed)
 	if err != nil {
 		return numbers.Measured{}, err
 	}
 	p := s.problem(s.work, &st.p, st.kind)
 	b := lab.Optics.Blur / lab.Optics.Pixel
 	level := *p.level
-	level.saturate = 0
-	if !math.IsInf(lab.Optics.Saturation, 1) {
-		level.saturate = 1 / lab.Optics.Saturation
-	}
+	level.saturate = lab.Optics.perElectron()
 	p.level, p.tmpl, p.law, p.blur2 = &level, &tmpl, newLaw(&lab.Optics), b*b+1.0/12
 	q := st.p
 	// The same cloud in pixels: only what the shapes do not share with the template is left
 	// to the step.
 	for i := range 2 {
 		q[pWidth1+i] += 0.5 * math.Log(s.tmpl.thermal.square[i]/tmpl.thermal.square[i])
-		q[pRadius1+i] += 0.5 * math.Log(s.tmpl.condensate.square[i]/tmpl.condensate.square[i])
+		if !st.kind.fixRadius {
+			q[pRadius1+i] += 0.5 * math.Log(s.tmpl.condensate.square[i]/tmpl.condensate.square[i])
+		}
 	}
 	if !st.kind.free {
 		q[pWidth1] = (q[pWidth1] + q[pWidth2]) / 2

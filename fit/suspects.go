@@ -30,7 +30,7 @@ const (
 func (m *measuredShape) ratios(lab *Lab, flight, number float64) [numRatios]float64 {
 	nan := math.NaN()
 	r := [numRatios]float64{nan, nan, nan, nan}
-	t, err := newTemplate(lab, flight)
+	t, err := newTemplate(lab, flight, 0)
 	if err != nil {
 		return r
 	}

@@ -1,0 +1,67 @@
+package fit
+
+import (
+	"context"
+	"math"
+)
+
+// Place says where the atoms of a picture are, as far as a fit at half its resolution knows;
+// pixels in the order of the picture. It serves to compare light where there are none.
+type Place struct {
+	Mask         []bool    // true where atoms may be: within 2.5 widths or 1.2 radii
+	Transmission []float64 // the fitted atoms frame over the scaled reference; nil where no cloud was found
+}
+
+// Locate finds the cloud in a picture like Cloud does, but stops before the full picture, errors
+// and comparisons. It fails like Cloud.
+func Locate(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt Options, ws *Workspace) (*Place, error) {
+	s, err := newSession(ctx, pic, lab, flight, opt, ws)
+	if err != nil {
+		return nil, err
+	}
+	c, _, err := s.explore()
+	if err != nil {
+		return nil, err
+	}
+	place := &Place{Mask: make([]bool, pic.Width*pic.Height)}
+	st, model := s.choose(c)
+	if model == ModelNone {
+		return place, nil
+	}
+	if !st.used() {
+		return nil, stateError("the search for the cloud found no minimum", st)
+	}
+	s.fillMask(st, place.Mask)
+	p := s.problem(0, &st.p, st.kind)
+	place.Transmission = make([]float64, len(place.Mask))
+	p.render(&st.p, place.Transmission)
+	if p.level.linear {
+		place.Transmission = nil
+		return place, nil
+	}
+	geo := p.geometry(&st.p, 0)
+	for o := range place.Transmission {
+		place.Transmission[o] /= geo.scale(float64(o%pic.Width), float64(o/pic.Width))
+	}
+	return place, nil
+}
+
+func (s *session) fillMask(st *state, mask []bool) {
+	thermal := s.tmpl.thermalOf(&st.p).reach(st.p[pX], st.p[pY])
+	cond := s.tmpl.condensateOf(&st.p).reach(st.p[pX], st.p[pY])
+	most := 1.44
+	if s.tmpl.gaussian {
+		most = 10
+	}
+	// A thermal part of any size hides behind its noise somewhere; no more than four fifths of
+	// the picture is masked by it, or there would be no light left to compare.
+	reach := 6.25
+	e := s.tmpl.thermalOf(&st.p)
+	if area := math.Pi * math.Sqrt(e.square[0]*e.square[1]); reach*area > 0.8*float64(len(mask)) {
+		reach = 0.8 * float64(len(mask)) / area
+	}
+	for o := range mask {
+		x, y := float64(o%s.pic.Width), float64(o/s.pic.Width)
+		mask[o] = st.kind.thermal && thermal(x, y) < reach || st.kind.condensate && cond(x, y) < most
+	}
+}
