@@ -8,13 +8,18 @@ import (
 	"fallshadow/imageio"
 )
 
+// blocksPerFrame is how many open blocks of 4x4 pixels a frame of the basis needs, so
+// that one half of the tiles still holds several for each coefficient.
+const blocksPerFrame = 8
+
 // Apply returns a copy of an exposure of the given shot (its place in the natural order
 // of NewReferences) with the reference that its cloud allows. The best combination
 // Σ c_j R_j of the k nearest light frames has the least sum of squares
 //
-//	Σ (A/t - Σ c_j R_j)²  over blocks of 4x4 pixels in tiles that the mask leaves open
+//	Σ (A/t - Σ c_j R_j)²
 //
-// with a ridge about equal coefficients. It is taken where, with coefficients from one
+// over means of 4x4 and 8x8 pixels (those count fourfold) in tiles of 16x16 pixels that
+// the mask leaves open, t the transmission, with a small ridge about equal shares. It is taken where, with coefficients from one
 // half of a checkerboard of tiles and judged on the other, both ways, it leaves less
 // than the scaled light frame of the shot under the same trial; otherwise that frame is
 // taken, scaled over the open tiles. Reference says which: "basis" or "own".
@@ -24,8 +29,8 @@ import (
 // frame, about 1/k for k equal ones. LightRead is Σ c_j² times that of a frame. With
 // darks of their own the frames' dark noise goes with their read noise, and Dark is 0.
 //
-// A cloud without a mask, an exposure without light, or fewer than four open blocks for
-// each light frame leave the exposure as it is. It fails when ctx is done, or when mask
+// There are at most as many frames as eighths of the open blocks. A cloud without a mask,
+// an exposure or a shot without light, or no open tile leave the exposure as it is. It fails when ctx is done, or when mask
 // or transmission are not of the exposure's size.
 func (r *References) Apply(ctx context.Context, shot int, e *imageio.Exposure, cloud Cloud) (*imageio.Exposure, error) {
 	for _, n := range []int{len(cloud.Mask), len(cloud.Transmission)} {
@@ -43,12 +48,11 @@ func (r *References) Apply(ctx context.Context, shot int, e *imageio.Exposure, c
 	if len(frames) == 0 || frames[0].shot != shot {
 		return e, nil
 	}
-	s := r.sums(frames, e, cloud)
-	if s.open < 4*len(frames) {
-		return e, nil
-	}
-	own := s.first()
-	if c, ok := s.solve(s.all()); ok && len(frames) > 1 && s.leftOut() < own.leftOut() {
+	open, blocks := r.openTiles(cloud)
+	frames = frames[:max(1, min(len(frames), blocks/blocksPerFrame))]
+	all := r.equations(frames, bare(e, cloud.Transmission), open)
+	own := all.first()
+	if c, ok := all.solve(all.all()); ok && len(frames) > 1 && all.leftOut() < own.leftOut() {
 		return r.combined(frames, c, e), nil
 	}
 	c, ok := own.solve(own.all())
@@ -69,12 +73,11 @@ func (r *References) combined(frames []*lightFrame, c []float64, e *imageio.Expo
 	out.Reference = "own"
 	out.Light = make([]float64, len(e.Light))
 	addScaled(out.Light, frames, c)
-	read := r.night.readVar() * float64(r.night.win.bin*r.night.win.bin)
 	var shot, level, reads, darks float64
 	for j, f := range frames {
 		shot += c[j] * c[j] * f.mean
 		level += c[j] * f.mean
-		reads += c[j] * c[j] * read
+		reads += c[j] * c[j] * r.readVar()
 		darks += c[j] * c[j] * f.darkVar
 	}
 	out.Noise.LightShot = shot / level

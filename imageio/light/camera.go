@@ -83,6 +83,9 @@ func (c Camera) window(width, height int) (window, error) {
 // size is the number of pixels before rebinning.
 func (w window) size() int { return w.width * w.height }
 
+// pixels is how many saved pixels are in a bin.
+func (w window) pixels() float64 { return float64(w.bin * w.bin) }
+
 // crop returns the counts of a frame inside the window.
 func (w window) crop(f *imageio.Frame) []float64 {
 	pix := make([]float64, w.size())

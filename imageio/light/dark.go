@@ -3,6 +3,7 @@ package light
 import (
 	"image"
 	"math"
+	"slices"
 
 	"fallshadow/imageio"
 )
@@ -13,19 +14,17 @@ func imageRect(w window) image.Rectangle {
 
 // darkSums gathers dark frames pixel by pixel, each less its own level.
 type darkSums struct {
-	win            window
-	fullScale      float64
-	n              int
-	sum, squares   []float64
-	lowest         []float32
-	highest        []float32
-	levels         float64 // sum over frames
-	levelsSquared  float64
-	firstLevel     float64
-	before         []float32 // the last dark less its level
-	pairs          int
-	pairVariance   float64 // sum over pairs of the variance of their difference
-	singleVariance float64
+	win           window
+	fullScale     float64
+	n             int
+	sum, squares  []float64
+	lowest        []float32
+	highest       []float32
+	firstLevel    float64
+	levels        float64 // sum over frames of the level less the first
+	levelsSquared float64
+	before        []float32 // the last dark less its level
+	pairs         []float64 // variances of the differences of successive darks
 }
 
 func newDarkSums(w window, fullScale float64) *darkSums {
@@ -33,54 +32,84 @@ func newDarkSums(w window, fullScale float64) *darkSums {
 }
 
 // add takes a dark frame in, unless it is blank, saturated or not finite over more than
-// one pixel in a hundred.
+// one pixel in a hundred, or the one before once more (a lab may save one dark with
+// every shot).
 func (d *darkSums) add(f *imageio.Frame) {
 	pix := d.win.crop(f)
 	if !usableDark(pix, d.fullScale) {
 		return
 	}
 	level, _, _ := clipped(pix)
-	if d.n == 0 {
-		d.sum, d.squares = make([]float64, len(pix)), make([]float64, len(pix))
-		d.lowest, d.highest = make([]float32, len(pix)), make([]float32, len(pix))
-		d.before = make([]float32, len(pix))
-		d.firstLevel = level
-	}
-	difference := make([]float64, len(pix))
 	for i, v := range pix {
-		if !finite(v) {
-			v = level
+		if pix[i] = v - level; !finite(v) {
+			pix[i] = 0
 		}
-		v -= level
+	}
+	if d.n == 0 {
+		d.open(pix, level)
+	} else if !d.compare(pix) {
+		return
+	}
+	for i, v := range pix {
+		w := float32(v)
 		d.sum[i] += v
 		d.squares[i] += v * v
-		w := float32(v)
-		if d.n == 0 {
-			d.lowest[i], d.highest[i] = w, w
-		} else {
-			d.lowest[i], d.highest[i] = min(d.lowest[i], w), max(d.highest[i], w)
-			difference[i] = v - float64(d.before[i])
-		}
 		d.before[i] = w
-	}
-	if d.n > 0 {
-		_, variance, _ := clipped(difference)
-		d.pairVariance += variance
-		d.pairs++
+		if w < d.lowest[i] {
+			d.lowest[i] = w
+		}
+		if w > d.highest[i] {
+			d.highest[i] = w
+		}
 	}
 	d.levels += level - d.firstLevel
 	d.levelsSquared += (level - d.firstLevel) * (level - d.firstLevel)
 	d.n++
 }
 
+// open makes room at the first dark.
+func (d *darkSums) open(pix []float64, level float64) {
+	d.firstLevel = level
+	d.sum, d.squares = make([]float64, len(pix)), make([]float64, len(pix))
+	d.lowest, d.highest = make([]float32, len(pix)), make([]float32, len(pix))
+	d.before = make([]float32, len(pix))
+	for i, v := range pix {
+		d.lowest[i], d.highest[i] = float32(v), float32(v)
+	}
+}
+
+// compare notes the variance of the difference to the dark before, and reports whether
+// there is a difference at all.
+func (d *darkSums) compare(pix []float64) bool {
+	difference := make([]float64, len(pix))
+	differs := false
+	for i, v := range pix {
+		difference[i] = v - float64(d.before[i])
+		differs = differs || float32(v) != d.before[i]
+	}
+	if differs {
+		_, variance, _ := clipped(difference)
+		d.pairs = append(d.pairs, variance)
+	}
+	return differs
+}
+
 func usableDark(pix []float64, fullScale float64) bool {
+	if fullScale == 0 {
+		fullScale = math.Inf(1)
+	}
 	wrong, low, high := 0, math.Inf(1), math.Inf(-1)
 	for _, v := range pix {
-		if !finite(v) || fullScale > 0 && v >= fullScale {
+		if !(v < fullScale) {
 			wrong++
 			continue
 		}
-		low, high = min(low, v), max(high, v)
+		if v < low {
+			low = v
+		}
+		if v > high {
+			high = v
+		}
 	}
 	return wrong*100 <= len(pix) && high > low
 }
@@ -94,12 +123,13 @@ func (d *darkSums) level() (mean, spread float64) {
 	return d.firstLevel + m, math.Sqrt(max(d.levelsSquared/float64(d.n)-m*m, 0))
 }
 
-// readNoise is the rms of one read in counts, from differences of successive darks.
-func (d *darkSums) readNoise() (float64, bool) {
-	if d.pairs == 0 {
+// noise is the rms of a pixel of one dark in counts, from the median over differences of
+// successive ones.
+func (d *darkSums) noise() (float64, bool) {
+	if len(d.pairs) == 0 {
 		return 0, false
 	}
-	return math.Sqrt(d.pairVariance / float64(d.pairs) / 2), true
+	return math.Sqrt(median(slices.Clone(d.pairs)) / 2), true
 }
 
 // master returns the mean excess of each pixel over the level, and the pixels that are
@@ -131,7 +161,7 @@ func (d *darkSums) hot(pattern []float64, bad []bool) {
 		flat[i] = pattern[i] - ringMedian(pattern, d.win.width, i)
 	}
 	_, spread := middle(flat)
-	read, _ := d.readNoise()
+	read, _ := d.noise()
 	limit := max(6*spread, read) + 1
 	for i, v := range flat {
 		bad[i] = bad[i] || math.Abs(v) > limit

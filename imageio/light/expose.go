@@ -10,8 +10,8 @@ import (
 // frame along the border of the region, as reference.
 //
 // The dark is the night's pattern at the level of the shot's own dark, or the shot's own
-// dark as it is where the night has fewer than three or the two differ; with no dark in
-// the shot it is the night's. Electrons are counts above the dark times electrons per
+// dark as it is where the night has only two or the two differ; with no dark in the shot
+// it is the night's. Electrons are counts above the dark times electrons per
 // count. Good is false where a pixel is listed, hot, restless, dead, not finite, struck,
 // or at full scale in either frame, and where one such pixel is in a bin; Atoms and Light
 // hold there the median of their neighbourhood. With a bin of b, counts are exact sums
@@ -38,7 +38,7 @@ func (n *Night) Expose(raw *imageio.Raw) (*imageio.Exposure, error) {
 	if err != nil {
 		return nil, err
 	}
-	pixels := float64(n.win.bin * n.win.bin)
+	pixels := n.win.pixels()
 	e := &imageio.Exposure{
 		Width: n.win.width / n.win.bin, Height: n.win.height / n.win.bin,
 		Atoms: n.win.sum(a.pix), Light: n.win.sum(l.pix), Good: n.win.good(a.bad),
@@ -142,19 +142,7 @@ func roleName(r imageio.Role) string {
 // Without a full scale the highest value counts as one where a thousandth of all pixels
 // have it.
 func (l *litFrame) judge(fullScale float64, name string) error {
-	low, high, at := math.Inf(1), math.Inf(-1), 0
-	for _, v := range l.pix {
-		if !finite(v) {
-			continue
-		}
-		if v > high {
-			high, at = v, 0
-		}
-		if v == high {
-			at++
-		}
-		low = min(low, v)
-	}
+	low, high, at := extremes(l.pix)
 	if !(high > low) {
 		return refuse(Blank, "%s: all %g counts", name, l.pix[0])
 	}
@@ -176,6 +164,24 @@ func (l *litFrame) judge(fullScale float64, name string) error {
 	return nil
 }
 
+// extremes returns lowest and highest of the values that are not NaN, and how many pixels
+// have the highest.
+func extremes(pix []float64) (low, high float64, at int) {
+	low, high = math.Inf(1), math.Inf(-1)
+	for _, v := range pix {
+		if v < low {
+			low = v
+		}
+		if v > high {
+			high, at = v, 0
+		}
+		if v == high {
+			at++
+		}
+	}
+	return low, high, at
+}
+
 // exposeDensity carries a ready density image through.
 func (n *Night) exposeDensity(f *imageio.Frame) (*imageio.Exposure, error) {
 	if !fits(f, n.win) {
@@ -191,7 +197,7 @@ func (n *Night) exposeDensity(f *imageio.Frame) (*imageio.Exposure, error) {
 		Density: n.win.sum(l.pix), Good: n.win.good(l.bad),
 	}
 	for i := range e.Density {
-		e.Density[i] /= float64(n.win.bin * n.win.bin)
+		e.Density[i] /= n.win.pixels()
 	}
 	return e, nil
 }

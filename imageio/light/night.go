@@ -19,6 +19,9 @@ type Night struct {
 	Transfer *Transfer
 	// Darks is how many dark frames went into the master.
 	Darks int
+	// DarkNoise is the rms of a pixel of one dark frame, electrons: read noise and dark
+	// current as measured, or the camera's read noise where there are not two darks.
+	DarkNoise float64
 	// DarkVariance is the variance of a pixel of the master dark, electrons².
 	DarkVariance float64
 	// Offset and OffsetSpread are mean and standard deviation over the night of the
@@ -39,7 +42,7 @@ const mastered = 3
 // excess over its frame's level, without the lowest and the highest), the pixels that
 // are hot or restless in the dark, the read noise where the camera's is 0 (from
 // differences of successive darks) and the gain where it is 0 (see PhotonTransfer).
-// Memory: 40 bytes per pixel of the region, whatever the number of shots. The shots
+// Memory: 60 bytes per pixel of the region, whatever the number of shots. The shots
 // decide by majority, the earlier at a tie, which size of frame is the night's. It
 // fails when ctx is done, when the camera cannot be, and when gain or read noise are
 // neither given nor can be measured.
@@ -161,7 +164,7 @@ func (g *group) night(camera Camera) (*Night, error) {
 			n.bad[y*g.win.width+x] = true
 		}
 	}
-	n.DarkVariance = n.readVar() / meanTrimmed(n.Darks)
+	n.DarkVariance = n.DarkNoise * n.DarkNoise / meanTrimmed(n.Darks)
 	return n, nil
 }
 
@@ -177,12 +180,15 @@ func (n *Night) measure(g *group) error {
 		}
 		n.Transfer, n.Camera.ElectronsPerCount = t, t.ElectronsPerCount
 	}
-	if n.Camera.ReadNoise == 0 {
-		rms, ok := g.darks.readNoise()
-		if !ok {
-			return fmt.Errorf("the read noise is neither given nor can it be measured from two dark frames: state it, or take darks")
-		}
-		n.Camera.ReadNoise = rms * n.Camera.ElectronsPerCount
+	rms, measured := g.darks.noise()
+	n.DarkNoise = rms * n.Camera.ElectronsPerCount
+	switch {
+	case n.Camera.ReadNoise == 0 && !measured:
+		return fmt.Errorf("the read noise is neither given nor can it be measured from two dark frames: state it, or take darks")
+	case n.Camera.ReadNoise == 0:
+		n.Camera.ReadNoise = n.DarkNoise
+	case !measured:
+		n.DarkNoise = n.Camera.ReadNoise
 	}
 	return nil
 }
@@ -191,11 +197,10 @@ func (n *Night) measure(g *group) error {
 func (n *Night) readVar() float64 { return n.Camera.ReadNoise * n.Camera.ReadNoise }
 
 // meanTrimmed is by how much the mean of n normal values without the lowest and the
-// highest has less variance than one of them, within 3 percent from three on (the
-// median of three: 2.23, David and Nagaraja, Order Statistics, table of the median).
+// highest has less variance than one of them, within 2 percent from three on.
 func meanTrimmed(n int) float64 {
 	if n < mastered {
 		return math.Max(float64(n), 1)
 	}
-	return float64(n) - 0.8
+	return float64(n) - 0.5 - 0.8/float64(n)
 }

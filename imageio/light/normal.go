@@ -9,9 +9,9 @@ import (
 )
 
 // ridge is the share of the frames' own white noise that is added once more to the
-// diagonal of the normal equations: it holds back combinations that differ by noise only,
-// and makes equations of equal frames solvable.
-const ridge = 1.0
+// diagonal of the normal equations. It makes equations of equal frames solvable; much more
+// of it would shrink the fringes.
+const ridge = 0.01
 
 // least is the lowest transmission by which an atoms frame is divided; tiles with less
 // are closed.
@@ -21,7 +21,6 @@ const least = 0.1
 // for the two halves of the checkerboard of tiles.
 type normal struct {
 	noise []float64 // white variance of a block of a frame over its mean squared
-	open  int       // blocks
 	half  [2]system
 }
 
@@ -29,34 +28,59 @@ type normal struct {
 type system struct {
 	gram   []float64 // k x k
 	rhs    []float64
-	square float64 // Σ A²
-	sum    float64 // Σ A
+	square float64 // of the atoms frame with itself
+	sum    float64 // of its blocks
 	blocks float64
 }
 
 func newSystem(k int) system { return system{gram: make([]float64, k*k), rhs: make([]float64, k)} }
 
-// sums gathers the equations over the open tiles of a shot.
-func (r *References) sums(frames []*lightFrame, e *imageio.Exposure, cloud Cloud) *normal {
-	open := r.tiles.open(cloud.Mask)
-	at := func(i int) float64 { return e.Atoms[i] }
-	if t := cloud.Transmission; t != nil {
-		r.tiles.close(open, func(i int) bool { return !(t[i] >= least) })
-		at = func(i int) float64 { return e.Atoms[i] / t[i] }
+// openTiles tells which tiles neither the mask nor too low a transmission closes.
+func (r *References) openTiles(cloud Cloud) (open []bool, blocks int) {
+	open = make([]bool, len(r.tiles.blocks))
+	for i := range open {
+		open[i] = true
 	}
-	k := len(frames)
-	n := &normal{noise: make([]float64, k), half: [2]system{newSystem(k), newSystem(k)}}
-	atoms := r.tiles.average(at)
-	for i, isOpen := range open {
-		if isOpen {
-			n.half[r.tiles.fold(i)].own(atoms[r.tiles.start[i]:r.tiles.start[i+1]])
+	t := cloud.Transmission
+	r.tiles.close(open, func(i int) bool { return cloud.Mask[i] || t != nil && !(t[i] >= least) })
+	for i, n := range r.tiles.blocks {
+		if open[i] {
+			blocks += n
 		}
 	}
-	n.open = int(n.half[0].blocks + n.half[1].blocks)
-	read := r.night.readVar() * float64(r.night.win.bin*r.night.win.bin)
+	return open, blocks
+}
+
+// bare returns the atoms frame divided by the transmission.
+func bare(e *imageio.Exposure, transmission []float64) []float64 {
+	if transmission == nil {
+		return e.Atoms
+	}
+	out := make([]float64, len(e.Atoms))
+	for i, a := range e.Atoms {
+		out[i] = a / transmission[i]
+	}
+	return out
+}
+
+// equations gathers the sums over the open tiles of a shot.
+func (r *References) equations(frames []*lightFrame, atoms []float64, open []bool) *normal {
+	k := len(frames)
+	n := &normal{noise: make([]float64, k), half: [2]system{newSystem(k), newSystem(k)}}
+	values := r.tiles.values(atoms)
+	square := r.tiles.folded(r.tiles.products(values, values), open)
+	sum := r.tiles.folded(r.tiles.sums(values), open)
+	for h := range n.half {
+		n.half[h].square, n.half[h].sum = square[h], sum[h]
+	}
+	for i, blocks := range r.tiles.blocks {
+		if open[i] {
+			n.half[r.tiles.fold(i)].blocks += float64(blocks)
+		}
+	}
 	for a, f := range frames {
-		n.noise[a] = (f.mean + read + f.darkVar) / (blockSide * blockSide * f.mean * f.mean)
-		with := r.tiles.folded(r.tiles.products(f.blocks, atoms), open)
+		n.noise[a] = (f.mean + r.readVar() + f.darkVar) / (blockSide * blockSide * f.mean * f.mean)
+		with := r.tiles.folded(r.tiles.products(f.values, values), open)
 		for h := range n.half {
 			n.half[h].rhs[a] = with[h] / f.mean
 		}
@@ -69,15 +93,6 @@ func (r *References) sums(frames []*lightFrame, e *imageio.Exposure, cloud Cloud
 		}
 	}
 	return n
-}
-
-// own takes in the blocks of the atoms frame of one tile.
-func (s *system) own(blocks []float64) {
-	for _, v := range blocks {
-		s.square += v * v
-		s.sum += v
-	}
-	s.blocks += float64(len(blocks))
 }
 
 // all is both halves together.
@@ -96,7 +111,7 @@ func (n *normal) all() system {
 
 // first is the equations of the first frame alone.
 func (n *normal) first() *normal {
-	f := &normal{noise: n.noise[:1], open: n.open}
+	f := &normal{noise: n.noise[:1]}
 	for h, s := range n.half {
 		s.gram, s.rhs = s.gram[:1], s.rhs[:1]
 		f.half[h] = s
@@ -112,29 +127,19 @@ func (n *normal) solve(s system) (c []float64, ok bool) {
 		return nil, false
 	}
 	share := s.sum / s.blocks / float64(k)
-	g := mat.NewSymDense(k, nil)
-	rhs := mat.NewVecDense(k, nil)
+	g := mat.NewSymDense(k, append([]float64(nil), s.gram...))
+	rhs := mat.NewVecDense(k, append([]float64(nil), s.rhs...))
 	for a := range k {
-		left := s.rhs[a]
-		for b := range k {
-			left -= s.gram[a*k+b] * share
-			if b >= a {
-				g.SetSym(a, b, s.gram[a*k+b])
-			}
-		}
-		g.SetSym(a, a, s.gram[a*k+a]+ridge*s.blocks*n.noise[a])
-		rhs.SetVec(a, left)
+		hold := ridge * s.blocks * n.noise[a]
+		g.SetSym(a, a, g.At(a, a)+hold)
+		rhs.SetVec(a, rhs.AtVec(a)+hold*share)
 	}
 	var factor mat.Cholesky
 	var x mat.VecDense
 	if !factor.Factorize(g) || factor.SolveVecTo(&x, rhs) != nil {
 		return nil, false
 	}
-	c = make([]float64, k)
-	for a := range c {
-		c[a] = share + x.AtVec(a)
-	}
-	return c, true
+	return x.RawVector().Data, true
 }
 
 // leftOut is the sum of squares over each half with coefficients from the other.
@@ -150,7 +155,7 @@ func (n *normal) leftOut() float64 {
 	return total
 }
 
-// squares is Σ (A - Σ c R)² over the blocks of the system.
+// squares is the sum of squares of the atoms frame less the combination c.
 func (s system) squares(c []float64) float64 {
 	k := len(c)
 	sum := s.square

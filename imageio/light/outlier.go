@@ -11,7 +11,7 @@ import (
 // because half of the neighbours lie above it.
 const (
 	spikeSigmas = 7
-	spikeShare  = 0.1
+	spikeShare  = 0.15
 )
 
 // outliers marks in bad the pixels of an image, electrons, that stand above the fourth
@@ -20,35 +20,12 @@ const (
 // neither judged nor asked. The fourth lets two by two struck pixels be seen. With base,
 // smooth and positive, neighbours are compared as fractions of it.
 func outliers(pix, base []float64, width int, readVar float64, holes bool, bad []bool) {
-	found := []int(nil)
-	at := func(i, j int) float64 { return pix[j] * base[i] / base[j] }
-	if base == nil {
-		at = func(_, j int) float64 { return pix[j] }
-	}
+	var found []int
 	height := len(pix) / width
-	var near [8]float64
 	for y := range height {
 		for x := range width {
 			i := y*width + x
-			if bad[i] || !suspect(pix, width, height, x, y, readVar, holes) {
-				continue
-			}
-			n := 0
-			for v := max(y-1, 0); v <= min(y+1, height-1); v++ {
-				for u := max(x-1, 0); u <= min(x+1, width-1); u++ {
-					if j := v*width + u; j != i && !bad[j] {
-						near[n] = at(i, j)
-						n++
-					}
-				}
-			}
-			if n < 3 {
-				continue
-			}
-			s := near[:n]
-			slices.Sort(s)
-			high, low := s[n/2], s[(n-1)/2]
-			if pix[i]-high > allowance(high, readVar) || holes && low-pix[i] > allowance(low, readVar) {
+			if !bad[i] && suspect(pix, width, x, i, readVar, holes) && standsOut(pix, base, width, x, y, readVar, holes, bad) {
 				found = append(found, i)
 			}
 		}
@@ -58,6 +35,33 @@ func outliers(pix, base []float64, width int, readVar float64, holes bool, bad [
 	}
 }
 
+// standsOut judges one pixel by the order of its neighbours; with fewer than three of
+// them it is let pass.
+func standsOut(pix, base []float64, width, x, y int, readVar float64, holes bool, bad []bool) bool {
+	i, height := y*width+x, len(pix)/width
+	var near [8]float64
+	n := 0
+	for v := max(y-1, 0); v <= min(y+1, height-1); v++ {
+		for u := max(x-1, 0); u <= min(x+1, width-1); u++ {
+			j := v*width + u
+			if j == i || bad[j] {
+				continue
+			}
+			near[n] = pix[j]
+			if base != nil {
+				near[n] *= base[i] / base[j]
+			}
+			n++
+		}
+	}
+	if n < 3 {
+		return false
+	}
+	slices.Sort(near[:n])
+	high, low := near[n/2], near[(n-1)/2]
+	return pix[i]-high > allowance(high, readVar) || holes && low-pix[i] > allowance(low, readVar)
+}
+
 // allowance is how far from a level of v electrons a pixel may lie. The two electrons²
 // keep a level read as nothing from promising a count of nothing.
 func allowance(v, readVar float64) float64 {
@@ -65,20 +69,43 @@ func allowance(v, readVar float64) float64 {
 	return spikeSigmas*math.Sqrt(v+readVar+2) + spikeShare*v
 }
 
-// suspect is a cheap test that nearly every pixel fails: whether any of the four next
-// neighbours differs from the pixel by the read noise part of the allowance and more
-// than the shot noise of the lower of the two.
-func suspect(pix []float64, width, height, x, y int, readVar float64, holes bool) bool {
-	i := y*width + x
-	far := func(j int) bool {
-		low, high := pix[j], pix[i]
-		if holes && low > high {
-			low, high = high, low
+// suspect is a cheap test that nearly every pixel fails: an outlier differs by more than
+// the noise part of the allowance from the lowest of its four next neighbours, or, a
+// hole, from the highest.
+func suspect(pix []float64, width, x, i int, readVar float64, holes bool) bool {
+	v := pix[i]
+	low, high := v, v
+	see := func(w float64) {
+		if w < low {
+			low = w
+		} else if w > high {
+			high = w
 		}
-		d := high - low
-		return d > 0 && d*d > spikeSigmas*spikeSigmas*(max(low, 0)+readVar)
 	}
-	return x > 0 && far(i-1) || x < width-1 && far(i+1) || y > 0 && far(i-width) || y < height-1 && far(i+width)
+	if x > 0 {
+		see(pix[i-1])
+	}
+	if x+1 < width {
+		see(pix[i+1])
+	}
+	if i >= width {
+		see(pix[i-width])
+	}
+	if i+width < len(pix) {
+		see(pix[i+width])
+	}
+	if beyond(v-low, low, readVar) {
+		return true
+	}
+	return holes && beyond(high-v, v, readVar)
+}
+
+// beyond compares a difference with the noise part of the allowance at a level.
+func beyond(d, level, readVar float64) bool {
+	if level < 0 {
+		level = 0
+	}
+	return d*d > spikeSigmas*spikeSigmas*(level+readVar)
 }
 
 // fill writes into each bad pixel the median of the good ones round it, taken from the

@@ -20,6 +20,7 @@ type dark struct {
 func (d dark) counts(i int) float64 { return d.pattern[i] + d.level }
 
 // darkFor chooses the dark of a frame. The light frame of a four-frame shot has its own.
+// A single dark, saved with every shot, is the night's and common to all light frames.
 func (n *Night) darkFor(raw *imageio.Raw, role imageio.Role) (dark, error) {
 	f := raw.Frames[imageio.Dark]
 	if other := raw.Frames[imageio.DarkOfLight]; other != nil && (role == imageio.Light || f == nil) {
@@ -38,7 +39,7 @@ func (n *Night) darkFor(raw *imageio.Raw, role imageio.Role) (dark, error) {
 	if !usableDark(pix, n.Camera.FullScale) {
 		return dark{}, refuse(Blank, "dark, or saturated over more than a hundredth")
 	}
-	if n.Darks < mastered {
+	if n.Darks == 0 || n.Darks > 1 && n.Darks < mastered {
 		return n.ownDark(pix), nil
 	}
 	for i := range pix {
@@ -55,7 +56,7 @@ func (n *Night) darkFor(raw *imageio.Raw, role imageio.Role) (dark, error) {
 
 // ownDark makes the dark of a shot's own frame, its struck pixels marked.
 func (n *Night) ownDark(pix []float64) dark {
-	d := dark{pattern: pix, variance: n.readVar(), own: true, bad: append([]bool(nil), n.bad...)}
+	d := dark{pattern: pix, variance: n.DarkNoise * n.DarkNoise, own: true, bad: append([]bool(nil), n.bad...)}
 	level, _, _ := clipped(pix)
 	above := make([]float64, len(pix))
 	for i, v := range pix {
@@ -67,8 +68,8 @@ func (n *Night) ownDark(pix []float64) dark {
 	return d
 }
 
-// agrees reports whether a dark less the master, counts, is white noise of the known
-// read noise about its level: the mean square over 8x8 blocks against what it should
+// agrees reports whether a dark less the master, counts, is white noise of the night's
+// darks about its level: the mean square over 8x8 blocks against what it should
 // be, with half of that and five standard deviations of it allowed.
 func (n *Night) agrees(residual []float64, level float64) bool {
 	const side = 8
@@ -90,6 +91,6 @@ func (n *Night) agrees(residual []float64, level float64) bool {
 		sum += mean * mean
 	}
 	perCount := n.Camera.ElectronsPerCount
-	expected := (n.readVar() + n.DarkVariance) / (perCount * perCount) / (side * side) * float64(w*h)
+	expected := (n.DarkNoise*n.DarkNoise + n.DarkVariance) / (perCount * perCount) / (side * side) * float64(w*h)
 	return sum <= expected*(1.5+5*math.Sqrt(2/float64(w*h)))
 }
