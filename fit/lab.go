@@ -20,7 +20,7 @@ type Optics struct {
 	Alpha      float64 // correction of the cross-section, σ = σ0/alpha
 	Detuning   float64 // of the probe, in full widths Γ
 	Saturation float64 // electrons per saved pixel at I = Isat in this exposure; +Inf: a weak probe
-	Stray      float64 // light that atoms cannot absorb, as a fraction of the light they can
+	Stray      float64 // part of the counted light that atoms cannot absorb
 }
 
 // Calibration is one setting that could be wrong. Apply returns the laboratory with that

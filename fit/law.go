@@ -7,17 +7,12 @@ import "math"
 // (Reinaudi et al., Opt. Lett. 32, 3143 (2007)). A fraction of the light that atoms cannot
 // absorb lifts the transmission to (e^−u + ε)/(1+ε).
 type law struct {
-	a          float64
-	stray      float64
-	unsaturate bool
+	a     float64
+	stray float64
 }
 
 func newLaw(o *Optics) law {
-	return law{
-		a:          o.Alpha * (1 + 4*o.Detuning*o.Detuning),
-		stray:      o.Stray,
-		unsaturate: math.IsInf(o.Saturation, 1),
-	}
+	return law{a: o.Alpha * (1 + 4*o.Detuning*o.Detuning), stray: o.Stray}
 }
 
 // transmit returns the transmitted fraction, its derivative to d = σ0 n, and s times its
@@ -54,8 +49,8 @@ func (l *law) transmit(d, s float64) (t, td, ts float64) {
 	n := 1 / (l.a + s*e)
 	td, ts = -e*n, s*e*(1-e)*n
 	if l.stray > 0 {
-		f := 1 / (1 + l.stray)
-		return (e + l.stray) * f, td * f, ts * f
+		f := 1 - l.stray
+		return f*e + l.stray, td * f, ts * f
 	}
 	return e, td, ts
 }
@@ -63,7 +58,7 @@ func (l *law) transmit(d, s float64) (t, td, ts float64) {
 // od inverts the law: the σ0 n that leaves the fraction t of light with s = I_0/Isat.
 // It returns NaN where t is at or below the stray light.
 func (l *law) od(t, s float64) float64 {
-	e := t*(1+l.stray) - l.stray
+	e := (t - l.stray) / (1 - l.stray)
 	if !(e > 0) {
 		return math.NaN()
 	}

@@ -50,7 +50,7 @@ func fullLevel(pic *Picture, o *Optics) *level {
 }
 
 // perElectron is I/Isat of the light that atoms can absorb for one electron of a pixel.
-func (o *Optics) perElectron() float64 { return 1 / (o.Saturation * (1 + o.Stray)) }
+func (o *Optics) perElectron() float64 { return (1 - o.Stray) / o.Saturation }
 
 // halved bins a level by two.
 func (l *level) halved() *level {

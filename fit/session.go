@@ -116,8 +116,8 @@ func (pic *Picture) check() error {
 func (lab *Lab) check() error {
 	o := &lab.Optics
 	switch {
-	case !(o.Pixel > 0) || !(o.Blur >= 0) || !(o.Alpha > 0) || !(o.Saturation > 0) || !(o.Stray >= 0) || !finite(o.Detuning):
-		return errors.New("the optics need a pixel, alpha and saturation above zero, and no negative blur or stray light")
+	case !(o.Pixel > 0) || !(o.Blur >= 0) || !(o.Alpha > 0) || !(o.Saturation > 0) || !(o.Stray >= 0 && o.Stray < 1) || !finite(o.Detuning):
+		return errors.New("the optics need a pixel, alpha and saturation above zero, no negative blur, and less than all of the light stray")
 	case math.IsNaN(lab.Species.ScatteringLength) || lab.Species.ScatteringLength == 0:
 		return fmt.Errorf("the scattering length of %s is not given", lab.Species.Name)
 	}

@@ -7,16 +7,16 @@ import "math"
 //	od = c ln(1/t) + s(1 − t),  c = Alpha(1 + 4 Detuning²),
 //
 // with od = σ0 n of the bare two-level cross-section, t = I_t/I_0 and s = I_0/Isat of the
-// light that atoms can absorb, before it meets them. What the camera counts beside that
-// light is Stray times it, so the counted fraction is (t + Stray)/(1 + Stray). G.
-// Reinaudi, T. Lahaye, Z. Wang, D. Guéry-Odelin, Opt. Lett. 32, 3143 (2007), of which
+// light that atoms can absorb, before it meets them. A part Stray of the counted light is
+// none of that (another frequency or polarisation), so the counted fraction is
+// (1 − Stray) t + Stray. G. Reinaudi, T. Lahaye, Z. Wang, D. Guéry-Odelin, Opt. Lett. 32, 3143 (2007), of which
 // this is the integral of dI/dx = −nσ0 I/(c + I/Isat).
 //
-// Domain: Alpha > 0, Stray ≥ 0, s ≥ 0; the results are NaN for s < 0 and for NaN.
+// Domain: Alpha > 0, 0 ≤ Stray < 1, s ≥ 0; the results are NaN for s < 0 and for NaN.
 type Law struct {
 	Alpha    float64 // correction of the cross-section, ≥ 1 for real atoms
 	Detuning float64 // of the probe in full widths Γ
-	Stray    float64 // light that atoms cannot absorb, as a part of the light that they can
+	Stray    float64 // part of the counted light that atoms cannot absorb
 }
 
 func (l Law) logFactor() float64 { return l.Alpha * (1 + 4*l.Detuning*l.Detuning) }
@@ -24,23 +24,23 @@ func (l Law) logFactor() float64 { return l.Alpha * (1 + 4*l.Detuning*l.Detuning
 // Transmit returns the counted fraction of the light at optical density od, which may be
 // negative (more than 1 is counted then) and as large as one likes.
 func (l Law) Transmit(od, s float64) float64 {
-	return (math.Exp(-transmitLog(od, s, l.logFactor())) + l.Stray) / (1 + l.Stray)
+	return (1-l.Stray)*math.Exp(-transmitLog(od, s, l.logFactor())) + l.Stray
 }
 
 // TransmitDeriv returns Transmit and its derivatives by od and by s:
-// dt/dod = −t/(c + st) and dt/ds = t(1−t)/(c + st), each over 1 + Stray.
+// dt/dod = −t/(c + st) and dt/ds = t(1−t)/(c + st), each times 1 − Stray.
 func (l Law) TransmitDeriv(od, s float64) (t, dtdod, dtds float64) {
 	c := l.logFactor()
 	y := transmitLog(od, s, c)
 	bare := math.Exp(-y)
-	slope := bare / ((c + s*bare) * (1 + l.Stray))
-	return (bare + l.Stray) / (1 + l.Stray), -slope, -math.Expm1(-y) * slope
+	slope := (1 - l.Stray) * bare / (c + s*bare)
+	return (1-l.Stray)*bare + l.Stray, -slope, -math.Expm1(-y) * slope
 }
 
 // OD inverts Transmit for the counted fraction t: +Inf where only the stray light is
 // left, NaN below.
 func (l Law) OD(t, s float64) float64 {
-	bare := t + (t-1)*l.Stray
+	bare := (t - l.Stray) / (1 - l.Stray)
 	if !(s >= 0) {
 		return math.NaN()
 	}
@@ -48,8 +48,8 @@ func (l Law) OD(t, s float64) float64 {
 }
 
 // Ceiling returns the largest apparent density −ln t that stray light lets through,
-// ln[(1+Stray)/Stray]; +Inf without stray light.
-func (l Law) Ceiling() float64 { return math.Log1p(1 / l.Stray) }
+// −ln Stray; +Inf without stray light.
+func (l Law) Ceiling() float64 { return -math.Log(l.Stray) }
 
 // PhotonsScattered returns the photons N = (τΓ/2) s/(c + s) that an atom scatters in an
 // exposure of τ s in unattenuated light, for the linewidth Γ in rad/s.

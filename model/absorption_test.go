@@ -59,14 +59,14 @@ func TestLawLimits(t *testing.T) {
 
 // TestCeiling: apparent densities of stray light. ln[(1+ε)/ε] = 6.909, 4.615, 3.045 and
 // OD 3 reads 2.981, 2.827, 2.354 for ε = 1e-3, 1e-2, 5e-2 (printed digits, computed by
-// hand from −ln[(e^−OD+ε)/(1+ε)]).
+// hand from −ln[(e^−OD+ε)/(1+ε)], where ε = Stray/(1−Stray) is the stray light over the rest).
 func TestCeiling(t *testing.T) {
 	for _, row := range [][3]float64{{1e-3, 6.909, 2.981}, {1e-2, 4.615, 2.827}, {5e-2, 3.045, 2.354}} {
-		law := Law{Alpha: 1, Stray: row[0]}
+		law := Law{Alpha: 1, Stray: row[0] / (1 + row[0])}
 		within(t, "ceiling", law.Ceiling(), row[1], 5e-4)
 		within(t, "reading at the ceiling", -math.Log(law.Transmit(900, 0)), law.Ceiling(), 1e-12)
 		within(t, "reading of OD 3", -math.Log(law.Transmit(3, 0)), row[2], 5e-4)
-		if v := law.OD(0.9*row[0], 0); !math.IsNaN(v) {
+		if v := law.OD(0.9*law.Stray, 0); !math.IsNaN(v) {
 			t.Errorf("less light than the stray light gives od %g, want NaN", v)
 		}
 	}
