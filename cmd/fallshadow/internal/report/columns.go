@@ -26,9 +26,10 @@ type Column struct {
 
 // Facts is what is known of a shot once it has been fitted.
 type Facts struct {
-	Flight    float64 // s
-	X, Y      float64 // centre of the cloud in pixels of the saved frame
-	Reference string  // what the light was made of
+	Flight    float64  // s
+	X, Y      float64  // centre of the cloud in pixels of the saved frame
+	Reference string   // what the light was made of
+	Notes     []string // words of what was seen in the frames
 	Fit       *fit.Result
 }
 
@@ -175,7 +176,7 @@ func Fill(r *ledger.Row, f *Facts) {
 			r.SetWord(c.Name, c.word(f))
 		}
 	}
-	r.Flags = append(r.Flags, f.Fit.Flags...)
+	r.Flags = slices.Concat(f.Notes, f.Fit.Flags)
 	for _, s := range f.Fit.Numbers.Shifts {
 		fillShift(r, s)
 	}

@@ -84,13 +84,13 @@ func facts() *Facts {
 	n.T.Low, n.T.High = 190e-9, math.Inf(1)
 	n.Shifts = []numbers.Effect{{Name: "alpha", Known: true, Change: numbers.Derived{Atoms: 1e3, Mu: nan}}}
 	return &Facts{
-		Flight: 0.015, X: 160.5, Y: 12, Reference: "own",
+		Flight: 0.015, X: 160.5, Y: 12, Reference: "own", Notes: []string{"part-saturated"},
 		Fit: &fit.Result{Model: "bimodal", Form: "bose+tf", Numbers: n, Width: [2]float64{1e-4, nan}, Angle: math.Pi / 45, Flags: []string{"dense", "misfit"}},
 	}
 }
 
 func TestFillAndCell(t *testing.T) {
-	r := ledger.Row{Shot: "a/1", Files: []string{"a/1.fits", "a/2.fits"}, Flags: []string{"part-saturated"}}
+	r := ledger.Row{Shot: "a/1", Files: []string{"a/1.fits", "a/2.fits"}}
 	Fill(&r, facts())
 	r.Provisional, r.Duplicate, r.Stale = true, "a/0", true
 	cell := map[string]string{}

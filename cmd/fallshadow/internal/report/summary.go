@@ -109,3 +109,18 @@ func Printable(text string) string {
 		return '?'
 	}, text)
 }
+
+// Line tells of one row in a line.
+func Line(r *ledger.Row) string {
+	name := Printable(r.Shot)
+	if r.Reason != "" {
+		return name + "  failed: " + Printable(r.Reason)
+	}
+	parts := []string{name, r.Words["model"]}
+	for _, c := range summaryColumns[1:] {
+		if text := c.cell(r); text != "" {
+			parts = append(parts, c.head+" "+text)
+		}
+	}
+	return strings.Join(append(parts, Flags(r)...), "  ")
+}

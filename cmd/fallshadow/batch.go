@@ -1,0 +1,77 @@
+package main
+
+import (
+	"context"
+	"fmt"
+	"path/filepath"
+
+	"fallshadow/cmd/fallshadow/internal/night"
+	"fallshadow/cmd/fallshadow/internal/report"
+	"fallshadow/cmd/fallshadow/internal/settings"
+)
+
+// batchCmd fits a night.
+type batchCmd struct {
+	Night     string `arg:"" help:"Folder with the shots of the night. It is only read."`
+	Settings  string `placeholder:"FILE" help:"Settings of the laboratory; fallshadow.toml in the night's folder if left out."`
+	Out       string `placeholder:"DIR" help:"Folder for ledger and table; results/NIGHT if left out."`
+	Again     bool   `help:"Fit every shot, also those whose results are current."`
+	Workers   int    `placeholder:"N" help:"Shots to fit at a time; one a processor if left out. The results do not depend on it."`
+	OwnRegion bool   `help:"Leave out the regions of interest that were drawn by hand."`
+}
+
+// Run fits what is not current, writes the table and shows it.
+func (c *batchCmd) Run(ctx context.Context, t terminal) error {
+	lab, err := loadSettings(c.Settings, c.Night)
+	if err != nil {
+		return err
+	}
+	for _, w := range lab.Warnings() {
+		fmt.Fprintf(t.err, "caution: %s\n", w)
+	}
+	out, err := night.Batch(ctx, night.Options{
+		Dir: c.Night, Out: c.Out, Settings: lab, Workers: c.Workers, Again: c.Again, OwnRegion: c.OwnRegion,
+	}, newProgress(t))
+	if out == nil {
+		return err
+	}
+	if ctx.Err() != nil {
+		return fmt.Errorf("stopped after %d of the shots, which are kept: run the same command again to go on", out.Fitted)
+	}
+	if err != nil {
+		return err
+	}
+	return c.show(t, out)
+}
+
+// show prints the table and what there is to say about the run.
+func (c *batchCmd) show(t terminal, out *night.Outcome) error {
+	if err := report.Summary(t.out, out.Rows); err != nil {
+		return err
+	}
+	fmt.Fprintf(t.out, "\n%d shots: %d fitted, %d were current, %d failed\n%s\n",
+		len(out.Rows), out.Fitted, out.Kept, out.Failed, filepath.Join(out.Dir, report.CSVName))
+	const shown = 5
+	for i, s := range out.Strays {
+		if i == shown {
+			fmt.Fprintf(t.err, "passed over %d more files\n", len(out.Strays)-shown)
+			break
+		}
+		fmt.Fprintf(t.err, "passed over %s: %s\n", report.Printable(s.Path), report.Printable(s.Reason))
+	}
+	if out.Failed > 0 {
+		return errSomeFailed
+	}
+	return nil
+}
+
+// loadSettings reads the named settings, or those in the night's folder.
+func loadSettings(file, nightDir string) (*settings.Settings, error) {
+	if file == "" {
+		var err error
+		if file, err = settings.Find(nightDir); err != nil {
+			return nil, err
+		}
+	}
+	return settings.Load(file)
+}

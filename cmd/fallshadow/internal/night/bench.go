@@ -1,0 +1,124 @@
+package night
+
+import (
+	"context"
+	"fmt"
+	"image"
+	"iter"
+
+	"fallshadow/cmd/fallshadow/internal/ledger"
+	"fallshadow/cmd/fallshadow/internal/report"
+	"fallshadow/cmd/fallshadow/internal/settings"
+	"fallshadow/fit"
+	"fallshadow/imageio"
+	"fallshadow/imageio/light"
+)
+
+// measure turns the frames of one shot into what is known of it. at is the place of the
+// shot among the readable ones. Every worker has its own.
+type measure func(ctx context.Context, at int, raw *imageio.Raw) (*report.Facts, error)
+
+// frames gives a bench the frames of the night.
+type frames struct {
+	all  iter.Seq[*imageio.Raw]                                  // once, in natural order, the night's darks first
+	n    int                                                     // readable shots
+	load func(ctx context.Context, at int) (*imageio.Raw, error) // one of them, again
+}
+
+// prepare makes ready to measure shots inside a region, an empty one being that of the
+// settings, and returns what makes a measure for a worker. The number of readable shots
+// is not known before all of f has been read.
+type prepare func(ctx context.Context, s *settings.Settings, region image.Rectangle, f *frames) (func() measure, error)
+
+// bench is the way from frames to numbers.
+type bench struct {
+	settings   *settings.Settings
+	night      *light.Night
+	references *light.References // nil: every shot has its own light
+	lab        fit.Lab
+	options    fit.Options
+}
+
+func newBench(ctx context.Context, s *settings.Settings, region image.Rectangle, f *frames) (func() measure, error) {
+	camera := s.LightCamera()
+	if !region.Empty() {
+		camera.Region = region
+	}
+	shared, err := light.Prepare(ctx, camera, f.all)
+	if err != nil {
+		return nil, err
+	}
+	b := &bench{settings: s.WithCamera(shared.Camera), night: shared, options: s.Options()}
+	if b.lab, err = b.settings.Lab(); err != nil {
+		return nil, err
+	}
+	if s.Fit.Reference != "own" && s.Shots.Layout != "density" {
+		b.references = light.NewReferences(shared, s.Fit.BasisSize, f.n, f.load)
+	}
+	return b.worker, nil
+}
+
+func (b *bench) worker() measure {
+	workspace := fit.NewWorkspace()
+	return func(ctx context.Context, at int, raw *imageio.Raw) (*report.Facts, error) {
+		return b.measure(ctx, at, raw, workspace)
+	}
+}
+
+// measure fits a shot. Where the night lends a better light than the shot's own, the
+// cloud is located first, which says where the lights may be compared.
+func (b *bench) measure(ctx context.Context, at int, raw *imageio.Raw, workspace *fit.Workspace) (*report.Facts, error) {
+	flight, err := b.settings.Flight(raw.Meta)
+	if err != nil {
+		return nil, err
+	}
+	exposure, err := b.night.Expose(raw)
+	if err != nil {
+		return nil, err
+	}
+	if b.references != nil {
+		if exposure, err = b.relight(ctx, at, exposure, flight, workspace); err != nil {
+			return nil, err
+		}
+	}
+	result, err := fit.Cloud(ctx, b.picture(exposure), &b.lab, flight, b.options, workspace)
+	if err != nil {
+		return nil, fmt.Errorf("fit: %w", err)
+	}
+	f := &report.Facts{Flight: flight, Reference: exposure.Reference, Notes: exposure.Notes, Fit: result}
+	f.X, f.Y = b.night.Camera.ToSaved(result.X, result.Y)
+	return f, nil
+}
+
+// relight returns the exposure with the best light that the night has for it.
+func (b *bench) relight(ctx context.Context, at int, e *imageio.Exposure, flight float64, workspace *fit.Workspace) (*imageio.Exposure, error) {
+	place, err := fit.Locate(ctx, b.picture(e), &b.lab, flight, b.options, workspace)
+	if err != nil {
+		return nil, fmt.Errorf("locate the cloud: %w", err)
+	}
+	return b.references.Apply(ctx, at, e, light.Cloud{Mask: place.Mask, Transmission: place.Transmission})
+}
+
+// picture hands an exposure to the fit.
+func (b *bench) picture(e *imageio.Exposure) *fit.Picture {
+	p := &fit.Picture{
+		Width: e.Width, Height: e.Height, Atoms: e.Atoms, Light: e.Light, Good: e.Good,
+		Noise: fit.Noise(e.Noise),
+	}
+	if e.Density != nil {
+		scale := b.settings.DensityScale(b.lab)
+		p.Density = make([]float64, len(e.Density))
+		for i, v := range e.Density {
+			p.Density[i] = v * scale
+		}
+	}
+	return p
+}
+
+// rectangle returns the region of interest that a person drew.
+func rectangle(g *ledger.Region) image.Rectangle {
+	if g == nil {
+		return image.Rectangle{}
+	}
+	return image.Rect(g.X0, g.Y0, g.X1, g.Y1)
+}
