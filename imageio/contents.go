@@ -7,6 +7,8 @@ import (
 
 	"fallshadow/imageio/fault"
 	"fallshadow/imageio/fits"
+	"fallshadow/imageio/npy"
+	"fallshadow/imageio/tiff"
 )
 
 // contents is what an open camera file holds: its arrays in order, and its metadata.
@@ -54,8 +56,20 @@ func open(r io.ReaderAt, size int64) (*contents, error) {
 	switch format := Sniff(start[:n]); format {
 	case FITS:
 		return openFITS(r, size)
+	case Gzip:
+		return openGzip(r, size)
+	case TIFF, BigTIFF:
+		return openTIFF(r, size)
+	case PNG:
+		return openPNG(r, size)
+	case NPY:
+		return openNPY(r, size)
+	case NPZ:
+		return openNPZ(r, size)
 	case Empty:
 		return nil, fmt.Errorf("%w: the file is empty", fault.Truncated)
+	case Zeros:
+		return nil, fmt.Errorf("%w: the file holds zeros where its content should start", fault.Truncated)
 	default:
 		return nil, fmt.Errorf("%w: the content is %s: save the frames as FITS, TIFF, PNG or NPY", fault.Unsupported, format)
 	}
@@ -77,4 +91,44 @@ func openFITS(r io.ReaderAt, size int64) (*contents, error) {
 		}
 	}
 	return c, nil
+}
+
+// openTIFF makes one stack a page; the texts of the first page that has them count.
+func openTIFF(r io.ReaderAt, size int64) (*contents, error) {
+	f, err := tiff.Open(r, size)
+	if err != nil {
+		return nil, err
+	}
+	c := &contents{meta: Metadata{}}
+	for _, p := range f.Pages {
+		c.meta.under(tags(p.Tags))
+		c.stacks = append(c.stacks, stack{"", p.Width, p.Height, 1, func(_ int, dst []float32) (int, error) {
+			return 0, p.Read(dst)
+		}})
+	}
+	return c, nil
+}
+
+func openNPY(r io.ReaderAt, size int64) (*contents, error) {
+	a, err := npy.Open(r, size)
+	if err != nil {
+		return nil, err
+	}
+	return arrays(a), nil
+}
+
+func openNPZ(r io.ReaderAt, size int64) (*contents, error) {
+	all, err := npy.OpenArchive(r, size)
+	if err != nil {
+		return nil, err
+	}
+	return arrays(all...), nil
+}
+
+func arrays(all ...*npy.Array) *contents {
+	c := &contents{meta: Metadata{}}
+	for _, a := range all {
+		c.stacks = append(c.stacks, stack{a.Name, a.Width, a.Height, a.Planes, a.Read})
+	}
+	return c
 }

@@ -94,6 +94,24 @@ func cards(f *fits.File) Metadata {
 	return m
 }
 
+// assignment is a line of a description by which acquisition programs pass settings.
+var assignment = regexp.MustCompile(`(?m)^[ \t]*([A-Za-z][\w .-]{0,63}?)[ \t]*=[ \t]*(\S[^\r\n]*?)[ \t]*\r?$`)
+
+// tags makes metadata of texts in a file (TIFF tags, PNG text), and of the lines
+// "key = value" inside them.
+func tags(texts map[string]string) Metadata {
+	m := Metadata{}
+	for k, v := range texts {
+		m[k] = v
+	}
+	for _, k := range slices.Sorted(maps.Keys(texts)) {
+		for _, line := range assignment.FindAllStringSubmatch(texts[k], -1) {
+			m.first(line[1], line[2])
+		}
+	}
+	return m
+}
+
 func (m Metadata) first(key, value string) {
 	if _, ok := m[key]; !ok {
 		m[key] = value

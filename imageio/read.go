@@ -7,14 +7,13 @@ import (
 	"strings"
 
 	"fallshadow/imageio/fault"
-	"fallshadow/imageio/fits"
 )
 
 // Read reads one shot of the night in folder dir as Scan found it: its frames by role,
 // its metadata and its digest. Nothing is judged but that the frames are all there and of
 // one size. Errors name the file, the cause and where it helps the way out, and wrap
 // fault.Truncated, fault.Broken or fault.Unsupported where the file is at fault. No more
-// than fits.MaxPixels pixels are held.
+// than fault.MaxPixels pixels are held.
 func Read(ctx context.Context, dir string, shot Shot, layout Layout) (*Raw, error) {
 	p, err := layout.plan()
 	if err != nil {
@@ -103,7 +102,9 @@ type pick struct {
 	role  Role
 }
 
-// choose finds the planes that play the roles.
+// choose finds the planes that play the roles: those of the first array where it has the
+// right number, else those of all arrays in order, so that pages of a file and extensions
+// are as good as a cube.
 func choose(c *contents, p *plan, file ShotFile, roles []Role) ([]pick, error) {
 	if len(c.stacks) == 0 {
 		return nil, fmt.Errorf("%w: no image inside", fault.Unsupported)
@@ -112,7 +113,7 @@ func choose(c *contents, p *plan, file ShotFile, roles []Role) ([]pick, error) {
 		return chooseByName(c, p)
 	}
 	stacks := c.stacks
-	if p.Kind != "extensions" {
+	if p.Kind != "extensions" && stacks[0].planes == len(roles) {
 		stacks = stacks[:1]
 	}
 	total := 0
@@ -181,8 +182,8 @@ func readPicks(ctx context.Context, picks []pick) ([]*Frame, error) {
 	for _, k := range picks {
 		total += int64(k.width) * int64(k.height)
 	}
-	if total > fits.MaxPixels {
-		return nil, fmt.Errorf("%w: %d pixels, the limit is %d", fault.Unsupported, total, fits.MaxPixels)
+	if err := fault.Size(total, 1, 1); err != nil {
+		return nil, err
 	}
 	frames := make([]*Frame, len(picks))
 	for i, k := range picks {

@@ -9,6 +9,7 @@ import (
 	"os"
 	"path"
 	"path/filepath"
+	"regexp"
 	"strings"
 
 	"fallshadow/imageio/fault"
@@ -141,14 +142,15 @@ func (s *sidecar) metadata(shot Shot) Metadata {
 	return m
 }
 
+var wholeText = regexp.MustCompile(`^(\d+)(\.0*)?$`)
+
 // wholeNumber returns the digits of a key that is nothing but a whole number, without
 // leading zeros, else "".
 func wholeNumber(key string) string {
-	digits, rest := leadingDigits(key)
-	if digits == "" || strings.Trim(rest, "0") != "" && rest != "." || strings.Trim(rest, ".0") != "" {
-		return ""
+	if m := wholeText.FindStringSubmatch(key); m != nil {
+		return normal(m[1])
 	}
-	return normal(digits)
+	return ""
 }
 
 // lastNumber returns the last run of digits in a name, without leading zeros, or "".

@@ -24,6 +24,7 @@ const (
 	JPEG    Format = "JPEG"
 	BMP     Format = "BMP"
 	Empty   Format = "empty"
+	Zeros   Format = "zeros" // a file whose room was made before its content
 	Text    Format = "text"
 	Unknown Format = "unknown"
 )
@@ -60,6 +61,9 @@ func Sniff(start []byte) Format {
 		if bytes.HasPrefix(start, []byte(s.start)) {
 			return s.format
 		}
+	}
+	if len(bytes.Trim(start, "\x00")) == 0 {
+		return Zeros
 	}
 	if text(start) {
 		return Text

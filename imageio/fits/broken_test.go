@@ -190,7 +190,7 @@ func TestTooManyPixels(t *testing.T) {
 		t.Fatal(err)
 	}
 	_, _, _, err = f.HDUs[0].Image()
-	if want := "not supported: 4294967296 pixels, the limit is 268435456"; err == nil || err.Error() != want {
+	if want := "not supported: 65536 x 65536 x 1 pixels, the limit is 268435456"; err == nil || err.Error() != want {
 		t.Errorf("%v, want %s", err, want)
 	}
 }

@@ -13,9 +13,6 @@ import (
 	"fallshadow/imageio/fault"
 )
 
-// MaxPixels is the number of pixels above which an image is refused: 1 GiB once decoded.
-const MaxPixels = 1 << 28
-
 // maxHeader bounds the headers of one file together: 52,428 cards.
 const maxHeader = 4 << 20
 

@@ -57,7 +57,7 @@ func (h *HDU) Name() string {
 // Image returns the size of the pictures in the unit and their number: every axis beyond
 // the second counts planes. A unit without pixels has 0 planes. It fails where the unit
 // holds a picture that cannot be read as it stands: one axis only, random groups, tile
-// compression, more than MaxPixels.
+// compression, more than fault.MaxPixels pixels.
 func (h *HDU) Image() (width, height, planes int, err error) {
 	if v, _ := h.Get("ZIMAGE"); v == "T" {
 		how, _ := h.Get("ZCMPTYPE")
@@ -77,8 +77,8 @@ func (h *HDU) Image() (width, height, planes int, err error) {
 	for _, n := range h.Axes[2:] {
 		planes *= n
 	}
-	if pixels := h.length / int64(h.pixelSize()); pixels > MaxPixels {
-		return 0, 0, 0, fmt.Errorf("%w: %d pixels, the limit is %d", fault.Unsupported, pixels, MaxPixels)
+	if err := fault.Size(int64(h.Axes[0]), int64(h.Axes[1]), int64(planes)); err != nil {
+		return 0, 0, 0, err
 	}
 	return h.Axes[0], h.Axes[1], planes, nil
 }
