@@ -61,7 +61,7 @@ func (s *session) finish(c *candidates, chosen *state, r *Result) error {
 	r.clear()
 	s.residuals(full, r)
 	if r.Model == ModelNone {
-		return s.limitNone(c, r)
+		return s.limitNone(full, r)
 	}
 	if err := s.fillShape(full, r); err != nil {
 		return err

@@ -245,14 +245,21 @@ func (s *session) climb(st *state, k kind, set func(*params, float64), low, most
 	return math.NaN(), nil
 }
 
-// limitNone says how much of a cloud of the size of the best thermal fit could hide.
-func (s *session) limitNone(c *candidates, r *Result) error {
+// limitNone says how many atoms could hide in the middle of an empty picture, spread over a
+// sixth of its shorter side (rms), at 95 %.
+func (s *session) limitNone(none *state, r *Result) error {
 	r.Numbers.Atoms.V = 0
-	if !c.thermal.used() || c.thermal.cov == nil {
-		return nil
+	q := none.p
+	q[pX], q[pY] = 0.5*float64(s.pic.Width-1), 0.5*float64(s.pic.Height-1)
+	t := s.tmpl.thermal.square
+	l := math.Log(float64(min(s.pic.Width, s.pic.Height)) / 6 / math.Sqrt(math.Max(t[0], t[1])))
+	q[pWidth1], q[pWidth2], q[pThermal] = l, l, 0.01
+	k := kind{thermal: true, fixWidth: true, fixCentre: true}
+	st, err := s.run(s.work, k, q, 0.01)
+	if err != nil || !st.used() {
+		return err
 	}
-	m, j := s.tmpl.measured(&c.thermal.p, c.thermal.kind)
-	sigma := math.Sqrt(c.thermal.spread(j[:1])[0][0])
-	r.Numbers.Atoms.High = (math.Max(0, m.ThermalSum) + 1.645*sigma) * s.perSum()
+	m, _ := s.tmpl.measured(&params{pThermal: 1, pWidth1: l, pWidth2: l}, k)
+	r.Numbers.Atoms.High = (st.p[pThermal] + 1.645*st.unboundError(pThermal)) * m.ThermalSum * s.perSum()
 	return nil
 }

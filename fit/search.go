@@ -5,6 +5,8 @@ import (
 	"fmt"
 	"math"
 
+	"gonum.org/v1/gonum/mat"
+
 	"fallshadow/fit/lm"
 	"fallshadow/model/bose"
 	"fallshadow/model/numbers"
@@ -157,6 +159,19 @@ func (s *state) variance(i int) float64 {
 		return 0
 	}
 	return s.cov[a*s.tie.n+a]
+}
+
+// unboundError is the standard deviation of parameter i as if no bound held it.
+func (s *state) unboundError(i int) float64 {
+	n := s.tie.n
+	var chol mat.Cholesky
+	if a := s.tie.slot[i]; a >= 0 && chol.Factorize(mat.NewSymDense(n, append([]float64(nil), s.normal...))) {
+		var inv mat.SymDense
+		if chol.InverseTo(&inv) == nil {
+			return math.Sqrt(inv.At(a, a))
+		}
+	}
+	return math.NaN()
 }
 
 // spread maps the covariance by a Jacobian over all parameters: J C Jᵀ.

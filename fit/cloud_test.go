@@ -1,0 +1,376 @@
+package fit
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"math"
+	"math/rand/v2"
+	"slices"
+	"testing"
+
+	"fallshadow/imageio/synth"
+	"fallshadow/model"
+)
+
+// scene is a shot drawn by the renderer, which shares no profile and no law with the fit.
+type scene struct {
+	lab          *Lab
+	flight       float64
+	T            float64 // K
+	thermal      float64 // atoms
+	alpha        float64
+	condensate   float64 // atoms
+	x, y         float64
+	w, h         int
+	electrons    float64
+	read         float64
+	second       bool // a small second cloud elsewhere
+	hot          int
+	seed         uint64
+	fringes      []synth.Fringe
+	trueLab      *Lab // where the laboratory that drew the shot is not the one that fits it
+	powerNoise   float64
+	withoutNoise bool
+}
+
+func (sc *scene) column(t testing.TB) synth.Cloud {
+	t.Helper()
+	lab := sc.lab
+	if sc.trueLab != nil {
+		lab = sc.trueLab
+	}
+	sp, px := lab.Species, lab.Optics.Pixel
+	bt, err := model.ExpandThermal(lab.Trap, sc.flight, lab.Release)
+	if err != nil {
+		t.Fatal(err)
+	}
+	thermal := lab.View.Project(model.ThermalVariances(sc.T, sp.Mass, lab.Trap, bt))
+	var cond func(x, y float64) float64
+	switch {
+	case sc.condensate > 0 && sp.ScatteringLength > 0:
+		bc, err := model.ExpandCondensate(lab.Trap, sc.flight, lab.Release)
+		if err != nil {
+			t.Fatal(err)
+		}
+		mu, err := model.Mu(sc.condensate, sp.Mass, sp.ScatteringLength, lab.Trap)
+		if err != nil {
+			t.Fatal(err)
+		}
+		s := lab.View.Project(model.RadiiSquared(mu, sp.Mass, lab.Trap, bc))
+		cond = func(x, y float64) float64 { return model.CondensateColumn(sc.condensate, s, x, y) }
+	case sc.condensate > 0:
+		s, err := gaussianShape(lab, sc.flight, sc.condensate)
+		if err != nil {
+			t.Fatal(err)
+		}
+		cond = func(x, y float64) float64 { return model.GaussianColumn(sc.condensate, s, x, y) }
+	default:
+		cond = func(_, _ float64) float64 { return 0 }
+	}
+	sigma := sp.Sigma0()
+	return func(x, y float64) float64 {
+		dx, dy := (x-sc.x)*px, (y-sc.y)*px
+		d := sigma * cond(dx, dy)
+		if sc.thermal > 0 {
+			d += sigma * model.ThermalColumn(sc.thermal, sc.alpha, thermal, dx, dy)
+		}
+		if sc.second {
+			ex, ey := x-0.15*float64(sc.w), y-0.85*float64(sc.h)
+			d += 0.5 * math.Exp(-(ex*ex+ey*ey)/18)
+		}
+		return d
+	}
+}
+
+func (sc *scene) draw(t testing.TB) *Picture {
+	t.Helper()
+	lab := sc.lab
+	if sc.trueLab != nil {
+		lab = sc.trueLab
+	}
+	o := lab.Optics
+	s := synth.Scene{
+		Width: sc.w, Height: sc.h, Cloud: sc.column(t), Blur: o.Blur / o.Pixel,
+		Law: synth.Law{Alpha: o.Alpha, Detuning: o.Detuning, Saturation: o.Saturation, Stray: o.Stray},
+		Probe: synth.Probe{
+			Electrons: sc.electrons, X: 0.5 * float64(sc.w), Y: 0.45 * float64(sc.h), Waist: 1.6 * float64(sc.w),
+			PowerNoise: sc.powerNoise, Fringes: sc.fringes,
+		},
+	}
+	rng := rand.New(rand.NewPCG(sc.seed, 4))
+	pic := &Picture{Width: sc.w, Height: sc.h, Noise: Noise{Read: sc.read, LightShot: 1, LightRead: sc.read * sc.read}}
+	if sc.withoutNoise {
+		e, err := s.Expect(rng)
+		if err != nil {
+			t.Fatal(err)
+		}
+		pic.Atoms, pic.Light = e.Atoms, e.Light
+		for range pic.Atoms {
+			pic.Good = append(pic.Good, true)
+		}
+		return pic
+	}
+	pic.Noise.Dark, pic.Noise.DarkIsShared = sc.read*sc.read, true
+	sensor, err := synth.NewSensor(synth.Camera{ElectronsPerCount: 1, ReadNoise: sc.read, Offset: 100}, sc.w, sc.h)
+	if err != nil {
+		t.Fatal(err)
+	}
+	f, err := s.Draw(sensor, rng)
+	if err != nil {
+		t.Fatal(err)
+	}
+	for i := range f.Atoms {
+		pic.Atoms = append(pic.Atoms, float64(f.Atoms[i])-float64(f.Dark[i]))
+		pic.Light = append(pic.Light, float64(f.Light[i])-float64(f.Dark[i]))
+		pic.Good = append(pic.Good, true)
+	}
+	for i := range sc.hot {
+		o := (sc.h/4+3*i)*sc.w + sc.w/3 + 7*i
+		pic.Atoms[o] = 0.1 * pic.Light[o]
+	}
+	return pic
+}
+
+// pancakeLab is a sodium machine of our own: flat trap, camera at an angle.
+func pancakeLab(t testing.TB) *Lab {
+	t.Helper()
+	na, err := model.LookupSpecies("23Na")
+	if err != nil {
+		t.Fatal(err)
+	}
+	return &Lab{
+		Species: na, Trap: model.TrapHz(38, 142, 95), View: model.View(-0.2, 0.25, 0.4),
+		Optics: Optics{Pixel: 5e-6, Blur: 4e-6, Alpha: 1.7, Saturation: 6000},
+	}
+}
+
+func (sc *scene) saturated() float64 {
+	return model.ThermalNumber(sc.T, 0, sc.lab.Trap)
+}
+
+func standardScene(t testing.TB, T, n0 float64, seed uint64) *scene {
+	sc := &scene{lab: pancakeLab(t), flight: 12e-3, T: T, condensate: n0, x: 77.3, y: 66.8, w: 152, h: 136, electrons: 1500, read: 7, seed: seed, powerNoise: 0.02}
+	sc.thermal = sc.saturated()
+	return sc
+}
+
+func mustFit(t testing.TB, sc *scene, pic *Picture, opt Options) *Result {
+	t.Helper()
+	r, err := Cloud(context.Background(), pic, sc.lab, sc.flight, opt, NewWorkspace())
+	if err != nil {
+		t.Fatal(err)
+	}
+	return r
+}
+
+// TestExpectedPicture: with no noise at all, every number comes back; what is left is how the
+// renderer integrates over pixels (3x3 cells) and how the fit blurs (on the pixel grid).
+func TestExpectedPicture(t *testing.T) {
+	sc := standardScene(t, 260e-9, 9e4, 1)
+	sc.withoutNoise, sc.powerNoise = true, 0
+	r := mustFit(t, sc, sc.draw(t), Options{})
+	if r.Model != ModelBimodal || r.Form != "bose+tf" {
+		t.Fatalf("model %s, form %s", r.Model, r.Form)
+	}
+	n := r.Numbers
+	mu, _ := model.Mu(sc.condensate, sc.lab.Species.Mass, sc.lab.Species.ScatteringLength, sc.lab.Trap)
+	for _, c := range []struct {
+		name           string
+		got, want, tol float64
+	}{
+		{"N", n.Atoms.V, sc.thermal + sc.condensate, 1e-3},
+		{"N0", n.Condensate.V, sc.condensate, 2e-3},
+		{"T", n.T.V, sc.T, 2e-3},
+		{"mu", n.Mu.V, mu, 2e-3},
+		{"fraction", n.Fraction.V, sc.condensate / (sc.thermal + sc.condensate), 2e-3},
+		{"N_th over saturated", r.Checks.ThermalOverSaturated, 1, 6e-3},
+		{"mu over mu of N0", r.Checks.MuOverMuAtoms, 1, 3e-3},
+	} {
+		within(t, c.name, c.got/c.want, 1, c.tol)
+	}
+	within(t, "x", r.X, sc.x, 5e-3)
+	within(t, "y", r.Y, sc.y, 5e-3)
+	if len(r.Flags) != 1 || r.Flags[0] != FlagNoise { // chi2 is 0
+		t.Errorf("flags %v", r.Flags)
+	}
+}
+
+// TestPulls: values scatter about the truth as their errors say, over shots of four kinds.
+// 12 shots give the rms of a pull to 20 %.
+func TestPulls(t *testing.T) {
+	for _, c := range []struct {
+		name  string
+		T, n0 float64
+		alpha float64
+		model string
+	}{
+		{"far above Tc", 420e-9, 0, 0.6, ModelThermal},
+		{"fraction near one half", 240e-9, 1.1e5, 0, ModelBimodal},
+		{"nearly pure", 90e-9, 1e5, 0, ModelBimodal},
+	} {
+		t.Run(c.name, func(t *testing.T) {
+			const shots = 12
+			sums := map[string]float64{}
+			for i := range uint64(shots) {
+				sc := standardScene(t, c.T, c.n0, 10+i)
+				sc.alpha = c.alpha
+				if c.alpha > 0 {
+					sc.thermal = model.ThermalNumber(c.T, c.alpha, sc.lab.Trap)
+				}
+				r := mustFit(t, sc, sc.draw(t), Options{})
+				if r.Model != c.model {
+					t.Errorf("shot %d: model %s, want %s", i, r.Model, c.model)
+					continue
+				}
+				n := r.Numbers
+				pull := func(name string, v, err, truth float64) {
+					z := (v - truth) / err
+					sums[name] += z * z / shots
+				}
+				pull("N", n.Atoms.V, n.Atoms.Err, sc.thermal+sc.condensate)
+				pull("T", n.T.V, n.T.Err, sc.T)
+				if c.n0 > 0 {
+					mu, _ := model.Mu(c.n0, sc.lab.Species.Mass, sc.lab.Species.ScatteringLength, sc.lab.Trap)
+					pull("N0", n.Condensate.V, n.Condensate.Err, c.n0)
+					pull("mu", n.Mu.V, n.Mu.Err, mu)
+				}
+			}
+			for _, name := range []string{"N", "T", "N0", "mu"} {
+				if v, ok := sums[name]; ok {
+					t.Logf("%s: rms pull %.2f", name, math.Sqrt(v))
+					within(t, "rms pull of "+name, math.Sqrt(v), 1, 0.55)
+				}
+			}
+		})
+	}
+}
+
+// TestFindsTheCloud: without help, from corner to corner, beside hot pixels and a second cloud.
+func TestFindsTheCloud(t *testing.T) {
+	for i, c := range []scene{
+		{x: 40, y: 90, condensate: 5e4, T: 200e-9},
+		{x: 118, y: 48, condensate: 2e5, T: 120e-9, hot: 2},
+		{x: 90, y: 60, condensate: 3e4, T: 240e-9, second: true},
+		{x: 80, y: 70, condensate: 4e3, T: 250e-9, hot: 2},
+	} {
+		sc := standardScene(t, c.T, c.condensate, uint64(100+i))
+		sc.x, sc.y, sc.hot, sc.second = c.x, c.y, c.hot, c.second
+		r := mustFit(t, sc, sc.draw(t), Options{})
+		if r.Model != ModelBimodal {
+			t.Errorf("scene %d: %s", i, r.Model)
+			continue
+		}
+		tol := 0.05
+		if c.second {
+			tol = 0.15
+		}
+		within(t, fmt.Sprintf("scene %d: x", i), r.X, c.x, 1.5)
+		within(t, fmt.Sprintf("scene %d: y", i), r.Y, c.y, 1.5)
+		within(t, fmt.Sprintf("scene %d: N0", i), r.Numbers.Condensate.V/c.condensate, 1, 4*tol)
+		within(t, fmt.Sprintf("scene %d: N", i), r.Numbers.Atoms.V/(sc.thermal+sc.condensate), 1, tol)
+	}
+}
+
+// TestEmptyPicture has no cloud and says how many atoms could hide.
+func TestEmptyPicture(t *testing.T) {
+	sc := standardScene(t, 200e-9, 0, 5)
+	sc.thermal = 0
+	r := mustFit(t, sc, sc.draw(t), Options{})
+	if r.Model != ModelNone || !slices.Contains(r.Flags, FlagNoCloud) {
+		t.Errorf("model %s, flags %v", r.Model, r.Flags)
+	}
+	if !(r.Numbers.Atoms.High > 0 && r.Numbers.Atoms.High < 3e4) {
+		t.Errorf("upper limit %g", r.Numbers.Atoms.High)
+	}
+}
+
+// TestLimits: a thermal cloud has an upper limit of N0, a pure condensate one of T above the
+// truth.
+func TestLimits(t *testing.T) {
+	sc := standardScene(t, 300e-9, 0, 8)
+	sc.alpha = 0.3
+	sc.thermal = model.ThermalNumber(sc.T, sc.alpha, sc.lab.Trap)
+	r := mustFit(t, sc, sc.draw(t), Options{})
+	if f := r.Numbers.Fraction.High; r.Model != ModelThermal || !(f > 0 && f < 0.02) {
+		t.Errorf("%s with fraction below %g", r.Model, f)
+	}
+	sc = standardScene(t, 25e-9, 1e5, 9)
+	r = mustFit(t, sc, sc.draw(t), Options{})
+	if r.Model != ModelCondensate || !(r.Numbers.T.High > sc.T && r.Numbers.T.High < 90e-9) {
+		t.Errorf("%s with T below %g", r.Model, r.Numbers.T.High)
+	}
+}
+
+// TestAttractive fits the gaussian of variational width and flags it.
+func TestAttractive(t *testing.T) {
+	li, err := model.LookupSpecies("7Li")
+	if err != nil {
+		t.Fatal(err)
+	}
+	lab := &Lab{Species: li, Trap: model.TrapHz(150, 150, 130), Optics: Optics{Pixel: 2e-6, Blur: 2e-6, Alpha: 1, Saturation: math.Inf(1)}, View: model.View(0, 0, 0)}
+	sc := &scene{lab: lab, flight: 4e-3, T: 60e-9, condensate: 1000, x: 60, y: 55, w: 120, h: 112, electrons: 2000, read: 5, seed: 3}
+	sc.thermal = sc.saturated()
+	r := mustFit(t, sc, sc.draw(t), Options{})
+	if r.Model == ModelThermal || r.Model == ModelNone || !slices.Contains(r.Flags, FlagAttractive) {
+		t.Fatalf("model %s, flags %v", r.Model, r.Flags)
+	}
+	within(t, "N0", r.Numbers.Condensate.V, sc.condensate, 4*r.Numbers.Condensate.Err)
+	if !math.IsNaN(r.Numbers.Mu.V) {
+		t.Errorf("mu from a radius that does not exist: %g", r.Numbers.Mu.V)
+	}
+	within(t, "part of the collapse number", r.Numbers.Collapse.V, sc.condensate/model.CriticalNumber(lab.Trap, li.Mass, li.ScatteringLength), 0.25)
+}
+
+// TestBadInput gets one sentence.
+func TestBadInput(t *testing.T) {
+	sc := standardScene(t, 200e-9, 5e4, 5)
+	good := sc.draw(t)
+	for _, c := range []struct {
+		name string
+		bend func(p *Picture, l *Lab)
+		want string
+	}{
+		{"small", func(p *Picture, _ *Lab) { p.Width, p.Height = 4, 4 }, "the picture is 4 x 4 pixels: a fit needs at least 12 on each side"},
+		{"short plane", func(p *Picture, _ *Lab) { p.Light = p.Light[1:] }, "the picture says 152 x 136 pixels but its planes have another size"},
+		{"not a number", func(p *Picture, _ *Lab) { p.Atoms[155] = math.NaN() }, "pixel (3, 1) is not a finite number but counts as good"},
+		{"masked", func(p *Picture, _ *Lab) { clear(p.Good) }, "only 0 of 20672 pixels are good"},
+		{"dark", func(p *Picture, _ *Lab) { clear(p.Light) }, "the reference holds no light"},
+		{"no scattering length", func(_ *Picture, l *Lab) { l.Species.ScatteringLength = math.NaN() }, "the scattering length of 23Na is not given"},
+	} {
+		p := *good
+		p.Atoms, p.Light, p.Good = slices.Clone(p.Atoms), slices.Clone(p.Light), slices.Clone(p.Good)
+		lab := *sc.lab
+		c.bend(&p, &lab)
+		_, err := Cloud(context.Background(), &p, &lab, sc.flight, Options{}, NewWorkspace())
+		if err == nil || err.Error() != c.want {
+			t.Errorf("%s: %v", c.name, err)
+		}
+	}
+	ctx, stop := context.WithCancel(context.Background())
+	stop()
+	if _, err := Cloud(ctx, good, sc.lab, sc.flight, Options{}, NewWorkspace()); !errors.Is(err, context.Canceled) {
+		t.Errorf("cancelled: %v", err)
+	}
+}
+
+// TestSameBits: a workspace that served other pictures changes nothing.
+func TestSameBits(t *testing.T) {
+	ws := NewWorkspace()
+	var first *Result
+	for i, seed := range []uint64{5, 6, 5} {
+		sc := standardScene(t, 200e-9, 5e4, seed)
+		if i == 1 {
+			sc.w, sc.h, sc.x, sc.y = 180, 150, 90, 75
+		}
+		r, err := Cloud(context.Background(), sc.draw(t), sc.lab, sc.flight, Options{}, ws)
+		if err != nil {
+			t.Fatal(err)
+		}
+		if i == 0 {
+			first = r
+		} else if i == 2 && fmt.Sprint(*r) != fmt.Sprint(*first) {
+			t.Errorf("the same picture gave\n%v\nand then\n%v", *first, *r)
+		}
+	}
+}
