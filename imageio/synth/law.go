@@ -43,14 +43,19 @@ func (l Law) Transmission(depth, electrons float64) float64 {
 	}
 	a := l.Alpha * (1 + 4*l.Detuning*l.Detuning)
 	s := electrons / l.Saturation
-	// With u = ln(It/I0) the law is f(u) = a u + s e^u − s + depth = 0; f rises and is
-	// convex, so Newton from u = 0, right of the root, comes down to it without overshoot.
+	// With u = ln(It/I0) the law is f(u) = a u + s e^u − s + depth = 0. f rises and is convex,
+	// so that Newton's step cannot run away; where it is short, Halley's factor makes the
+	// convergence cubic, and a step below 1e-6 leaves an error below rounding.
 	u := 0.0
 	for range 64 {
 		e := s * math.Expm1(u)
-		step := (a*u + e + depth) / (a + s + e)
+		slope := a + s + e
+		step := (a*u + e + depth) / slope
+		if h := step * (s + e) / (2 * slope); h < 0.5 {
+			step /= 1 - h
+		}
 		u -= step
-		if math.Abs(step) <= 1e-15*(1+math.Abs(u)) {
+		if math.Abs(step) <= 1e-6 {
 			break
 		}
 	}
