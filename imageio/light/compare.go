@@ -18,11 +18,11 @@ func (n *Night) compare(a, l *litFrame) (scale float64, notes []string, err erro
 		return 0, nil, refuse(Unlit, "%.2g electrons a pixel against %.2g", lit, bright)
 	}
 	scale = p.borderRatio()
-	if risen, fallen, blocks := p.contrast(scale); blocks >= 3 && risen > 5*fallen {
+	if risen, fallen, blocks := p.contrast(scale); blocks >= 2 && risen > 5*fallen {
 		return 0, nil, refuse(Exchanged, "%d blocks of 8x8 pixels brighter with atoms than without", blocks)
 	}
 	switch {
-	case scale > 1.1:
+	case scale > 1.25:
 		notes = append(notes, Brighter)
 	case scale < 0.75:
 		notes = append(notes, Power)
@@ -101,30 +101,41 @@ func (p *pair) borderRatio() float64 {
 	return atoms / light
 }
 
-// contrast sums the logarithm of the ratio of the frames over the blocks where it lies
-// beyond noise and fringes above (risen, and how many blocks) and below (fallen) that of
-// the border. Atoms make a ratio fall; where it only rises the frames are exchanged.
+// contrast sums the relative difference of the frames over the blocks where the atoms
+// frame lies beyond noise and fringes above (risen, and how many blocks) and below
+// (fallen) the scaled light frame. Atoms make it fall; where it only rises the frames
+// are exchanged.
 func (p *pair) contrast(scale float64) (risen, fallen float64, blocks int) {
-	floor := max(3*p.noise, 0.3)
-	d := make([]float64, len(p.atoms))
-	var edge []float64
-	for i := range d {
-		d[i] = math.Log(max(p.atoms[i], floor) / (scale * max(p.light[i], floor)))
-		if p.border[i] {
-			edge = append(edge, math.Abs(d[i]))
-		}
-	}
-	fringes := madToSigma * median(edge)
-	for i, v := range d {
-		a, l := max(p.atoms[i], floor), max(p.light[i], floor)
-		sigma := math.Sqrt(1/(a*p.pixels) + 1/(l*p.pixels) + p.noise*p.noise*(1/(a*a)+1/(l*l)))
-		switch limit := max(6*sigma, 5*fringes, 0.1); {
-		case v > limit:
-			risen += v
+	limit := max(4*p.fringes(scale), 0.1)
+	for i := range p.atoms {
+		switch d, sigma := p.difference(i, scale); {
+		case d > max(limit, 6*sigma):
+			risen += d
 			blocks++
-		case v < -limit:
-			fallen -= v
+		case d < -max(limit, 6*sigma):
+			fallen -= d
 		}
 	}
 	return risen, fallen, blocks
+}
+
+// difference is that between the frames in block i over the larger of the two, and its
+// noise.
+func (p *pair) difference(i int, scale float64) (d, sigma float64) {
+	a, l := p.atoms[i], scale*p.light[i]
+	sigma = math.Sqrt((max(a, 0)+scale*max(l, 0))/p.pixels + (1+scale*scale)*p.noise*p.noise)
+	level := max(a, l, sigma)
+	return (a - l) / level, sigma / level
+}
+
+// fringes is the spread of the difference over those blocks of the border that are bright
+// enough to show more than noise.
+func (p *pair) fringes(scale float64) float64 {
+	var edge []float64
+	for i, b := range p.border {
+		if d, sigma := p.difference(i, scale); b && sigma < 0.05 {
+			edge = append(edge, math.Abs(d))
+		}
+	}
+	return madToSigma * median(edge)
 }

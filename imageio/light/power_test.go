@@ -4,7 +4,7 @@ import "fallshadow/imageio"
 
 // blockPower returns the sum over the 8x8 blocks inside (or outside) the mask of the
 // squared mean of atoms less light, and what white noise of the stated variances gives.
-func blockPower(e *imageio.Exposure, side int, mask []bool, inside bool) (got, white float64) {
+func blockPower(e *imageio.Exposure, mask []bool, inside bool) (got, white float64) {
 	for by := 0; by+8 <= e.Height; by += 8 {
 		for bx := 0; bx+8 <= e.Width; bx += 8 {
 			sum, variance, all := 0.0, 0.0, true

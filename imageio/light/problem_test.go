@@ -113,25 +113,38 @@ func TestExplain(t *testing.T) {
 	}
 }
 
-// TestSoundShots checks that nothing is said of sound shots: faint and bright, with a
-// dense, a wide and no cloud, with a steady and an unsteady probe.
+// TestSoundShots checks that nothing is said of sound shots, faint and bright, with a
+// dense, a wide and no cloud, with a narrow and a broad unsteady probe; and that each with
+// a cloud is known when its frames are exchanged.
 func TestSoundShots(t *testing.T) {
-	wide := func(x, y float64) float64 { return 3 * math.Exp(-(x-48)*(x-48)/400-(y-48)*(y-48)/400) }
-	tight := func(x, y float64) float64 { return 6 * math.Exp(-(x-20)*(x-20)/8-(y-70)*(y-70)/30) }
-	for name, depth := range map[string]func(x, y float64) float64{"none": nil, "wide": wide, "tight": tight, "steep": steep} {
+	for _, cloud := range []struct {
+		name  string
+		depth func(x, y float64) float64
+	}{
+		{"none", nil},
+		{"wide", func(x, y float64) float64 { return 3 * math.Exp(-(x-48)*(x-48)/400-(y-48)*(y-48)/400) }},
+		{"tight", func(x, y float64) float64 { return 6 * math.Exp(-(x-20)*(x-20)/16-(y-70)*(y-70)/60) }},
+		{"steep", steep},
+	} {
 		for _, electrons := range []float64{20, 300, 20000} {
 			for _, waist := range []float64{0, 70} {
 				s := newScene(96, 96, 33).fringed(6, 0.06)
-				s.depth, s.electrons, s.waist, s.jitter, s.power = depth, electrons, waist, 0.5, 0.04
+				s.depth, s.electrons, s.waist, s.jitter, s.power = cloud.depth, electrons, waist, 0.5, 0.04
 				raws := s.night(4)
 				n := prepare(t, s.camera(), raws)
 				for i, raw := range raws {
 					e, err := n.Expose(raw)
 					if err != nil {
-						t.Fatalf("cloud %s, %g electrons, waist %g, shot %d: %v", name, electrons, waist, i, err)
+						t.Fatalf("cloud %s, %g electrons, waist %g, shot %d: %v", cloud.name, electrons, waist, i, err)
 					}
 					if len(e.Notes) > 0 {
-						t.Errorf("cloud %s, %g electrons, waist %g, shot %d: %v, scale %.3f", name, electrons, waist, i, e.Notes, e.Noise.LightShot)
+						t.Errorf("cloud %s, %g electrons, waist %g, shot %d: %v, scale %.3f", cloud.name, electrons, waist, i, e.Notes, e.Noise.LightShot)
+					}
+					swapped := *raw
+					swapped.Frames[imageio.Atoms], swapped.Frames[imageio.Light] = raw.Frames[imageio.Light], raw.Frames[imageio.Atoms]
+					var problem *Error
+					if _, err := n.Expose(&swapped); cloud.depth != nil && !(errors.As(err, &problem) && problem.Word == Exchanged) {
+						t.Errorf("cloud %s, %g electrons, waist %g, shot %d exchanged: %v", cloud.name, electrons, waist, i, err)
 					}
 				}
 			}
