@@ -153,3 +153,16 @@ func velocity(alpha float64, rng *rand.Rand) (v [3]float64) {
 		return v
 	}
 }
+
+// Package model has the same cloud by a quadrature in space.
+func TestPushedOutAgainstModel(t *testing.T) {
+	truth, m, column := pushedShot(t)
+	cloud, err := model.NewSemiIdealCloud(truth.T, truth.Mu, m.species.Mass, m.trap, m.view, truth.Flight, m.release)
+	if err != nil {
+		t.Fatal(err)
+	}
+	peak := column(0, 0)
+	for _, at := range [][2]float64{{0, 0}, {2e-5, 0}, {0, 3e-5}, {5e-5, -4e-5}, {1e-4, 1e-4}, {2e-4, 0}} {
+		near(t, "column", column(at[0], at[1])/peak, cloud.Column(at[0], at[1])/peak, 1e-4)
+	}
+}
