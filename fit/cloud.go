@@ -60,6 +60,9 @@ func (s *session) finish(c *candidates, chosen *state, r *Result) error {
 	}
 	r.clear()
 	s.residuals(full, r)
+	if s.opt.Maps {
+		r.Maps = s.maps(full)
+	}
 	if r.Model == ModelNone {
 		return s.limitNone(full, r)
 	}

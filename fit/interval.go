@@ -54,12 +54,12 @@ func (s *session) limits(c *candidates, full *state, r *Result) error {
 	n := &r.Numbers
 	switch r.Model {
 	case ModelBimodal:
-		if err := s.interval(c.both, atT, &n.T, 1); err != nil {
+		if err := s.interval(full, atT, &n.T, 1); err != nil {
 			return err
 		}
-		return s.interval(c.both, atCondensate, &n.Condensate, s.perSum())
+		return s.interval(full, atCondensate, &n.Condensate, s.perSum())
 	case ModelThermal:
-		if err := s.interval(c.thermal, atT, &n.T, 1); err != nil {
+		if err := s.interval(full, atT, &n.T, 1); err != nil {
 			return err
 		}
 		return s.limitCondensate(c.thermal, n)
@@ -74,70 +74,80 @@ func (s *session) perSum() float64 {
 	return s.tmpl.pixel * s.tmpl.pixel / s.lab.Species.Sigma0()
 }
 
-// interval replaces a symmetric error by where χ² has risen by 1 on either side.
-func (s *session) interval(st *state, at int, v *numbers.Value, unit float64) error {
-	if !(v.Err > poor*math.Abs(v.V)) || st.cov == nil {
+// interval replaces a symmetric error by where χ² has risen by 1 on either side; where one
+// side has no end the other is moved to the one-sided 95 % limit. It works on the full picture:
+// a poorly known wing hangs on small misfits of a coarse one.
+func (s *session) interval(full *state, at int, v *numbers.Value, unit float64) error {
+	if !(v.Err > poor*math.Abs(v.V)) || full.cov == nil {
 		return nil
 	}
-	m, j := s.tmpl.measured(&st.p, st.kind)
-	best := *measuredAt(&m, at)
-	sigma := math.Sqrt(st.spread(j[at : at+1])[0][0])
-	low, err := s.side(st, at, best, sigma, -1)
+	rest, err := s.run(0, full.kind, full.p, 1e-3)
+	if err != nil || !rest.used() {
+		return err
+	}
+	m, j := s.tmpl.measured(&rest.p, rest.kind)
+	p := profile{s: s, rest: rest, at: at, best: *measuredAt(&m, at), sigma: math.Sqrt(rest.spread(j[at : at+1])[0][0])}
+	low, err := p.side(-1, 1)
 	if err != nil {
 		return err
 	}
-	high, err := s.side(st, at, best, sigma, 1)
+	high, err := p.side(1, 1)
 	if err != nil {
 		return err
 	}
-	v.Low, v.High = math.Max(0, v.V+(low-best)*unit), v.V+(high-best)*unit
+	if math.IsNaN(high) {
+		if low, err = p.side(-1, math.Sqrt(oneSided)); err != nil {
+			return err
+		}
+	}
+	v.Low, v.High = math.Max(0, v.V+(low-p.best)*unit), v.V+(high-p.best)*unit
 	return nil
 }
 
-// side finds on one side the value at which the profile of χ² has risen by one, by secant
-// steps on its signed root; it returns 0 where even nothing costs less.
-func (s *session) side(st *state, at int, best, sigma, sign float64) (float64, error) {
-	rest, err := s.run(s.work, st.kind, st.p, 1e-3)
-	if err != nil || !rest.used() {
-		return best, err
-	}
-	x0, r0 := best, 0.0
-	x1 := best + sign*sigma
-	for range 8 {
-		if x1 <= 0.02*best {
-			x1 = 0.02 * best
+// profile is χ² at its least as a function of one measured number.
+type profile struct {
+	s           *session
+	rest        *state
+	at          int
+	best, sigma float64
+}
+
+// side finds on one side the value at which the root of the rise of χ² is r, by secant steps;
+// it returns 0 where even next to nothing costs less, NaN where eight times the best does.
+func (p *profile) side(sign, r float64) (float64, error) {
+	x0, r0 := p.best, 0.0
+	x1 := p.best + sign*p.sigma*r
+	for range 10 {
+		x1 = math.Min(math.Max(x1, 0.02*p.best), 8*p.best)
+		r1, err := p.rise(x1)
+		if err != nil || math.Abs(r1-r) < 0.02 {
+			return x1, err
 		}
-		chi, err := s.profile(rest, at, x1, 1e-3*sigma)
-		if err != nil {
-			return best, err
-		}
-		r1 := math.Sqrt(math.Max(0, chi-rest.chi2))
-		if math.Abs(r1-1) < 0.02 {
-			return x1, nil
-		}
-		if x1 <= 0.02*best && r1 < 1 {
+		switch {
+		case x1 <= 0.02*p.best && r1 < r:
 			return 0, nil
+		case x1 >= 8*p.best && r1 < r:
+			return math.NaN(), nil
 		}
 		slope := (r1 - r0) / (x1 - x0)
-		if sign*slope <= 0 || r1 == 0 {
-			x0, r0, x1 = x1, r1, x1+sign*sigma
-			continue
+		step := 2 * sign * p.sigma
+		if sign*slope > 0 {
+			step = clamp((r-r1)/slope, math.Abs(step))
 		}
-		step := clamp((1-r1)/slope, 2*sigma)
 		x0, r0, x1 = x1, r1, x1+step
 	}
 	return x1, nil
 }
 
-// profile is χ² at its least with one measured number held at x.
-func (s *session) profile(st *state, at int, x, eps float64) (float64, error) {
-	p := s.problem(s.work, &st.p, st.kind)
-	p.pull = &pull{at, x, eps}
-	got, err := s.ws.minimize(s.ctx, p, st.kind, st.p, 1e-3)
+// rise is the root of the rise of χ² where the number is held at x.
+func (p *profile) rise(x float64) (float64, error) {
+	q := p.s.problem(0, &p.rest.p, p.rest.kind)
+	q.pull = &pull{p.at, x, 1e-3 * p.sigma}
+	got, err := p.s.ws.minimize(p.s.ctx, q, p.rest.kind, p.rest.p, 1e-3)
 	if err != nil {
 		return 0, err
 	}
-	return got.chi2, nil
+	return math.Sqrt(math.Max(0, got.chi2-p.rest.chi2)), nil
 }
 
 // oneSided is the rise of χ² at a one-sided 95 % limit.

@@ -6,6 +6,7 @@ type Options struct {
 	Gaussian  bool // thermal part a plain gaussian instead of the Bose-enhanced form
 	Free      bool // report the fit in which every width is its own parameter
 	FreeAngle bool // turn both parts to the best angle
+	Maps      bool // draw Result.Maps
 
 	// CondensateChi2 and ThermalChi2 are the decrease of χ² that a second part must bring
 	// to be believed; CloudChi2 the one that any cloud must bring. 0 means the defaults.

@@ -22,6 +22,7 @@ type Result struct {
 	SumErr     float64
 	Iterations int
 
+	Maps   *Maps // nil unless asked for
 	Checks Checks
 	Flags  []string // names from the flag table
 }

@@ -1,0 +1,52 @@
+package fit
+
+import "math"
+
+// Maps are the pictures of a fit for the eye, row by row in the pixels of the Picture; NaN
+// where a pixel does not count.
+type Maps struct {
+	Width, Height int
+	Density       []float32 // σ0 n by the inverted law
+	Thermal       []float32 // of the model, without the camera's blur
+	Total         []float32 // both parts
+	Residual      []float32 // counts minus model in standard deviations
+}
+
+// maps draws the pictures of the fitted state.
+func (s *session) maps(st *state) *Maps {
+	l := s.levels[0]
+	n := l.w * l.h
+	m := &Maps{
+		Width: l.w, Height: l.h,
+		Density: make([]float32, n), Thermal: make([]float32, n), Total: make([]float32, n), Residual: make([]float32, n),
+	}
+	p := s.problem(0, &st.p, st.kind)
+	p.render(&st.p, s.ws.kappa)
+	p.residuals(s.ws.kappa, s.ws.resid)
+	geo := p.geometry(&st.p, p.blur2)
+	total := s.densityOf(st)
+	alone := *st
+	alone.p[pCondensate] = 0
+	thermal := s.densityOf(&alone)
+	for o := range n {
+		x, y := float64(o%l.w), float64(o/l.w)
+		m.Thermal[o], m.Total[o] = float32(thermal(x, y)), float32(total(x, y))
+		m.Residual[o] = float32(s.ws.resid[o])
+		m.Density[o] = float32(s.seen(&geo, o, x, y))
+	}
+	return m
+}
+
+// seen is the density that one pixel shows.
+func (s *session) seen(geo *geometry, o int, x, y float64) float64 {
+	l := s.levels[0]
+	switch {
+	case l.count[o] == 0:
+		return math.NaN()
+	case l.linear:
+		return l.atoms[o] - geo.plane(x, y)
+	}
+	k := geo.scale(x, y) * l.light[o]
+	floor := math.Max(1, 0.5*math.Sqrt(l.readVariance(o)))
+	return s.law.od(math.Max(l.atoms[o], floor)/k, k*l.saturate)
+}
