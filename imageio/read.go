@@ -102,9 +102,9 @@ type pick struct {
 	role  Role
 }
 
-// choose finds the planes that play the roles: those of the first array where it has the
-// right number, else those of all arrays in order, so that pages of a file and extensions
-// are as good as a cube.
+// choose finds the planes that play the roles: those of the first array where it is a
+// cube of the right number, else those of all arrays in order, so that pages of a file and
+// extensions are as good as a cube.
 func choose(c *contents, p *plan, file ShotFile, roles []Role) ([]pick, error) {
 	if len(c.stacks) == 0 {
 		return nil, fmt.Errorf("%w: no image inside", fault.Unsupported)
@@ -113,7 +113,7 @@ func choose(c *contents, p *plan, file ShotFile, roles []Role) ([]pick, error) {
 		return chooseByName(c, p)
 	}
 	stacks := c.stacks
-	if p.Kind != "extensions" && stacks[0].planes == len(roles) {
+	if p.Kind != "extensions" && len(roles) > 1 && stacks[0].planes == len(roles) {
 		stacks = stacks[:1]
 	}
 	total := 0

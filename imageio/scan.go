@@ -82,12 +82,12 @@ func (s *search) visit(file string, d fs.DirEntry, err error) error {
 	case d.IsDir():
 		return nil
 	}
-	s.file(file)
+	s.file(file, d.Type())
 	return nil
 }
 
 // file finds the place of one file.
-func (s *search) file(file string) {
+func (s *search) file(file string, mode fs.FileMode) {
 	lower := strings.ToLower(file)
 	switch {
 	case strings.HasSuffix(lower, ".toml") || file == path.Clean(s.plan.Sidecar):
@@ -96,7 +96,7 @@ func (s *search) file(file string) {
 		s.stray(file, "unfinished, by its ending")
 		return
 	}
-	if reason := s.unfit(file); reason != "" {
+	if reason := s.unfit(file, mode); reason != "" {
 		s.stray(file, reason)
 		return
 	}
@@ -116,18 +116,23 @@ func (s *search) file(file string) {
 	shot.Files = append(shot.Files, ShotFile{file, role})
 }
 
-// unfit says why a file cannot hold frames, or "" where it may.
-func (s *search) unfit(file string) string {
+// unfit says why a file cannot hold frames, or "" where it may. Only links cost a look
+// at the file system, and only unknown endings one into the file.
+func (s *search) unfit(file string, mode fs.FileMode) string {
 	full := filepath.Join(s.dir, filepath.FromSlash(file))
-	info, err := os.Stat(full)
-	switch {
-	case err != nil:
-		return "cannot be read: " + cause(err).Error()
-	case info.IsDir():
-		return "a link to a folder, which is not followed"
-	case !info.Mode().IsRegular():
+	if mode&fs.ModeSymlink != 0 {
+		info, err := os.Stat(full)
+		if err != nil {
+			return "cannot be read: " + cause(err).Error()
+		}
+		if mode = info.Mode().Type(); mode.IsDir() {
+			return "a link to a folder, which is not followed"
+		}
+	}
+	if !mode.IsRegular() {
 		return "not a regular file"
-	case ending(file) != "":
+	}
+	if ending(file) != "" {
 		return ""
 	}
 	start, err := firstBytes(full)

@@ -32,26 +32,31 @@ func readSidecar(dir string, layout Layout) (*sidecar, error) {
 	if layout.Sidecar == "" {
 		return nil, nil
 	}
-	side, err := parseSidecar(filepath.Join(dir, filepath.FromSlash(layout.Sidecar)), layout.SidecarKey)
+	table, err := sidecarBytes(filepath.Join(dir, filepath.FromSlash(layout.Sidecar)))
+	if err != nil {
+		return nil, fmt.Errorf("side table %s: %w", layout.Sidecar, err)
+	}
+	side, err := parseSidecar(table, layout.SidecarKey)
 	if err != nil {
 		return nil, fmt.Errorf("side table %s: %w", layout.Sidecar, err)
 	}
 	return side, nil
 }
 
-func parseSidecar(file, key string) (*sidecar, error) {
+func sidecarBytes(file string) ([]byte, error) {
 	f, err := os.Open(file)
 	if err != nil {
 		return nil, cause(err)
 	}
 	defer f.Close()
 	all, err := io.ReadAll(io.LimitReader(f, maxSidecar+1))
-	if err != nil {
-		return nil, cause(err)
+	if err == nil && len(all) > maxSidecar {
+		err = fmt.Errorf("%w: larger than %d bytes", fault.Unsupported, maxSidecar)
 	}
-	if len(all) > maxSidecar {
-		return nil, fmt.Errorf("%w: larger than %d bytes", fault.Unsupported, maxSidecar)
-	}
+	return all, err
+}
+
+func parseSidecar(all []byte, key string) (*sidecar, error) {
 	all = bytes.TrimPrefix(all, []byte("\ufeff"))
 	r := csv.NewReader(bytes.NewReader(all))
 	line, _, _ := bytes.Cut(all, []byte("\n"))

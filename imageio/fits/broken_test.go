@@ -81,7 +81,7 @@ var broken = []struct {
 	{"text", []byte("shot,tof\n1,28\n"), fault.Broken, `broken: not FITS: starts with "shot,tof\n" instead of SIMPLE`},
 	{"header cut", picture()[:300], fault.Truncated, "truncated: the header from byte 0 on has no END card (header-data unit 0)"},
 	{"END missing", bytes.Replace(picture(), []byte("END"), []byte("ENT"), 1)[:2880], fault.Truncated, "truncated: the header from byte 0 on has no END card (header-data unit 0)"},
-	{"header without end", append(picture()[:400], bytes.Repeat([]byte(" "), 5<<20)...), fault.Broken, "broken: no END card within 4194304 bytes of header (header-data unit 0)"},
+	{"header without end", append(picture()[:400], bytes.Repeat([]byte(" "), 5<<20)...), fault.Broken, "broken: no END card within 2097152 bytes of header (header-data unit 0)"},
 	{"data missing", picture()[:2880], fault.Truncated, "truncated: the header declares 24 bytes of data, the file has 0 (header-data unit 0)"},
 	{"data cut", picture()[:2880+23], fault.Truncated, "truncated: the header declares 24 bytes of data, the file has 23 (header-data unit 0)"},
 	{"SIMPLE is F", picture("SIMPLE  = F"), fault.Broken, `broken: SIMPLE is "F", a file that follows the standard has T (header-data unit 0)`},

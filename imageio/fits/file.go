@@ -13,8 +13,8 @@ import (
 	"fallshadow/imageio/fault"
 )
 
-// maxHeader bounds the headers of one file together: 52,428 cards.
-const maxHeader = 4 << 20
+// maxHeader bounds the headers of one file together: 26,214 cards.
+const maxHeader = 2 << 20
 
 // File is an open FITS file: its header-data units in order. Trailing is the number of
 // bytes behind the last of them, which the standard lets a reader ignore; it is 0 where

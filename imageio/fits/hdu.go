@@ -25,8 +25,12 @@ type HDU struct {
 	hasBlank       bool
 }
 
-// add appends a card. Of a keyword that is repeated the first one counts.
+// add appends a card that is not blank. Of a keyword that is repeated the first one
+// counts.
 func (h *HDU) add(c Card) {
+	if c == (Card{}) {
+		return
+	}
 	if n := len(h.Cards); n > 0 && continued(&h.Cards[n-1], c) {
 		return
 	}

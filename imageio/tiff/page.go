@@ -181,6 +181,7 @@ func (d *directory) present(width, height int64) error {
 		}
 		total += n[i]
 	}
+	total = min(total, d.size) // strips may overlap
 	pixels := width * height * d.value(tagBits, 1) / 8
 	if d.value(tagCompression, 1) == 1 && total < pixels {
 		return fmt.Errorf("%w: strips of %d bytes for %d bytes of pixels", fault.Broken, total, pixels)

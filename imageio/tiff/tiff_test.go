@@ -150,6 +150,7 @@ func broken(t testing.TB) []struct {
 		{"60000 x 60000", bigger(t, 60000, 60000), fault.Unsupported, "page 1: not supported: 60000 x 60000 x 1 pixels, the limit is 268435456"},
 		{"more pixels than bytes", bigger(t, 16000, 16000), fault.Broken, "page 1: broken: strips of 720 bytes for 512000000 bytes of pixels"},
 		{"more pixels than deflate can pack", packed(t), fault.Truncated, "page 1: truncated: 720 bytes cannot hold the 512000000 bytes of pixels that they declare"},
+		{"strips that overlap", overlapping(t), fault.Broken, "page 1: broken: strips of 912 bytes for 1440 bytes of pixels"},
 		{"too few strips", with(t, 278, 1), fault.Broken, "page 1: broken: 1 strips or tiles declared, 18 needed"},
 		{"not LZW", with(t, 259, 5), fault.Broken, "broken: decoding the pixels: "},
 	}
@@ -159,6 +160,29 @@ func bigger(t testing.TB, width, height uint32) []byte {
 	b := with(t, 256, width)
 	for _, tag := range []uint16{257, 278} {
 		set(b, tag, height)
+	}
+	return b
+}
+
+// overlapping has two strips, both of which are all pixels of the file, for a picture of
+// twice the height.
+func overlapping(t testing.TB) []byte {
+	b := with(t, 257, 36)
+	le := binary.LittleEndian
+	end := uint32(len(b))
+	for _, v := range []uint32{176, 176, 720, 720} {
+		b = le.AppendUint32(b, v)
+	}
+	at := le.Uint32(b[4:])
+	for i := range uint32(le.Uint16(b[at:])) {
+		e := b[at+2+12*i:]
+		switch le.Uint16(e) {
+		case 273, 279:
+			le.PutUint16(e[2:], 4)
+			le.PutUint32(e[4:], 2)
+			le.PutUint32(e[8:], end)
+			end += 8
+		}
 	}
 	return b
 }
