@@ -48,12 +48,16 @@ func (c *candidates) dropIdle() {
 // down to the level of choices.
 func (s *session) explore() (*candidates, guess, error) {
 	top := len(s.levels) - 1
-	p := s.problem(top, &params{}, kind{})
-	p.level.freezeData()
-	g := p.look()
-	c := new(candidates)
-	if err := s.first(top, p, g, c); err != nil {
-		return nil, g, err
+	c, g := new(candidates), guess{}
+	if near := s.opt.Near; near != nil && near.found != nil {
+		*c, g, top = *near.found, near.guess, s.work
+	} else {
+		p := s.problem(top, &params{}, kind{})
+		p.level.freezeData()
+		g = p.look()
+		if err := s.first(top, p, g, c); err != nil {
+			return nil, g, err
+		}
 	}
 	for i := top; i >= s.work; i-- {
 		b := c.best()

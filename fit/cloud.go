@@ -69,6 +69,7 @@ func (s *session) finish(c *candidates, chosen *state, r *Result) error {
 	if err := s.fillShape(full, r); err != nil {
 		return err
 	}
+	s.sum(full, r)
 	if err := s.compare(chosen, full, r); err != nil {
 		return err
 	}
@@ -99,7 +100,7 @@ const settled = 0.3
 func (s *session) refine(st *state) (*state, error) {
 	for range 5 {
 		s.freeze(0, st)
-		next, err := s.runWidth(0, st.kind, st.p, 1e-4)
+		next, err := s.runWidth(0, st.kind, st.p, 3e-3)
 		if err != nil {
 			return nil, err
 		}

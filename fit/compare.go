@@ -118,11 +118,7 @@ func (s *session) compare(chosen, full *state, r *Result) error {
 	if err := s.compareFree(chosen, c); err != nil {
 		return err
 	}
-	if err := s.compareWings(full, c); err != nil {
-		return err
-	}
-	s.sum(full, r)
-	return nil
+	return s.compareWings(full, c)
 }
 
 // compareFree fits every width by itself and notes the ratios between the axes.
@@ -172,7 +168,7 @@ const hopeless = 200
 // setting sees both parts of a cloud that the tied forms could not take apart.
 func (s *session) exploreFree() error {
 	t := *s
-	t.opt.Free, t.opt.searchFree = true, true
+	t.opt.Free, t.opt.searchFree, t.opt.Near = true, true, nil
 	c, _, err := t.explore()
 	if err != nil {
 		return err
@@ -243,7 +239,8 @@ func (s *session) compareWings(st *state, c *Checks) error {
 
 // sum adds up the density pixel by pixel inside a window that holds the cloud, each by the
 // inverted law; bad and black pixels take the model's density. The bias of a logarithm of
-// noisy counts is taken off: ⟨od⟩−od = α[v_A/2A² − v_L/2L²].
+// noisy counts is taken off: ⟨od⟩−od = α[v_A/2A² − v_L/2L²]. It follows on residuals, whose κ it
+// uses.
 func (s *session) sum(st *state, r *Result) {
 	l := s.levels[0]
 	window := s.window(st)
@@ -282,7 +279,7 @@ func (s *session) pixelDensity(p *problem, geo *geometry, o int, x, y, d float64
 	}
 	k := geo.scale(x, y)
 	sat := k * l.smooth[o] * l.saturate
-	t, _, _ := p.law.transmit(d, sat)
+	t := s.ws.kappa[o] / k
 	vl, vd := l.variances(o)
 	a := math.Max(k*t*l.smooth[o], 1)
 	light := k * math.Max(l.smooth[o], 1)

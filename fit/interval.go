@@ -3,6 +3,8 @@ package fit
 import (
 	"math"
 
+	"gonum.org/v1/gonum/mat"
+
 	"fallshadow/model"
 	"fallshadow/model/numbers"
 )
@@ -62,7 +64,8 @@ func (s *session) limits(c *candidates, full *state, r *Result) error {
 		if err := s.interval(full, atT, &n.T, 1); err != nil {
 			return err
 		}
-		return s.limitCondensate(c.thermal, n)
+		s.limitCondensate(c.thermal, n)
+		return nil
 	case ModelCondensate:
 		return s.limitThermal(c.alone, n)
 	}
@@ -155,9 +158,9 @@ const oneSided = 2.706
 
 // limitCondensate sets the upper limit of N0 in a thermal cloud: a condensate of N0 atoms
 // with the μ that they have in Thomas-Fermi, raised until χ² stands 2.7 above its least.
-func (s *session) limitCondensate(st *state, n *numbers.Result) error {
+func (s *session) limitCondensate(st *state, n *numbers.Result) {
 	if s.tmpl.gaussian {
-		return nil
+		return
 	}
 	k := st.kind
 	k.condensate, k.fixCondensate, k.fixRadius = true, true, true
@@ -172,13 +175,9 @@ func (s *session) limitCondensate(st *state, n *numbers.Result) error {
 		size := math.Sqrt(e.square[0] * e.square[1])
 		q[pCondensate] = atoms / s.perSum() / (s.tmpl.condensateArea() * size)
 	}
-	limit, err := s.raise(st, k, set, 3e-3*n.Thermal.V, n.Thermal.V)
-	if err != nil || math.IsNaN(limit) {
-		return err
-	}
+	limit := s.raise(st, k, set, 1e-3*n.Thermal.V, n.Thermal.V)
 	n.Condensate.High = limit
 	n.Fraction.High = limit / (limit + n.Thermal.V)
-	return nil
 }
 
 // limitThermal sets the upper limits of T and N_th beside a condensate: a saturated thermal
@@ -201,27 +200,51 @@ func (s *session) limitThermal(st *state, n *numbers.Result) error {
 	return nil
 }
 
+// least returns χ² at its least on the level of choices as one Gauss-Newton step from q promises
+// it: F − gᵀ(JᵀJ)⁻¹g, free of bounds.
+func (s *session) least(k kind, q params) float64 {
+	p := s.problem(s.work, &q, k)
+	t := k.tie()
+	p.ties = &t
+	sr := &search{problem: p, kind: k, tie: t, base: q, h: s.ws.h[:], g: s.ws.g[:]}
+	y, h, g := make([]float64, t.n), make([]float64, t.n*t.n), make([]float64, t.n)
+	for i, a := range t.slot {
+		if a >= 0 {
+			y[a] = q[i]
+		}
+	}
+	f := sr.Normal(y, h, g)
+	var chol mat.Cholesky
+	if !chol.Factorize(mat.NewSymDense(t.n, h)) {
+		return f
+	}
+	var step mat.VecDense
+	if chol.SolveVecTo(&step, mat.NewVecDense(t.n, g)) != nil {
+		return f
+	}
+	return f - mat.Dot(&step, mat.NewVecDense(t.n, g))
+}
+
 // raise finds how far one number can grow from start until χ² stands oneSided above the
 // least it had, by steps along the square root of the rise, which is nearly straight; NaN
 // where even most costs less.
-func (s *session) raise(st *state, k kind, set func(*params, float64), start, most float64) (float64, error) {
-	least, x := st.chi2, start
+func (s *session) raise(st *state, k kind, set func(*params, float64), start, most float64) float64 {
+	q := st.p
+	set(&q, 1e-3*start)
+	least, x := s.least(k, q), start
 	inside, rise := 0.0, 0.0
 	for range 12 {
 		q := st.p
 		set(&q, x)
-		got, err := s.run(s.work, k, q, 0.1)
-		if err != nil {
-			return math.NaN(), err
-		}
-		least = math.Min(least, got.chi2)
-		r := math.Sqrt((got.chi2 - least) / oneSided)
+		chi := s.least(k, q)
+		least = math.Min(least, chi)
+		r := math.Sqrt((chi - least) / oneSided)
 		if math.Abs(r-1) < 0.05 {
-			return x, nil
+			return x
 		}
 		if r < 1 {
 			if x >= most {
-				return math.NaN(), nil
+				return math.NaN()
 			}
 			inside, rise = x, r
 		}
@@ -231,7 +254,7 @@ func (s *session) raise(st *state, k kind, set func(*params, float64), start, mo
 		}
 		x = math.Min(next, most)
 	}
-	return x, nil
+	return x
 }
 
 // climb is raise for a χ² that may first fall: it walks up in steps of a fifth and takes the

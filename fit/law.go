@@ -15,44 +15,55 @@ func newLaw(o *Optics) law {
 	return law{a: o.Alpha * (1 + 4*o.Detuning*o.Detuning), stray: o.Stray}
 }
 
-// transmit returns the transmitted fraction, its derivative to d = σ0 n, and s times its
-// derivative to s. Newton steps on the concave depth equation start below the root and rise
-// to it; a short step takes e^−u along by its series. The error is below 1e-11 of 1.
-func (l *law) transmit(d, s float64) (t, td, ts float64) {
-	as := l.a + s
-	u := d / as
-	e := 0.0
-	switch {
-	case math.Abs(u) < 0.05:
-		r, u0 := s/as, u
-		for range 5 {
-			u = u0 + r*u*u*(0.5-u*(1.0/6-u*(1.0/24-u*(1.0/120))))
+// walk solves the law at one place after another. Neighbours differ little, so the root at the
+// last place is where Newton's steps begin, and e^−u follows by its series; a step too long for
+// that begins anew. The error of the transmission is below 1e-9. The zero value begins anew.
+type walk struct {
+	u, e float64
+	on   bool
+}
+
+// The longest step that the series of an exponential is taken along, and the one after which
+// Newton's method is not asked again.
+const (
+	longStep  = 0.06
+	shortStep = 3e-5
+)
+
+// transmit returns the transmitted fraction of light s = I_0/Isat through d = σ0 n, its
+// derivative to d, and s times its derivative to s.
+func (w *walk) transmit(l *law, d, s float64) (t, td, ts float64) {
+	if !w.on {
+		w.begin(l, d, s)
+	}
+	n := 1 / (l.a + s*w.e)
+	for range 20 {
+		step := (d - l.a*w.u - s*(1-w.e)) * n
+		if step > longStep || step < -longStep {
+			w.u += step
+			w.e = math.Exp(-w.u)
+			n = 1 / (l.a + s*w.e)
+			continue
 		}
-		e = 1 - u*(1-u*(0.5-u*(1.0/6-u*(1.0/24-u*(1.0/120-u*(1.0/720))))))
-	case s == 0:
-		e = math.Exp(-u)
-	default:
-		e = math.Exp(-u)
-		for range 20 {
-			step := (l.a*u + s*(1-e) - d) / (l.a + s*e)
-			u -= step
-			if math.Abs(step) > 0.05 {
-				e = math.Exp(-u)
-				continue
-			}
-			e *= 1 + step*(1+step*(0.5+step*(1.0/6+step*(1.0/24+step*(1.0/120)))))
-			if math.Abs(step) < 1e-6 {
-				break
-			}
+		w.u += step
+		w.e *= 1 - step*(1-step*(0.5-step*(1.0/6-step*(1.0/24-step*(1.0/120)))))
+		n = 1 / (l.a + s*w.e)
+		if step < shortStep && step > -shortStep {
+			break
 		}
 	}
-	n := 1 / (l.a + s*e)
-	td, ts = -e*n, s*e*(1-e)*n
+	t, td, ts = w.e, -w.e*n, s*w.e*(1-w.e)*n
 	if l.stray > 0 {
 		f := 1 - l.stray
-		return f*e + l.stray, td * f, ts * f
+		return f*t + l.stray, td * f, ts * f
 	}
-	return e, td, ts
+	return t, td, ts
+}
+
+// begin starts below the root of the concave depth equation, from where Newton's steps rise.
+func (w *walk) begin(l *law, d, s float64) {
+	w.u, w.on = d/(l.a+s), true
+	w.e = math.Exp(-w.u)
 }
 
 // od inverts the law: the σ0 n that leaves the fraction t of light with s = I_0/Isat.

@@ -11,6 +11,7 @@ type level struct {
 	atoms     []float64 // Σ electrons, or mean density where linear
 	light     []float64 // Σ reference
 	smooth    []float64 // the reference smoothed: where noise must not steer weights
+	probe     []float64 // I/Isat of the reference, 0 for a weak probe or a bin left out
 	count     []float64 // good pixels in the bin; 0 leaves it out
 	varAtoms  []float64 // variance of atoms from the model, frozen within a minimisation
 	noise     Noise
@@ -46,6 +47,7 @@ func fullLevel(pic *Picture, o *Optics) *level {
 	}
 	l.saturate = o.perElectron()
 	l.smooth = smoothed(l.light, l.count, l.w, l.h, 2)
+	l.setProbe()
 	return l
 }
 
@@ -68,7 +70,21 @@ func (l *level) halved() *level {
 			m.gather(l, j*w+i, [4]int{2*j*l.w + 2*i, 2*j*l.w + 2*i + 1, (2*j+1)*l.w + 2*i, (2*j+1)*l.w + 2*i + 1})
 		}
 	}
+	m.setProbe()
 	return m
+}
+
+// setProbe fills probe from the smooth reference.
+func (l *level) setProbe() {
+	if l.linear {
+		return
+	}
+	l.probe = make([]float64, len(l.smooth))
+	for o, v := range l.smooth {
+		if l.count[o] > 0 && v > 0 {
+			l.probe[o] = v * l.saturate / l.count[o]
+		}
+	}
 }
 
 // gather adds four bins of the finer level into bin o. Where a good pixel is missing the

@@ -10,6 +10,9 @@ import (
 type Place struct {
 	Mask         []bool    // true where atoms may be: within 2.5 widths or 1.2 radii
 	Transmission []float64 // the fitted atoms frame over the scaled reference; nil where no cloud was found
+
+	found *candidates // where the next fit of the same picture may begin
+	guess guess
 }
 
 // Locate finds the cloud in a picture like Cloud does, but stops before the full picture, errors
@@ -19,11 +22,11 @@ func Locate(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt Opt
 	if err != nil {
 		return nil, err
 	}
-	c, _, err := s.explore()
+	c, g, err := s.explore()
 	if err != nil {
 		return nil, err
 	}
-	place := &Place{Mask: make([]bool, pic.Width*pic.Height)}
+	place := &Place{Mask: make([]bool, pic.Width*pic.Height), found: c, guess: g}
 	st, model := s.choose(c)
 	if model == ModelNone {
 		return place, nil

@@ -8,6 +8,10 @@ type Options struct {
 	FreeAngle bool // turn both parts to the best angle
 	Maps      bool // draw Result.Maps
 
+	// Near, where not nil, is what Locate found in the same atoms frame under the same settings,
+	// perhaps with a poorer reference: the search begins there and not with a first look.
+	Near *Place
+
 	// CondensateChi2 and ThermalChi2 are the decrease of χ² that a second part must bring
 	// to be believed; CloudChi2 the one that any cloud must bring. 0 means the defaults.
 	CondensateChi2, ThermalChi2, CloudChi2 float64

@@ -149,6 +149,7 @@ func (p *problem) fillRow(geo *geometry, j, i0, i1 int, full bool, m *moments) i
 	rr := 0.0
 	k := math.Exp(rowLight + geo.light[1]*(l.at(i0)-geo.xc)*geo.iw)
 	kStep := math.Exp(geo.light[1] * float64(l.bin) * geo.iw)
+	var walk walk
 	for i := i0; i < i1; i, k = i+1, k*kStep {
 		o := j*l.w + i
 		c := l.count[o]
@@ -169,7 +170,7 @@ func (p *problem) fillRow(geo *geometry, j, i0, i1 int, full bool, m *moments) i
 			rho = (l.atoms[o] - geo.ampGrown*g - rowLight - geo.light[1]*(l.at(i)-geo.xc)*geo.iw) * w
 			a, bb = -w, -w
 		} else {
-			a, bb, rho = p.pixel(o, k, geo.ampGrown*g)
+			a, bb, rho = p.pixel(&walk, o, k, geo.ampGrown*g)
 		}
 		rr += rho * rho
 		if !full {
@@ -191,10 +192,9 @@ func (p *problem) fillRow(geo *geometry, j, i0, i1 int, full bool, m *moments) i
 // ρ = (A − κ L)/√V, κ = k T, V = v_A + κ² v_L + (1−κ)² v_D with v_A frozen, so that
 // ∂ρ/∂κ = −λ/√V with λ = L + ρ(κ v_L − (1−κ) v_D)/√V: the estimate of the light from both
 // frames, which is not correlated with ρ. The noise of L alone would bias the scale.
-func (p *problem) pixel(o int, k, d float64) (a, b, rho float64) {
+func (p *problem) pixel(w *walk, o int, k, d float64) (a, b, rho float64) {
 	l := p.level
-	s := k * l.smooth[o] * l.saturate / l.count[o]
-	t, td, ts := p.law.transmit(d, s)
+	t, td, ts := w.transmit(&p.law, d, k*l.probe[o])
 	rho, dk := l.residual(o, k*t)
 	return dk * k * td, dk * k * (t + ts), rho
 }

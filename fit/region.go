@@ -166,6 +166,7 @@ func (p *problem) paint(q *params, geo *geometry, i0, j0, w, h int, full bool) {
 	for j := range h {
 		y := l.at(j0+j) - geo.y0
 		jj := min(max(j0+j, 0), l.h-1)
+		var walk walk
 		for i := range w {
 			x := l.at(i0+i) - geo.x0
 			o := jj*l.w + min(max(i0+i, 0), l.w-1)
@@ -173,7 +174,7 @@ func (p *problem) paint(q *params, geo *geometry, i0, j0, w, h int, full bool) {
 			gt, ht = gt*geo.norm, ht*geo.norm
 			c, e := p.condensate(x, y, &inv)
 			d := geo.amp*gt + q[pCondensate]*c
-			t, td, ts := p.transmission(geo, o, x+geo.x0, y+geo.y0, d)
+			t, td, ts := p.transmission(&walk, geo, o, x+geo.x0, y+geo.y0, d)
 			n := j*w + i
 			b.images[imageT][n], b.images[imageTS][n] = t, ts
 			if !full {
@@ -218,17 +219,17 @@ func (p *problem) condensate(x, y float64, inv *model.Shape) (c, e float64) {
 	return e * (1 - r), e
 }
 
-// transmission returns the transmitted fraction at bin o and position x, y of the picture.
-func (p *problem) transmission(geo *geometry, o int, x, y, d float64) (t, td, ts float64) {
-	l := p.level
-	if l.linear {
+// transmission returns the transmitted fraction at bin o and position x, y of the picture, with
+// its derivatives as transmit does; on a linear level the density itself.
+func (p *problem) transmission(w *walk, geo *geometry, o int, x, y, d float64) (t, td, ts float64) {
+	if p.level.linear {
 		return d, 1, 0
 	}
 	s := 0.0
-	if l.saturate > 0 && l.count[o] > 0 {
-		s = math.Max(0, geo.scale(x, y)*l.smooth[o]*l.saturate/l.count[o])
+	if p.level.saturate > 0 {
+		s = geo.scale(x, y) * p.level.probe[o]
 	}
-	return p.law.transmit(d, s)
+	return w.transmit(&p.law, d, s)
 }
 
 // scale returns k at position x, y of the picture.

@@ -10,11 +10,12 @@ func (p *problem) render(q *params, dst []float64) {
 	in := p.room.bounds(p.level)
 	l := p.level
 	for j := range l.h {
+		var walk walk
 		for i := range l.w {
 			if j >= in.y0 && j < in.y1 && i >= in.x0 && i < in.x1 {
 				continue
 			}
-			dst[j*l.w+i] = p.sharpPixel(&geo, i, j)
+			dst[j*l.w+i] = p.sharpPixel(&walk, &geo, i, j)
 		}
 	}
 	if in.x1 <= in.x0 {
@@ -43,7 +44,7 @@ func (p *problem) render(q *params, dst []float64) {
 	}
 }
 
-func (p *problem) sharpPixel(geo *geometry, i, j int) float64 {
+func (p *problem) sharpPixel(w *walk, geo *geometry, i, j int) float64 {
 	l := p.level
 	x, y := l.at(i), l.at(j)
 	dx, dy := x-geo.x0, y-geo.y0
@@ -53,7 +54,7 @@ func (p *problem) sharpPixel(geo *geometry, i, j int) float64 {
 		g, _ := boseFast(tau)
 		d = geo.ampGrown * g * geo.norm
 	}
-	t, _, _ := p.transmission(geo, j*l.w+i, x, y, d)
+	t, _, _ := p.transmission(w, geo, j*l.w+i, x, y, d)
 	if l.linear {
 		return t + geo.plane(x, y)
 	}

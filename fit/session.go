@@ -134,8 +134,12 @@ func (s *session) problem(i int, q *params, k kind) *problem {
 	return p
 }
 
+// softBlur is the share of a thermal part's variance up to which growing its widths by the blur
+// is as good as blurring the light: at a peak density of 1 the light differs by 1e-3 then.
+const softBlur = 5e-3
+
 // roomFor is the rectangle that must be blurred pixel by pixel: the condensate with a margin
-// to grow into, and a thermal part whose widths the blur changes by more than a thousandth.
+// to grow into, and a thermal part that the blur is not soft to.
 func (s *session) roomFor(i int, q *params, k kind) room {
 	bin := float64(s.levels[i].bin)
 	margin := 4*math.Sqrt(s.blur2+bin*bin/12) + 1.5*bin
@@ -150,7 +154,7 @@ func (s *session) roomFor(i int, q *params, k kind) room {
 		}
 		r = around(q[pX], q[pY], s.tmpl.condensateOf(q), grow, margin)
 	}
-	if e := s.tmpl.thermalOf(q); k.thermal && s.blur2 > 1e-3*math.Min(e.square[0], e.square[1]) {
+	if e := s.tmpl.thermalOf(q); k.thermal && s.blur2 > softBlur*math.Min(e.square[0], e.square[1]) {
 		r = r.union(around(q[pX], q[pY], e, 4, margin))
 	}
 	return r

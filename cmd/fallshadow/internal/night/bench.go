@@ -53,7 +53,7 @@ func newBench(ctx context.Context, s *settings.Settings, region image.Rectangle,
 		return nil, err
 	}
 	if s.Fit.Reference != "own" && s.Shots.Layout != "density" {
-		b.references = light.NewReferences(shared, s.Fit.BasisSize, f.n, f.load)
+		b.references = light.NewReferences(shared, s.Fit.BasisSize, f.n, b.lender(f))
 	}
 	return b.worker, nil
 }
@@ -76,12 +76,13 @@ func (b *bench) measure(ctx context.Context, at int, raw *imageio.Raw, workspace
 	if err != nil {
 		return nil, err
 	}
+	options := b.options
 	if b.references != nil {
-		if exposure, err = b.relight(ctx, at, exposure, flight, workspace); err != nil {
+		if exposure, options.Near, err = b.relight(ctx, at, exposure, flight, workspace); err != nil {
 			return nil, err
 		}
 	}
-	result, err := fit.Cloud(ctx, b.picture(exposure), &b.lab, flight, b.options, workspace)
+	result, err := fit.Cloud(ctx, b.picture(exposure), &b.lab, flight, options, workspace)
 	if err != nil {
 		return nil, fmt.Errorf("fit: %w", err)
 	}
@@ -90,13 +91,27 @@ func (b *bench) measure(ctx context.Context, at int, raw *imageio.Raw, workspace
 	return f, nil
 }
 
-// relight returns the exposure with the best light that the night has for it.
-func (b *bench) relight(ctx context.Context, at int, e *imageio.Exposure, flight float64, workspace *fit.Workspace) (*imageio.Exposure, error) {
+// lender returns what reads a shot whose light may serve others. A shot that cannot be
+// exposed lends none: frames that were exchanged have the shadow of a cloud in the light.
+func (b *bench) lender(f *frames) func(context.Context, int) (*imageio.Raw, error) {
+	return func(ctx context.Context, at int) (*imageio.Raw, error) {
+		raw, err := f.load(ctx, at)
+		if err == nil {
+			_, err = b.night.Expose(raw)
+		}
+		return raw, err
+	}
+}
+
+// relight returns the exposure with the best light that the night has for it, and the place
+// of the cloud.
+func (b *bench) relight(ctx context.Context, at int, e *imageio.Exposure, flight float64, workspace *fit.Workspace) (*imageio.Exposure, *fit.Place, error) {
 	place, err := fit.Locate(ctx, b.picture(e), &b.lab, flight, b.options, workspace)
 	if err != nil {
-		return nil, fmt.Errorf("locate the cloud: %w", err)
+		return nil, nil, fmt.Errorf("locate the cloud: %w", err)
 	}
-	return b.references.Apply(ctx, at, e, light.Cloud{Mask: place.Mask, Transmission: place.Transmission})
+	e, err = b.references.Apply(ctx, at, e, light.Cloud{Mask: place.Mask, Transmission: place.Transmission})
+	return e, place, err
 }
 
 // picture hands an exposure to the fit.
