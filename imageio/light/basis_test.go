@@ -197,16 +197,9 @@ func TestNearest(t *testing.T) {
 	n := prepare(t, s.camera(), raws)
 	refs := NewReferences(n, 4, len(raws), loader(raws))
 	for shot, want := range map[int][]int{5: {5, 4, 6, 7}, 0: {0, 1, 2, 4}, 8: {8, 7, 6, 5}, 2: {2, 1, 0, 4}} {
-		frames, err := refs.nearest(context.Background(), shot)
-		if err != nil {
-			t.Fatal(err)
-		}
-		var got []int
-		for _, f := range frames {
-			got = append(got, f.shot)
-		}
-		if !slices.Equal(got, want) {
-			t.Errorf("shot %d: %v, want %v", shot, got, want)
+		got, err := refs.Set(context.Background(), shot)
+		if err != nil || !slices.Equal(got, want) {
+			t.Errorf("shot %d: %v (%v), want %v", shot, got, err, want)
 		}
 	}
 }

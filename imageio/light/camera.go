@@ -80,6 +80,11 @@ func (c Camera) window(width, height int) (window, error) {
 	return w, nil
 }
 
+// rect is the window in saved pixels.
+func (w window) rect() image.Rectangle {
+	return image.Rectangle{Min: w.corner, Max: w.corner.Add(image.Pt(w.width, w.height))}
+}
+
 // size is the number of pixels before rebinning.
 func (w window) size() int { return w.width * w.height }
 

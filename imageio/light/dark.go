@@ -1,16 +1,11 @@
 package light
 
 import (
-	"image"
 	"math"
 	"slices"
 
 	"fallshadow/imageio"
 )
-
-func imageRect(w window) image.Rectangle {
-	return image.Rect(w.corner.X, w.corner.Y, w.corner.X+w.width, w.corner.Y+w.height)
-}
 
 // darkSums gathers dark frames pixel by pixel, each less its own level.
 type darkSums struct {

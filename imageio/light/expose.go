@@ -1,10 +1,6 @@
 package light
 
-import (
-	"math"
-
-	"fallshadow/imageio"
-)
+import "fallshadow/imageio"
 
 // Expose makes a shot ready for a fit, with its own light frame, scaled to the atoms
 // frame along the border of the region, as reference.
@@ -32,7 +28,6 @@ func (n *Night) Expose(raw *imageio.Raw) (*imageio.Exposure, error) {
 	if err != nil {
 		return nil, err
 	}
-	own := l.dark.own || a.dark.own
 	n.clean(l, a)
 	scale, notes, err := n.compare(a, l)
 	if err != nil {
@@ -47,8 +42,8 @@ func (n *Night) Expose(raw *imageio.Raw) (*imageio.Exposure, error) {
 			Read:         n.Camera.ReadNoise * float64(n.win.bin),
 			LightShot:    scale,
 			LightRead:    scale * scale * n.readVar() * pixels,
-			Dark:         a.dark.variance * pixels,
-			DarkIsShared: !own || raw.Frames[imageio.DarkOfLight] == nil,
+			Dark:         max(a.dark.variance, l.dark.variance) * pixels,
+			DarkIsShared: !a.dark.own && !l.dark.own || raw.Frames[imageio.Dark] == nil || raw.Frames[imageio.DarkOfLight] == nil,
 		},
 	}
 	for i := range e.Light {
@@ -89,97 +84,11 @@ func (n *Night) remarks(raw *imageio.Raw, a, l *litFrame) []string {
 	if a.dark.odd || l.dark.odd {
 		words = append(words, OddDark)
 	}
-	if raw.Frames[imageio.Dark] == nil && n.OffsetSpread*n.Camera.ElectronsPerCount > max(n.Camera.ReadNoise/4, 1) {
+	alone := raw.Frames[imageio.Dark] == nil && raw.Frames[imageio.DarkOfLight] == nil
+	if alone && n.OffsetSpread*n.Camera.ElectronsPerCount > max(n.Camera.ReadNoise/4, 1) {
 		words = append(words, Drift)
 	}
 	return words
-}
-
-// litFrame is an atoms or a light frame above its dark, electrons, inside the window.
-type litFrame struct {
-	pix       []float64
-	bad       []bool
-	saturated int
-	dark      dark
-}
-
-// lit subtracts the dark of one frame and marks what needs no neighbours to be known.
-func (n *Night) lit(raw *imageio.Raw, role imageio.Role) (*litFrame, error) {
-	f := raw.Frames[role]
-	if f == nil {
-		if role == imageio.Atoms {
-			return nil, refuse(NoAtoms, "")
-		}
-		return nil, refuse(NoLight, "")
-	}
-	if !fits(f, n.win) {
-		return nil, refuse(WrongSize, "%dx%d instead of %dx%d pixels", f.Width, f.Height, n.win.frame.X, n.win.frame.Y)
-	}
-	l := &litFrame{pix: n.win.crop(f), bad: append([]bool(nil), n.bad...)}
-	if err := l.judge(n.Camera.FullScale, roleName(role)); err != nil {
-		return nil, err
-	}
-	d, err := n.darkFor(raw, role)
-	if err != nil {
-		return nil, err
-	}
-	l.dark = d
-	for i := range l.pix {
-		l.pix[i] = (l.pix[i] - d.counts(i)) * n.Camera.ElectronsPerCount
-		if d.bad != nil && d.bad[i] || !finite(l.pix[i]) {
-			l.bad[i] = true
-		}
-	}
-	fill(l.pix, n.win.width, l.bad)
-	return l, nil
-}
-
-func roleName(r imageio.Role) string {
-	return [...]string{"atoms", "light", "dark", "dark of light", "density"}[r]
-}
-
-// judge counts saturated pixels and refuses frames that are blank or mostly saturated.
-// Without a full scale the highest value counts as one where a thousandth of all pixels
-// have it.
-func (l *litFrame) judge(fullScale float64, name string) error {
-	low, high, at := extremes(l.pix)
-	if !(high > low) {
-		return refuse(Blank, "%s: all %g counts", name, l.pix[0])
-	}
-	if fullScale == 0 {
-		if at < 20 || at*1000 < len(l.pix) || high-low < 100 {
-			return nil
-		}
-		fullScale = high
-	}
-	for i, v := range l.pix {
-		if v >= fullScale {
-			l.bad[i] = true
-			l.saturated++
-		}
-	}
-	if l.saturated*5 > len(l.pix) {
-		return refuse(Saturated, "%s: %.0f %% of the pixels at %g counts or more", name, 100*float64(l.saturated)/float64(len(l.pix)), fullScale)
-	}
-	return nil
-}
-
-// extremes returns lowest and highest of the values that are not NaN, and how many pixels
-// have the highest.
-func extremes(pix []float64) (low, high float64, at int) {
-	low, high = math.Inf(1), math.Inf(-1)
-	for _, v := range pix {
-		if v < low {
-			low = v
-		}
-		if v > high {
-			high, at = v, 0
-		}
-		if v == high {
-			at++
-		}
-	}
-	return low, high, at
 }
 
 // exposeDensity carries a ready density image through.

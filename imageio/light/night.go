@@ -13,7 +13,7 @@ import (
 // It is not changed afterwards and may be used by many goroutines.
 type Night struct {
 	// Camera is the one given to Prepare, with gain and read noise filled in where they
-	// were measured.
+	// were measured, and the region in use.
 	Camera Camera
 	// Transfer is the measurement of the gain, nil where the camera's was given.
 	Transfer *Transfer
@@ -149,9 +149,7 @@ func fits(f *imageio.Frame, w window) bool {
 // night freezes the group.
 func (g *group) night(camera Camera) (*Night, error) {
 	n := &Night{Camera: camera, win: g.win}
-	if camera.Region.Empty() {
-		n.Camera.Region = imageRect(g.win)
-	}
+	n.Camera.Region = g.win.rect()
 	if err := n.measure(g); err != nil {
 		return nil, err
 	}

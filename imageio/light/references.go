@@ -24,7 +24,7 @@ type Cloud struct {
 //
 // Memory: the light frames of at most k+8 shots as float32 with their block values, 4.7
 // bytes a pixel, and the sums of their products, 8 bytes for each pair and tile of 16x16
-// pixels: for k = 40 and 500x500 pixels 57 MB and 8 MB.
+// pixels: for k = 40 and 500x500 pixels 57 MB and 15 MB.
 type References struct {
 	night *Night
 	k     int
@@ -140,6 +140,17 @@ func (r *References) read(ctx context.Context, f *lightFrame) error {
 		f.pix[i] = float32(v)
 	}
 	return nil
+}
+
+// Set returns the shots, by their place in natural order, whose light frames the reference
+// of a shot may be made of, the nearest first.
+func (r *References) Set(ctx context.Context, shot int) ([]int, error) {
+	frames, err := r.nearest(ctx, shot)
+	set := make([]int, len(frames))
+	for i, f := range frames {
+		set[i] = f.shot
+	}
+	return set, err
 }
 
 // nearest returns the light frames of the k shots nearest to a shot in natural order, the

@@ -1,0 +1,90 @@
+package light
+
+import (
+	"math"
+
+	"fallshadow/imageio"
+)
+
+// litFrame is an atoms or a light frame above its dark, electrons, inside the window.
+type litFrame struct {
+	pix       []float64
+	bad       []bool
+	saturated int
+	dark      dark
+}
+
+// lit subtracts the dark of one frame and marks what needs no neighbours to be known.
+func (n *Night) lit(raw *imageio.Raw, role imageio.Role) (*litFrame, error) {
+	f, missing, name := raw.Frames[role], NoLight, "light"
+	if role == imageio.Atoms {
+		missing, name = NoAtoms, "atoms"
+	}
+	if f == nil {
+		return nil, refuse(missing, "")
+	}
+	if !fits(f, n.win) {
+		return nil, refuse(WrongSize, "%s: %dx%d instead of %dx%d pixels", name, f.Width, f.Height, n.win.frame.X, n.win.frame.Y)
+	}
+	l := &litFrame{pix: n.win.crop(f), bad: append([]bool(nil), n.bad...)}
+	if err := l.judge(n.Camera.FullScale, name); err != nil {
+		return nil, err
+	}
+	d, err := n.darkFor(raw, role)
+	if err != nil {
+		return nil, err
+	}
+	l.dark = d
+	for i := range l.pix {
+		l.pix[i] = (l.pix[i] - d.counts(i)) * n.Camera.ElectronsPerCount
+		if d.bad != nil && d.bad[i] || !finite(l.pix[i]) {
+			l.bad[i] = true
+		}
+	}
+	fill(l.pix, n.win.width, l.bad)
+	return l, nil
+}
+
+// judge counts saturated pixels and refuses frames that are blank or mostly saturated.
+// Without a full scale the highest value counts as one where a thousandth of all pixels
+// have it.
+func (l *litFrame) judge(fullScale float64, name string) error {
+	low, high, at := extremes(l.pix)
+	if !(high > low) {
+		return refuse(Blank, "%s: all %g counts", name, l.pix[0])
+	}
+	if fullScale == 0 {
+		if at < 20 || at*1000 < len(l.pix) || high-low < 100 {
+			return nil
+		}
+		fullScale = high
+	}
+	for i, v := range l.pix {
+		if v >= fullScale {
+			l.bad[i] = true
+			l.saturated++
+		}
+	}
+	if l.saturated*5 > len(l.pix) {
+		return refuse(Saturated, "%s: %.0f %% of the pixels at %g counts or more", name, 100*float64(l.saturated)/float64(len(l.pix)), fullScale)
+	}
+	return nil
+}
+
+// extremes returns lowest and highest of the values that are not NaN, and how many pixels
+// have the highest.
+func extremes(pix []float64) (low, high float64, at int) {
+	low, high = math.Inf(1), math.Inf(-1)
+	for _, v := range pix {
+		if v < low {
+			low = v
+		}
+		if v > high {
+			high, at = v, 0
+		}
+		if v == high {
+			at++
+		}
+	}
+	return low, high, at
+}
