@@ -15,67 +15,67 @@ type painter struct {
 	thermal, condensate [3]float64 // factors of expansion along the trap axes
 }
 
-func newPainter(e *Experiment) (c painter, err error) {
-	c.Experiment = e
-	if c.thermal, err = model.ExpandThermal(e.Trap, e.Flight, e.Release); err != nil {
-		return c, fmt.Errorf("expand the thermal part: %w", err)
+func newPainter(e *Experiment) (p painter, err error) {
+	p.Experiment = e
+	if p.thermal, err = model.ExpandThermal(e.Trap, e.Flight, e.Release); err != nil {
+		return p, fmt.Errorf("expand the thermal part: %w", err)
 	}
 	if e.attractive() {
-		return c, nil
+		return p, nil
 	}
-	if c.condensate, err = model.ExpandCondensate(e.Trap, e.Flight, e.Release); err != nil {
-		return c, fmt.Errorf("expand the condensate: %w", err)
+	if p.condensate, err = model.ExpandCondensate(e.Trap, e.Flight, e.Release); err != nil {
+		return p, fmt.Errorf("expand the condensate: %w", err)
 	}
-	return c, nil
+	return p, nil
 }
 
 // density writes σ0 n, sampled at the centres of the pixels, to dst. It returns ctx's error,
 // or that of an attractive condensate which cannot exist.
-func (c *painter) density(ctx context.Context, q *values, dst []float64) error {
+func (p *painter) density(ctx context.Context, q *values, dst []float64) error {
 	if err := ctx.Err(); err != nil {
 		return err
 	}
 	clear(dst)
 	if q[Thermal] != 0 {
-		c.addThermal(q, dst)
+		p.addThermal(q, dst)
 	}
 	switch {
 	case q[Condensate] == 0:
-	case c.attractive():
-		return c.addGaussian(q, dst)
+	case p.attractive():
+		return p.addGaussian(q, dst)
 	default:
-		c.addThomasFermi(q, dst)
+		p.addThomasFermi(q, dst)
 	}
 	return nil
 }
 
-func (c *painter) addThermal(q *values, dst []float64) {
-	s := c.View.Project(model.ThermalVariances(q[T], c.Species.Mass, c.Trap, c.thermal))
+func (p *painter) addThermal(q *values, dst []float64) {
+	s := p.View.Project(model.ThermalVariances(q[T], p.Species.Mass, p.Trap, p.thermal))
 	peak := model.ThermalPeakColumn(q[Thermal], q[Alpha], s) / bose.G2(q[Alpha])
-	c.add(q, s, peak, dst, func(u float64) float64 { return bose.G2(q[Alpha] + u/2) })
+	p.add(q, s, peak, dst, func(u float64) float64 { return bose.G2(q[Alpha] + u/2) })
 }
 
-func (c *painter) addThomasFermi(q *values, dst []float64) {
-	s := c.View.Project(model.RadiiSquared(q[Mu], c.Species.Mass, c.Trap, c.condensate))
-	c.add(q, s, model.CondensatePeakColumn(q[Condensate], s), dst, func(u float64) float64 {
+func (p *painter) addThomasFermi(q *values, dst []float64) {
+	s := p.View.Project(model.RadiiSquared(q[Mu], p.Species.Mass, p.Trap, p.condensate))
+	p.add(q, s, model.CondensatePeakColumn(q[Condensate], s), dst, func(u float64) float64 {
 		inside := math.Max(0, 1-u)
 		return inside * math.Sqrt(inside)
 	})
 }
 
 // addGaussian adds the condensate of an attractive gas: the gaussian of the variational width.
-func (c *painter) addGaussian(q *values, dst []float64) error {
-	n0, m, a := q[Condensate], c.Species.Mass, c.Species.ScatteringLength
-	w, err := model.VariationalWidths(n0, m, a, c.Trap)
+func (p *painter) addGaussian(q *values, dst []float64) error {
+	n0, m, a := q[Condensate], p.Species.Mass, p.Species.ScatteringLength
+	w, err := model.VariationalWidths(n0, m, a, p.Trap)
 	if err != nil {
 		return fmt.Errorf("condensate of %.4g atoms: %w", n0, err)
 	}
-	b, err := model.ExpandGaussian(n0, m, a, c.Trap, c.Flight, c.Release)
+	b, err := model.ExpandGaussian(n0, m, a, p.Trap, p.Flight, p.Release)
 	if err != nil {
 		return fmt.Errorf("expand the condensate: %w", err)
 	}
-	s := c.View.Project(model.GaussianVariances(w, b))
-	c.add(q, s, n0/(2*math.Pi*math.Sqrt(s.Det())), dst, func(u float64) float64 { return math.Exp(-u / 2) })
+	s := p.View.Project(model.GaussianVariances(w, b))
+	p.add(q, s, n0/(2*math.Pi*math.Sqrt(s.Det())), dst, func(u float64) float64 { return math.Exp(-u / 2) })
 	return nil
 }
 
@@ -83,13 +83,13 @@ func (c *painter) addGaussian(q *values, dst []float64) error {
 const faint = 60
 
 // add adds σ0 peak profile(rᵀS⁻¹r) of a part of shape s (m²).
-func (c *painter) add(q *values, s model.Shape, peak float64, dst []float64, profile func(u float64) float64) {
-	px := c.Optics.Pixel
+func (p *painter) add(q *values, s model.Shape, peak float64, dst []float64, profile func(u float64) float64) {
+	px := p.Optics.Pixel
 	inv := s.Turn(q[Angle]).Scale(1 / (px * px)).Inverse()
-	peak *= c.Species.Sigma0()
-	for j := range c.Height {
+	peak *= p.Species.Sigma0()
+	for j := range p.Height {
 		y := float64(j) - q[Y]
-		row := dst[j*c.Width : (j+1)*c.Width]
+		row := dst[j*p.Width : (j+1)*p.Width]
 		for i := range row {
 			x := float64(i) - q[X]
 			if u := inv.XX*x*x + 2*inv.XY*x*y + inv.YY*y*y; u < faint {

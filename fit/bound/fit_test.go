@@ -51,7 +51,7 @@ func TestFitQuotesTheBound(t *testing.T) {
 				continue
 			}
 			line += fmt.Sprintf("  %s %.4f (off %.2f)", q.name, q.err/q.best, (q.v-q.truth)/q.best)
-			if d := math.Abs(q.err/q.best - 1); !(d <= 0.02) {
+			if d := math.Abs(q.err/q.best - 1); !(d <= 0.01) {
 				t.Errorf("shot %s: error of %s is %g, its bound %g", row["shot"], q.name, q.err, q.best)
 			}
 			if d := math.Abs(q.v - q.truth); !(d <= 0.1*q.best) {
