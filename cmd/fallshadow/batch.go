@@ -5,6 +5,8 @@ import (
 	"fmt"
 	"path/filepath"
 
+	"github.com/alecthomas/kong"
+
 	"fallshadow/cmd/fallshadow/internal/night"
 	"fallshadow/cmd/fallshadow/internal/report"
 	"fallshadow/cmd/fallshadow/internal/settings"
@@ -18,6 +20,20 @@ type batchCmd struct {
 	Again     bool   `help:"Fit every shot, also those whose results are current."`
 	Workers   int    `placeholder:"N" help:"Shots to fit at a time; one a processor if left out. The results do not depend on it."`
 	OwnRegion bool   `help:"Leave out the regions of interest that were drawn by hand."`
+
+	Columns columnsFlag `help:"Print what the columns and the flags of the table mean, and stop."`
+}
+
+// columnsFlag prints the documentation of the table in the place of a run.
+type columnsFlag bool
+
+// BeforeReset is called before the command line is checked for what else is missing.
+func (columnsFlag) BeforeReset(app *kong.Kong) error {
+	if _, err := app.Stdout.Write(report.Markdown()); err != nil {
+		return err
+	}
+	app.Exit(exitOK)
+	return nil
 }
 
 // Run fits what is not current, writes the table and shows it.
@@ -49,8 +65,8 @@ func (c *batchCmd) show(t terminal, out *night.Outcome) error {
 	if err := report.Summary(t.out, out.Rows); err != nil {
 		return err
 	}
-	fmt.Fprintf(t.out, "\n%d shots: %d fitted, %d were current, %d failed\n%s\n",
-		len(out.Rows), out.Fitted, out.Kept, out.Failed, filepath.Join(out.Dir, report.CSVName))
+	fmt.Fprintf(t.out, "\n%s: %d ok, %d failed; %d done now, %d current before\n%s\n",
+		shots(len(out.Rows)), len(out.Rows)-out.Failed, out.Failed, out.Fitted, out.Kept, filepath.Join(out.Dir, report.CSVName))
 	const shown = 5
 	for i, s := range out.Strays {
 		if i == shown {
@@ -74,4 +90,11 @@ func loadSettings(file, nightDir string) (*settings.Settings, error) {
 		}
 	}
 	return settings.Load(file)
+}
+
+func shots(n int) string {
+	if n == 1 {
+		return "1 shot"
+	}
+	return fmt.Sprintf("%d shots", n)
 }

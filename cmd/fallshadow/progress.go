@@ -26,9 +26,7 @@ type lineProgress struct {
 
 func (p *lineProgress) Begin(stage string, steps int) {
 	p.done, p.steps = 0, steps
-	if steps > 0 {
-		fmt.Fprintf(p.out, "%s %d shots\n", stage, steps)
-	}
+	fmt.Fprintf(p.out, "%s %s\n", stage, shots(steps))
 }
 
 func (p *lineProgress) Step(line string, _ bool) {

@@ -132,6 +132,9 @@ func (b *batch) storeUnreadable(ctx context.Context) error {
 // fit lets the workers measure the shots at the given places among the readable ones. One
 // goroutine commits, a row as soon as it is there.
 func (b *batch) fit(ctx context.Context, todo []int, done *int) error {
+	if len(todo) == 0 {
+		return nil
+	}
 	ctx, cancel := context.WithCancelCause(ctx)
 	defer cancel(nil)
 	b.progress.Begin("fitting", len(todo))

@@ -267,3 +267,17 @@ func TestFlagsAreOneTable(t *testing.T) {
 		}
 	}
 }
+
+func TestMarkdownNamesAll(t *testing.T) {
+	text := string(Markdown())
+	for _, c := range Columns {
+		if !strings.Contains(text, "| `"+c.Name+"` | "+c.Unit+" | "+c.Meaning+" |\n") {
+			t.Errorf("no line for the column %s", c.Name)
+		}
+	}
+	for _, f := range AllFlags() {
+		if !strings.Contains(text, "| `"+f.Name+"` | "+f.Sentence+" |\n") {
+			t.Errorf("no line for the flag %s", f.Name)
+		}
+	}
+}

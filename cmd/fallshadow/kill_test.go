@@ -1,0 +1,201 @@
+//go:build scripts
+
+package main
+
+import (
+	"bytes"
+	"context"
+	"encoding/csv"
+	"math/rand/v2"
+	"os"
+	"os/exec"
+	"path/filepath"
+	"runtime"
+	"strconv"
+	"strings"
+	"syscall"
+	"testing"
+	"time"
+
+	"fallshadow/cmd/fallshadow/internal/ledger"
+	"fallshadow/cmd/fallshadow/internal/report"
+)
+
+// smallNight simulates a night of a few small shots.
+func smallNight(t *testing.T, shots int) string {
+	t.Helper()
+	dir := filepath.Join(t.TempDir(), "night")
+	if _, code := program(t, "simulate", dir, "--shots", strconv.Itoa(shots)); code != 0 {
+		t.Fatalf("simulate ended with %d", code)
+	}
+	return dir
+}
+
+func tableOf(t *testing.T, results string) string {
+	t.Helper()
+	data, err := os.ReadFile(filepath.Join(results, report.CSVName))
+	if err != nil {
+		t.Fatal(err)
+	}
+	return string(data)
+}
+
+// kills is how often a run is killed: FALLSHADOW_KILLS, or 3.
+func kills(t *testing.T) int {
+	t.Helper()
+	text := os.Getenv("FALLSHADOW_KILLS")
+	if text == "" {
+		return 3
+	}
+	n, err := strconv.Atoi(text)
+	if err != nil || n < 1 {
+		t.Fatalf("FALLSHADOW_KILLS=%q is no number of kills", text)
+	}
+	return n
+}
+
+// A batch killed at a random moment and run again leaves the table of an undisturbed one,
+// byte for byte, with no row lost or doubled.
+func TestKilledBatchGoesOn(t *testing.T) {
+	const shots = 4
+	night := smallNight(t, shots)
+	undisturbed := filepath.Join(t.TempDir(), "undisturbed")
+	start := time.Now()
+	if _, code := program(t, "batch", night, "--out", undisturbed, "--workers", "1"); code != 0 {
+		t.Fatalf("batch ended with %d", code)
+	}
+	length := time.Since(start)
+	want := tableOf(t, undisturbed)
+	if rows := lines(t, want); len(rows) != shots+1 {
+		t.Fatalf("%d lines in the table", len(rows))
+	}
+	seed := uint64(time.Now().UnixNano())
+	t.Logf("seed %d, an undisturbed run takes %v", seed, length)
+	random := rand.New(rand.NewPCG(seed, 1))
+	for _, workers := range []string{"1", "2"} {
+		for range kills(t) {
+			results := filepath.Join(t.TempDir(), "r")
+			killed(t, time.Duration((0.2+0.8*random.Float64())*float64(length)), "batch", night, "--out", results, "--workers", workers)
+			before := rowsIn(t, results)
+			out, code := program(t, "batch", night, "--out", results, "--workers", workers)
+			if code != 0 {
+				t.Fatalf("%s workers: after a kill batch ended with %d", workers, code)
+			}
+			t.Logf("%s workers: %d rows after the kill", workers, before)
+			if says := strconv.Itoa(before) + " current before"; !strings.Contains(out, says) {
+				t.Errorf("%s workers: %d rows were there after the kill, but the run does not say %q:\n%s", workers, before, says, out)
+			}
+			if got := tableOf(t, results); got != want {
+				t.Errorf("%s workers, killed with %d rows: the table is\n%s\nwant\n%s", workers, before, got, want)
+			}
+		}
+	}
+}
+
+// killed starts the program and kills it after a while, if it still runs.
+func killed(t *testing.T, after time.Duration, args ...string) {
+	t.Helper()
+	cmd := exec.Command("fallshadow", args...)
+	if err := cmd.Start(); err != nil {
+		t.Fatal(err)
+	}
+	time.Sleep(after)
+	cmd.Process.Kill()
+	cmd.Wait()
+}
+
+// rowsIn counts the rows that a killed run left, 0 where it had no ledger yet.
+func rowsIn(t *testing.T, results string) int {
+	t.Helper()
+	ctx := context.Background()
+	l, err := ledger.OpenReader(ctx, results)
+	if err != nil {
+		t.Logf("no ledger after the kill: %v", err)
+		return 0
+	}
+	defer l.Close()
+	rows, err := l.Rows(ctx)
+	if err != nil {
+		t.Fatal(err)
+	}
+	return len(rows)
+}
+
+func lines(t *testing.T, table string) [][]string {
+	t.Helper()
+	all, err := csv.NewReader(strings.NewReader(table)).ReadAll()
+	if err != nil {
+		t.Fatal(err)
+	}
+	return all
+}
+
+// A first interrupt ends a batch in an orderly way: what is done stands in the table, and
+// the same command goes on from there.
+func TestInterruptedBatchKeepsWhatIsDone(t *testing.T) {
+	if runtime.GOOS == "windows" {
+		t.Skip("this system sends no interrupts")
+	}
+	night := smallNight(t, 5)
+	undisturbed, results := filepath.Join(t.TempDir(), "u"), filepath.Join(t.TempDir(), "r")
+	if _, code := program(t, "batch", night, "--out", undisturbed); code != 0 {
+		t.Fatalf("batch ended with %d", code)
+	}
+	cmd := exec.Command("fallshadow", "batch", night, "--out", results, "--workers", "1")
+	said := &interrupter{cmd: cmd}
+	cmd.Stderr = said
+	if code := exitCode(cmd.Run()); code != exitInterrupted {
+		t.Fatalf("exit code %d, want %d; it said\n%s", code, exitInterrupted, said.text.String())
+	}
+	if !strings.Contains(said.text.String(), "run the same command again") {
+		t.Errorf("it said\n%s", said.text.String())
+	}
+	if n := len(lines(t, tableOf(t, results))) - 1; n < 1 || n > 4 {
+		t.Errorf("%d rows in the table after the interrupt", n)
+	}
+	if _, code := program(t, "batch", night, "--out", results); code != 0 {
+		t.Fatalf("afterwards batch ended with %d", code)
+	}
+	if got, want := tableOf(t, results), tableOf(t, undisturbed); got != want {
+		t.Errorf("the table is\n%s\nwant\n%s", got, want)
+	}
+}
+
+// interrupter interrupts a program when it tells of its first shot.
+type interrupter struct {
+	cmd  *exec.Cmd
+	text bytes.Buffer
+	sent bool
+}
+
+func (i *interrupter) Write(p []byte) (int, error) {
+	i.text.Write(p)
+	if !i.sent && strings.Contains(i.text.String(), "[1/") {
+		i.sent = true
+		i.cmd.Process.Signal(syscall.SIGINT)
+	}
+	return len(p), nil
+}
+
+// A second batch on the same results stops at once and names the process that writes.
+func TestSecondBatchStops(t *testing.T) {
+	night, results := smallNight(t, 5), filepath.Join(t.TempDir(), "r")
+	first := exec.Command("fallshadow", "batch", night, "--out", results, "--workers", "1")
+	pipe, err := first.StderrPipe()
+	if err != nil {
+		t.Fatal(err)
+	}
+	if err := first.Start(); err != nil {
+		t.Fatal(err)
+	}
+	defer first.Wait()
+	defer first.Process.Kill()
+	if _, err := pipe.Read(make([]byte, 1)); err != nil { // it is past the lock when it says something
+		t.Fatal(err)
+	}
+	second := exec.Command("fallshadow", "batch", night, "--out", results)
+	said, err := second.CombinedOutput()
+	if code := exitCode(err); code != exitError || !strings.Contains(string(said), "process "+strconv.Itoa(first.Process.Pid)+" is writing") {
+		t.Errorf("exit code %d, it said\n%s", code, said)
+	}
+}
