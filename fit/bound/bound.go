@@ -30,7 +30,8 @@ type Errors struct {
 //
 //	V = M + read² + κ² v_R + v_D,
 //
-// v_D = (1−κ)² Dark for a shared dark, (1+κ²) Dark for two. The light of each pixel is
+// v_R = LightShot L + LightRead for the light L, v_D = (1−κ)² Dark for a shared dark and
+// (1+κ²) Dark for two. The light of each pixel is
 // thereby profiled out. What the variance itself tells of the cloud, one part in twice the
 // counts, is left out. A picture of density has J of σ0 n and V = DensitySigma².
 //
