@@ -17,7 +17,7 @@ const tolerance = 1e-4
 // number that no measured error reaches, such as the fugacity below Tc, is fixed by the
 // model and has neither error. Low and High are NaN.
 func Compute(m Measured, cov [NumMeasured][NumMeasured]float64, shifts []Shift, lab Lab) Result {
-	var r Result
+	r := Result{Correlation: correlation(cov)}
 	value := Derive(m, lab)
 	slopes := gradient(m, cov, lab)
 	for _, s := range shifts {
@@ -31,6 +31,17 @@ func Compute(m Measured, cov [NumMeasured][NumMeasured]float64, shifts []Shift, 
 			v.Cal = q.calibration(v.V, r.Shifts)
 		}
 		*q.result(&r) = v
+	}
+	return r
+}
+
+func correlation(cov [NumMeasured][NumMeasured]float64) (r [NumMeasured][NumMeasured]float64) {
+	for i := range r {
+		for j := range r {
+			if scale := math.Sqrt(cov[i][i] * cov[j][j]); scale > 0 {
+				r[i][j] = cov[i][j] / scale
+			}
+		}
 	}
 	return r
 }

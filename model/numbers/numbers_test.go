@@ -108,6 +108,11 @@ func TestAbsentParts(t *testing.T) {
 	r := Compute(thermal, heat, nil, lab)
 	near(t, "T", r.T.Err, 0.03*m.T, 1e-9)
 	near(t, "fugacity", r.Fugacity.V, math.Exp(-0.3), 1e-15)
+	near(t, "correlation of thermal number and T", r.Correlation[0][2], 0.5, 1e-12)
+	near(t, "correlation of a number with itself", r.Correlation[2][2], 1, 1e-12)
+	if r.Correlation[0][1] != 0 || r.Correlation[1][1] != 0 {
+		t.Errorf("an absent condensate has correlations %v", r.Correlation[1])
+	}
 	for name, v := range map[string]Value{"fraction": r.Fraction, "condensate": r.Condensate} {
 		if v.V != 0 {
 			t.Errorf("%s without a condensate is %g", name, v.V)
@@ -363,7 +368,7 @@ func TestQuantitiesCoverEveryField(t *testing.T) {
 	var d Derived
 	var r Result
 	dv, rv := reflect.ValueOf(&d).Elem(), reflect.ValueOf(&r).Elem()
-	if dv.NumField() != len(quantities) || rv.NumField() != len(quantities)+1 {
+	if dv.NumField() != len(quantities) || rv.NumField() != len(quantities)+2 { // correlation and shifts
 		t.Fatalf("%d quantities, %d fields of Derived, %d of Result", len(quantities), dv.NumField(), rv.NumField())
 	}
 	for i := range dv.NumField() {

@@ -34,6 +34,11 @@ type Result struct {
 	PhaseSpaceDensity, PeakDensity, EntropyPerAtom Value
 	ThomasFermiParameter, Collapse                 Value
 
+	// Correlation holds the correlation coefficients of the statistical errors of thermal
+	// number, condensate number, T, Mu and Alpha, in the order of Measured; rows and columns
+	// of what has no error are 0.
+	Correlation [NumMeasured][NumMeasured]float64
+
 	// Shifts tells by how much each calibration moves the numbers when it moves up by
 	// one standard deviation, in the order given. The signs keep the correlation of
 	// calibration errors, between numbers and over the shots of a night.

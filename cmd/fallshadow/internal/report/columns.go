@@ -105,6 +105,12 @@ var Columns = slices.Concat([]Column{
 	value("thomas_fermi_parameter", "", "N0 a over the oscillator length", 1, func(n *numbers.Result) *numbers.Value { return &n.ThomasFermiParameter }, itself, err),
 	value("collapse", "", "N0 over the number at which an attractive condensate collapses", 1, func(n *numbers.Result) *numbers.Value { return &n.Collapse }, itself, err),
 	[]Column{
+		correlation("thermal", "condensate", 0, 1),
+		correlation("thermal", "T", 0, 2),
+		correlation("thermal", "mu", 0, 3),
+		correlation("condensate", "T", 1, 2),
+		correlation("condensate", "mu", 1, 3),
+		correlation("T", "mu", 2, 3),
 		number("iterations", "", "steps of the minimisation", func(f *Facts) float64 { return float64(f.Fit.Iterations) }),
 	},
 )
@@ -131,6 +137,17 @@ func number(name, unit, meaning string, get func(*Facts) float64) Column {
 
 func check(name, meaning string, get func(*fit.Checks) float64) Column {
 	return number(name, "", meaning, func(f *Facts) float64 { return get(&f.Fit.Checks) })
+}
+
+// correlation is that of the statistical errors of two measured numbers, by their places in
+// a numbers.Measured; empty where the cloud lacks one of them.
+func correlation(a, b string, i, j int) Column {
+	return number("corr_"+a+"_"+b, "", "correlation of the statistical errors of "+a+" and "+b, func(f *Facts) float64 {
+		if r := f.Fit.Numbers.Correlation[i][j]; r != 0 {
+			return r
+		}
+		return math.NaN()
+	})
 }
 
 // part is one part of a value with its errors.
