@@ -3,8 +3,6 @@ package fit
 import (
 	"math"
 
-	"gonum.org/v1/gonum/mat"
-
 	"fallshadow/model"
 	"fallshadow/model/numbers"
 )
@@ -200,29 +198,19 @@ func (s *session) limitThermal(st *state, n *numbers.Result) error {
 	return nil
 }
 
-// least returns χ² at its least on the level of choices as one Gauss-Newton step from q promises
-// it: F − gᵀ(JᵀJ)⁻¹g, free of bounds.
+// least returns χ² at its least on the level of choices as one Gauss-Newton step from q promises it.
 func (s *session) least(k kind, q params) float64 {
 	p := s.problem(s.work, &q, k)
 	t := k.tie()
 	p.ties = &t
 	sr := &search{problem: p, kind: k, tie: t, base: q, h: s.ws.h[:], g: s.ws.g[:]}
-	y, h, g := make([]float64, t.n), make([]float64, t.n*t.n), make([]float64, t.n)
+	y := make([]float64, t.n)
 	for i, a := range t.slot {
 		if a >= 0 {
 			y[a] = q[i]
 		}
 	}
-	f := sr.Normal(y, h, g)
-	var chol mat.Cholesky
-	if !chol.Factorize(mat.NewSymDense(t.n, h)) {
-		return f
-	}
-	var step mat.VecDense
-	if chol.SolveVecTo(&step, mat.NewVecDense(t.n, g)) != nil {
-		return f
-	}
-	return f - mat.Dot(&step, mat.NewVecDense(t.n, g))
+	return s.ws.promise(sr, y)
 }
 
 // raise finds how far one number can grow from start until χ² stands oneSided above the

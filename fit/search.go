@@ -143,6 +143,7 @@ type state struct {
 	p          params
 	chi2       float64
 	reason     lm.Termination
+	settled    bool // stalled with nothing left to gain
 	iterations int
 	tie        tie
 	normal     []float64 // JᵀJ over the free numbers
@@ -150,7 +151,7 @@ type state struct {
 	atBound    []bool
 }
 
-func (s *state) used() bool { return s != nil && s.reason.Usable() }
+func (s *state) used() bool { return s != nil && (s.reason.Usable() || s.settled) }
 
 // variance returns the variance of parameter i, 0 for one that was not free.
 func (s *state) variance(i int) float64 {
@@ -242,7 +243,28 @@ func (w *Workspace) minimize(ctx context.Context, p *problem, k kind, start para
 	if r.Covariance(st.cov) != nil {
 		st.cov = nil
 	}
+	// The edge of a condensate is a kink to a search: where it cannot go on although next to
+	// nothing is to be gained, the minimum is found.
+	st.settled = r.Reason == lm.Stalled && r.F-w.promise(s, r.X) < kinkGain
 	return st, nil
+}
+
+// kinkGain is the decrease of χ² that a stalled search may leave: a tenth of a standard
+// deviation of one parameter.
+const kinkGain = 0.01
+
+// promise returns the χ² that one Gauss-Newton step from y promises, free of bounds:
+// F − gᵀ(JᵀJ)⁻¹g, or F where JᵀJ is singular.
+func (w *Workspace) promise(s *search, y []float64) float64 {
+	n := len(y)
+	h, g := make([]float64, n*n), make([]float64, n)
+	f := s.Normal(y, h, g)
+	var chol mat.Cholesky
+	var step mat.VecDense
+	if !chol.Factorize(mat.NewSymDense(n, h)) || chol.SolveVecTo(&step, mat.NewVecDense(n, g)) != nil {
+		return f
+	}
+	return f - mat.Dot(&step, mat.NewVecDense(n, g))
 }
 
 // limits returns the bounds and the largest step of every parameter.
