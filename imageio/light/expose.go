@@ -20,11 +20,7 @@ func (n *Night) Expose(raw *imageio.Raw) (*imageio.Exposure, error) {
 	if f := raw.Frames[imageio.Density]; f != nil {
 		return n.exposeDensity(f)
 	}
-	l, err := n.lit(raw, imageio.Light)
-	if err != nil {
-		return nil, err
-	}
-	a, err := n.lit(raw, imageio.Atoms)
+	a, l, err := n.litPair(raw)
 	if err != nil {
 		return nil, err
 	}

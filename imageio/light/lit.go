@@ -14,8 +14,40 @@ type litFrame struct {
 	dark      dark
 }
 
-// lit subtracts the dark of one frame and marks what needs no neighbours to be known.
-func (n *Night) lit(raw *imageio.Raw, role imageio.Role) (*litFrame, error) {
+// lit makes a litFrame of the light frame of a shot.
+func (n *Night) lit(raw *imageio.Raw) (*litFrame, error) {
+	l, err := n.counts(raw, imageio.Light)
+	if err != nil {
+		return nil, err
+	}
+	d, err := n.darkFrom(darkFrame(raw, imageio.Light))
+	if err != nil {
+		return nil, err
+	}
+	n.subtract(l, d)
+	return l, nil
+}
+
+// litPair makes those of both frames; a dark that serves both is looked at once.
+func (n *Night) litPair(raw *imageio.Raw) (a, l *litFrame, err error) {
+	if a, err = n.counts(raw, imageio.Atoms); err != nil {
+		return nil, nil, err
+	}
+	if l, err = n.lit(raw); err != nil {
+		return nil, nil, err
+	}
+	d := l.dark
+	if f := darkFrame(raw, imageio.Atoms); f != darkFrame(raw, imageio.Light) {
+		if d, err = n.darkFrom(f); err != nil {
+			return nil, nil, err
+		}
+	}
+	n.subtract(a, d)
+	return a, l, nil
+}
+
+// counts crops a frame and marks what its counts alone tell to be bad.
+func (n *Night) counts(raw *imageio.Raw, role imageio.Role) (*litFrame, error) {
 	f, missing, name := raw.Frames[role], NoLight, "light"
 	if role == imageio.Atoms {
 		missing, name = NoAtoms, "atoms"
@@ -30,10 +62,11 @@ func (n *Night) lit(raw *imageio.Raw, role imageio.Role) (*litFrame, error) {
 	if err := l.judge(n.Camera.FullScale, name); err != nil {
 		return nil, err
 	}
-	d, err := n.darkFor(raw, role)
-	if err != nil {
-		return nil, err
-	}
+	return l, nil
+}
+
+// subtract turns counts into electrons above a dark.
+func (n *Night) subtract(l *litFrame, d dark) {
 	l.dark = d
 	for i := range l.pix {
 		l.pix[i] = (l.pix[i] - d.counts(i)) * n.Camera.ElectronsPerCount
@@ -42,7 +75,6 @@ func (n *Night) lit(raw *imageio.Raw, role imageio.Role) (*litFrame, error) {
 		}
 	}
 	fill(l.pix, n.win.width, l.bad)
-	return l, nil
 }
 
 // judge counts saturated pixels and refuses frames that are blank or mostly saturated.

@@ -25,7 +25,14 @@ func outliers(pix, base []float64, width int, readVar float64, holes bool, bad [
 	for y := range height {
 		for x := range width {
 			i := y*width + x
-			if !bad[i] && suspect(pix, width, x, i, readVar, holes) && standsOut(pix, base, width, x, y, readVar, holes, bad) {
+			if bad[i] {
+				continue
+			}
+			inner := x > 0 && x < width-1 && y > 0 && y < height-1
+			if inner && !suspect(pix[i], pix[i-1], pix[i+1], pix[i-width], pix[i+width], readVar, holes) {
+				continue
+			}
+			if standsOut(pix, base, width, x, y, readVar, holes, bad) {
 				found = append(found, i)
 			}
 		}
@@ -72,40 +79,31 @@ func allowance(v, readVar float64) float64 {
 // suspect is a cheap test that nearly every pixel fails: an outlier differs by more than
 // the noise part of the allowance from the lowest of its four next neighbours, or, a
 // hole, from the highest.
-func suspect(pix []float64, width, x, i int, readVar float64, holes bool) bool {
-	v := pix[i]
-	low, high := v, v
-	see := func(w float64) {
-		if w < low {
-			low = w
-		} else if w > high {
-			high = w
-		}
+func suspect(v, a, b, c, d, readVar float64, holes bool) bool {
+	low, high := ordered(a, b)
+	low2, high2 := ordered(c, d)
+	if low2 < low {
+		low = low2
 	}
-	if x > 0 {
-		see(pix[i-1])
+	if high2 > high {
+		high = high2
 	}
-	if x+1 < width {
-		see(pix[i+1])
-	}
-	if i >= width {
-		see(pix[i-width])
-	}
-	if i+width < len(pix) {
-		see(pix[i+width])
-	}
-	if beyond(v-low, low, readVar) {
-		return true
-	}
-	return holes && beyond(high-v, v, readVar)
+	return beyond(v-low, low, readVar) || holes && beyond(high-v, v, readVar)
 }
 
-// beyond compares a difference with the noise part of the allowance at a level.
+func ordered(a, b float64) (low, high float64) {
+	if a < b {
+		return a, b
+	}
+	return b, a
+}
+
+// beyond compares a difference upwards with the noise part of the allowance at a level.
 func beyond(d, level, readVar float64) bool {
 	if level < 0 {
 		level = 0
 	}
-	return d*d > spikeSigmas*spikeSigmas*(level+readVar)
+	return d > 0 && d*d > spikeSigmas*spikeSigmas*(level+readVar)
 }
 
 // fill writes into each bad pixel the median of the good ones round it, taken from the

@@ -112,7 +112,7 @@ func (r *References) read(ctx context.Context, f *lightFrame) error {
 		return refuse(NoLight, "")
 	}
 	n := r.night
-	l, err := n.lit(raw, imageio.Light)
+	l, err := n.lit(raw)
 	if err != nil {
 		return err
 	}

@@ -19,13 +19,19 @@ type dark struct {
 
 func (d dark) counts(i int) float64 { return d.pattern[i] + d.level }
 
-// darkFor chooses the dark of a frame. The light frame of a four-frame shot has its own.
-// A single dark, saved with every shot, is the night's and common to all light frames.
-func (n *Night) darkFor(raw *imageio.Raw, role imageio.Role) (dark, error) {
+// darkFrame is the frame taken as the dark of another, nil where there is none. The light
+// frame of a four-frame shot has its own.
+func darkFrame(raw *imageio.Raw, role imageio.Role) *imageio.Frame {
 	f := raw.Frames[imageio.Dark]
 	if other := raw.Frames[imageio.DarkOfLight]; other != nil && (role == imageio.Light || f == nil) {
 		f = other
 	}
+	return f
+}
+
+// darkFrom makes the dark of a dark frame, or the night's for nil. A single dark, saved
+// with every shot, is the night's and common to all light frames.
+func (n *Night) darkFrom(f *imageio.Frame) (dark, error) {
 	if f == nil {
 		if n.Darks == 0 {
 			return dark{}, refuse(NoDark, "")
