@@ -4,6 +4,7 @@ import (
 	"context"
 	"fmt"
 	"path/filepath"
+	"strings"
 
 	"github.com/alecthomas/kong"
 
@@ -44,6 +45,9 @@ func (c *batchCmd) Run(ctx context.Context, t terminal) error {
 	}
 	for _, w := range lab.Warnings() {
 		fmt.Fprintf(t.err, "caution: %s\n", w)
+	}
+	if names := lab.Unstated(); len(names) > 0 {
+		fmt.Fprintf(t.err, "no uncertainty is stated for %s: cells ending in _cal that need one stay empty\n", strings.Join(names, ", "))
 	}
 	out, err := night.Batch(ctx, night.Options{
 		Dir: c.Night, Out: c.Out, Settings: lab, Workers: c.Workers, Again: c.Again, OwnRegion: c.OwnRegion,

@@ -3,6 +3,7 @@
 package main
 
 import (
+	"bufio"
 	"bytes"
 	"context"
 	"encoding/csv"
@@ -13,6 +14,7 @@ import (
 	"runtime"
 	"strconv"
 	"strings"
+	"sync"
 	"syscall"
 	"testing"
 	"time"
@@ -60,22 +62,22 @@ func TestKilledBatchGoesOn(t *testing.T) {
 	const shots = 4
 	night := smallNight(t, shots)
 	undisturbed := filepath.Join(t.TempDir(), "undisturbed")
-	start := time.Now()
-	if _, code := program(t, "batch", night, "--out", undisturbed, "--workers", "1"); code != 0 {
-		t.Fatalf("batch ended with %d", code)
-	}
-	length := time.Since(start)
+	reading, fitting := stages(t, "batch", night, "--out", undisturbed, "--workers", "1")
 	want := tableOf(t, undisturbed)
 	if rows := lines(t, want); len(rows) != shots+1 {
 		t.Fatalf("%d lines in the table", len(rows))
 	}
 	seed := uint64(time.Now().UnixNano())
-	t.Logf("seed %d, an undisturbed run takes %v", seed, length)
+	t.Logf("seed %d, an undisturbed run takes %v and %v", seed, reading, fitting)
 	random := rand.New(rand.NewPCG(seed, 1))
 	for _, workers := range []string{"1", "2"} {
-		for range kills(t) {
+		for k := range kills(t) {
 			results := filepath.Join(t.TempDir(), "r")
-			killed(t, time.Duration((0.2+0.8*random.Float64())*float64(length)), "batch", night, "--out", results, "--workers", workers)
+			after := time.Duration(random.Float64() * float64(fitting))
+			if k%4 == 3 {
+				after = -time.Duration(random.Float64() * float64(reading))
+			}
+			killed(t, after, "batch", night, "--out", results, "--workers", workers)
 			before := rowsIn(t, results)
 			out, code := program(t, "batch", night, "--out", results, "--workers", workers)
 			if code != 0 {
@@ -92,14 +94,54 @@ func TestKilledBatchGoesOn(t *testing.T) {
 	}
 }
 
-// killed starts the program and kills it after a while, if it still runs.
-func killed(t *testing.T, after time.Duration, args ...string) {
+// started starts the program; the channel is closed when it begins to fit
+// or ends.
+func started(t *testing.T, args ...string) (*exec.Cmd, <-chan struct{}) {
 	t.Helper()
 	cmd := exec.Command("fallshadow", args...)
+	pipe, err := cmd.StderrPipe()
+	if err != nil {
+		t.Fatal(err)
+	}
 	if err := cmd.Start(); err != nil {
 		t.Fatal(err)
 	}
-	time.Sleep(after)
+	fits := make(chan struct{})
+	go func() {
+		tell := sync.OnceFunc(func() { close(fits) })
+		defer tell()
+		for said := bufio.NewScanner(pipe); said.Scan(); {
+			if strings.HasPrefix(said.Text(), "fitting") {
+				tell()
+			}
+		}
+	}()
+	return cmd, fits
+}
+
+// stages runs the program to its end and returns how long it took before it began to fit,
+// and from then on.
+func stages(t *testing.T, args ...string) (reading, fitting time.Duration) {
+	t.Helper()
+	start := time.Now()
+	cmd, fits := started(t, args...)
+	<-fits
+	reading = time.Since(start)
+	if err := cmd.Wait(); err != nil {
+		t.Fatal(err)
+	}
+	return reading, time.Since(start) - reading
+}
+
+// killed starts the program and kills it, if it still runs, so long after it began to
+// fit, or for a negative time so long after its start.
+func killed(t *testing.T, after time.Duration, args ...string) {
+	t.Helper()
+	cmd, fits := started(t, args...)
+	if after >= 0 {
+		<-fits
+	}
+	time.Sleep(after.Abs())
 	cmd.Process.Kill()
 	cmd.Wait()
 }

@@ -32,7 +32,7 @@ func OpenReader(ctx context.Context, dir string) (*Reader, error) {
 		db, err = openForReading(ctx, file, "mode=ro&immutable=1")
 	}
 	if err != nil {
-		return nil, unreadable(file, err)
+		return nil, fmt.Errorf("open %s: %w", file, err)
 	}
 	return &Reader{db}, nil
 }
@@ -44,8 +44,8 @@ func openForReading(ctx context.Context, file, query string) (*sql.DB, error) {
 	}
 	db.SetMaxOpenConns(4)
 	was, err := versionOf(ctx, db)
-	if err == nil && was != version {
-		err = fmt.Errorf("the ledger has schema %d: run batch once to bring it to %d", was, version)
+	if err == nil && was < version {
+		err = errors.New("it has not been written to by this version yet: run batch first")
 	}
 	if err != nil {
 		return nil, errors.Join(err, db.Close())
