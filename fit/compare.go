@@ -247,7 +247,8 @@ func (s *session) sum(st *state, r *Result) {
 	model := s.densityOf(st)
 	p := s.problem(0, &st.p, st.kind)
 	geo := p.geometry(&st.p, p.blur2)
-	var total, fitted, variance, pull float64
+	var total, fitted, variance, pull, counts float64
+	pixels := 0
 	for o := range l.atoms {
 		x, y := float64(o%l.w), float64(o/l.w)
 		if !window(x, y) {
@@ -263,12 +264,20 @@ func (s *session) sum(st *state, r *Result) {
 		total += v
 		variance += e
 		pull += k
+		counts += l.atoms[o]
+		pixels++
 	}
 	scale := s.tmpl.pixel * s.tmpl.pixel / s.lab.Species.Sigma0()
 	r.Sum = total * scale
 	r.SumErr = math.Sqrt(variance+pull*pull*st.variance(pLight)) * scale
-	r.Checks.AtomsOverSum = fitted / total
+	if l.linear || counts > fewCounts*float64(pixels) {
+		r.Checks.AtomsOverSum = fitted / total
+	}
 }
+
+// fewCounts is the mean number of electrons a pixel below which the sum of logarithms is not
+// held against the fit: their bias is then more than its first term.
+const fewCounts = 60
 
 // pixelDensity returns σ0 n of one good pixel by the inverted law, its variance, and its
 // derivative to the light's logarithm. d is the model's density there.

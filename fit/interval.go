@@ -178,7 +178,8 @@ func (s *session) limitCondensate(st *state, n *numbers.Result) {
 	n.Fraction.High = limit / (limit + n.Thermal.V)
 }
 
-// limitThermal sets the upper limits of T and N_th beside a condensate: a saturated thermal
+// limitThermal sets the upper limits of T and N_th beside a condensate, and with them the
+// interval of N and the lower limit of the fraction: a saturated thermal
 // part at T, raised until χ² stands 2.7 above its least.
 func (s *session) limitThermal(st *state, n *numbers.Result) error {
 	k := st.kind
@@ -195,6 +196,9 @@ func (s *session) limitThermal(st *state, n *numbers.Result) error {
 	}
 	n.T.High = limit
 	n.Thermal.High = model.ThermalNumber(limit, 0, s.lab.Trap)
+	// The atoms that hide there are missing from the sums.
+	n.Atoms.Low, n.Atoms.High = n.Atoms.V-n.Atoms.Err, n.Atoms.V+n.Atoms.Err+n.Thermal.High
+	n.Fraction.Low = n.Condensate.V / (n.Condensate.V + n.Thermal.High)
 	return nil
 }
 
