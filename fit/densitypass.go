@@ -1,0 +1,273 @@
+package fit
+
+import (
+	"math"
+
+	"fallshadow/model/bose"
+)
+
+// Where z = e^−t is below 1e-10 only the background is left; where t is beyond densityDark
+// even e^−t is, so that the recurrence must not start there.
+const (
+	densitySkip = 23
+	densityDark = 600
+)
+
+// densityProblem is χ² of one level with its gradient and normal matrix, as fit/lm asks for
+// it. Along a row every derivative is g, h or k times a monomial of degree up to two in the
+// coordinates, or c = k³, or the background: so a row needs a few sums, and the matrix
+// follows from the sums over the rows. No Jacobian is stored.
+type densityProblem struct {
+	level  *densityLevel
+	frozen bool // the normal matrix is not summed but is normal
+	normal [NumDensity * NumDensity]float64
+
+	kernels     *kernelSet
+	g, h, k, r  []float64
+	tail        []float64
+	geo         densityGeometry
+	line        kernelLine
+	light       float64 // background at the first column of the row
+	moments     densityMoments
+	thermalSums [numThermalSums]lanes
+	edgeSums    [numEdgeSums]lanes
+	rootSums    [numRootSums]lanes
+}
+
+// densityGeometry holds what the parameters mean for a pass. Lengths are in units of the
+// width along axis 1, from the centre: X along the row, Y along the column.
+type densityGeometry struct {
+	p             *DensityParams
+	unit          float64
+	cos, sin      float64
+	inv           [4]float64 // 1/σ₁², 1/σ₂², 1/R₁², 1/R₂² in 1/px²
+	t20, t11, t02 float64    // t = t20 X² + t11 XY + t02 Y²
+	q20, q11, q02 float64
+	x0, dx        float64 // X of the first column, and the step
+	// What the ratio of e^−t over one pixel falls by from pixel to pixel, that over a group
+	// from pixel to pixel, and from group to group.
+	bend1, bend8, bend64 float64
+	run                  kernelFar
+}
+
+// set prepares a pass over level l at p, and says whether p has a picture.
+func (geo *densityGeometry) set(p *DensityParams, l *densityLevel) bool {
+	unit := math.Abs(p[DensityWidth1])
+	geo.p, geo.unit, geo.dx, geo.x0 = p, unit, float64(l.bin)/unit, (l.at(0)-p[DensityX])/unit
+	geo.sin, geo.cos = math.Sincos(p[DensityAngle])
+	for i, k := range [...]int{DensityWidth1, DensityWidth2, DensityRadius1, DensityRadius2} {
+		geo.inv[i] = 1 / (p[k] * p[k])
+	}
+	quadratic := func(a, b float64) (xx, xy, yy float64) {
+		c, s, u := geo.cos, geo.sin, unit*unit
+		return u * (c*c*a + s*s*b), 2 * u * c * s * (a - b), u * (s*s*a + c*c*b)
+	}
+	geo.t20, geo.t11, geo.t02 = quadratic(0.5*geo.inv[0], 0.5*geo.inv[1])
+	geo.q20, geo.q11, geo.q02 = quadratic(geo.inv[2], geo.inv[3])
+	curve := -2 * geo.t20 * geo.dx * geo.dx
+	geo.bend1, geo.bend8, geo.bend64 = math.Exp(curve), math.Exp(kernelLanes*curve), math.Exp(kernelLanes*kernelLanes*curve)
+	sum := geo.q20 + geo.q02 + geo.t20 + geo.t02
+	for _, v := range p {
+		sum += math.Abs(v)
+	}
+	return sum <= math.MaxFloat64
+}
+
+// Dim is the number of parameters.
+func (p *densityProblem) Dim() int { return NumDensity }
+
+// Normal is χ² at x with its normal matrix and half its gradient.
+func (p *densityProblem) Normal(x, h, g []float64) float64 {
+	l := p.level
+	params := (*DensityParams)(x)
+	if !p.geo.set(params, l) {
+		return math.Inf(1)
+	}
+	n := l.stride + 2*kernelLanes
+	for _, b := range [...]*[]float64{&p.g, &p.h, &p.k, &p.r, &p.tail} {
+		*b = growTo(*b, n)
+	}
+	p.moments = densityMoments{}
+	full := h != nil && !p.frozen
+	geo := &p.geo
+	p.line = kernelLine{
+		dx: geo.dx, db: params[DensityLightX] * float64(l.bin) / float64(l.fullW),
+		t2: geo.t20, amp: params[DensityThermal] * (1 / bose.Zeta2), q2: geo.q20, peak: params[DensityPeak],
+	}
+	for j := range l.h {
+		p.row(j, full)
+	}
+	p.assemble(h, g, full)
+	return p.moments.rr
+}
+
+// columns are those of the row between the roots of a·X² + b·X + c ≤ 0, within the row.
+func (geo *densityGeometry) columns(a, b, c float64, n int) (lo, hi int) {
+	d := b*b - 4*a*c
+	if !(d > 0) {
+		return 0, 0
+	}
+	d = math.Sqrt(d)
+	scale := 0.5 / (a * geo.dx)
+	offset := geo.x0 / geo.dx
+	first, last := (-b-d)*scale-offset, (-b+d)*scale-offset
+	if !(last >= 0) || !(first < float64(n)) {
+		return 0, 0
+	}
+	return int(math.Ceil(max(first, 0))), int(min(last, float64(n-1))) + 1
+}
+
+// row adds row j to the moments.
+func (p *densityProblem) row(j int, full bool) {
+	l, geo, params := p.level, &p.geo, p.geo.p
+	y := (l.at(j) - params[DensityY]) / geo.unit
+	p.light = params[DensityLight] + params[DensityLightY]*l.rowY(j) + params[DensityLightX]*l.columnX(0)
+	line := &p.line
+	line.t1, line.t0 = geo.t11*y, geo.t02*y*y
+	line.q1, line.q0 = geo.q11*y, geo.q02*y*y
+	a, b := geo.columns(line.t2, line.t1, line.t0-densitySkip, l.stride)
+	ca, cb := geo.columns(line.q2, line.q1, line.q0-1, l.stride)
+	ca, cb = ca&^(kernelLanes-1), groups(cb)
+	switch {
+	case a >= b:
+		a, b = ca, cb
+	case ca < cb:
+		a, b = min(a, ca), max(b, cb)
+	}
+	a, b = a&^(densityBlock-1), (b+densityBlock-1)&^(densityBlock-1)
+	p.background(j, a, b, y)
+	if a < b {
+		p.fill(j, a, b)
+		p.sums(j, a, b, ca, cb, full)
+		p.fold(y, ca < cb, full)
+	}
+}
+
+// background adds the pixels of row j outside [a,b), whose model is the background.
+func (p *densityProblem) background(j, a, b int, y float64) {
+	l, m, line := p.level, &p.moments, &p.line
+	run := l.running[j*(l.stride/densityBlock+1) : (j+1)*(l.stride/densityBlock+1)]
+	s := run[len(run)-1].less(&run[b/densityBlock])
+	s.add(&run[a/densityBlock])
+	b0, db := p.light, line.db
+	r0 := b0*s[0] + db*s[1] - s[3]
+	ri := b0*s[1] + db*s[2] - s[4]
+	m.rr += b0*(b0*s[0]+2*db*s[1]-2*s[3]) + db*(db*s[2]-2*s[4]) + s[5]
+	m.r[0] += r0
+	m.r[1] += p.geo.x0*r0 + p.geo.dx*ri
+	m.r[2] += y * r0
+}
+
+// from is the row's arithmetic for a run that begins at column a.
+func (p *densityProblem) from(a int) *kernelLine {
+	l := &p.line
+	l.x0 = p.geo.x0 + float64(a)*p.geo.dx
+	l.b0 = p.light + l.db*float64(a)
+	return l
+}
+
+// groups is n rounded up to whole groups.
+func groups(n int) int { return (n + kernelLanes - 1) &^ (kernelLanes - 1) }
+
+// pixels are the n data of row j from column a on. Where a last group runs past the end of
+// the image they are a copy that ends in zeros.
+func (p *densityProblem) pixels(j, a, n int) []float64 {
+	d := p.level.data[j*p.level.stride+a:]
+	if len(d) >= n {
+		return d[:n]
+	}
+	clear(p.tail)
+	copy(p.tail, d)
+	return p.tail[:n]
+}
+
+// fill computes g, h and the residual without the condensate over [a,b) of row j. Runs are
+// of whole groups: what one writes beyond its end the next overwrites.
+func (p *densityProblem) fill(j, a, b int) {
+	line, geo, w := &p.line, &p.geo, p.level.stride
+	na, nb := geo.columns(line.t2, line.t1, line.t0-boseSplit, w)
+	if na < nb {
+		p.fillFar(j, a, na)
+		n := groups(nb - na)
+		p.kernels.near(p.g[na:na+n], p.h[na:na+n], p.r[na:na+n], p.pixels(j, na, n), p.from(na))
+		a = nb
+	}
+	p.fillFar(j, a, b)
+}
+
+// noThermal is the state in which a run has no thermal part.
+var noThermal kernelFar
+
+// fillFar is fill where t ≥ boseSplit.
+func (p *densityProblem) fillFar(j, a, b int) {
+	if a >= b {
+		return
+	}
+	t := func(i int) float64 { return p.line.at(p.geo.x0 + float64(i)*p.geo.dx) }
+	if t(a) > densityDark || t(b-1) > densityDark {
+		line := &p.line
+		da, db := p.geo.columns(line.t2, line.t1, line.t0-densityDark, p.level.stride)
+		da, db = min(max(da, a), b), min(max(db, a), b)
+		p.runFar(j, a, da, &noThermal)
+		p.runFar(j, da, db, p.geo.recurrence(&p.line, da))
+		p.runFar(j, db, b, &noThermal)
+		return
+	}
+	p.runFar(j, a, b, p.geo.recurrence(&p.line, a))
+}
+
+func (p *densityProblem) runFar(j, a, b int, f *kernelFar) {
+	if n := groups(b - a); a < b {
+		p.kernels.far(p.g[a:a+n], p.h[a:a+n], p.r[a:a+n], p.pixels(j, a, n), f, p.from(a))
+	}
+}
+
+// at is t at X.
+func (l *kernelLine) at(x float64) float64 { return (l.t2*x+l.t1)*x + l.t0 }
+
+// recurrence starts z = e^−t at column a.
+func (geo *densityGeometry) recurrence(l *kernelLine, a int) *kernelFar {
+	f := &geo.run
+	x := geo.x0 + float64(a)*geo.dx
+	fall := func(n float64) float64 { // of t over n columns from a
+		return -n * geo.dx * (l.t2*(2*x+n*geo.dx) + l.t1)
+	}
+	z, r := math.Exp(-l.at(x)), math.Exp(fall(1))
+	all := math.Exp(fall(kernelLanes))
+	for i := range kernelLanes {
+		f.z[i], f.r[i] = z, all
+		z *= r
+		r *= geo.bend1
+		all *= geo.bend8
+	}
+	f.q = geo.bend64
+	return f
+}
+
+// sums runs the kernels over [a,b) of row j, with the condensate in [ca,cb).
+func (p *densityProblem) sums(j, a, b, ca, cb int, full bool) {
+	k, o := p.kernels, j*p.level.stride
+	weight := p.level.weight[o:]
+	if ca < cb {
+		k.edge(p.k[ca:cb], p.r[ca:cb], p.from(ca))
+	}
+	line := p.from(a)
+	w, g, h, r := weight[a:b], p.g[a:b], p.h[a:b], p.r[a:b]
+	k.slope(&p.thermalSums, w, r, g, h, line)
+	if full {
+		k.cross(&p.thermalSums, w, g, h, line)
+		k.powers((*[numPowers]lanes)(p.thermalSums[sumH0:]), w, h, line)
+	}
+	if ca >= cb {
+		return
+	}
+	line = p.from(ca)
+	w, g, h, r = weight[ca:cb], p.g[ca:cb], p.h[ca:cb], p.r[ca:cb]
+	root := p.k[ca:cb]
+	k.edgeSlope(&p.edgeSums, w, r, root, line)
+	if full {
+		k.peak(&p.edgeSums, w, root, g, h, line)
+		k.rootCross(&p.rootSums, w, root, g, h, line)
+		k.powers((*[numPowers]lanes)(p.rootSums[sumK0:]), w, root, line)
+	}
+}

@@ -1,0 +1,159 @@
+package fit
+
+import (
+	"math"
+
+	"fallshadow/model/bose"
+)
+
+// allKernels are the kernels that this processor has, the best one last.
+func allKernels() []*kernelSet {
+	all := []*kernelSet{&scalarKernels}
+	switch vectorWidth() {
+	case 8:
+		return append(all, &avx2Kernels, &avx512Kernels)
+	case 4:
+		return append(all, &avx2Kernels)
+	}
+	return all
+}
+
+// kernelWide are the constants of the kernels, one a row, repeated over the lanes.
+var kernelWide = widen()
+
+const (
+	wideIota = iota
+	wideEight
+	wideOne
+	wideTwo
+	wideHalf
+	wideMinusQuarter
+	wideZeta2
+	wideLn2
+	wideLeast
+	wideMost
+	wideSplit    // bits: bias less √½
+	wideExponent // bits
+	wideBias
+	wideLeastWeight
+	wideOrder // of the numbers that two unpacked registers hold, as integers
+	wideFarG
+	wideFarH  = wideFarG + 7
+	wideNearG = wideFarH + 7
+	wideNearH = wideNearG + 6
+	wideLog   = wideNearH + 6
+	numWide   = wideLog + 5
+)
+
+func widen() (w [numWide]lanes) {
+	split := uint64(biasBits)
+	split -= rootHalf
+	for i := range kernelLanes {
+		w[wideIota][i] = float64(i)
+		for k, v := range map[int]float64{
+			wideEight: kernelLanes, wideOne: 1, wideTwo: 2, wideHalf: 0.5, wideMinusQuarter: -0.25,
+			wideZeta2: bose.Zeta2, wideLn2: math.Ln2, wideLeast: nearLeast, wideMost: nearMost,
+			wideSplit: math.Float64frombits(split), wideExponent: math.Float64frombits(exponentBits), wideBias: exponentBias,
+			wideLeastWeight: leastWeight, wideOrder: math.Float64frombits(uint64([...]int{0, 2, 4, 6, 1, 3, 5, 7}[i])),
+		} {
+			w[k][i] = v
+		}
+		fill := func(at int, c []float64) {
+			for k, v := range c {
+				w[at+k][i] = v
+			}
+		}
+		fill(wideFarG, boseFarG[:])
+		fill(wideFarH, boseFarH[:])
+		fill(wideNearG, boseNearG[:])
+		fill(wideNearH, boseNearH[:])
+		fill(wideLog, boseLog[:])
+	}
+	return w
+}
+
+// avx2Kernels take four pixels at a time.
+var avx2Kernels = kernelSet{
+	name: "avx2", far: far2, near: near2, edge: edge2, slope: slope2, cross: cross2, powers: powers2,
+	edgeSlope: edgeSlope2, peak: peak2, rootCross: rootCross2,
+	weigh: weigh2, halve: halve2, blocks: blocks2,
+}
+
+//go:noescape
+func far2(g, h, r, d []float64, f *kernelFar, l *kernelLine)
+
+//go:noescape
+func near2(g, h, r, d []float64, l *kernelLine)
+
+//go:noescape
+func edge2(k, r []float64, l *kernelLine)
+
+//go:noescape
+func slope2(s *[numThermalSums]lanes, w, r, g, h []float64, l *kernelLine)
+
+//go:noescape
+func cross2(s *[numThermalSums]lanes, w, g, h []float64, l *kernelLine)
+
+//go:noescape
+func powers2(s *[numPowers]lanes, w, v []float64, l *kernelLine)
+
+//go:noescape
+func edgeSlope2(s *[numEdgeSums]lanes, w, r, k []float64, l *kernelLine)
+
+//go:noescape
+func peak2(s *[numEdgeSums]lanes, w, k, g, h []float64, l *kernelLine)
+
+//go:noescape
+func rootCross2(s *[numRootSums]lanes, w, k, g, h []float64, l *kernelLine)
+
+// avx512Kernels take eight pixels at a time.
+var avx512Kernels = kernelSet{
+	name: "avx512", far: far512, near: near512, edge: edge512, slope: slope512, cross: cross512, powers: powers512,
+	edgeSlope: edgeSlope512, peak: peak512, rootCross: rootCross512,
+	weigh: weigh512, halve: halve512, blocks: blocks512,
+}
+
+//go:noescape
+func far512(g, h, r, d []float64, f *kernelFar, l *kernelLine)
+
+//go:noescape
+func near512(g, h, r, d []float64, l *kernelLine)
+
+//go:noescape
+func edge512(k, r []float64, l *kernelLine)
+
+//go:noescape
+func slope512(s *[numThermalSums]lanes, w, r, g, h []float64, l *kernelLine)
+
+//go:noescape
+func cross512(s *[numThermalSums]lanes, w, g, h []float64, l *kernelLine)
+
+//go:noescape
+func powers512(s *[numPowers]lanes, w, v []float64, l *kernelLine)
+
+//go:noescape
+func edgeSlope512(s *[numEdgeSums]lanes, w, r, k []float64, l *kernelLine)
+
+//go:noescape
+func peak512(s *[numEdgeSums]lanes, w, k, g, h []float64, l *kernelLine)
+
+//go:noescape
+func rootCross512(s *[numRootSums]lanes, w, k, g, h []float64, l *kernelLine)
+
+//go:noescape
+func weigh2(w, sigma []float64)
+
+//go:noescape
+func halve2(w, d, w0, d0, w1, d1 []float64)
+
+//go:noescape
+func blocks2(run []densitySums, w, d []float64)
+
+//go:noescape
+func weigh512(w, sigma []float64)
+
+//go:noescape
+func halve512(w, d, w0, d0, w1, d1 []float64)
+
+//go:noescape
+func blocks512(run []densitySums, w, d []float64)
