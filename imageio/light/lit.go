@@ -82,6 +82,9 @@ func (n *Night) subtract(l *litFrame, d dark) {
 // have it.
 func (l *litFrame) judge(fullScale float64, name string) error {
 	low, high, at := extremes(l.pix)
+	if full := fullScale; high == low && high > 0 && (full > 0 && high >= full || full == 0 && isFullScale(high)) {
+		return refuse(Saturated, "%s: every pixel at %g counts", name, high)
+	}
 	if !(high > low) {
 		return refuse(Blank, "%s: all %g counts", name, l.pix[0])
 	}
@@ -101,6 +104,16 @@ func (l *litFrame) judge(fullScale float64, name string) error {
 		return refuse(Saturated, "%s: %.0f %% of the pixels at %g counts or more", name, 100*float64(l.saturated)/float64(len(l.pix)), fullScale)
 	}
 	return nil
+}
+
+// isFullScale says whether a count is the largest of a converter of 8 to 16 bits.
+func isFullScale(v float64) bool {
+	for bits := 8; bits <= 16; bits++ {
+		if v == float64(int(1)<<bits-1) {
+			return true
+		}
+	}
+	return false
 }
 
 // extremes returns lowest and highest of the values that are not NaN, and how many pixels

@@ -12,21 +12,21 @@ type Problem struct {
 
 // The words of the problems.
 const (
-	NoAtoms      = "no-atoms-frame"
-	NoLight      = "no-light-frame"
-	NoDark       = "no-dark-frame"
-	WrongSize    = "wrong-size"
-	Blank        = "blank-frame"
+	NoAtoms      = "no_atoms_frame"
+	NoLight      = "no_light_frame"
+	NoDark       = "no_dark_frame"
+	WrongSize    = "wrong_size"
+	Blank        = "blank_frame"
 	Saturated    = "saturated"
-	EmptyProbe   = "empty-probe"
-	Unlit        = "unlit-atoms-frame"
+	EmptyProbe   = "empty_probe"
+	Unlit        = "unlit_atoms_frame"
 	Exchanged    = "exchanged"
-	PartSaturate = "part-saturated"
-	Brighter     = "atoms-brighter"
-	Power        = "power-jump"
-	OddDark      = "odd-dark"
-	Drift        = "dark-drift"
-	ManyBad      = "many-bad-pixels"
+	PartSaturate = "part_saturated"
+	Brighter     = "atoms_brighter"
+	Power        = "power_jump"
+	OddDark      = "odd_dark"
+	Drift        = "dark_drift"
+	ManyBad      = "many_bad_pixels"
 )
 
 // Problems lists every problem, those without an exposure first.

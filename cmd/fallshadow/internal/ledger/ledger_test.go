@@ -23,7 +23,7 @@ func row(shot string, content byte) *Row {
 	r := &Row{
 		Shot: shot, Files: []string{shot + ".fits"}, Content: digest(content),
 		Currency: Currency{Frames: digest(content), Settings: digest(200), Analysis: 3, Reference: digest(201)},
-		Flags:    []string{"faint", "part-saturated"},
+		Flags:    []string{"faint", "part_saturated"},
 		Meta:     map[string]string{"TOF": "15.0", "note": "Ω \"quoted\"\n"},
 	}
 	r.SetNumber("T_nK", 0.1+0.2)

@@ -84,7 +84,7 @@ func facts() *Facts {
 	n.T.Low, n.T.High = 190e-9, math.Inf(1)
 	n.Shifts = []numbers.Effect{{Name: "alpha", Known: true, Change: numbers.Derived{Atoms: 1e3, Mu: nan}}}
 	return &Facts{
-		Flight: 0.015, X: 160.5, Y: 12, Reference: "own", Notes: []string{"part-saturated"},
+		Flight: 0.015, X: 160.5, Y: 12, Reference: "own", Notes: []string{"part_saturated"},
 		Fit: &fit.Result{Model: "bimodal", Form: "bose+tf", Numbers: n, Width: [2]float64{1e-4, nan}, Angle: math.Pi / 45, Flags: []string{"dense", "misfit"}},
 	}
 }
@@ -99,7 +99,7 @@ func TestFillAndCell(t *testing.T) {
 	}
 	for name, want := range map[string]string{
 		"shot": "a/1", "file": "a/1.fits;a/2.fits", "status": "ok", "reason": "",
-		"flags": "part-saturated+dense+misfit+duplicate+provisional+stale",
+		"flags": "part_saturated+dense+misfit+duplicate+provisional+stale",
 		"model": "bimodal", "form": "bose+tf", "flight_ms": "15", "atoms": "300000", "atoms_err": "3000",
 		"fraction": "0.3333333333333333", "mu_nK_cal": "", "fugacity": "", "T_nK_high": "", "width1_um": "100",
 		"width2_um": "", "x_px": "160.5", "angle_deg": "4", "reference": "own",
