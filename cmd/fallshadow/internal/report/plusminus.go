@@ -11,13 +11,15 @@ import (
 
 // Concise writes the number of a column with its statistical error in parentheses, as
 // 123.4(1.2), 0.345(12) or 1.234(12)e5: two digits of the error. An interval in its place
-// is written 12.3+1.5-0.9 and a limit <12.3; without any error the number has four digits.
+// is written 12.3+1.5-0.9 and a limit <12.3 or >12.3; without any error the number has four digits.
 func Concise(r *ledger.Row, column string) string {
 	v := r.Number(column)
 	e, low, high := r.Number(column+"_err"), r.Number(column+"_low"), r.Number(column+"_high")
 	switch {
 	case high-high == 0 && low-low != 0:
 		return "<" + short(high, 3)
+	case low-low == 0 && high-high != 0:
+		return ">" + short(low, 3)
 	case math.IsNaN(v):
 		return ""
 	case high >= v && v >= low && high > low:
