@@ -174,6 +174,7 @@ func TestHotPixels(t *testing.T) {
 			t.Errorf("pixel %d: bad %v, want %v", p, b, want)
 		}
 	}
+	within(t, "bad pixels", float64(n.BadPixels()), float64(len(hot)+1), 0)
 	if e := expose(t, n, raws[5]); !e.Good[struck] {
 		t.Error("a pixel struck in one dark of twelve is lost")
 	}

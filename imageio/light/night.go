@@ -202,3 +202,14 @@ func meanTrimmed(n int) float64 {
 	}
 	return float64(n) - 0.5 - 0.8/float64(n)
 }
+
+// BadPixels is how many pixels of the region are never used: listed, hot or restless.
+func (n *Night) BadPixels() int {
+	count := 0
+	for _, b := range n.bad {
+		if b {
+			count++
+		}
+	}
+	return count
+}
