@@ -240,9 +240,9 @@ func TestSummary(t *testing.T) {
 	if err := Summary(&out, []ledger.Row{good, bad}); err != nil {
 		t.Fatal(err)
 	}
-	want := `shot    flight/ms            N           N0    fraction        T/nK      mu/nK  T/Tc0  flags
-shot_1         15  3.000(30)e5  1.000(10)e5  0.3333(33)  200.0(2.0)  50.00(50)         dense
-b?[2J                                                                                  failed: b.fits: truncated
+	want := `shot    flight/ms            N           N0    fraction  T/nK      mu/nK  T/Tc0  flags
+shot_1         15  3.000(30)e5  1.000(10)e5  0.3333(33)  >190  50.00(50)         dense
+b?[2J                                                                            failed: b.fits: truncated
 `
 	table, legend, _ := strings.Cut(out.String(), "\n\n")
 	if diff := cmp.Diff(want, table+"\n"); diff != "" {
