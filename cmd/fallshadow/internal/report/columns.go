@@ -1,6 +1,7 @@
 package report
 
 import (
+	"image"
 	"math"
 	"slices"
 	"strconv"
@@ -26,10 +27,12 @@ type Column struct {
 
 // Facts is what is known of a shot once it has been fitted.
 type Facts struct {
-	Flight    float64  // s
-	X, Y      float64  // centre of the cloud in pixels of the saved frame
-	Reference string   // what the light was made of
-	Notes     []string // words of what was seen in the frames
+	Flight    float64         // s
+	X, Y      float64         // centre of the cloud in pixels of the saved frame
+	Reference string          // what the light was made of
+	Notes     []string        // words of what was seen in the frames
+	Region    image.Rectangle // that was fitted, saved pixels
+	Pixel     float64         // side of a fitted pixel in the plane of the atoms, m
 	Fit       *fit.Result
 }
 
