@@ -110,8 +110,9 @@ func (l *Ledger) Close() error {
 }
 
 // Put stores a row in one transaction. A row that it replaces is kept as history when
-// it was final and its pixels, settings, analysis or reference were others.
-func (l *Ledger) Put(ctx context.Context, r *Row) error {
+// it was final and its pixels, settings, analysis or reference were others. The files that
+// the row was made from may be noted with it.
+func (l *Ledger) Put(ctx context.Context, r *Row, seen ...Sighting) error {
 	args, err := r.columns()
 	if err != nil {
 		return fmt.Errorf("store %s: %w", r.Shot, err)
@@ -121,7 +122,10 @@ func (l *Ledger) Put(ctx context.Context, r *Row) error {
 			return err
 		}
 		_, err := tx.ExecContext(ctx, "INSERT OR REPLACE INTO row ("+stored+", present) VALUES (?,?,?,?,?,?,?,?,?,?,?,?,?,?, 1)", args...)
-		return err
+		if err != nil {
+			return err
+		}
+		return see(ctx, tx, seen)
 	})
 }
 

@@ -91,6 +91,49 @@ func (r *Reader) Rows(ctx context.Context) ([]Row, error) {
 	return list, nil
 }
 
+// Row returns the row of a shot that is in the folder, with Duplicate and Bad filled in;
+// nil where there is none.
+func (r *Reader) Row(ctx context.Context, shot string) (*Row, error) {
+	row, err := scanRow(r.read.QueryRowContext(ctx, "SELECT "+stored+" FROM row WHERE present AND shot = ?", shot))
+	if errors.Is(err, sql.ErrNoRows) {
+		return nil, nil
+	}
+	if err != nil {
+		return nil, wrap("read the row of "+shot, err)
+	}
+	first, err := r.firstOf(ctx, row.Content)
+	if err != nil {
+		return nil, wrap("read the row of "+shot, err)
+	}
+	if first != shot {
+		row.Duplicate = first
+	}
+	err = r.read.QueryRowContext(ctx, "SELECT word FROM verdict WHERE content = ?", row.Content.blob()).Scan(&row.Bad)
+	if err != nil && !errors.Is(err, sql.ErrNoRows) {
+		return nil, wrap("read the verdict on "+shot, err)
+	}
+	return &row, nil
+}
+
+// firstOf returns the first shot in natural order with the given content, "" for none.
+func (r *Reader) firstOf(ctx context.Context, content Digest) (first string, err error) {
+	rows, err := r.read.QueryContext(ctx, "SELECT shot FROM row WHERE present AND content = ?", content.blob())
+	if err != nil {
+		return "", err
+	}
+	defer rows.Close()
+	for rows.Next() {
+		var shot string
+		if err := rows.Scan(&shot); err != nil {
+			return "", err
+		}
+		if first == "" || imageio.Natural(shot, first) < 0 {
+			first = shot
+		}
+	}
+	return first, rows.Err()
+}
+
 // History returns the rows that once stood under the name of the shot, oldest first.
 func (r *Reader) History(ctx context.Context, shot string) ([]Row, error) {
 	list, err := r.rows(ctx, "SELECT "+stored+" FROM history WHERE shot = ? ORDER BY id", shot)

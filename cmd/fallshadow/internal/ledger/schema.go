@@ -68,6 +68,11 @@ CREATE TABLE verdict (
 	content BLOB PRIMARY KEY,
 	word    TEXT NOT NULL
 );
+CREATE TABLE sighting (
+	path     TEXT PRIMARY KEY,
+	size     INTEGER NOT NULL,
+	modified INTEGER NOT NULL
+);
 CREATE TABLE region (
 	first_shot TEXT PRIMARY KEY,
 	x0 INTEGER NOT NULL,

@@ -1,0 +1,57 @@
+package ledger
+
+import (
+	"context"
+	"testing"
+
+	"github.com/google/go-cmp/cmp"
+)
+
+// What the files looked like is stored with the row, and stands when the ledger is
+// opened again.
+func TestSightings(t *testing.T) {
+	ctx, dir := context.Background(), t.TempDir()
+	l := open0(t, dir)
+	a, b := Sighting{"a.fits", 100, 5}, Sighting{"b_light.fits", 1 << 40, 1 << 62}
+	if err := l.Put(ctx, row("a", 1), a, b); err != nil {
+		t.Fatal(err)
+	}
+	b.Modified++
+	if err := l.See(ctx, b); err != nil {
+		t.Fatal(err)
+	}
+	if err := l.Close(); err != nil {
+		t.Fatal(err)
+	}
+	got, err := open0(t, dir).Sightings(ctx)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if diff := cmp.Diff(map[string]Sighting{a.Path: a, b.Path: b}, got); diff != "" {
+		t.Error(diff)
+	}
+}
+
+// One row alone says what it says among all.
+func TestRowAlone(t *testing.T) {
+	ctx, l := context.Background(), open0(t, t.TempDir())
+	put(t, l, row("shot_10", 1), row("shot_9", 1), row("shot_2", 2), row("gone", 3))
+	reconcile(t, l, Present{Shot: "shot_10", Content: digest(1)}, Present{Shot: "shot_9", Content: digest(1)}, Present{Shot: "shot_2", Content: digest(2)})
+	if err := l.Judge(ctx, digest(2), "probe off"); err != nil {
+		t.Fatal(err)
+	}
+	for _, want := range read(t, l.Reader) {
+		got, err := l.Row(ctx, want.Shot)
+		if err != nil || got == nil {
+			t.Fatalf("%s: %v, %v", want.Shot, got, err)
+		}
+		if diff := cmp.Diff(want, *got); diff != "" {
+			t.Errorf("%s: %s", want.Shot, diff)
+		}
+	}
+	for _, name := range []string{"gone", "never"} {
+		if got, err := l.Row(ctx, name); got != nil || err != nil {
+			t.Errorf("%s: %v, %v", name, got, err)
+		}
+	}
+}
