@@ -24,10 +24,10 @@ type walk struct {
 }
 
 // The longest step that the series of an exponential is taken along, and the one after which
-// Newton's method is not asked again.
+// the third order of Chebyshev's step leaves nothing to ask again.
 const (
 	longStep  = 0.06
-	shortStep = 3e-5
+	shortStep = 2e-3
 )
 
 // transmit returns the transmitted fraction of light s = I_0/Isat through d = σ0 n, its
@@ -45,10 +45,12 @@ func (w *walk) transmit(l *law, d, s float64) (t, td, ts float64) {
 			n = 1 / (l.a + s*w.e)
 			continue
 		}
+		short := step < shortStep && step > -shortStep
+		step += 0.5 * step * step * s * w.e * n
 		w.u += step
 		w.e *= 1 - step*(1-step*(0.5-step*(1.0/6-step*(1.0/24-step*(1.0/120)))))
 		n = 1 / (l.a + s*w.e)
-		if step < shortStep && step > -shortStep {
+		if short {
 			break
 		}
 	}

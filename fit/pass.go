@@ -164,49 +164,41 @@ func (p *problem) fillRow(geo *geometry, j, i0, i1 int, full bool, m *moments) i
 			g *= geo.norm
 			h *= geo.norm
 		}
-		var a, bb, rho float64
 		if l.linear {
-			w := math.Sqrt(c) / l.sigma
-			rho = (l.atoms[o] - geo.ampGrown*g - rowLight - geo.light[1]*(l.at(i)-geo.xc)*geo.iw) * w
-			a, bb = -w, -w
+			w := c / (l.sigma * l.sigma)
+			r := l.atoms[o] - geo.ampGrown*g - rowLight - geo.light[1]*(l.at(i)-geo.xc)*geo.iw
+			rr += r * r * w
+			b.wa[n], b.wab[n], b.wb[n] = w, w, w
+			b.ra[n], b.rb[n] = -w*r, -w*r
 		} else {
-			a, bb, rho = p.pixel(&walk, o, k, geo.ampGrown*g)
-		}
-		rr += rho * rho
-		if !full {
-			continue
+			t, td, ts := walk.transmit(&p.law, geo.ampGrown*g, k*l.probe[o])
+			r, iv, lambda := l.slope(o, k*t)
+			rr += r * r * iv
+			da, db := -lambda*k*td, -lambda*k*(t+ts)
+			b.wa[n], b.wab[n], b.wb[n] = da*da*iv, da*db*iv, db*db*iv
+			b.ra[n], b.rb[n] = da*r*iv, db*r*iv
 		}
 		b.x[n], b.g[n], b.h[n] = x, g, h
-		b.wa[n], b.wab[n], b.wb[n] = a*a, a*bb, bb*bb
-		b.ra[n], b.rb[n] = a*rho, bb*rho
-		n++
+		if full {
+			n++
+		}
 	}
 	m.rr += rr
 	return n
 }
 
-// pixel returns of an unblurred pixel the derivatives of its residual to σ0 n and to the
-// light's logarithm, and the residual.
+// slope returns of bin o the residual r = A − κ L over its variance V, 1/V, and λ, so that the
+// sum of squares is Σ r²/V with ∂(r/√V)/∂κ = −λ/√V.
 //
-// The residual is that of a fit to both frames with the true light profiled out,
-// ρ = (A − κ L)/√V, κ = k T, V = v_A + κ² v_L + (1−κ)² v_D with v_A frozen, so that
-// ∂ρ/∂κ = −λ/√V with λ = L + ρ(κ v_L − (1−κ) v_D)/√V: the estimate of the light from both
-// frames, which is not correlated with ρ. The noise of L alone would bias the scale.
-func (p *problem) pixel(w *walk, o int, k, d float64) (a, b, rho float64) {
-	l := p.level
-	t, td, ts := w.transmit(&p.law, d, k*l.probe[o])
-	rho, dk := l.residual(o, k*t)
-	return dk * k * td, dk * k * (t + ts), rho
-}
-
-// residual returns ρ and ∂ρ/∂κ of bin o.
-func (l *level) residual(o int, kappa float64) (rho, slope float64) {
+// That sum is the fit to both frames with the true light profiled out: V = v_A + κ² v_L +
+// (1−κ)² v_D with v_A frozen, and λ = L + r(κ v_L − (1−κ) v_D)/V is the estimate of the light
+// from both frames, which is not correlated with r. The noise of L alone would bias the scale.
+func (l *level) slope(o int, kappa float64) (r, iv, lambda float64) {
 	vl, vd := l.variances(o)
 	dark := 1 - kappa
-	v := l.varAtoms[o] + kappa*kappa*vl + dark*dark*vd
-	is := 1 / math.Sqrt(v)
-	rho = (l.atoms[o] - kappa*l.light[o]) * is
-	return rho, -(l.light[o] + rho*(kappa*vl-dark*vd)*is) * is
+	iv = 1 / (l.varAtoms[o] + kappa*kappa*vl + dark*dark*vd)
+	r = l.atoms[o] - kappa*l.light[o]
+	return r, iv, l.light[o] + r*iv*(kappa*vl-dark*vd)
 }
 
 // rows adds the sums over n buffered pixels of a row at distance y from the centre.

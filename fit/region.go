@@ -251,8 +251,9 @@ func (p *problem) regionPixel(geo *geometry, b *regionBuffers, o, i, j, n int, f
 		bb = slope
 	} else {
 		k := geo.scale(x, y)
-		rho, slope = l.residual(o, k*t)
-		slope *= k
+		r, iv, lambda := l.slope(o, k*t)
+		root := math.Sqrt(iv)
+		rho, slope = r*root, -lambda*root*k
 		bb = slope * (t + b.images[imageTS][n])
 	}
 	acc.rr += rho * rho

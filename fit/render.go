@@ -10,13 +10,12 @@ func (p *problem) render(q *params, dst []float64) {
 	in := p.room.bounds(p.level)
 	l := p.level
 	for j := range l.h {
-		var walk walk
-		for i := range l.w {
-			if j >= in.y0 && j < in.y1 && i >= in.x0 && i < in.x1 {
-				continue
-			}
-			dst[j*l.w+i] = p.sharpPixel(&walk, &geo, i, j)
+		if j < in.y0 || j >= in.y1 {
+			p.renderRow(&geo, dst, j, 0, l.w)
+			continue
 		}
+		p.renderRow(&geo, dst, j, 0, in.x0)
+		p.renderRow(&geo, dst, j, in.x1, l.w)
 	}
 	if in.x1 <= in.x0 {
 		return
@@ -44,21 +43,29 @@ func (p *problem) render(q *params, dst []float64) {
 	}
 }
 
-func (p *problem) sharpPixel(w *walk, geo *geometry, i, j int) float64 {
+// renderRow fills the pixels [i0,i1) of row j, outside the room.
+func (p *problem) renderRow(geo *geometry, dst []float64, j, i0, i1 int) {
 	l := p.level
-	x, y := l.at(i), l.at(j)
-	dx, dy := x-geo.x0, y-geo.y0
-	tau := dx*(0.5*geo.axx*dx+geo.axy*dy) + 0.5*geo.ayy*dy*dy + geo.alpha
-	d := 0.0
-	if tau < farTau+geo.alpha {
-		g, _ := boseFast(tau)
-		d = geo.ampGrown * g * geo.norm
+	y := l.at(j)
+	dy := y - geo.y0
+	k, kStep := geo.scale(l.at(i0), y), math.Exp(geo.light[1]*float64(l.bin)*geo.iw)
+	var walk walk
+	for i := i0; i < i1; i, k = i+1, k*kStep {
+		o := j*l.w + i
+		dx := l.at(i) - geo.x0
+		tau := dx*(0.5*geo.axx*dx+geo.axy*dy) + 0.5*geo.ayy*dy*dy + geo.alpha
+		d := 0.0
+		if tau < farTau+geo.alpha {
+			g, _ := boseFast(tau)
+			d = geo.ampGrown * g * geo.norm
+		}
+		if l.linear {
+			dst[o] = d + geo.plane(l.at(i), y)
+			continue
+		}
+		t, _, _ := walk.transmit(&p.law, d, k*l.probe[o])
+		dst[o] = t * k
 	}
-	t, _, _ := p.transmission(w, geo, j*l.w+i, x, y, d)
-	if l.linear {
-		return t + geo.plane(x, y)
-	}
-	return t * geo.scale(x, y)
 }
 
 // freeze sets the variance of the atoms frame from the model: the counts it expects plus
@@ -95,7 +102,8 @@ func (p *problem) residuals(kappa, dst []float64) {
 		case l.linear:
 			dst[o] = (l.atoms[o] - k) * math.Sqrt(l.count[o]) / l.sigma
 		default:
-			dst[o], _ = l.residual(o, k)
+			r, iv, _ := l.slope(o, k)
+			dst[o] = r * math.Sqrt(iv)
 		}
 	}
 }
