@@ -109,7 +109,9 @@ func (s *session) follow(i int, c *candidates) error {
 		if *to == nil {
 			continue
 		}
-		st, err := s.runWidth(i, (*to).kind, (*to).p, 0.02)
+		st, err := s.runWidth(func(k kind, start params) (*state, error) {
+			return s.run(i, k, start, 0.02)
+		}, (*to).kind, (*to).p)
 		if err != nil {
 			return err
 		}

@@ -99,8 +99,10 @@ const settled = 0.3
 // settled.
 func (s *session) refine(st *state) (*state, error) {
 	for range 5 {
-		s.freeze(0, st)
-		next, err := s.runWidth(0, st.kind, st.p, 3e-3)
+		s.freezeFull(st)
+		next, err := s.runWidth(func(k kind, start params) (*state, error) {
+			return s.runFull(k, start, 3e-3)
+		}, st.kind, st.p)
 		if err != nil {
 			return nil, err
 		}

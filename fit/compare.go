@@ -8,7 +8,7 @@ import (
 // the worse of the condensate's ellipse and of 8×8 blocks under the cloud.
 func (s *session) residuals(st *state, r *Result) {
 	p := s.problem(0, &st.p, st.kind)
-	p.render(&st.p, s.ws.kappa)
+	p.freeze(&st.p, s.ws.kappa, s.ws.kappa)
 	p.residuals(s.ws.kappa, s.ws.resid)
 	l := s.levels[0]
 	sum, n := 0.0, 0
@@ -246,7 +246,7 @@ func (s *session) sum(st *state, r *Result) {
 	window := s.window(st)
 	model := s.densityOf(st)
 	p := s.problem(0, &st.p, st.kind)
-	geo := p.geometry(&st.p, p.blur2)
+	geo := p.geometry(&st.p, p.blurOn(p.level))
 	var total, fitted, variance, pull, counts float64
 	pixels := 0
 	for o := range l.atoms {
@@ -322,7 +322,7 @@ func (s *session) window(st *state) func(x, y float64) bool {
 // densityOf returns the model's σ0 n as a function of place, without blur.
 func (s *session) densityOf(st *state) func(x, y float64) float64 {
 	p := s.problem(0, &st.p, st.kind)
-	geo := p.geometry(&st.p, p.blur2)
+	geo := p.geometry(&st.p, p.blurOn(p.level))
 	e := s.tmpl.condensateOf(&st.p)
 	inv := e.shape().Inverse()
 	return func(x, y float64) float64 {

@@ -63,24 +63,25 @@ type DensityResult struct {
 	Chi2       float64 // Σ((od − density)/σ)², where the last step was predicted to bring it
 	Reason     lm.Termination
 	Iterations int // at full resolution
-	// Normal is JᵀJ, from the image binned 2×2 where it was large enough to be binned: its
-	// inverse is the covariance.
+	// Normal is JᵀJ at full resolution, about a standard error from Params, and so within a
+	// few percent of that at Params: its inverse is the covariance.
 	Normal [NumDensity * NumDensity]float64
 }
 
-// Tolerances of the steps between the levels: the decrease of χ² in which a level that is
-// only on the way ends, from 2×2 up; and the relative ones at the end.
+// Where the search ends: on a level on the way, from 2×2 up, by the decrease of χ² that is
+// left, and at full resolution by relative tolerances.
 const (
 	densityEnough     = 0.02
-	densityEnoughStep = 10
+	densityEnoughStep = 10 // from level to level
 	densityXTol       = 1e-8
 	densityFTol       = 1e-10
 )
 
-// DensityFit minimises χ² from start, first on binned images, then at full resolution with
-// the normal matrix of the 2×2 level. It ends when the next step would change the parameters by less than 1e-8
-// or χ² by less than 1e-10 of themselves, and takes that step unseen. Signs of widths and
-// turns of the axes by a quarter do not matter in start and may differ in the result.
+// DensityFit minimises χ² from start, first on binned images, then at full resolution, where
+// the normal matrix of the first pass serves the next two. It ends when the next step would
+// change the parameters by less than 1e-8 or χ² by less than 1e-10 of themselves, and takes
+// that step unseen. Signs of widths and turns of the axes by a quarter do not matter in
+// start and may differ in the result.
 func DensityFit(ctx context.Context, img *DensityImage, start *DensityParams, ws *DensityWorkspace) (DensityResult, error) {
 	if err := img.check(); err != nil {
 		return DensityResult{}, err
@@ -108,7 +109,7 @@ func DensityChi2(img *DensityImage, p *DensityParams, ws *DensityWorkspace) (flo
 	if err := ws.levels[0].check(); err != nil {
 		return math.NaN(), err
 	}
-	ws.problem.level, ws.problem.frozen = &ws.levels[0], true
+	ws.problem.level = &ws.levels[0]
 	return ws.problem.Normal(p[:], nil, nil), nil
 }
 
@@ -151,7 +152,7 @@ const (
 func (ws *DensityWorkspace) level(ctx context.Context, i, top int, r *DensityResult) error {
 	p := &ws.problem
 	p.level = &ws.levels[i]
-	p.frozen = i == 0 && top > 0
+	p.passes = 0
 	s := lm.Settings{XTol: densityXTol, FTol: densityFTol, AcceptPredicted: true, MaxStep: ws.step.most[:], RelStep: ws.step.relative[:]}
 	if i == top {
 		s.Lambda = 0.01
@@ -165,7 +166,6 @@ func (ws *DensityWorkspace) level(ctx context.Context, i, top int, r *DensityRes
 	}
 	copy(r.Params[:], res.X)
 	copy(r.Normal[:], res.H)
-	p.normal = r.Normal
 	r.Chi2, r.Reason, r.Iterations = res.F, res.Reason, res.Iterations
 	return nil
 }

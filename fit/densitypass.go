@@ -6,32 +6,36 @@ import (
 	"fallshadow/model/bose"
 )
 
-// Where z = e^−t is below 1e-10 only the background is left; where t is beyond densityDark
-// even e^−t is, so that the recurrence must not start there.
+// Where z = e^−t is below 1e-10 only the background is left. A condensate may reach further:
+// beyond densityDark z is taken as 0, so that no ratio of it overflows.
 const (
 	densitySkip = 23
-	densityDark = 600
+	densityDark = 80
 )
+
+// densityKept is for how many passes over the full image one matrix serves.
+const densityKept = 3
 
 // densityProblem is χ² of one level with its gradient and normal matrix, as fit/lm asks for
 // it. Along a row every derivative is g, h or k times a monomial of degree up to two in the
 // coordinates, or c = k³, or the background: so a row needs a few sums, and the matrix
 // follows from the sums over the rows. No Jacobian is stored.
 type densityProblem struct {
-	level  *densityLevel
-	frozen bool // the normal matrix is not summed but is normal
+	level *densityLevel
+	// The matrix is summed on binned levels, in the first pass over the full image, and from
+	// the fourth on, where a fit is slow because it has changed. Else it is the one kept.
+	passes int
 	normal [NumDensity * NumDensity]float64
 
-	kernels     *kernelSet
-	g, h, k, r  []float64
-	tail        []float64
-	geo         densityGeometry
-	line        kernelLine
-	light       float64 // background at the first column of the row
-	moments     densityMoments
-	thermalSums [numThermalSums]lanes
-	edgeSums    [numEdgeSums]lanes
-	rootSums    [numRootSums]lanes
+	kernels    *kernelSet
+	g, h, k, r []float64
+	tail       []float64
+	geo        densityGeometry
+	line       kernelLine
+	light      float64 // background at the first column of the row
+	moments    densityMoments
+	sum        kernelSums
+	total      kernelTotals
 }
 
 // densityGeometry holds what the parameters mean for a pass. Lengths are in units of the
@@ -44,10 +48,10 @@ type densityGeometry struct {
 	t20, t11, t02 float64    // t = t20 X² + t11 XY + t02 Y²
 	q20, q11, q02 float64
 	x0, dx        float64 // X of the first column, and the step
-	// What the ratio of e^−t over one pixel falls by from pixel to pixel, that over a group
-	// from pixel to pixel, and from group to group.
-	bend1, bend8, bend64 float64
-	run                  kernelFar
+	// The ratio of e^−t over one pixel falls by bend1 from pixel to pixel, that over a group
+	// by bend8, from group to group by bend64; bend28 is what it has fallen by within one.
+	bend1, bend8, bend28, bend64 float64
+	run                          kernelFar
 }
 
 // set prepares a pass over level l at p, and says whether p has a picture.
@@ -65,7 +69,7 @@ func (geo *densityGeometry) set(p *DensityParams, l *densityLevel) bool {
 	geo.t20, geo.t11, geo.t02 = quadratic(0.5*geo.inv[0], 0.5*geo.inv[1])
 	geo.q20, geo.q11, geo.q02 = quadratic(geo.inv[2], geo.inv[3])
 	curve := -2 * geo.t20 * geo.dx * geo.dx
-	geo.bend1, geo.bend8, geo.bend64 = math.Exp(curve), math.Exp(kernelLanes*curve), math.Exp(kernelLanes*kernelLanes*curve)
+	geo.bend1, geo.bend8, geo.bend28, geo.bend64 = math.Exp(curve), math.Exp(8*curve), math.Exp(28*curve), math.Exp(64*curve)
 	sum := geo.q20 + geo.q02 + geo.t20 + geo.t02
 	for _, v := range p {
 		sum += math.Abs(v)
@@ -88,7 +92,7 @@ func (p *densityProblem) Normal(x, h, g []float64) float64 {
 		*b = growTo(*b, n)
 	}
 	p.moments = densityMoments{}
-	full := h != nil && !p.frozen
+	full := h != nil && (l.bin > 1 || p.passes == 0 || p.passes >= densityKept)
 	geo := &p.geo
 	p.line = kernelLine{
 		dx: geo.dx, db: params[DensityLightX] * float64(l.bin) / float64(l.fullW),
@@ -98,6 +102,10 @@ func (p *densityProblem) Normal(x, h, g []float64) float64 {
 		p.row(j, full)
 	}
 	p.assemble(h, g, full)
+	if full {
+		copy(p.normal[:], h)
+	}
+	p.passes++
 	return p.moments.rr
 }
 
@@ -146,6 +154,9 @@ func (p *densityProblem) row(j int, full bool) {
 // background adds the pixels of row j outside [a,b), whose model is the background.
 func (p *densityProblem) background(j, a, b int, y float64) {
 	l, m, line := p.level, &p.moments, &p.line
+	if a == 0 && b == l.stride {
+		return
+	}
 	run := l.running[j*(l.stride/densityBlock+1) : (j+1)*(l.stride/densityBlock+1)]
 	s := run[len(run)-1].less(&run[b/densityBlock])
 	s.add(&run[a/densityBlock])
@@ -229,11 +240,10 @@ func (l *kernelLine) at(x float64) float64 { return (l.t2*x+l.t1)*x + l.t0 }
 func (geo *densityGeometry) recurrence(l *kernelLine, a int) *kernelFar {
 	f := &geo.run
 	x := geo.x0 + float64(a)*geo.dx
-	fall := func(n float64) float64 { // of t over n columns from a
-		return -n * geo.dx * (l.t2*(2*x+n*geo.dx) + l.t1)
-	}
-	z, r := math.Exp(-l.at(x)), math.Exp(fall(1))
-	all := math.Exp(fall(kernelLanes))
+	z, r := math.Exp(-l.at(x)), math.Exp(-geo.dx*(l.t2*(2*x+geo.dx)+l.t1))
+	all := r * r // over a group: r⁸ and what r falls by on the way
+	all *= all
+	all *= all * geo.bend28
 	for i := range kernelLanes {
 		f.z[i], f.r[i] = z, all
 		z *= r
@@ -253,10 +263,10 @@ func (p *densityProblem) sums(j, a, b, ca, cb int, full bool) {
 	}
 	line := p.from(a)
 	w, g, h, r := weight[a:b], p.g[a:b], p.h[a:b], p.r[a:b]
-	k.slope(&p.thermalSums, w, r, g, h, line)
+	k.slope(&p.sum, w, r, g, h, line)
 	if full {
-		k.cross(&p.thermalSums, w, g, h, line)
-		k.powers((*[numPowers]lanes)(p.thermalSums[sumH0:]), w, h, line)
+		k.cross(&p.sum, w, g, h, line)
+		k.powers((*[numPowers]lanes)(p.sum[sumH0:]), w, h, line)
 	}
 	if ca >= cb {
 		return
@@ -264,10 +274,10 @@ func (p *densityProblem) sums(j, a, b, ca, cb int, full bool) {
 	line = p.from(ca)
 	w, g, h, r = weight[ca:cb], p.g[ca:cb], p.h[ca:cb], p.r[ca:cb]
 	root := p.k[ca:cb]
-	k.edgeSlope(&p.edgeSums, w, r, root, line)
+	k.edgeSlope(&p.sum, w, r, root, line)
 	if full {
-		k.peak(&p.edgeSums, w, root, g, h, line)
-		k.rootCross(&p.rootSums, w, root, g, h, line)
-		k.powers((*[numPowers]lanes)(p.rootSums[sumK0:]), w, root, line)
+		k.peak(&p.sum, w, root, g, h, line)
+		k.rootCross(&p.sum, w, root, g, h, line)
+		k.powers((*[numPowers]lanes)(p.sum[sumK0:]), w, root, line)
 	}
 }

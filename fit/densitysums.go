@@ -13,26 +13,24 @@ type densityMoments struct {
 	hh, kk, hk             [5][5]float64
 }
 
-// total is the sum over the lanes, which it clears.
-func (s *lanes) total() float64 {
-	v := ((s[0] + s[1]) + (s[2] + s[3])) + ((s[4] + s[5]) + (s[6] + s[7]))
-	*s = lanes{}
-	return v
-}
-
 // fold adds the sums of a row at Y = y to the moments and clears them.
 func (p *densityProblem) fold(y float64, condensate, full bool) {
-	m, s := &p.moments, &p.thermalSums
+	m, s := &p.moments, &p.total
+	n := sumRC
+	if !full {
+		n = kernelLanes
+	}
+	p.kernels.totals(s[:n], p.sum[:n])
 	y2 := y * y
-	m.rr += s[sumRR].total()
-	r0 := s[sumR0].total()
+	m.rr += s[sumRR]
+	r0 := s[sumR0]
 	m.r[0] += r0
-	m.r[1] += s[sumR1].total()
+	m.r[1] += s[sumR1]
 	m.r[2] += y * r0
-	m.rg += s[sumRG].total()
+	m.rg += s[sumRG]
 	fold2(&m.rh, s[sumRH0:sumRH2+1], y, y2)
 	if full {
-		m.gg += s[sumGG].total()
+		m.gg += s[sumGG]
 		fold1(&m.g, s[sumG0:sumG1+1], y)
 		fold2(&m.gh, s[sumGH0:sumGH2+1], y, y2)
 		fold3(&m.h, s[sumH0:sumH3+1], y, y2)
@@ -44,44 +42,49 @@ func (p *densityProblem) fold(y float64, condensate, full bool) {
 }
 
 func (p *densityProblem) foldCondensate(y, y2 float64, full bool) {
-	m, s, t := &p.moments, &p.edgeSums, &p.rootSums
-	m.rc += s[sumRC].total()
+	m, s := &p.moments, &p.total
+	n := numSums
+	if !full {
+		n = sumRC + kernelLanes
+	}
+	p.kernels.totals(s[sumRC:n], p.sum[sumRC:n])
+	m.rc += s[sumRC]
 	fold2(&m.rk, s[sumRK0:sumRK2+1], y, y2)
 	if !full {
 		return
 	}
-	m.cc += s[sumCC].total()
+	m.cc += s[sumCC]
 	fold1(&m.c, s[sumC0:sumC1+1], y)
-	m.gc += s[sumGC].total()
+	m.gc += s[sumGC]
 	fold2(&m.ch, s[sumCH0:sumCH2+1], y, y2)
 	fold2(&m.ck, s[sumCK0:sumCK2+1], y, y2)
-	fold2(&m.gk, t[sumGK0:sumGK2+1], y, y2)
-	fold4(&m.hk, t[sumHK0:sumHK4+1], y, y2)
-	fold3(&m.k, t[sumK0:sumK3+1], y, y2)
-	fold4(&m.kk, t[sumKK0:sumKK4+1], y, y2)
+	fold2(&m.gk, s[sumGK0:sumGK2+1], y, y2)
+	fold4(&m.hk, s[sumHK0:sumHK4+1], y, y2)
+	fold3(&m.k, s[sumK0:sumK3+1], y, y2)
+	fold4(&m.kk, s[sumKK0:sumKK4+1], y, y2)
 }
 
 // fold1 to fold4 add the sums of the powers of X up to that degree, times the powers of y
 // that complete it.
-func fold1(m *[2][2]float64, s []lanes, y float64) {
-	v := s[0].total()
+func fold1(m *[2][2]float64, s []float64, y float64) {
+	v := s[0]
 	m[0][0] += v
 	m[0][1] += v * y
-	m[1][0] += s[1].total()
+	m[1][0] += s[1]
 }
 
-func fold2(m *[3][3]float64, s []lanes, y, y2 float64) {
-	v, u := s[0].total(), s[1].total()
+func fold2(m *[3][3]float64, s []float64, y, y2 float64) {
+	v, u := s[0], s[1]
 	m[0][0] += v
 	m[0][1] += v * y
 	m[0][2] += v * y2
 	m[1][0] += u
 	m[1][1] += u * y
-	m[2][0] += s[2].total()
+	m[2][0] += s[2]
 }
 
-func fold3(m *[4][4]float64, s []lanes, y, y2 float64) {
-	v, u, t := s[0].total(), s[1].total(), s[2].total()
+func fold3(m *[4][4]float64, s []float64, y, y2 float64) {
+	v, u, t := s[0], s[1], s[2]
 	m[0][0] += v
 	m[0][1] += v * y
 	m[0][2] += v * y2
@@ -91,11 +94,11 @@ func fold3(m *[4][4]float64, s []lanes, y, y2 float64) {
 	m[1][2] += u * y2
 	m[2][0] += t
 	m[2][1] += t * y
-	m[3][0] += s[3].total()
+	m[3][0] += s[3]
 }
 
-func fold4(m *[5][5]float64, s []lanes, y, y2 float64) {
-	v, u, t, q := s[0].total(), s[1].total(), s[2].total(), s[3].total()
+func fold4(m *[5][5]float64, s []float64, y, y2 float64) {
+	v, u, t, q := s[0], s[1], s[2], s[3]
 	m[0][0] += v
 	m[0][1] += v * y
 	m[0][2] += v * y2
@@ -110,7 +113,7 @@ func fold4(m *[5][5]float64, s []lanes, y, y2 float64) {
 	m[2][2] += t * y2
 	m[3][0] += q
 	m[3][1] += q * y
-	m[4][0] += s[4].total()
+	m[4][0] += s[4]
 }
 
 // The basis of the derivatives: g, h times the five monomials, c, k times the five
@@ -193,7 +196,7 @@ func (m *densityMoments) products() (s [numBase][numBase]float64) {
 	return s
 }
 
-// assemble fills the gradient, and the normal matrix or its frozen copy.
+// assemble fills the gradient, and the normal matrix or its kept copy.
 func (p *densityProblem) assemble(h, g []float64, full bool) {
 	if g == nil {
 		return

@@ -82,7 +82,7 @@ func (s *session) interval(full *state, at int, v *numbers.Value, unit float64) 
 	if !(v.Err > poor*math.Abs(v.V)) || full.cov == nil {
 		return nil
 	}
-	rest, err := s.run(0, full.kind, full.p, 1e-3)
+	rest, err := s.runFull(full.kind, full.p, 1e-3)
 	if err != nil || !rest.used() {
 		return err
 	}
@@ -142,7 +142,7 @@ func (p *profile) side(sign, r float64) (float64, error) {
 
 // rise is the root of the rise of χ² where the number is held at x.
 func (p *profile) rise(x float64) (float64, error) {
-	q := p.s.problem(0, &p.rest.p, p.rest.kind)
+	q := p.s.split(&p.rest.p, p.rest.kind)
 	q.pull = &pull{p.at, x, 1e-3 * p.sigma}
 	got, err := p.s.ws.minimize(p.s.ctx, q, p.rest.kind, p.rest.p, 1e-3)
 	if err != nil {

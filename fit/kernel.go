@@ -28,7 +28,7 @@ type kernelLine struct {
 
 // The sums that a run of pixels adds to, named by what is multiplied with the weight: r the
 // residual, g and h the Bose functions, c = k³ and k = √(1−q) of the condensate, and the
-// power of X.
+// power of X. They stand in groups that are totalled together.
 const (
 	sumRR = iota
 	sumR0
@@ -52,12 +52,9 @@ const (
 	sumHH2
 	sumHH3
 	sumHH4
-	numThermalSums
-	numPowers = numThermalSums - sumH0
-)
-
-const (
-	sumRC = iota
+	_
+	_
+	sumRC
 	sumRK0
 	sumRK1
 	sumRK2
@@ -71,11 +68,9 @@ const (
 	sumCK0
 	sumCK1
 	sumCK2
-	numEdgeSums
-)
-
-const (
-	sumGK0 = iota
+	_
+	_
+	sumGK0
 	sumGK1
 	sumGK2
 	sumHK0
@@ -92,8 +87,17 @@ const (
 	sumKK2
 	sumKK3
 	sumKK4
-	numRootSums
+	numSums = (iota + kernelLanes - 1) / kernelLanes * kernelLanes
 )
+
+// kernelSums are the sums lane by lane, kernelTotals those over the lanes.
+type (
+	kernelSums   [numSums]lanes
+	kernelTotals [numSums]float64
+)
+
+// numPowers is how many sums the kernel for powers adds to.
+const numPowers = sumHH4 - sumH0 + 1
 
 // kernelSet is one implementation of the kernels. All slices of a call have the same
 // length, a multiple of kernelLanes.
@@ -108,13 +112,13 @@ type kernelSet struct {
 	edge func(k, r []float64, l *kernelLine)
 	// slope adds to the sums up to sumRH2, cross from there to sumGH2, and powers w·v times 1
 	// to X³ and w·v² times 1 to X⁴ to nine of them.
-	slope  func(s *[numThermalSums]lanes, w, r, g, h []float64, l *kernelLine)
-	cross  func(s *[numThermalSums]lanes, w, g, h []float64, l *kernelLine)
+	slope  func(s *kernelSums, w, r, g, h []float64, l *kernelLine)
+	cross  func(s *kernelSums, w, g, h []float64, l *kernelLine)
 	powers func(s *[numPowers]lanes, w, v []float64, l *kernelLine)
 	// edgeSlope adds to the sums up to sumRK2, peak from there on, rootCross up to sumHK4.
-	edgeSlope func(s *[numEdgeSums]lanes, w, r, k []float64, l *kernelLine)
-	peak      func(s *[numEdgeSums]lanes, w, k, g, h []float64, l *kernelLine)
-	rootCross func(s *[numRootSums]lanes, w, k, g, h []float64, l *kernelLine)
+	edgeSlope func(s *kernelSums, w, r, k []float64, l *kernelLine)
+	peak      func(s *kernelSums, w, k, g, h []float64, l *kernelLine)
+	rootCross func(s *kernelSums, w, k, g, h []float64, l *kernelLine)
 	// weigh fills w with 1/σ².
 	weigh func(w, sigma []float64)
 	// halve fills w and d with the weights and the weighted means of pairs of pixels from two
@@ -122,4 +126,7 @@ type kernelSet struct {
 	halve func(w, d, w0, d0, w1, d1 []float64)
 	// blocks fills run, from run[0] on, with the sums up to each block of densityBlock pixels.
 	blocks func(run []densitySums, w, d []float64)
+	// totals fills t with the sums over the lanes of s, of which there are a multiple of
+	// kernelLanes, and clears s.
+	totals func(t []float64, s []lanes)
 }

@@ -76,7 +76,7 @@ func widen() (w [numWide]lanes) {
 var avx2Kernels = kernelSet{
 	name: "avx2", far: far2, near: near2, edge: edge2, slope: slope2, cross: cross2, powers: powers2,
 	edgeSlope: edgeSlope2, peak: peak2, rootCross: rootCross2,
-	weigh: weigh2, halve: halve2, blocks: blocks2,
+	weigh: weigh2, halve: halve2, blocks: blocks2, totals: totals2,
 }
 
 //go:noescape
@@ -89,28 +89,28 @@ func near2(g, h, r, d []float64, l *kernelLine)
 func edge2(k, r []float64, l *kernelLine)
 
 //go:noescape
-func slope2(s *[numThermalSums]lanes, w, r, g, h []float64, l *kernelLine)
+func slope2(s *kernelSums, w, r, g, h []float64, l *kernelLine)
 
 //go:noescape
-func cross2(s *[numThermalSums]lanes, w, g, h []float64, l *kernelLine)
+func cross2(s *kernelSums, w, g, h []float64, l *kernelLine)
 
 //go:noescape
 func powers2(s *[numPowers]lanes, w, v []float64, l *kernelLine)
 
 //go:noescape
-func edgeSlope2(s *[numEdgeSums]lanes, w, r, k []float64, l *kernelLine)
+func edgeSlope2(s *kernelSums, w, r, k []float64, l *kernelLine)
 
 //go:noescape
-func peak2(s *[numEdgeSums]lanes, w, k, g, h []float64, l *kernelLine)
+func peak2(s *kernelSums, w, k, g, h []float64, l *kernelLine)
 
 //go:noescape
-func rootCross2(s *[numRootSums]lanes, w, k, g, h []float64, l *kernelLine)
+func rootCross2(s *kernelSums, w, k, g, h []float64, l *kernelLine)
 
 // avx512Kernels take eight pixels at a time.
 var avx512Kernels = kernelSet{
 	name: "avx512", far: far512, near: near512, edge: edge512, slope: slope512, cross: cross512, powers: powers512,
 	edgeSlope: edgeSlope512, peak: peak512, rootCross: rootCross512,
-	weigh: weigh512, halve: halve512, blocks: blocks512,
+	weigh: weigh512, halve: halve512, blocks: blocks512, totals: totals512,
 }
 
 //go:noescape
@@ -123,22 +123,22 @@ func near512(g, h, r, d []float64, l *kernelLine)
 func edge512(k, r []float64, l *kernelLine)
 
 //go:noescape
-func slope512(s *[numThermalSums]lanes, w, r, g, h []float64, l *kernelLine)
+func slope512(s *kernelSums, w, r, g, h []float64, l *kernelLine)
 
 //go:noescape
-func cross512(s *[numThermalSums]lanes, w, g, h []float64, l *kernelLine)
+func cross512(s *kernelSums, w, g, h []float64, l *kernelLine)
 
 //go:noescape
 func powers512(s *[numPowers]lanes, w, v []float64, l *kernelLine)
 
 //go:noescape
-func edgeSlope512(s *[numEdgeSums]lanes, w, r, k []float64, l *kernelLine)
+func edgeSlope512(s *kernelSums, w, r, k []float64, l *kernelLine)
 
 //go:noescape
-func peak512(s *[numEdgeSums]lanes, w, k, g, h []float64, l *kernelLine)
+func peak512(s *kernelSums, w, k, g, h []float64, l *kernelLine)
 
 //go:noescape
-func rootCross512(s *[numRootSums]lanes, w, k, g, h []float64, l *kernelLine)
+func rootCross512(s *kernelSums, w, k, g, h []float64, l *kernelLine)
 
 //go:noescape
 func weigh2(w, sigma []float64)
@@ -157,3 +157,9 @@ func halve512(w, d, w0, d0, w1, d1 []float64)
 
 //go:noescape
 func blocks512(run []densitySums, w, d []float64)
+
+//go:noescape
+func totals2(t []float64, s []lanes)
+
+//go:noescape
+func totals512(t []float64, s []lanes)

@@ -204,7 +204,7 @@ edgeLoop:
 	NEXT(edgeLoop)
 	END(edgeHalf)
 
-// func slope(s *[numThermalSums]lanes, w, r, g, h []float64, l *kernelLine)
+// func slope(s *kernelSums, w, r, g, h []float64, l *kernelLine)
 TEXT SLOPE, NOSPLIT, $0-112
 	MOVQ s+0(FP), R10
 	MOVQ w_base+8(FP), DI
@@ -252,7 +252,7 @@ slopeLoop:
 	VMOVUPD V6, (const_sumRH2*64)(R10)(BX*1)
 	END(slopeHalf)
 
-// func cross(s *[numThermalSums]lanes, w, g, h []float64, l *kernelLine)
+// func cross(s *kernelSums, w, g, h []float64, l *kernelLine)
 // adds the sums from sumGG to sumGH2.
 TEXT CROSS, NOSPLIT, $0-88
 	MOVQ s+0(FP), R10
@@ -353,7 +353,7 @@ powersLoop:
 	VMOVUPD V8, (8*64)(R10)(BX*1)
 	END(powersHalf)
 
-// func edgeSlope(s *[numEdgeSums]lanes, w, r, k []float64, l *kernelLine)
+// func edgeSlope(s *kernelSums, w, r, k []float64, l *kernelLine)
 TEXT EDGESLOPE, NOSPLIT, $0-88
 	MOVQ s+0(FP), R10
 	MOVQ w_base+8(FP), DI
@@ -393,7 +393,7 @@ edgeSlopeLoop:
 	VMOVUPD V3, (const_sumRK2*64)(R10)(BX*1)
 	END(edgeSlopeHalf)
 
-// func peak(s *[numEdgeSums]lanes, w, k, g, h []float64, l *kernelLine)
+// func peak(s *kernelSums, w, k, g, h []float64, l *kernelLine)
 // adds the sums from sumCC to sumCK2.
 TEXT PEAK, NOSPLIT, $0-112
 	MOVQ s+0(FP), R10
@@ -455,7 +455,7 @@ peakLoop:
 	VMOVUPD V9, (const_sumCK2*64)(R10)(BX*1)
 	END(peakHalf)
 
-// func rootCross(s *[numRootSums]lanes, w, k, g, h []float64, l *kernelLine)
+// func rootCross(s *kernelSums, w, k, g, h []float64, l *kernelLine)
 // adds the sums from sumGK0 to sumHK4.
 TEXT ROOTCROSS, NOSPLIT, $0-112
 	MOVQ s+0(FP), R10

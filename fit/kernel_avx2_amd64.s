@@ -40,18 +40,45 @@
 
 #include "kernel_amd64.h"
 
-// PAIR adds two sums over the lanes of Y registers, al to ah and bl to bh, in the order of
-// lanes.total, to those at (R8).
-#define PAIR(al, bl, ah, bh, xa, xb, offset) \
+// PAIR leaves in xa, which is the low half of al, the totals of two sums whose lanes are in
+// al and ah, and bl and bh, in the order of lanes.total.
+#define PAIR(al, bl, ah, bh, xa, xb) \
 	VHADDPD bl, al, al \
 	VEXTRACTF128 $1, al, X14 \
 	VADDPD  X14, xa, xa \
 	VHADDPD bh, ah, ah \
 	VEXTRACTF128 $1, ah, X14 \
 	VADDPD  X14, xb, xb \
-	VADDPD  xb, xa, xa \
-	VADDPD  offset(R8), xa, xa \
-	VMOVUPD xa, offset+64(R8)
+	VADDPD  xb, xa, xa
+
+#define RUNNING(x, offset) \
+	VADDPD  offset(R8), x, x \
+	VMOVUPD x, offset+64(R8)
+
+// func totals2(t []float64, s []lanes)
+TEXT ·totals2(SB), NOSPLIT, $0-48
+	MOVQ t_base+0(FP), DI
+	MOVQ t_len+8(FP), DX
+	MOVQ s_base+24(FP), SI
+	VXORPD Y10, Y10, Y10
+
+total:
+	VMOVUPD (SI), Y0
+	VMOVUPD 32(SI), Y1
+	VMOVUPD 64(SI), Y2
+	VMOVUPD 96(SI), Y3
+	VMOVUPD Y10, (SI)
+	VMOVUPD Y10, 32(SI)
+	VMOVUPD Y10, 64(SI)
+	VMOVUPD Y10, 96(SI)
+	PAIR(Y0, Y2, Y1, Y3, X0, X1)
+	VMOVUPD X0, (DI)
+	ADDQ $16, DI
+	ADDQ $128, SI
+	SUBQ $2, DX
+	JGT  total
+	VZEROUPPER
+	RET
 
 // HALFGROUP adds 4 pixels at the given offset to six sums.
 #define HALFGROUP(o, a0, a1, a2, c0, c1, c2) \
@@ -101,9 +128,12 @@ group:
 	CMPQ CX, R9
 	JLT  group
 
-	PAIR(Y0, Y1, Y6, Y7, X0, X6, 0)
-	PAIR(Y2, Y3, Y8, Y9, X2, X8, 16)
-	PAIR(Y4, Y5, Y10, Y11, X4, X10, 32)
+	PAIR(Y0, Y1, Y6, Y7, X0, X6)
+	PAIR(Y2, Y3, Y8, Y9, X2, X8)
+	PAIR(Y4, Y5, Y10, Y11, X4, X10)
+	RUNNING(X0, 0)
+	RUNNING(X2, 16)
+	RUNNING(X4, 32)
 	ADDQ $64, R8
 	CMPQ CX, DX
 	JLT  block

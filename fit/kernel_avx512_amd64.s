@@ -40,6 +40,58 @@
 
 #include "kernel_amd64.h"
 
+// The sums over the lanes of eight registers, in the order of lanes.total: NEIGHBOURS
+// interleaves the sums of neighbours from two registers, ACROSS those of the next ones,
+// and the third ACROSS leaves eight totals in a.
+#define NEIGHBOURS(a, b) \
+	VUNPCKHPD b, a, Z14 \
+	VUNPCKLPD b, a, a \
+	VADDPD Z14, a, a
+
+#define ACROSS(a, b) \
+	VSHUFF64X2 $0xDD, b, a, Z14 \
+	VSHUFF64X2 $0x88, b, a, a \
+	VADDPD Z14, a, a
+
+// func totals512(t []float64, s []lanes)
+TEXT ·totals512(SB), NOSPLIT, $0-48
+	MOVQ t_base+0(FP), DI
+	MOVQ t_len+8(FP), DX
+	MOVQ s_base+24(FP), SI
+	VPXORQ Z10, Z10, Z10
+
+total:
+	VMOVUPD (SI), Z0
+	VMOVUPD 64(SI), Z1
+	VMOVUPD 128(SI), Z2
+	VMOVUPD 192(SI), Z3
+	VMOVUPD 256(SI), Z4
+	VMOVUPD 320(SI), Z5
+	VMOVUPD 384(SI), Z6
+	VMOVUPD 448(SI), Z7
+	VMOVUPD Z10, (SI)
+	VMOVUPD Z10, 64(SI)
+	VMOVUPD Z10, 128(SI)
+	VMOVUPD Z10, 192(SI)
+	VMOVUPD Z10, 256(SI)
+	VMOVUPD Z10, 320(SI)
+	VMOVUPD Z10, 384(SI)
+	VMOVUPD Z10, 448(SI)
+	NEIGHBOURS(Z0, Z1)
+	NEIGHBOURS(Z2, Z3)
+	NEIGHBOURS(Z4, Z5)
+	NEIGHBOURS(Z6, Z7)
+	ACROSS(Z0, Z2)
+	ACROSS(Z4, Z6)
+	ACROSS(Z0, Z4)
+	VMOVUPD Z0, (DI)
+	ADDQ $64, DI
+	ADDQ $512, SI
+	SUBQ $8, DX
+	JGT  total
+	VZEROUPPER
+	RET
+
 // func blocks512(run []densitySums, w, d []float64)
 TEXT ·blocks512(SB), NOSPLIT, $0-72
 	MOVQ run_base+0(FP), R8
@@ -78,28 +130,15 @@ group:
 	CMPQ CX, R9
 	JLT  group
 
-	// The sums over the lanes in the order of lanes.total: neighbours, pairs, halves.
-	VUNPCKLPD Z1, Z0, Z6
-	VUNPCKHPD Z1, Z0, Z7
-	VADDPD    Z7, Z6, Z6
-	VUNPCKLPD Z3, Z2, Z7
-	VUNPCKHPD Z3, Z2, Z8
-	VADDPD    Z8, Z7, Z7
-	VUNPCKLPD Z5, Z4, Z8
-	VUNPCKHPD Z5, Z4, Z9
-	VADDPD    Z9, Z8, Z8
-	VSHUFF64X2 $0x88, Z7, Z6, Z0
-	VSHUFF64X2 $0xDD, Z7, Z6, Z1
-	VADDPD     Z1, Z0, Z0
-	VSHUFF64X2 $0x88, Z10, Z8, Z2
-	VSHUFF64X2 $0xDD, Z10, Z8, Z3
-	VADDPD     Z3, Z2, Z2
-	VSHUFF64X2 $0x88, Z2, Z0, Z4
-	VSHUFF64X2 $0xDD, Z2, Z0, Z5
-	VADDPD     Z5, Z4, Z4
-	VADDPD     Z4, Z11, Z11
-	ADDQ       $64, R8
-	VMOVUPD    Z11, (R8)
+	NEIGHBOURS(Z0, Z1)
+	NEIGHBOURS(Z2, Z3)
+	NEIGHBOURS(Z4, Z5)
+	ACROSS(Z0, Z2)
+	ACROSS(Z4, Z10)
+	ACROSS(Z0, Z4)
+	VADDPD  Z0, Z11, Z11
+	ADDQ    $64, R8
+	VMOVUPD Z11, (R8)
 	CMPQ CX, DX
 	JLT  block
 	VZEROUPPER

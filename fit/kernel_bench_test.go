@@ -12,9 +12,8 @@ type kernelCase struct {
 	run                            []densitySums
 	line                           kernelLine
 	far                            kernelFar
-	thermal                        [numThermalSums]lanes
-	edge                           [numEdgeSums]lanes
-	root                           [numRootSums]lanes
+	sum                            kernelSums
+	total                          kernelTotals
 }
 
 func newKernelCase(n int) *kernelCase {
@@ -46,15 +45,16 @@ func kernelCalls(s *kernelSet, c *kernelCase) []struct {
 		{"far", func() { s.far(c.g, c.h, c.r, c.d, &c.far, &c.line) }},
 		{"near", func() { s.near(c.g, c.h, c.r, c.d, &c.line) }},
 		{"edge", func() { s.edge(c.k, c.r, &c.line) }},
-		{"slope", func() { s.slope(&c.thermal, c.w, c.r, c.g, c.h, &c.line) }},
-		{"cross", func() { s.cross(&c.thermal, c.w, c.g, c.h, &c.line) }},
-		{"powers", func() { s.powers((*[numPowers]lanes)(c.thermal[sumH0:]), c.w, c.h, &c.line) }},
-		{"edgeSlope", func() { s.edgeSlope(&c.edge, c.w, c.r, c.k, &c.line) }},
-		{"peak", func() { s.peak(&c.edge, c.w, c.k, c.g, c.h, &c.line) }},
+		{"slope", func() { s.slope(&c.sum, c.w, c.r, c.g, c.h, &c.line) }},
+		{"cross", func() { s.cross(&c.sum, c.w, c.g, c.h, &c.line) }},
+		{"powers", func() { s.powers((*[numPowers]lanes)(c.sum[sumH0:]), c.w, c.h, &c.line) }},
+		{"edgeSlope", func() { s.edgeSlope(&c.sum, c.w, c.r, c.k, &c.line) }},
+		{"peak", func() { s.peak(&c.sum, c.w, c.k, c.g, c.h, &c.line) }},
 		{"weigh", func() { s.weigh(c.halfW, c.d) }},
 		{"halve", func() { s.halve(c.halfW[:len(c.w)/2], c.halfD[:len(c.w)/2], c.w, c.d, c.k, c.g) }},
 		{"blocks", func() { s.blocks(c.run, c.w[:len(c.w)/densityBlock*densityBlock], c.d) }},
-		{"rootCross", func() { s.rootCross(&c.root, c.w, c.k, c.g, c.h, &c.line) }},
+		{"rootCross", func() { s.rootCross(&c.sum, c.w, c.k, c.g, c.h, &c.line) }},
+		{"totals", func() { s.totals(c.total[:], c.sum[:]) }},
 	}
 }
 

@@ -12,7 +12,7 @@ import (
 var scalarKernels = kernelSet{
 	name: "scalar", far: scalarFar, near: scalarNear, edge: scalarEdge, slope: scalarSlope, cross: scalarCross, powers: scalarPowers,
 	edgeSlope: scalarEdgeSlope, peak: scalarPeak, rootCross: scalarRootCross,
-	weigh: scalarWeigh, halve: scalarHalve, blocks: scalarBlocks,
+	weigh: scalarWeigh, halve: scalarHalve, blocks: scalarBlocks, totals: scalarTotals,
 }
 
 func scalarFar(g, h, r, d []float64, f *kernelFar, l *kernelLine) {
@@ -118,7 +118,7 @@ func scalarEdge(k, r []float64, l *kernelLine) {
 	}
 }
 
-func scalarSlope(s *[numThermalSums]lanes, w, r, g, h []float64, l *kernelLine) {
+func scalarSlope(s *kernelSums, w, r, g, h []float64, l *kernelLine) {
 	n := len(w)
 	r, g, h = r[:n], g[:n], h[:n]
 	for j := range kernelLanes {
@@ -140,7 +140,7 @@ func scalarSlope(s *[numThermalSums]lanes, w, r, g, h []float64, l *kernelLine) 
 	}
 }
 
-func scalarCross(s *[numThermalSums]lanes, w, g, h []float64, l *kernelLine) {
+func scalarCross(s *kernelSums, w, g, h []float64, l *kernelLine) {
 	n := len(w)
 	g, h = g[:n], h[:n]
 	for j := range kernelLanes {
@@ -189,7 +189,7 @@ func scalarPowers(s *[numPowers]lanes, w, v []float64, l *kernelLine) {
 	}
 }
 
-func scalarEdgeSlope(s *[numEdgeSums]lanes, w, r, k []float64, l *kernelLine) {
+func scalarEdgeSlope(s *kernelSums, w, r, k []float64, l *kernelLine) {
 	n := len(w)
 	r, k = r[:n], k[:n]
 	for j := range kernelLanes {
@@ -207,7 +207,7 @@ func scalarEdgeSlope(s *[numEdgeSums]lanes, w, r, k []float64, l *kernelLine) {
 	}
 }
 
-func scalarPeak(s *[numEdgeSums]lanes, w, k, g, h []float64, l *kernelLine) {
+func scalarPeak(s *kernelSums, w, k, g, h []float64, l *kernelLine) {
 	n := len(w)
 	k, g, h = k[:n], g[:n], h[:n]
 	for j := range kernelLanes {
@@ -239,7 +239,7 @@ func scalarPeak(s *[numEdgeSums]lanes, w, k, g, h []float64, l *kernelLine) {
 	}
 }
 
-func scalarRootCross(s *[numRootSums]lanes, w, k, g, h []float64, l *kernelLine) {
+func scalarRootCross(s *kernelSums, w, k, g, h []float64, l *kernelLine) {
 	n := len(w)
 	k, g, h = k[:n], g[:n], h[:n]
 	for j := range kernelLanes {
@@ -296,22 +296,33 @@ func scalarBlocks(run []densitySums, w, d []float64) {
 	for b := range len(w) / densityBlock {
 		var s [len(densitySums{})]lanes
 		o := b * densityBlock
-		for j := range kernelLanes {
-			var a0, a1, a2, c0, c1, c2 float64
-			for i := o + j; i < o+densityBlock; i += kernelLanes {
-				x, q, v := float64(i), w[i], d[i]
-				qx, e := float64(q*x), float64(q*v)
-				a0 += q
-				a1 += qx
-				a2 = math.FMA(qx, x, a2)
-				c0 += e
-				c1 = math.FMA(e, x, c1)
-				c2 = math.FMA(e, v, c2)
-			}
-			s[0][j], s[1][j], s[2][j], s[3][j], s[4][j], s[5][j] = a0, a1, a2, c0, c1, c2
+		u, v := (*[densityBlock]float64)(w[o:]), (*[densityBlock]float64)(d[o:])
+		for i, q := range u {
+			j := i % kernelLanes
+			x, y := float64(o+i), v[i]
+			qx, e := float64(q*x), float64(q*y)
+			s[0][j] += q
+			s[1][j] += qx
+			s[2][j] = math.FMA(qx, x, s[2][j])
+			s[3][j] += e
+			s[4][j] = math.FMA(e, x, s[4][j])
+			s[5][j] = math.FMA(e, y, s[5][j])
 		}
 		for k := range s {
 			run[b+1][k] = run[b][k] + s[k].total()
 		}
 	}
+}
+
+// total is the sum over the lanes: neighbours, pairs, halves.
+func (s *lanes) total() float64 {
+	return ((s[0] + s[1]) + (s[2] + s[3])) + ((s[4] + s[5]) + (s[6] + s[7]))
+}
+
+func scalarTotals(t []float64, s []lanes) {
+	t = t[:len(s)]
+	for i := range s {
+		t[i] = s[i].total()
+	}
+	clear(s)
 }

@@ -92,10 +92,9 @@ func (c *kernelCase) differ(o *kernelCase) string {
 
 func (c *kernelCase) all() [][]float64 {
 	v := [][]float64{c.w, c.r, c.g, c.h, c.k, c.d, c.halfW, c.halfD}
-	for _, s := range [...][]lanes{c.thermal[:], c.edge[:], c.root[:]} {
-		for i := range s {
-			v = append(v, s[i][:])
-		}
+	v = append(v, c.total[:])
+	for i := range c.sum {
+		v = append(v, c.sum[i][:])
 	}
 	for i := range c.run {
 		v = append(v, c.run[i][:])

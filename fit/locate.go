@@ -37,7 +37,7 @@ func Locate(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt Opt
 	s.fillMask(st, place.Mask)
 	p := s.problem(0, &st.p, st.kind)
 	place.Transmission = make([]float64, len(place.Mask))
-	p.render(&st.p, place.Transmission)
+	p.render(&st.p, place.Transmission, place.Transmission)
 	if p.level.linear {
 		place.Transmission = nil
 		return place, nil

@@ -21,9 +21,9 @@ func (s *session) maps(st *state) *Maps {
 		Density: make([]float32, n), Thermal: make([]float32, n), Total: make([]float32, n), Residual: make([]float32, n),
 	}
 	p := s.problem(0, &st.p, st.kind)
-	p.render(&st.p, s.ws.kappa)
+	p.render(&st.p, s.ws.kappa, s.ws.kappa)
 	p.residuals(s.ws.kappa, s.ws.resid)
-	geo := p.geometry(&st.p, p.blur2)
+	geo := p.geometry(&st.p, p.blurOn(p.level))
 	total := s.densityOf(st)
 	alone := *st
 	alone.p[pCondensate] = 0

@@ -15,10 +15,11 @@ import (
 // row needs only sums of a², ab and b² times those, and the matrix follows from the sums
 // (row moments). Pixels inside are blurred and summed directly (region.go).
 type problem struct {
-	level *level
+	level *level // outside the room, where bins may be coarse against the pixels but not the cloud
+	fine  *level // inside the room; its bins divide those of level
 	tmpl  *template
 	law   law
-	blur2 float64 // variance of the blur, px²: resolution and pixel width
+	blur  float64 // optical resolution, px rms
 	room  room    // where the cloud is blurred pixel by pixel
 	skip  []bool  // pixels of the level that a fit of the wings leaves out, or nil
 	pull  *pull   // a measured number that is held, or nil
@@ -102,7 +103,7 @@ type moments struct {
 // parameters (numParams×numParams row by row). It returns +Inf for parameters that have no
 // picture.
 func (p *problem) normal(q *params, h, g []float64) float64 {
-	geo := p.geometry(q, p.blur2)
+	geo := p.geometry(q, p.blurOn(p.level))
 	if !(geo.v[0] > 0) || !(geo.v[1] > 0) || math.IsInf(geo.v[0]+geo.v[1], 1) || geo.alpha < 0 {
 		return math.Inf(1)
 	}
@@ -111,21 +112,26 @@ func (p *problem) normal(q *params, h, g []float64) float64 {
 	p.buf.rows(p.level.w)
 	in := p.room.bounds(p.level)
 	for j := range p.level.h {
-		if j < in.y0 || j >= in.y1 {
-			p.row(&geo, j, 0, p.level.w, full, &m)
-			continue
-		}
-		p.row(&geo, j, 0, in.x0, full, &m)
-		p.row(&geo, j, in.x1, p.level.w, full, &m)
+		a, b := in.gap(j, p.level.w)
+		p.row(&geo, j, 0, a, full, &m)
+		p.row(&geo, j, b, p.level.w, full, &m)
 	}
 	if full {
 		m.assemble(&geo, h, g)
 	}
-	f := m.rr
-	if in.y1 > in.y0 && in.x1 > in.x0 {
-		f += p.regionNormal(q, &geo, in, h, g)
-	}
-	return f
+	return m.rr + p.regionNormal(q, &geo, p.inside(in), h, g)
+}
+
+// blurOn is the variance of the blur in px²: resolution and the width of the level's bins.
+func (p *problem) blurOn(l *level) float64 {
+	bin := float64(l.bin)
+	return p.blur*p.blur + bin*bin/12
+}
+
+// inside is a box of the level in bins of the fine level.
+func (p *problem) inside(b box) box {
+	f := p.level.bin / p.fine.bin
+	return box{b.x0 * f, b.y0 * f, b.x1 * f, b.y1 * f}
 }
 
 // row adds the pixels [i0,i1) of row j.

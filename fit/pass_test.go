@@ -48,12 +48,12 @@ func testProblem(t testing.TB, lab *Lab, linear bool, q params, r room) *problem
 		pic.Density, pic.DensitySigma = make([]float64, w*h), 0.05
 	}
 	p := &problem{tmpl: &tmpl, law: newLaw(&lab.Optics), room: r, buf: new(buffers)}
-	s := lab.Optics.Blur / lab.Optics.Pixel
-	p.blur2 = s*s + 1.0/12
+	p.blur = lab.Optics.Blur / lab.Optics.Pixel
 	p.level = fullLevel(pic, &lab.Optics)
+	p.fine = p.level
 	p.level.freezeData()
 	kappa := make([]float64, w*h)
-	p.freeze(&q, kappa)
+	p.freeze(&q, kappa, kappa)
 	for i, k := range kappa {
 		if linear {
 			pic.Density[i] = k + 0.05*rng.NormFloat64()
@@ -105,7 +105,7 @@ func checkNormal(t *testing.T, p *problem, q params) {
 	within(t, "value without derivatives", p.normal(&q, nil, nil), f, 1e-9*f)
 	rho := func(q params) []float64 {
 		kappa, r := make([]float64, n), make([]float64, n)
-		p.render(&q, kappa)
+		p.render(&q, kappa, kappa)
 		p.residuals(kappa, r)
 		for i, v := range r {
 			if math.IsNaN(v) {

@@ -13,11 +13,21 @@ type room struct{ x0, y0, x1, y1 float64 }
 // box is a room in pixels of a level, half open.
 type box struct{ x0, y0, x1, y1 int }
 
+// gap returns the columns [a,b) of row j that the box takes from a row of w bins.
+func (b box) gap(j, w int) (x0, x1 int) {
+	if j < b.y0 || j >= b.y1 {
+		return w, w
+	}
+	return b.x0, b.x1
+}
+
+func (b box) empty() bool { return b.x1 <= b.x0 || b.y1 <= b.y0 }
+
 func (r room) bounds(l *level) box {
 	b := box{l.index(r.x0), l.index(r.y0), l.index(r.x1), l.index(r.y1)}
 	b.x0, b.x1 = min(max(b.x0, 0), l.w), min(max(b.x1, 0), l.w)
 	b.y0, b.y1 = min(max(b.y0, 0), l.h), min(max(b.y1, 0), l.h)
-	if b.x1 <= b.x0 || b.y1 <= b.y0 {
+	if b.empty() {
 		return box{}
 	}
 	return b
@@ -106,22 +116,34 @@ func blurTaps(dst []float64, v float64) []float64 {
 	return dst
 }
 
+// blurred paints the cloud over a box of the fine level with the margin that the kernel asks for
+// and blurs it; it returns the margin and the width of the images.
+func (p *problem) blurred(q *params, in box, full bool) (pad, w int) {
+	b := &p.buf.region
+	bin := float64(p.fine.bin)
+	b.taps = blurTaps(b.taps, p.blurOn(p.fine)/(bin*bin))
+	pad = len(b.taps) - 1
+	w = in.x1 - in.x0 + 2*pad
+	h := in.y1 - in.y0 + 2*pad
+	b.size(w*h, max(w, h))
+	sharp := p.geometry(q, 0)
+	p.paint(q, &sharp, in.x0-pad, in.y0-pad, w, h, full)
+	for i := range numImages {
+		if i == imageT || full && p.used(i) {
+			b.blur(b.images[i], w, h)
+		}
+	}
+	return pad, w
+}
+
 // regionNormal adds the pixels of the box to the normal matrix and gradient, and returns
 // their sum of squares.
 func (p *problem) regionNormal(q *params, geo *geometry, in box, h, g []float64) float64 {
-	l, b := p.level, &p.buf.region
-	bin := float64(l.bin)
-	b.taps = blurTaps(b.taps, p.blur2/(bin*bin))
-	pad := len(b.taps) - 1
-	w, ht := in.x1-in.x0+2*pad, in.y1-in.y0+2*pad
-	b.size(w*ht, max(w, ht))
-	sharp := p.geometry(q, 0)
-	p.paint(q, &sharp, in.x0-pad, in.y0-pad, w, ht, h != nil)
-	for i := range numImages {
-		if pad > 0 && (i == imageT || h != nil && p.used(i)) {
-			b.blur(b.images[i], w, ht)
-		}
+	if in.empty() {
+		return 0
 	}
+	l := p.fine
+	pad, w := p.blurred(q, in, h != nil)
 	var acc accumulator
 	for c := range acc.used {
 		acc.used[c] = p.used(imageFirst + c)
@@ -132,7 +154,7 @@ func (p *problem) regionNormal(q *params, geo *geometry, in box, h, g []float64)
 			if l.count[o] == 0 || (p.skip != nil && p.skip[o]) {
 				continue
 			}
-			p.regionPixel(geo, b, o, i, j, (j-in.y0+pad)*w+i-in.x0+pad, h != nil, &acc)
+			p.regionPixel(geo, o, i, j, (j-in.y0+pad)*w+i-in.x0+pad, h != nil, &acc)
 		}
 	}
 	if h != nil {
@@ -145,7 +167,7 @@ func (p *problem) regionNormal(q *params, geo *geometry, in box, h, g []float64)
 // that are tied the first carries both.
 func (p *problem) used(i int) bool {
 	if i == imageTS {
-		return p.level.saturate > 0
+		return p.fine.saturate > 0
 	}
 	i -= imageFirst
 	t := p.ties
@@ -158,7 +180,7 @@ func (p *problem) used(i int) bool {
 // paint fills the images with the unblurred cloud over a w×h rectangle from pixel (i0,j0).
 // The light beyond the picture is taken as that of the nearest pixel.
 func (p *problem) paint(q *params, geo *geometry, i0, j0, w, h int, full bool) {
-	l, b := p.level, &p.buf.region
+	l, b := p.fine, &p.buf.region
 	cond := p.tmpl.condensateOf(q)
 	inv := ellipse{[2]float64{1 / cond.square[0], 1 / cond.square[1]}, cond.angle}.shape()
 	cs, sn := math.Cos(cond.angle), math.Sin(cond.angle)
@@ -219,15 +241,15 @@ func (p *problem) condensate(x, y float64, inv *model.Shape) (c, e float64) {
 	return e * (1 - r), e
 }
 
-// transmission returns the transmitted fraction at bin o and position x, y of the picture, with
-// its derivatives as transmit does; on a linear level the density itself.
+// transmission returns the transmitted fraction at bin o of the fine level and position x, y of the
+// picture, with its derivatives as transmit does; on a linear level the density itself.
 func (p *problem) transmission(w *walk, geo *geometry, o int, x, y, d float64) (t, td, ts float64) {
-	if p.level.linear {
+	if p.fine.linear {
 		return d, 1, 0
 	}
 	s := 0.0
-	if p.level.saturate > 0 {
-		s = geo.scale(x, y) * p.level.probe[o]
+	if p.fine.saturate > 0 {
+		s = geo.scale(x, y) * p.fine.probe[o]
 	}
 	return w.transmit(&p.law, d, s)
 }
@@ -240,8 +262,8 @@ func (geo *geometry) plane(x, y float64) float64 {
 }
 
 // regionPixel adds one blurred pixel: n is its place in the images.
-func (p *problem) regionPixel(geo *geometry, b *regionBuffers, o, i, j, n int, full bool, acc *accumulator) {
-	l := p.level
+func (p *problem) regionPixel(geo *geometry, o, i, j, n int, full bool, acc *accumulator) {
+	l, b := p.fine, &p.buf.region
 	x, y := l.at(i), l.at(j)
 	t := b.images[imageT][n]
 	var rho, slope, bb float64

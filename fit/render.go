@@ -2,42 +2,31 @@ package fit
 
 import "math"
 
-// render fills dst with κ = k T, the part of the reference that the model lets through to
-// each bin of the level, blurred inside the room; or on a linear level with the density and
-// its background.
-func (p *problem) render(q *params, dst []float64) {
-	geo := p.geometry(q, p.blur2)
+// render fills outside with κ = k T, the part of the reference that the model lets through to
+// each bin of the level outside the room, and inside with that of each bin of the fine level in
+// it, blurred; on linear levels with the density and its background. Both may be one slice where
+// both levels are one.
+func (p *problem) render(q *params, outside, inside []float64) {
+	geo := p.geometry(q, p.blurOn(p.level))
 	in := p.room.bounds(p.level)
-	l := p.level
-	for j := range l.h {
-		if j < in.y0 || j >= in.y1 {
-			p.renderRow(&geo, dst, j, 0, l.w)
-			continue
-		}
-		p.renderRow(&geo, dst, j, 0, in.x0)
-		p.renderRow(&geo, dst, j, in.x1, l.w)
+	for j := range p.level.h {
+		a, b := in.gap(j, p.level.w)
+		p.renderRow(&geo, outside, j, 0, a)
+		p.renderRow(&geo, outside, j, b, p.level.w)
 	}
-	if in.x1 <= in.x0 {
+	if in.empty() {
 		return
 	}
-	b := &p.buf.region
-	bin := float64(l.bin)
-	b.taps = blurTaps(b.taps, p.blur2/(bin*bin))
-	pad := len(b.taps) - 1
-	w, h := in.x1-in.x0+2*pad, in.y1-in.y0+2*pad
-	b.size(w*h, max(w, h))
-	sharp := p.geometry(q, 0)
-	p.paint(q, &sharp, in.x0-pad, in.y0-pad, w, h, false)
-	if pad > 0 {
-		b.blur(b.images[imageT], w, h)
-	}
+	in = p.inside(in)
+	l := p.fine
+	pad, w := p.blurred(q, in, false)
 	for j := in.y0; j < in.y1; j++ {
 		for i := in.x0; i < in.x1; i++ {
-			t := b.images[imageT][(j-in.y0+pad)*w+i-in.x0+pad]
+			t := p.buf.region.images[imageT][(j-in.y0+pad)*w+i-in.x0+pad]
 			if l.linear {
-				dst[j*l.w+i] = t + geo.plane(l.at(i), l.at(j))
+				inside[j*l.w+i] = t + geo.plane(l.at(i), l.at(j))
 			} else {
-				dst[j*l.w+i] = t * geo.scale(l.at(i), l.at(j))
+				inside[j*l.w+i] = t * geo.scale(l.at(i), l.at(j))
 			}
 		}
 	}
@@ -68,16 +57,28 @@ func (p *problem) renderRow(geo *geometry, dst []float64, j, i0, i1 int) {
 	}
 }
 
-// freeze sets the variance of the atoms frame from the model: the counts it expects plus
-// read noise. dst is scratch of the level's size.
-func (p *problem) freeze(q *params, dst []float64) {
-	l := p.level
-	if l.linear {
+// freeze sets the variance of the atoms frame from the model, where the problem looks: the counts
+// it expects plus read noise. outside and inside are scratch of the levels' sizes.
+func (p *problem) freeze(q *params, outside, inside []float64) {
+	if p.level.linear {
 		return
 	}
-	p.render(q, dst)
-	for o, k := range dst[:l.w*l.h] {
-		l.varAtoms[o] = math.Max(0, k*l.smooth[o]) + l.readVariance(o)
+	p.render(q, outside, inside)
+	in := p.room.bounds(p.level)
+	for j := range p.level.h {
+		a, b := in.gap(j, p.level.w)
+		p.level.freezeRow(outside, j, 0, a)
+		p.level.freezeRow(outside, j, b, p.level.w)
+	}
+	in = p.inside(in)
+	for j := in.y0; j < in.y1; j++ {
+		p.fine.freezeRow(inside, j, in.x0, in.x1)
+	}
+}
+
+func (l *level) freezeRow(kappa []float64, j, i0, i1 int) {
+	for o := j*l.w + i0; o < j*l.w+i1; o++ {
+		l.varAtoms[o] = math.Max(0, kappa[o]*l.smooth[o]) + l.readVariance(o)
 	}
 }
 

@@ -17,7 +17,7 @@ type session struct {
 	ws     *Workspace
 	tmpl   template
 	law    law
-	blur2  float64
+	blur   float64  // optical resolution, px rms
 	levels []*level // levels[0] is the full picture
 	work   int      // the level of choices and checks
 
@@ -46,8 +46,7 @@ func newSession(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt
 	if s.tmpl, err = newTemplate(lab, flight, 0); err != nil {
 		return nil, err
 	}
-	b := lab.Optics.Blur / lab.Optics.Pixel
-	s.blur2 = b*b + 1.0/12
+	s.blur = lab.Optics.Blur / lab.Optics.Pixel
 	l := fullLevel(pic, &lab.Optics)
 	if l.linear && l.sigma == 0 {
 		l.sigma = densitySigma(l)
@@ -126,11 +125,28 @@ func (lab *Lab) check() error {
 
 // problem returns the problem at level i with the room of the parameters.
 func (s *session) problem(i int, q *params, k kind) *problem {
-	p := &problem{level: s.levels[i], tmpl: &s.tmpl, law: s.law, blur2: s.blur2, buf: &s.ws.buf}
-	if i > s.work {
-		p.blur2 = 0 // a first look
-	}
+	p := &problem{level: s.levels[i], fine: s.levels[i], tmpl: &s.tmpl, law: s.law, blur: s.blur, buf: &s.ws.buf}
 	p.room = s.roomFor(i, q, k)
+	return p
+}
+
+// smoothBin is the largest ratio of the variance of a bin, bin²/12, to that of the thermal part
+// at which its pixels may be summed: what a fit loses is of second order in it.
+const smoothBin = 2e-3
+
+// split returns the problem of the full picture: every pixel in the room of the condensate,
+// outside as coarse bins as the thermal part and its blur allow.
+func (s *session) split(q *params, k kind) *problem {
+	p := s.problem(0, q, k)
+	e := s.tmpl.thermalOf(q)
+	least := math.Min(e.square[0], e.square[1])
+	for _, l := range s.levels[1:] {
+		bin := float64(l.bin)
+		if bin*bin/12 > smoothBin*least && k.thermal || l.bin > 4 {
+			break
+		}
+		p.level = l
+	}
 	return p
 }
 
@@ -142,7 +158,8 @@ const softBlur = 5e-3
 // to grow into, and a thermal part that the blur is not soft to.
 func (s *session) roomFor(i int, q *params, k kind) room {
 	bin := float64(s.levels[i].bin)
-	margin := 4*math.Sqrt(s.blur2+bin*bin/12) + 1.5*bin
+	blur2 := s.blur*s.blur + bin*bin/12
+	margin := 4*math.Sqrt(blur2) + 1.5*bin
 	grow := 1.15
 	if i > 0 {
 		grow = 1.5
@@ -154,7 +171,7 @@ func (s *session) roomFor(i int, q *params, k kind) room {
 		}
 		r = around(q[pX], q[pY], s.tmpl.condensateOf(q), grow, margin)
 	}
-	if e := s.tmpl.thermalOf(q); k.thermal && s.blur2 > softBlur*math.Min(e.square[0], e.square[1]) {
+	if e := s.tmpl.thermalOf(q); k.thermal && blur2 > softBlur*math.Min(e.square[0], e.square[1]) {
 		r = r.union(around(q[pX], q[pY], e, 4, margin))
 	}
 	return r
@@ -162,18 +179,33 @@ func (s *session) roomFor(i int, q *params, k kind) room {
 
 // run minimises at level i from start.
 func (s *session) run(i int, k kind, start params, tol float64) (*state, error) {
+	q := s.prepared(k, start)
+	return s.solve(s.problem(i, &q, k), k, q, tol)
+}
+
+// runFull minimises on the full picture.
+func (s *session) runFull(k kind, start params, tol float64) (*state, error) {
+	q := s.prepared(k, start)
+	return s.solve(s.split(&q, k), k, q, tol)
+}
+
+// prepared sets the parameters that a kind of fit does not have.
+func (s *session) prepared(k kind, q params) params {
 	if k.thermal && s.opt.Gaussian {
-		start[pAlpha] = gaussianAlpha
+		q[pAlpha] = gaussianAlpha
 	} else if k.thermal && k.condensate {
-		start[pAlpha] = 0
+		q[pAlpha] = 0
 	}
 	if !k.condensate {
-		start[pCondensate] = 0
+		q[pCondensate] = 0
 	}
 	if !k.thermal {
-		start[pThermal] = 0
+		q[pThermal] = 0
 	}
-	p := s.problem(i, &start, k)
+	return q
+}
+
+func (s *session) solve(p *problem, k kind, start params, tol float64) (*state, error) {
 	st, err := s.ws.minimize(s.ctx, p, k, start, tol)
 	if err != nil {
 		return nil, err
@@ -184,8 +216,8 @@ func (s *session) run(i int, k kind, start params, tol float64) (*state, error) 
 
 // runWidth is run for an attractive gas, too: the width of its condensate follows from its
 // number, so that both are found in turn until they agree.
-func (s *session) runWidth(i int, k kind, start params, tol float64) (*state, error) {
-	st, err := s.run(i, k, start, tol)
+func (s *session) runWidth(run func(k kind, start params) (*state, error), k kind, start params) (*state, error) {
+	st, err := run(k, start)
 	if !s.tmpl.gaussian || !k.condensate || !k.fixRadius {
 		return st, err
 	}
@@ -201,13 +233,17 @@ func (s *session) runWidth(i int, k kind, start params, tol float64) (*state, er
 			return nil, fmt.Errorf("width of %.3g condensed atoms: %w", n0, err)
 		}
 		s.condensed = n0
-		st, err = s.run(i, k, st.p, tol)
+		st, err = run(k, st.p)
 	}
 	return st, err
 }
 
 // freeze sets the variances of level i from the parameters of st.
 func (s *session) freeze(i int, st *state) {
-	p := s.problem(i, &st.p, st.kind)
-	p.freeze(&st.p, s.ws.kappa)
+	s.problem(i, &st.p, st.kind).freeze(&st.p, s.ws.kappa, s.ws.kappa)
+}
+
+// freezeFull sets those of the full picture.
+func (s *session) freezeFull(st *state) {
+	s.split(&st.p, st.kind).freeze(&st.p, s.ws.resid, s.ws.kappa)
 }

@@ -38,11 +38,10 @@ func (s *session) answer(st *state, lab *Lab, flight float64) (numbers.Measured,
 		return numbers.Measured{}, err
 	}
 	p := s.problem(s.work, &st.p, st.kind)
-	b := lab.Optics.Blur / lab.Optics.Pixel
 	level := *p.level
 	level.saturate = lab.Optics.perElectron()
 	level.setProbe()
-	p.level, p.tmpl, p.law, p.blur2 = &level, &tmpl, newLaw(&lab.Optics), b*b+1.0/12
+	p.level, p.fine, p.tmpl, p.law, p.blur = &level, &level, &tmpl, newLaw(&lab.Optics), lab.Optics.Blur/lab.Optics.Pixel
 	q := st.p
 	// The same cloud in pixels: only what the shapes do not share with the template is left
 	// to the step.
