@@ -3,7 +3,9 @@ package main
 import (
 	"encoding/binary"
 	"encoding/csv"
+	"errors"
 	"fmt"
+	"io"
 	"math"
 	"os"
 	"path/filepath"
@@ -32,19 +34,27 @@ func readManifest(path string) ([]benchCase, error) {
 		return nil, err
 	}
 	defer f.Close()
-	r := csv.NewReader(f)
-	r.FieldsPerRecord = numFields
-	rows, err := r.ReadAll()
+	cases, err := parseManifest(f, filepath.Dir(path))
 	if err != nil {
 		return nil, fmt.Errorf("manifest %s: %w", path, err)
 	}
+	return cases, nil
+}
+
+func parseManifest(r io.Reader, folder string) ([]benchCase, error) {
+	table := csv.NewReader(r)
+	table.FieldsPerRecord = numFields
+	rows, err := table.ReadAll()
+	if err != nil {
+		return nil, err
+	}
 	if len(rows) < 2 {
-		return nil, fmt.Errorf("manifest %s: no cases below the header", path)
+		return nil, errors.New("no cases below the header")
 	}
 	cases := make([]benchCase, len(rows)-1)
 	for i, row := range rows[1:] {
-		if cases[i], err = parseCase(filepath.Dir(path), row); err != nil {
-			return nil, fmt.Errorf("manifest %s, line %d: %w", path, i+2, err)
+		if cases[i], err = parseCase(folder, row); err != nil {
+			return nil, fmt.Errorf("case %d: %w", i+1, err)
 		}
 	}
 	return cases, nil
