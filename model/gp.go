@@ -20,7 +20,7 @@ type GroundState struct {
 	psi                             []float64
 }
 
-var errUnsettled = errors.New("Newton's method does not settle")
+var errUnsettled = errors.New("the steps of Newton's method do not settle")
 
 // SolveGroundState returns the ground state of
 //

@@ -2,6 +2,8 @@
 // that a caller can tell them apart with errors.Is whatever the format.
 package fault
 
+//lint:file-ignore ST1012 fault.Broken says already that it is an error
+
 import "errors"
 
 var (
