@@ -204,6 +204,22 @@ func TestNearest(t *testing.T) {
 	}
 }
 
+// TestExtend lets shots come one after another: the latest takes the light of those before.
+func TestExtend(t *testing.T) {
+	s := newScene(48, 48, 56)
+	raws := s.night(5)
+	n := prepare(t, s.camera(), raws)
+	refs := NewReferences(n, 3, 1, loader(raws))
+	for shot, want := range [][]int{{0}, {1, 0}, {2, 1, 0}, {3, 2, 1}, {4, 3, 2}} {
+		refs.Extend(shot + 1)
+		refs.Extend(shot) // a night never shrinks
+		got, err := refs.Set(context.Background(), shot)
+		if err != nil || !slices.Equal(got, want) {
+			t.Errorf("shot %d: %v (%v), want %v", shot, got, err, want)
+		}
+	}
+}
+
 // TestSameBytes checks that neither the number of workers, nor the order of shots, nor a
 // memory too short to keep the frames changes a bit of the light.
 func TestSameBytes(t *testing.T) {

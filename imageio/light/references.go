@@ -28,11 +28,11 @@ type Cloud struct {
 type References struct {
 	night *Night
 	k     int
-	shots int
 	load  func(ctx context.Context, shot int) (*imageio.Raw, error)
 	tiles *tiling
 
 	mu     sync.Mutex
+	shots  int
 	recent *list.List // of *lightFrame, the latest used first
 	at     map[int]*list.Element
 }
@@ -47,6 +47,19 @@ func NewReferences(n *Night, k, shots int, load func(ctx context.Context, shot i
 		tiles:  newTiling(n.win.width/n.win.bin, n.win.height/n.win.bin),
 		recent: list.New(), at: map[int]*list.Element{},
 	}
+}
+
+// Extend tells that the night has so many shots by now: more may come while it is taken.
+func (r *References) Extend(shots int) {
+	r.mu.Lock()
+	defer r.mu.Unlock()
+	r.shots = max(r.shots, shots)
+}
+
+func (r *References) size() int {
+	r.mu.Lock()
+	defer r.mu.Unlock()
+	return r.shots
 }
 
 // lightFrame is the light frame of one shot, filled and rebinned, electrons.
@@ -157,13 +170,14 @@ func (r *References) Set(ctx context.Context, shot int) ([]int, error) {
 // shot itself among them, ties to the earlier, shots without a usable light frame passed
 // over; the nearest stands first.
 func (r *References) nearest(ctx context.Context, shot int) ([]*lightFrame, error) {
-	if shot < 0 || shot >= r.shots {
-		return nil, fmt.Errorf("shot %d is not one of the %d shots of the night", shot, r.shots)
+	shots := r.size()
+	if shot < 0 || shot >= shots {
+		return nil, fmt.Errorf("shot %d is not one of the %d shots of the night", shot, shots)
 	}
 	var frames []*lightFrame
-	for d := 0; d < r.shots && len(frames) < r.k; d++ {
+	for d := 0; d < shots && len(frames) < r.k; d++ {
 		for _, s := range []int{shot - d, shot + d} {
-			if s < 0 || s >= r.shots || d == 0 && len(frames) > 0 || len(frames) == r.k {
+			if s < 0 || s >= shots || d == 0 && len(frames) > 0 || len(frames) == r.k {
 				continue
 			}
 			f, err := r.frame(ctx, s)
