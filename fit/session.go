@@ -29,7 +29,7 @@ type session struct {
 // The largest side, in bins, of the level where guesses are made and of the one where models
 // are chosen and compared.
 const (
-	guessSide = 100
+	guessSide = 64
 	workSide  = 200
 	leastSide = 12
 )
