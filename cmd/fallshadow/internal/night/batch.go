@@ -86,6 +86,11 @@ func run(ctx context.Context, o Options, p Progress, prepare prepare) (_ *Outcom
 		return nil, err
 	}
 	b := &batch{Options: o, layout: o.Settings.Layout(), settings: o.Settings.Digest(), prepare: prepare, progress: p}
+	if b.Out == "" {
+		if b.Out, err = Results(b.Dir); err != nil {
+			return nil, err
+		}
+	}
 	if err := b.find(ctx); err != nil {
 		return nil, err
 	}
@@ -99,13 +104,8 @@ func run(ctx context.Context, o Options, p Progress, prepare prepare) (_ *Outcom
 	return b.work(ctx)
 }
 
-// find freezes the list of shots and settles the options that were left open.
+// find freezes the list of shots and settles the number of workers.
 func (b *batch) find(ctx context.Context) (err error) {
-	if b.Out == "" {
-		if b.Out, err = Results(b.Dir); err != nil {
-			return err
-		}
-	}
 	if b.Workers <= 0 {
 		b.Workers = runtime.NumCPU()
 	}

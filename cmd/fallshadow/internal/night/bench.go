@@ -40,6 +40,14 @@ type bench struct {
 }
 
 func newBench(ctx context.Context, s *settings.Settings, region image.Rectangle, f *frames) (func() measure, error) {
+	b, err := setUp(ctx, s, region, f)
+	if err != nil {
+		return nil, err
+	}
+	return b.worker, nil
+}
+
+func setUp(ctx context.Context, s *settings.Settings, region image.Rectangle, f *frames) (*bench, error) {
 	camera := s.LightCamera()
 	if !region.Empty() {
 		camera.Region = region
@@ -55,7 +63,7 @@ func newBench(ctx context.Context, s *settings.Settings, region image.Rectangle,
 	if s.Fit.Reference != "own" && s.Shots.Layout != "density" {
 		b.references = light.NewReferences(shared, s.Fit.BasisSize, f.n, b.lender(f))
 	}
-	return b.worker, nil
+	return b, nil
 }
 
 func (b *bench) worker() measure {
