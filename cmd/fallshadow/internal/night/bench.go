@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"image"
 	"iter"
+	"sync"
 
 	"fallshadow/cmd/fallshadow/internal/ledger"
 	"fallshadow/cmd/fallshadow/internal/report"
@@ -37,6 +38,7 @@ type bench struct {
 	references *light.References // nil: every shot has its own light
 	lab        fit.Lab
 	options    fit.Options
+	exposed    sync.Map // places of shots that need not be exposed again to lend their light
 }
 
 func newBench(ctx context.Context, s *settings.Settings, region image.Rectangle, f *frames) (func() measure, error) {
@@ -84,6 +86,7 @@ func (b *bench) measure(ctx context.Context, at int, raw *imageio.Raw, workspace
 	if err != nil {
 		return nil, err
 	}
+	b.exposed.Store(at, true)
 	options := b.options
 	if b.references != nil {
 		if exposure, options.Near, err = b.relight(ctx, at, exposure, flight, workspace); err != nil {
@@ -94,7 +97,10 @@ func (b *bench) measure(ctx context.Context, at int, raw *imageio.Raw, workspace
 	if err != nil {
 		return nil, fmt.Errorf("fit: %w", err)
 	}
-	f := &report.Facts{Flight: flight, Reference: exposure.Reference, Notes: exposure.Notes, Fit: result}
+	f := &report.Facts{
+		Flight: flight, Reference: exposure.Reference, Notes: exposure.Notes,
+		Region: b.night.Camera.Region, Pixel: b.lab.Optics.Pixel, Fit: result,
+	}
 	f.X, f.Y = b.night.Camera.ToSaved(result.X, result.Y)
 	return f, nil
 }
@@ -104,7 +110,7 @@ func (b *bench) measure(ctx context.Context, at int, raw *imageio.Raw, workspace
 func (b *bench) lender(f *frames) func(context.Context, int) (*imageio.Raw, error) {
 	return func(ctx context.Context, at int) (*imageio.Raw, error) {
 		raw, err := f.load(ctx, at)
-		if err == nil {
+		if _, sound := b.exposed.Load(at); err == nil && !sound {
 			_, err = b.night.Expose(raw)
 		}
 		return raw, err
