@@ -58,6 +58,11 @@ func (s *session) finish(c *candidates, chosen *state, r *Result) error {
 	if err != nil {
 		return err
 	}
+	if s.opt.MeanField && r.Model == ModelBimodal && !s.tmpl.gaussian {
+		if full, err = s.meanField(full); err != nil {
+			return err
+		}
+	}
 	r.clear()
 	s.residuals(full, r)
 	if s.opt.Maps {

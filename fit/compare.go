@@ -329,6 +329,9 @@ func (s *session) densityOf(st *state) func(x, y float64) float64 {
 		dx, dy := x-geo.x0, y-geo.y0
 		g, _ := boseFast(dx*(0.5*geo.axx*dx+geo.axy*dy) + 0.5*geo.ayy*dy*dy + geo.alpha)
 		d := geo.ampGrown * g * geo.norm
+		if s.tmpl.excess != nil {
+			d *= geo.excess(s.tmpl.excess, dx, dy)
+		}
 		if st.p[pCondensate] > 0 {
 			c, _ := p.condensate(dx, dy, &inv)
 			d += st.p[pCondensate] * c

@@ -4,6 +4,7 @@ package fit
 // part, all widths tied to one T and one μ, the angle that the settings give.
 type Options struct {
 	Gaussian  bool // thermal part a plain gaussian instead of the Bose-enhanced form
+	MeanField bool // thermal part beside a condensate semi-ideal: in the trap it felt the condensate
 	Free      bool // report the fit in which every width is its own parameter
 	FreeAngle bool // turn both parts to the best angle
 	Maps      bool // draw Result.Maps
@@ -66,6 +67,8 @@ func (s *session) form(k kind) string {
 		thermal = "gauss"
 	case k.alpha:
 		thermal = "bose-z"
+	case s.opt.MeanField && k.condensate && !s.tmpl.gaussian:
+		thermal = "semi-ideal"
 	}
 	if s.tmpl.gaussian {
 		condensate = "gauss"

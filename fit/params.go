@@ -55,6 +55,7 @@ type template struct {
 	angle               float64 // of trap axis 1 as the settings give it
 	gaussian            bool    // the condensate of an attractive gas is a gaussian
 	pixel               float64
+	excess              *excess // of the thermal part beside a condensate; nil: none
 }
 
 // newTemplate projects the expanded shapes onto the picture. flight is in s. The condensate of

@@ -48,6 +48,7 @@ type geometry struct {
 	axx, axy, ayy  float64    // inverse of the grown thermal shape
 	cos, sin       float64    // of the thermal axes
 	v, share       [2]float64 // grown variances, and the share of them that is the cloud's
+	width          [2]float64 // roots of v
 	alpha          float64
 	norm, slope    float64 // 1/g2(α), g1(α)/g2(α)
 	light          [3]float64
@@ -67,6 +68,7 @@ func (p *problem) geometry(q *params, grow float64) geometry {
 	for i, s := range e.square {
 		g.v[i] = s + grow
 		g.share[i] = s / g.v[i]
+		g.width[i] = math.Sqrt(g.v[i])
 		g.ampGrown *= math.Sqrt(g.share[i])
 	}
 	g.cos, g.sin = math.Cos(e.angle), math.Sin(e.angle)
@@ -76,6 +78,12 @@ func (p *problem) geometry(q *params, grow float64) geometry {
 	g2 := bose.G2(g.alpha)
 	g.norm, g.slope = 1/g2, bose.G1(math.Max(g.alpha, alphaFloor))/g2
 	return g
+}
+
+// excess returns the factor of the thermal part at x, y from the centre.
+func (geo *geometry) excess(e *excess, x, y float64) float64 {
+	u, v := x*geo.cos+y*geo.sin, y*geo.cos-x*geo.sin
+	return e.at(u/geo.width[0], v/geo.width[1])
 }
 
 // alphaFloor is the smallest −ln z of a fitted fugacity: below it the cloud is saturated to
@@ -167,8 +175,12 @@ func (p *problem) fillRow(geo *geometry, j, i0, i1 int, full bool, m *moments) i
 		var g, h float64
 		if tau < farTau+geo.alpha {
 			g, h = boseFast(tau)
-			g *= geo.norm
-			h *= geo.norm
+			norm := geo.norm
+			if p.tmpl.excess != nil {
+				norm *= geo.excess(p.tmpl.excess, x, y)
+			}
+			g *= norm
+			h *= norm
 		}
 		if l.linear {
 			w := c / (l.sigma * l.sigma)

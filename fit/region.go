@@ -193,7 +193,11 @@ func (p *problem) paint(q *params, geo *geometry, i0, j0, w, h int, full bool) {
 			x := l.at(i0+i) - geo.x0
 			o := jj*l.w + min(max(i0+i, 0), l.w-1)
 			gt, ht := boseFast(x*(0.5*geo.axx*x+geo.axy*y) + 0.5*geo.ayy*y*y + geo.alpha)
-			gt, ht = gt*geo.norm, ht*geo.norm
+			norm := geo.norm
+			if p.tmpl.excess != nil {
+				norm *= geo.excess(p.tmpl.excess, x, y)
+			}
+			gt, ht = gt*norm, ht*norm
 			c, e := p.condensate(x, y, &inv)
 			d := geo.amp*gt + q[pCondensate]*c
 			t, td, ts := p.transmission(&walk, geo, o, x+geo.x0, y+geo.y0, d)

@@ -47,6 +47,9 @@ func (p *problem) renderRow(geo *geometry, dst []float64, j, i0, i1 int) {
 		if tau < farTau+geo.alpha {
 			g, _ := boseFast(tau)
 			d = geo.ampGrown * g * geo.norm
+			if p.tmpl.excess != nil {
+				d *= geo.excess(p.tmpl.excess, dx, dy)
+			}
 		}
 		if l.linear {
 			dst[o] = d + geo.plane(l.at(i), y)

@@ -37,6 +37,7 @@ func (s *session) answer(st *state, lab *Lab, flight float64) (numbers.Measured,
 	if err != nil {
 		return numbers.Measured{}, err
 	}
+	tmpl.excess = s.tmpl.excess
 	p := s.problem(s.work, &st.p, st.kind)
 	level := *p.level
 	level.saturate = lab.Optics.perElectron()

@@ -172,8 +172,8 @@ var keys = []key{
 	{table: "region", name: "width", unit: "pixels", field: func(s *Settings) any { return &s.Region.Width }, sample: "320", low: 8, high: 65535, doc: "Columns."},
 	{table: "region", name: "height", unit: "pixels", field: func(s *Settings) any { return &s.Region.Height }, sample: "320", low: 8, high: 65535, doc: "Rows."},
 
-	{table: "fit", name: "thermal", field: func(s *Settings) any { return &s.Fit.Thermal }, def: `"bose"`, words: []string{"bose", "gauss"},
-		doc: "Profile of the thermal part: Bose-enhanced, or gaussian."},
+	{table: "fit", name: "thermal", field: func(s *Settings) any { return &s.Fit.Thermal }, def: `"bose"`, words: []string{"bose", "gauss", "semi-ideal"},
+		doc: "Profile of the thermal part: Bose-enhanced, gaussian, or semi-ideal (beside a condensate it felt the condensate in the trap)."},
 	{table: "fit", name: "tie", field: func(s *Settings) any { return &s.Fit.Tie }, def: `"tied"`, words: []string{"tied", "free"},
 		doc: "tied: all widths follow from one temperature and one chemical potential through trap and flight. free: each width its own parameter."},
 	{table: "fit", name: "angle", field: func(s *Settings) any { return &s.Fit.Angle }, def: `"fixed"`, words: []string{"fixed", "free"},

@@ -71,6 +71,7 @@ func (s *Settings) WithCamera(c light.Camera) *Settings {
 func (s *Settings) Options() fit.Options {
 	return fit.Options{
 		Gaussian:       s.Fit.Thermal == "gauss",
+		MeanField:      s.Fit.Thermal == "semi-ideal",
 		Free:           s.Fit.Tie == "free",
 		FreeAngle:      s.Fit.Angle == "free",
 		CondensateChi2: s.Fit.CondensateChi2.Value,

@@ -117,7 +117,7 @@ func (r Region) Auto() bool { return r.Width == 0 }
 
 // Fit is what a user may choose of the fit.
 type Fit struct {
-	Thermal        string // "bose" or "gauss"
+	Thermal        string // "bose", "gauss" or "semi-ideal"
 	Tie            string // "tied" or "free"
 	Angle          string // "fixed" or "free"
 	CondensateChi2 Number
