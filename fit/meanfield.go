@@ -1,0 +1,104 @@
+package fit
+
+import (
+	"fmt"
+	"math"
+
+	"fallshadow/model"
+)
+
+// excess is what a condensate does to the thermal column: the semi-ideal gas after its flight
+// over the saturated ideal one, as a function of the place in widths along the thermal axes.
+// It is scaled so that it leaves the number of the thermal part as it is. Beyond the grid it
+// keeps its border value.
+type excess struct {
+	values []float64 // rows in v from 0, columns in u from −excessReach
+}
+
+// The grid of an excess: u from −4.5 to 4.5 widths, v from 0 (the cloud looks the same from
+// behind), in steps of 1/4.
+const (
+	excessReach = 4.5
+	excessStep  = 0.25
+	excessW     = int(2*excessReach/excessStep) + 1
+	excessH     = int(excessReach/excessStep) + 1
+)
+
+// newExcess tabulates the semi-ideal cloud at T in K and μ in J. It fails where the cloud does:
+// a flight too short, a release that is not sudden, μ far above kT.
+func newExcess(lab *Lab, flight, T, mu float64) (*excess, error) {
+	sp := &lab.Species
+	cloud, err := model.NewSemiIdealCloud(T, mu, sp.Mass, lab.Trap, lab.View, flight, lab.Release)
+	if err != nil {
+		return nil, fmt.Errorf("thermal part beside the condensate: %w", err)
+	}
+	b, err := model.ExpandThermal(lab.Trap, flight, lab.Release)
+	if err != nil {
+		return nil, fmt.Errorf("expand the thermal part: %w", err)
+	}
+	shape := lab.View.Project(model.ThermalVariances(T, sp.Mass, lab.Trap, b))
+	axes := principal(shape, math.Atan2(lab.View[1][0], lab.View[0][0]))
+	n := model.ThermalNumber(T, 0, lab.Trap)
+	c, s := math.Cos(axes.angle), math.Sin(axes.angle)
+	s1, s2 := math.Sqrt(axes.square[0]), math.Sqrt(axes.square[1])
+	e := &excess{values: make([]float64, excessW*excessH)}
+	var with, without float64
+	for j := range excessH {
+		for i := range excessW {
+			u, v := (float64(i)*excessStep-excessReach)*s1, float64(j)*excessStep*s2
+			x, y := c*u-s*v, s*u+c*v
+			plain := model.ThermalColumn(n, 0, shape, x, y)
+			r := cloud.Column(x, y) / plain
+			e.values[j*excessW+i] = r
+			if j > 0 {
+				plain *= 2 // the other half
+			}
+			with += r * plain
+			without += plain
+		}
+	}
+	for i := range e.values {
+		e.values[i] *= without / with
+	}
+	return e, nil
+}
+
+// at interpolates at u, v widths from the centre; 1 for a nil excess.
+func (e *excess) at(u, v float64) float64 {
+	if e == nil {
+		return 1
+	}
+	if v < 0 {
+		u, v = -u, -v
+	}
+	x := math.Min(math.Max((u+excessReach)*(1/excessStep), 0), float64(excessW-1)-1e-9)
+	y := math.Min(v*(1/excessStep), float64(excessH-1)-1e-9)
+	i, j := int(x), int(y)
+	x, y = x-float64(i), y-float64(j)
+	a := e.values[j*excessW+i:]
+	b := a[excessW:]
+	return (a[0]*(1-x)+a[1]*x)*(1-y) + (b[0]*(1-x)+b[1]*x)*y
+}
+
+// meanField refits a condensed cloud with the thermal part that its own condensate shapes, until
+// T and μ no longer move. The derivatives leave out that of the excess: the estimate stays true,
+// since its residuals still mean nothing at the truth.
+func (s *session) meanField(st *state) (*state, error) {
+	for range 5 {
+		m, _ := s.tmpl.measured(&st.p, st.kind)
+		e, err := newExcess(s.lab, s.flight, m.T, m.Mu)
+		if err != nil {
+			return nil, err
+		}
+		s.tmpl.excess = e
+		next, err := s.refine(st)
+		if err != nil {
+			return nil, err
+		}
+		moved := next.moved(st)
+		if st = next; moved < 0.05 {
+			break
+		}
+	}
+	return st, nil
+}
