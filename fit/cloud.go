@@ -155,6 +155,13 @@ func (s *session) fillShape(st *state, r *Result) error {
 	}
 	m, j := s.tmpl.measured(q, st.kind)
 	cov := matrix(st.spread(j[:]))
+	if s.opt.ScaleErrors {
+		for i := range cov {
+			for k := range cov[i] {
+				cov[i][k] *= r.ChiPerDof
+			}
+		}
+	}
 	shifts, err := s.shifts(st, m)
 	if err != nil {
 		return err

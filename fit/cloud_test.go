@@ -432,3 +432,41 @@ func TestMeanField(t *testing.T) {
 	within(t, "pull of T", ft, 0, 3)
 	within(t, "pull of N0", f0, 0, 3)
 }
+
+// TestFugacity: a fugacity left free beside a condensate comes back near 1; a thermal number
+// that follows from T makes T three times as sure as its widths alone, and true.
+func TestFugacity(t *testing.T) {
+	sc := standardScene(t, 240e-9, 9e4, 41)
+	pic := sc.draw(t)
+	model0, free, tied := mustFit(t, sc, pic, Options{}), mustFit(t, sc, pic, Options{Fugacity: FugacityFree}), mustFit(t, sc, pic, Options{Fugacity: FugacityNumber})
+	if z := free.Numbers.Fugacity.V; !(z > 0.9) || free.Form != "bose-z+tf" {
+		t.Errorf("fugacity %g, form %s", z, free.Form)
+	}
+	if tied.Form != "bose+tf,number" || !(tied.Numbers.T.Err < 0.6*model0.Numbers.T.Err) {
+		t.Errorf("form %s, error of T %g against %g", tied.Form, tied.Numbers.T.Err, model0.Numbers.T.Err)
+	}
+	within(t, "T from the number", tied.Numbers.T.V, sc.T, 4*tied.Numbers.T.Err)
+	within(t, "thermal over saturated", tied.Checks.ThermalOverSaturated, 1, 1e-3)
+	sc = standardScene(t, 400e-9, 0, 42)
+	sc.alpha = 0.5
+	sc.thermal = model.ThermalNumber(sc.T, sc.alpha, sc.lab.Trap)
+	pic = sc.draw(t)
+	model0, tied = mustFit(t, sc, pic, Options{}), mustFit(t, sc, pic, Options{Fugacity: FugacityNumber})
+	if !(tied.Numbers.T.Err < 0.6*model0.Numbers.T.Err) {
+		t.Errorf("above the transition: error of T %g against %g", tied.Numbers.T.Err, model0.Numbers.T.Err)
+	}
+	within(t, "T from the number above the transition", tied.Numbers.T.V, sc.T, 4*tied.Numbers.T.Err)
+}
+
+// TestScaledErrors: noise stated at half of what it is makes χ² a pixel large; scaled errors grow
+// by its root.
+func TestScaledErrors(t *testing.T) {
+	sc := standardScene(t, 240e-9, 9e4, 43)
+	pic := sc.draw(t)
+	pic.Noise.Read, pic.Noise.LightRead, pic.Noise.Dark = 0, 0, 0
+	plain, scaled := mustFit(t, sc, pic, Options{}), mustFit(t, sc, pic, Options{ScaleErrors: true})
+	within(t, "growth of the error", scaled.Numbers.Atoms.Err/plain.Numbers.Atoms.Err, math.Sqrt(plain.ChiPerDof), 1e-9)
+	if !(plain.ChiPerDof > 1.02) {
+		t.Errorf("chi2 a pixel is %g", plain.ChiPerDof)
+	}
+}

@@ -251,6 +251,9 @@ func (p *problem) starts(g guess, k kind) []params {
 		add(0.15, 1.8, 0.85, core)
 		add(0.7, 1, 0.3, core/2)
 		add(0.1, 1, 0.9, whole)
+		for i := range list {
+			list[i][pAlpha] = 0.1 // where it is free
+		}
 	case k.thermal:
 		add(1, 1.1, 0, core)
 		add(1, 0.5, 0, core)

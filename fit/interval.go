@@ -4,6 +4,7 @@ import (
 	"math"
 
 	"fallshadow/model"
+	"fallshadow/model/bose"
 	"fallshadow/model/numbers"
 )
 
@@ -17,6 +18,7 @@ const (
 	atCondensate
 	atT
 	atMu
+	atAlpha
 )
 
 // pull draws one measured number to a target with the width eps, so that a minimisation
@@ -39,6 +41,37 @@ func (u *pull) add(s *search, q *params, h, g []float64) float64 {
 		g[i] += r * j[u.at][i] / u.eps
 		for l := range numParams {
 			h[i*numParams+l] += j[u.at][i] * j[u.at][l] / (u.eps * u.eps)
+		}
+	}
+	return r * r
+}
+
+// numberTie draws the thermal number to g3(z)(kT/ħω̄)³ by numberWidth of itself.
+type numberTie struct {
+	trap   model.Trap
+	perSum float64
+}
+
+const numberWidth = 1e-4
+
+func (n *numberTie) add(s *search, q *params, h, g []float64) float64 {
+	m, j := s.tmpl.measured(q, s.kind)
+	r := math.Log(m.ThermalSum*n.perSum/model.ThermalNumber(m.T, m.Alpha, n.trap)) / numberWidth
+	if !finite(r) {
+		return math.Inf(1)
+	}
+	if h == nil {
+		return r * r
+	}
+	slope := bose.G2(m.Alpha) / bose.G3(m.Alpha)
+	var d params
+	for i := range d {
+		d[i] = (j[atThermal][i]/m.ThermalSum - 3*j[atT][i]/m.T + slope*j[atAlpha][i]) / numberWidth
+	}
+	for i := range d {
+		g[i] += r * d[i]
+		for l := range d {
+			h[i*numParams+l] += d[i] * d[l]
 		}
 	}
 	return r * r

@@ -8,6 +8,11 @@ type Options struct {
 	Free      bool // report the fit in which every width is its own parameter
 	FreeAngle bool // turn both parts to the best angle
 	Maps      bool // draw Result.Maps
+	Fugacity  Fugacity
+
+	// ScaleErrors multiplies statistical errors by the root of χ² a pixel: for noise that is known
+	// only up to a factor.
+	ScaleErrors bool
 
 	// Near, where not nil, is what Locate found in the same atoms frame under the same settings,
 	// perhaps with a poorer reference: the search begins there and not with a first look.
@@ -19,6 +24,15 @@ type Options struct {
 
 	searchFree bool // explore with free widths
 }
+
+// Fugacity says what holds the fugacity of the thermal part.
+type Fugacity int
+
+const (
+	FugacityModel  Fugacity = iota // 1 beside a condensate, fitted without one
+	FugacityFree                   // fitted in both cases
+	FugacityNumber                 // the thermal number follows from T: g3(z)(kT/ħω̄)³, z = 1 beside a condensate
+)
 
 // The decreases of χ² asked for by default. A condensate beside a thermal part brings two
 // numbers (N0 and μ) and can sit on any size, so the threshold is above that of two degrees
@@ -56,6 +70,7 @@ func (s *session) alone() kind {
 func (s *session) both() kind {
 	k := s.alone()
 	k.thermal = true
+	k.alpha = s.opt.Fugacity == FugacityFree && !s.opt.Gaussian
 	return k
 }
 
@@ -83,6 +98,9 @@ func (s *session) form(k kind) string {
 		form = condensate
 	default:
 		return ""
+	}
+	if s.opt.Fugacity == FugacityNumber && k.thermal {
+		form += ",number"
 	}
 	if s.opt.Free {
 		form += ",free"

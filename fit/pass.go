@@ -15,16 +15,17 @@ import (
 // row needs only sums of a², ab and b² times those, and the matrix follows from the sums
 // (row moments). Pixels inside are blurred and summed directly (region.go).
 type problem struct {
-	level *level // outside the room, where bins may be coarse against the pixels but not the cloud
-	fine  *level // inside the room; its bins divide those of level
-	tmpl  *template
-	law   law
-	blur  float64 // optical resolution, px rms
-	room  room    // where the cloud is blurred pixel by pixel
-	skip  []bool  // pixels of the level that a fit of the wings leaves out, or nil
-	pull  *pull   // a measured number that is held, or nil
-	ties  *tie    // what steers the fit; nil: every parameter by itself
-	buf   *buffers
+	level  *level // outside the room, where bins may be coarse against the pixels but not the cloud
+	fine   *level // inside the room; its bins divide those of level
+	tmpl   *template
+	law    law
+	blur   float64    // optical resolution, px rms
+	room   room       // where the cloud is blurred pixel by pixel
+	skip   []bool     // pixels of the level that a fit of the wings leaves out, or nil
+	pull   *pull      // a measured number that is held, or nil
+	number *numberTie // ties the thermal number to T and fugacity; nil: free
+	ties   *tie       // what steers the fit; nil: every parameter by itself
+	buf    *buffers
 }
 
 // buffers are one worker's rows and images, grown once and kept.

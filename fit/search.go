@@ -121,10 +121,14 @@ func (s *search) Normal(y []float64, h, g []float64) float64 {
 }
 
 func (s *search) pulled(q *params, h, g []float64) float64 {
-	if s.pull == nil {
-		return 0
+	f := 0.0
+	if s.pull != nil {
+		f += s.pull.add(s, q, h, g)
 	}
-	return s.pull.add(s, q, h, g)
+	if s.number != nil && s.kind.thermal {
+		f += s.number.add(s, q, h, g)
+	}
+	return f
 }
 
 func (s *search) expand(y []float64) params {

@@ -127,6 +127,9 @@ func (lab *Lab) check() error {
 func (s *session) problem(i int, q *params, k kind) *problem {
 	p := &problem{level: s.levels[i], fine: s.levels[i], tmpl: &s.tmpl, law: s.law, blur: s.blur, buf: &s.ws.buf}
 	p.room = s.roomFor(i, q, k)
+	if s.opt.Fugacity == FugacityNumber && !k.fixThermal {
+		p.number = &numberTie{trap: s.lab.Trap, perSum: s.perSum()}
+	}
 	return p
 }
 
@@ -193,7 +196,7 @@ func (s *session) runFull(k kind, start params, tol float64) (*state, error) {
 func (s *session) prepared(k kind, q params) params {
 	if k.thermal && s.opt.Gaussian {
 		q[pAlpha] = gaussianAlpha
-	} else if k.thermal && k.condensate {
+	} else if k.thermal && k.condensate && !k.alpha {
 		q[pAlpha] = 0
 	}
 	if !k.condensate {

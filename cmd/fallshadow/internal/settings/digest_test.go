@@ -13,7 +13,7 @@ var other = map[string]string{
 	"probe.detuning_gamma": "0.5", "probe.stray_fraction": "0.01", "flight.unit": `"us"`, "flight.from": `"tof"`,
 	"trap.tilt_deg": "10", "trap.tilt_about_deg": "90", "trap.release_ms": "0.5", "camera.binning": "2", "camera.electrons_per_count": "2",
 	"shots.layout": `"extensions"`, "shots.planes": `["light", "atoms", "dark"]`,
-	"fit.thermal": `"gauss"`, "fit.tie": `"free"`, "fit.angle": `"free"`, "fit.rebin": "2", "fit.reference": `"own"`, "fit.basis_size": "30",
+	"fit.thermal": `"gauss"`, "fit.tie": `"free"`, "fit.angle": `"free"`, "fit.fugacity": `"number"`, "fit.errors": `"scaled"`, "fit.rebin": "2", "fit.reference": `"own"`, "fit.basis_size": "30",
 }
 
 // TestDigestSeesWhatChangesNumbers sets every key in turn.

@@ -74,6 +74,8 @@ func (s *Settings) Options() fit.Options {
 		MeanField:      s.Fit.Thermal == "semi-ideal",
 		Free:           s.Fit.Tie == "free",
 		FreeAngle:      s.Fit.Angle == "free",
+		Fugacity:       map[string]fit.Fugacity{"free": fit.FugacityFree, "number": fit.FugacityNumber}[s.Fit.Fugacity],
+		ScaleErrors:    s.Fit.Errors == "scaled",
 		CondensateChi2: s.Fit.CondensateChi2.Value,
 	}
 }

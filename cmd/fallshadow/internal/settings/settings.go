@@ -120,6 +120,8 @@ type Fit struct {
 	Thermal        string // "bose", "gauss" or "semi-ideal"
 	Tie            string // "tied" or "free"
 	Angle          string // "fixed" or "free"
+	Fugacity       string // "model", "free" or "number"
+	Errors         string // "stated" or "scaled"
 	CondensateChi2 Number
 	Rebin          int    // 1, 2 or 4
 	Reference      string // "auto", "own" or "basis"
