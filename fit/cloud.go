@@ -186,6 +186,6 @@ func (r *Result) clear() {
 	nan := math.NaN()
 	r.X, r.Y, r.Angle, r.PeakOD, r.ChiPerDof, r.ChiCloud, r.Sum, r.SumErr = nan, nan, nan, nan, nan, nan, nan, nan
 	r.Width, r.Radius = [2]float64{nan, nan}, [2]float64{nan, nan}
-	r.Checks = Checks{nan, nan, nan, nan, nan, nan, nan, nan, nan, nan, nan, 0, nan}
+	r.Checks = Checks{nan, nan, nan, nan, nan, nan, nan, nan, nan, nan, nan, 0, nan, nan}
 	r.Numbers = numbers.Nothing()
 }

@@ -95,7 +95,7 @@ func (s *session) limits(c *candidates, full *state, r *Result) error {
 		if err := s.interval(full, atT, &n.T, 1); err != nil {
 			return err
 		}
-		s.limitCondensate(c.thermal, n)
+		s.limitCondensate(c.thermal, n, &r.Checks)
 		return nil
 	case ModelCondensate:
 		return s.limitThermal(c.alone, n)
@@ -188,8 +188,9 @@ func (p *profile) rise(x float64) (float64, error) {
 const oneSided = 2.706
 
 // limitCondensate sets the upper limit of N0 in a thermal cloud: a condensate of N0 atoms
-// with the μ that they have in Thomas-Fermi, raised until χ² stands 2.7 above its least.
-func (s *session) limitCondensate(st *state, n *numbers.Result) {
+// with the μ that they have in Thomas-Fermi, raised until χ² stands 2.7 above its least; and the
+// number that would be believed, where it stands as high as is asked of a condensate.
+func (s *session) limitCondensate(st *state, n *numbers.Result, c *Checks) {
 	if s.tmpl.gaussian {
 		return
 	}
@@ -206,9 +207,10 @@ func (s *session) limitCondensate(st *state, n *numbers.Result) {
 		size := math.Sqrt(e.square[0] * e.square[1])
 		q[pCondensate] = atoms / s.perSum() / (s.tmpl.condensateArea() * size)
 	}
-	limit := s.raise(st, k, set, 1e-3*n.Thermal.V, n.Thermal.V)
+	limit := s.raise(st, k, set, oneSided, 1e-3*n.Thermal.V, n.Thermal.V)
 	n.Condensate.High = limit
 	n.Fraction.High = limit / (limit + n.Thermal.V)
+	c.CondensateDetected = s.raise(st, k, set, s.opt.CondensateChi2, limit, n.Thermal.V)
 }
 
 // limitThermal sets the upper limits of T and N_th beside a condensate, and with them the
@@ -250,10 +252,10 @@ func (s *session) least(k kind, q params) float64 {
 	return s.ws.promise(sr, y)
 }
 
-// raise finds how far one number can grow from start until χ² stands oneSided above the
-// least it had, by steps along the square root of the rise, which is nearly straight; NaN
+// raise finds how far one number can grow from start until χ² stands by above the least it
+// had, by steps along the square root of the rise, which is nearly straight; NaN
 // where even most costs less.
-func (s *session) raise(st *state, k kind, set func(*params, float64), start, most float64) float64 {
+func (s *session) raise(st *state, k kind, set func(*params, float64), by, start, most float64) float64 {
 	q := st.p
 	set(&q, 1e-3*start)
 	least, x := s.least(k, q), start
@@ -263,7 +265,7 @@ func (s *session) raise(st *state, k kind, set func(*params, float64), start, mo
 		set(&q, x)
 		chi := s.least(k, q)
 		least = math.Min(least, chi)
-		r := math.Sqrt((chi - least) / oneSided)
+		r := math.Sqrt((chi - least) / by)
 		if math.Abs(r-1) < 0.05 {
 			return x
 		}

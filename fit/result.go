@@ -42,6 +42,7 @@ type Checks struct {
 	TiedOverFree         float64 // χ² of the tied fit minus that of the free fit
 	TiedOverFreeDof      int
 	AtomsOverSum         float64
+	CondensateDetected   float64 // N0 that would have been believed in a thermal cloud
 }
 
 // The models a picture can be given.

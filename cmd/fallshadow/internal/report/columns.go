@@ -101,6 +101,7 @@ var Columns = slices.Concat([]Column{
 		check("tied_over_free", "chi2 of the tied fit less that of the free fit", func(c *fit.Checks) float64 { return c.TiedOverFree }),
 		check("tied_over_free_dof", "parameters that the free fit has more", func(c *fit.Checks) float64 { return float64(c.TiedOverFreeDof) }),
 		check("atoms_over_sum", "atoms over atoms_sum", func(c *fit.Checks) float64 { return c.AtomsOverSum }),
+		check("condensate_detected", "N0 that would have been reported beside the thermal part; the upper limit is condensate_high", func(c *fit.Checks) float64 { return c.CondensateDetected }),
 	},
 	value("phase_space_density", "", "peak density in the trap times the cube of the thermal wavelength", 1, func(n *numbers.Result) *numbers.Value { return &n.PhaseSpaceDensity }, itself, err, cal),
 	value("peak_density_um3", "1/um^3", "peak density in the trap", perCubicMicro, func(n *numbers.Result) *numbers.Value { return &n.PeakDensity }, itself, err, cal),

@@ -54,15 +54,15 @@ func WriteCSV(w io.Writer, rows []ledger.Row, scan []string) error {
 
 // SaveCSV writes results.csv in the folder dir, whole or not at all.
 func SaveCSV(dir string, rows []ledger.Row, scan []string) error {
-	err := replace(filepath.Join(dir, CSVName), func(w io.Writer) error { return WriteCSV(w, rows, scan) })
+	err := Replace(filepath.Join(dir, CSVName), func(w io.Writer) error { return WriteCSV(w, rows, scan) })
 	if err != nil {
 		return fmt.Errorf("write the table: %w", err)
 	}
 	return nil
 }
 
-// replace writes a file under a temporary name, syncs it and renames it.
-func replace(file string, write func(io.Writer) error) (err error) {
+// Replace writes a file under a temporary name, syncs it and renames it.
+func Replace(file string, write func(io.Writer) error) (err error) {
 	temporary := file + ".tmp"
 	f, err := os.Create(temporary)
 	if err != nil {
