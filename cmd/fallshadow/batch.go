@@ -87,6 +87,9 @@ func (c *batchCmd) show(t terminal, out *night.Outcome) error {
 
 // loadSettings reads the named settings, or those in the night's folder.
 func loadSettings(file, nightDir string) (*settings.Settings, error) {
+	if err := isFolder(nightDir); err != nil {
+		return nil, err
+	}
 	if file == "" {
 		var err error
 		if file, err = settings.Find(nightDir); err != nil {

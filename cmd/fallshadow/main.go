@@ -35,9 +35,11 @@ var errSomeFailed = errors.New("some shots failed")
 
 // commands is the command line.
 type commands struct {
-	Batch    batchCmd    `cmd:"" help:"Fit the shots of a night and write the table of results."`
-	Init     initCmd     `cmd:"" help:"Print commented settings of a laboratory to start from."`
-	Simulate simulateCmd `cmd:"" help:"Write a night of simulated raw shots with known truth."`
+	Batch     batchCmd     `cmd:"" help:"Fit the shots of a night and write the table of results."`
+	Check     checkCmd     `cmd:"" help:"Look at a night before it is fitted: what would be read, and what is wrong. Nothing is written."`
+	Calibrate calibrateCmd `cmd:"" help:"Measure what the settings need."`
+	Init      initCmd      `cmd:"" help:"Print commented settings of a laboratory to start from."`
+	Simulate  simulateCmd  `cmd:"" help:"Write a night of simulated raw shots with known truth."`
 }
 
 // terminal is where a command writes to.

@@ -23,6 +23,14 @@ type Transfer struct {
 // independent values in it.
 type TransferPoint struct{ Mean, Variance, N float64 } // counts, counts², 1
 
+// Variance returns the variance of a pixel at the level of a point, counts², by the straight
+// line, and the standard deviation with which the mean over the point's values scatters
+// about it.
+func (t *Transfer) Variance(p TransferPoint) (v, err float64) {
+	v = math.Pow(t.ReadNoise/t.ElectronsPerCount, 2) + p.Mean/t.ElectronsPerCount
+	return v, v * math.Sqrt(2/p.N)
+}
+
 // PhotonTransfer measures gain and read noise from the light and dark frames of a night,
 // in natural order; camera gives full scale and region, its gain and noise are not used.
 //

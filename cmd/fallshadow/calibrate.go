@@ -1,0 +1,6 @@
+package main
+
+// calibrateCmd is the group of calibrations, each of which prints settings to paste.
+type calibrateCmd struct {
+	Camera calibrateCameraCmd `cmd:"" help:"Measure gain and read noise of the camera from the light and dark frames of a night."`
+}

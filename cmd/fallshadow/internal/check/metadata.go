@@ -1,0 +1,203 @@
+package check
+
+import (
+	"fmt"
+	"maps"
+	"math"
+	"regexp"
+	"slices"
+	"strconv"
+	"strings"
+
+	"fallshadow/cmd/fallshadow/internal/report"
+	"fallshadow/imageio"
+	"fallshadow/imageio/fits"
+)
+
+// structural are header keywords that tell of the file and not of the shot.
+var structural = regexp.MustCompile(`^(SIMPLE|BITPIX|NAXIS\d*|EXTEND|BSCALE|BZERO|PCOUNT|GCOUNT|XTENSION|EXTNAME|CHECKSUM|DATASUM|COMMENT|HISTORY|END|)$`)
+
+// entry is one key of the metadata over the readable shots.
+type entry struct {
+	key, from string
+	values    []string // each once, in the order of the shots
+	shots     int      // that have it
+}
+
+// entriesOf returns what the metadata of the readable shots hold, by key.
+func (v *visit) entriesOf() []entry {
+	all, known := map[string]*entry{}, map[[2]string]bool{}
+	for _, s := range v.look.Shots {
+		if s.Err != nil {
+			continue
+		}
+		for _, key := range slices.Sorted(maps.Keys(s.Meta)) {
+			if structural.MatchString(key) {
+				continue
+			}
+			e := all[key]
+			if e == nil {
+				e = &entry{key: key, from: v.source(s.Shot, key)}
+				all[key] = e
+			}
+			e.shots++
+			if value := s.Meta[key]; !known[[2]string{key, value}] {
+				known[[2]string{key, value}] = true
+				e.values = append(e.values, value)
+			}
+		}
+	}
+	var out []entry
+	for _, key := range slices.Sorted(maps.Keys(all)) {
+		out = append(out, *all[key])
+	}
+	return out
+}
+
+// source says where a key of a shot's metadata comes from.
+func (v *visit) source(s imageio.Shot, key string) string {
+	if _, ok := s.Meta.Get(key); !ok {
+		return "the header"
+	}
+	if re, err := regexp.Compile(v.Settings.Shots.Pattern); err == nil && v.Settings.Shots.SideTable != "" {
+		inName := slices.ContainsFunc(re.SubexpNames(), func(n string) bool { return strings.EqualFold(n, key) })
+		if !inName {
+			return v.Settings.Shots.SideTable
+		}
+		match := re.FindStringSubmatch(s.Files[0].Path)
+		for i, n := range re.SubexpNames() {
+			if text, _ := s.Meta.Get(key); strings.EqualFold(n, key) && match != nil && match[i] != text {
+				return v.Settings.Shots.SideTable
+			}
+		}
+	}
+	return "the file name"
+}
+
+// span tells of the values of an entry.
+func (e *entry) span() string {
+	numbers, all := []float64{}, true
+	for _, text := range e.values {
+		x, err := fits.ParseNumber(text)
+		all = all && err == nil
+		numbers = append(numbers, x)
+	}
+	switch {
+	case all && len(numbers) == 1:
+		return number(numbers[0])
+	case len(e.values) == 1:
+		return clip(e.values[0], 40)
+	case all:
+		return fmt.Sprintf("%d values, %s to %s", len(numbers), number(slices.Min(numbers)), number(slices.Max(numbers)))
+	}
+	return fmt.Sprintf("%d values, such as %s", len(e.values), clip(e.values[0], 40))
+}
+
+func number(x float64) string { return digits(x, 6) }
+
+// digits writes a number to so many digits, without an exponent where it is of ordinary
+// size.
+func digits(x float64, n int) string {
+	text := strconv.FormatFloat(x, 'g', n, 64)
+	if a := math.Abs(x); a >= 1e-4 && a < 1e9 {
+		rounded, _ := strconv.ParseFloat(text, 64)
+		return strconv.FormatFloat(rounded, 'f', -1, 64)
+	}
+	return text
+}
+
+// find returns the entry that a name means, as Metadata.Get does.
+func (v *visit) find(name string) (entry, bool) {
+	var near *entry
+	for _, e := range v.entries {
+		if e.key == name {
+			return e, true
+		}
+		if near == nil && strings.EqualFold(e.key, name) {
+			near = &e
+		}
+	}
+	if near != nil {
+		return *near, true
+	}
+	return entry{}, false
+}
+
+// flightSource says where the time of flight comes from.
+func (v *visit) flightSource() string {
+	c := &v.Settings.Clock
+	text := fmt.Sprintf("%g ms for all shots, from the settings", c.FixedMs.Value)
+	if !c.FixedMs.Given {
+		e, ok := v.find(c.From)
+		if !ok {
+			return fmt.Sprintf("%s is in no header, file name or side table", c.From)
+		}
+		text = fmt.Sprintf("%s %s, from %s in %s", e.span(), c.Unit, e.key, e.from)
+	}
+	if z := c.ZeroMs.Value; z != 0 {
+		text += fmt.Sprintf("; zero_ms = %g is added", z)
+	}
+	return text
+}
+
+func (v *visit) scanSource(name string) string {
+	e, ok := v.find(name)
+	if !ok {
+		v.trouble.caution("", "scan: %s is in no header, file name or side table: its column stays empty", name)
+		return name + " is nowhere"
+	}
+	return fmt.Sprintf("%s: %s, from %s", e.key, e.span(), e.from)
+}
+
+// numeric lists the keys that hold a number in every readable shot, those that are likely
+// a time first.
+func (v *visit) numeric() []string {
+	var likely, others []string
+	for _, e := range v.entries {
+		ok := true
+		for _, text := range e.values {
+			_, err := fits.ParseNumber(text)
+			ok = ok && err == nil
+		}
+		switch name := strings.ToLower(e.key); {
+		case !ok:
+		case strings.Contains(name, "tof") || strings.Contains(name, "flight") || strings.Contains(name, "time") || strings.HasSuffix(name, "ms"):
+			likely = append(likely, e.key)
+		default:
+			others = append(others, e.key)
+		}
+	}
+	return append(likely, others...)
+}
+
+// writeMetadata lists what came with the shots.
+func (v *visit) writeMetadata() {
+	if len(v.entries) == 0 {
+		return
+	}
+	v.page.title("Metadata")
+	readable := len(v.shots) - v.unread()
+	var same []string
+	const most = 24
+	shown := 0
+	for _, e := range v.entries {
+		if len(e.values) == 1 && e.shots == readable && readable > 1 {
+			same = append(same, clip(e.key, 24)+" = "+clip(e.values[0], 40))
+			continue
+		}
+		if shown++; shown > most {
+			continue
+		}
+		text := e.span() + ", from " + e.from
+		if e.shots < readable {
+			text += fmt.Sprintf(", in %d of %d shots", e.shots, readable)
+		}
+		v.page.pair(report.Printable(clip(e.key, 16)), "%s", report.Printable(text))
+	}
+	if shown > most {
+		v.page.pair("...", "%d more that differ", shown-most)
+	}
+	if len(same) > 0 {
+		v.page.pair("in all shots", "%s", report.Printable(strings.Join(same, "; ")))
+	}
+}
