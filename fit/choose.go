@@ -49,7 +49,7 @@ func (c *candidates) dropIdle() {
 func (s *session) explore() (*candidates, guess, error) {
 	top := len(s.levels) - 1
 	c, g := new(candidates), guess{}
-	if near := s.opt.Near; near != nil && near.found != nil {
+	if near := s.opt.Near; near != nil && near.found != nil && !near.Rough {
 		*c, g, top = *near.found, near.guess, s.work
 	} else {
 		p := s.problem(top, &params{}, kind{})
@@ -120,9 +120,25 @@ func (s *session) follow(i int, c *candidates) error {
 	return nil
 }
 
+// doubt is 1 for a condensate whose μ from the radius agrees with that of its number within a
+// factor of two and two errors, and grows as ten times the square of the logarithm beyond: what
+// is left of a fringe has any size, while a condensate under wrong settings is far above every
+// threshold.
+func (s *session) doubt(st *state) float64 {
+	if s.tmpl.gaussian || st.cov == nil {
+		return 1
+	}
+	m := s.shapeOf(st)
+	r := m.ratios(s.lab, s.flight, 1)[ratioMuN]
+	if math.IsNaN(r) {
+		return 1
+	}
+	x := math.Max(0, math.Abs(r)-math.Ln2-2*m.errs[ratioMuN])
+	return 1 + 10*x*x
+}
+
 // choose takes the simplest model that the picture does not refuse: a second part must lower
-// χ² by a stated amount, and so must any cloud. A condensate beside a thermal part is only
-// believed where its column stands above its own error.
+// χ² by a stated amount, and so must any cloud.
 func (s *session) choose(c *candidates) (*state, string) {
 	chi := func(st *state) float64 {
 		if !st.used() {
@@ -134,9 +150,11 @@ func (s *session) choose(c *candidates) (*state, string) {
 	if chi(c.alone) < chi(c.thermal) {
 		single, name = c.alone, ModelCondensate
 	}
-	if c.both.used() && c.both.p[pCondensate] > 0 && c.both.p[pThermal] > 0 &&
-		chi(c.thermal)-chi(c.both) > s.opt.CondensateChi2 && chi(c.alone)-chi(c.both) > s.opt.ThermalChi2 {
-		return c.both, ModelBimodal
+	if c.both.used() && c.both.p[pCondensate] > 0 && c.both.p[pThermal] > 0 && chi(c.alone)-chi(c.both) > s.opt.ThermalChi2 {
+		// What it takes to doubt a thermal cloud grows for a condensate that cannot be one.
+		if gain := chi(c.thermal) - chi(c.both); gain > s.opt.CondensateChi2 && gain > s.opt.CondensateChi2*s.doubt(c.both) {
+			return c.both, ModelBimodal
+		}
 	}
 	if chi(c.none)-chi(single) > s.opt.CloudChi2 {
 		return single, name

@@ -11,9 +11,16 @@ type Place struct {
 	Mask         []bool    // true where atoms may be: within 2.5 widths or 1.2 radii
 	Transmission []float64 // the fitted atoms frame over the scaled reference; nil where no cloud was found
 
+	// Rough says that what was found does not fit: fringes or worse stand in the picture. The mask
+	// is then a first guess, and another look with a better reference is worth its time.
+	Rough bool
+
 	found *candidates // where the next fit of the same picture may begin
 	guess guess
 }
+
+// roughChi2 is χ² a bin beyond which a fit is rough.
+const roughChi2 = 1.3
 
 // Locate finds the cloud in a picture like Cloud does, but stops before the full picture, errors
 // and comparisons. It fails like Cloud.
@@ -27,6 +34,8 @@ func Locate(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt Opt
 		return nil, err
 	}
 	place := &Place{Mask: make([]bool, pic.Width*pic.Height), found: c, guess: g}
+	l := s.levels[s.work]
+	place.Rough = c.best().chi2 > roughChi2*float64(l.w*l.h)
 	st, model := s.choose(c)
 	if model == ModelNone {
 		return place, nil

@@ -15,7 +15,8 @@ type Options struct {
 	ScaleErrors bool
 
 	// Near, where not nil, is what Locate found in the same atoms frame under the same settings,
-	// perhaps with a poorer reference: the search begins there and not with a first look.
+	// perhaps with a poorer reference: the search begins there and not with a first look, unless
+	// that was rough.
 	Near *Place
 
 	// CondensateChi2 and ThermalChi2 are the decrease of χ² that a second part must bring

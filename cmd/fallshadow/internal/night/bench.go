@@ -118,14 +118,21 @@ func (b *bench) lender(f *frames) func(context.Context, int) (*imageio.Raw, erro
 }
 
 // relight returns the exposure with the best light that the night has for it, and the place
-// of the cloud.
+// of the cloud. Where fringes spoiled the first look, the second has their better part taken
+// off and says anew where light may be compared.
 func (b *bench) relight(ctx context.Context, at int, e *imageio.Exposure, flight float64, workspace *fit.Workspace) (*imageio.Exposure, *fit.Place, error) {
-	place, err := fit.Locate(ctx, b.picture(e), &b.lab, flight, b.options, workspace)
-	if err != nil {
-		return nil, nil, fmt.Errorf("locate the cloud: %w", err)
+	lit := e
+	for range 2 {
+		place, err := fit.Locate(ctx, b.picture(lit), &b.lab, flight, b.options, workspace)
+		if err != nil {
+			return nil, nil, fmt.Errorf("locate the cloud: %w", err)
+		}
+		lit, err = b.references.Apply(ctx, at, e, light.Cloud{Mask: place.Mask, Transmission: place.Transmission})
+		if err != nil || !place.Rough {
+			return lit, place, err
+		}
 	}
-	e, err = b.references.Apply(ctx, at, e, light.Cloud{Mask: place.Mask, Transmission: place.Transmission})
-	return e, place, err
+	return lit, nil, nil
 }
 
 // picture hands an exposure to the fit.
