@@ -55,3 +55,19 @@ func TestRowAlone(t *testing.T) {
 		}
 	}
 }
+
+// A row whose shot has left the folder is found by its pixels; one that is there is not.
+func TestGone(t *testing.T) {
+	ctx, l := context.Background(), open0(t, t.TempDir())
+	put(t, l, row("stays", 1), row("left", 2))
+	reconcile(t, l, Present{Shot: "stays", Content: digest(1)})
+	if r, err := l.Gone(ctx, digest(1)); r != nil || err != nil {
+		t.Errorf("the one that is there: %v, %v", r, err)
+	}
+	if r, err := l.Gone(ctx, Digest{}); r != nil || err != nil {
+		t.Errorf("what was never read: %v, %v", r, err)
+	}
+	if r, err := l.Gone(ctx, digest(2)); r == nil || err != nil || r.Shot != "left" {
+		t.Errorf("the one that left: %v, %v", r, err)
+	}
+}

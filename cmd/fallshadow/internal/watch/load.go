@@ -1,0 +1,42 @@
+package watch
+
+import (
+	"context"
+	"fmt"
+
+	"fallshadow/cmd/fallshadow/internal/night"
+	"fallshadow/cmd/fallshadow/internal/report"
+	"fallshadow/fit"
+	"fallshadow/imageio"
+)
+
+// load reads the shot of an arrival.
+func (w *Watcher) load(ctx context.Context, arrival int) (*imageio.Raw, error) {
+	s, ok := w.roll.at(arrival)
+	if !ok {
+		return nil, fmt.Errorf("shot %s has left the folder", s.Name)
+	}
+	return night.ReadShot(ctx, w.root, s, w.settings().Layout())
+}
+
+func (w *Watcher) darks(ctx context.Context, file imageio.ShotFile) ([]*imageio.Frame, error) {
+	return imageio.ReadDark(ctx, w.root, file)
+}
+
+// Measure fits a shot once more, for who wants to see it; nothing is stored.
+func (w *Watcher) Measure(ctx context.Context, shot string) (*report.Facts, *imageio.Raw, error) {
+	if !w.isReady() {
+		return nil, nil, errNoShot(shot)
+	}
+	s, arrival, ok := w.roll.find(shot)
+	if !ok {
+		return nil, nil, errNoShot(shot)
+	}
+	lab := w.settings()
+	raw, err := night.ReadShot(ctx, w.root, s, lab.Layout())
+	if err != nil {
+		return nil, nil, err
+	}
+	f, _, err := w.desk.measure(ctx, lab, w.regionOf(shot), arrival, raw, fit.NewWorkspace())
+	return f, raw, err
+}

@@ -1,0 +1,123 @@
+package watch
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"image"
+
+	"fallshadow/cmd/fallshadow/internal/ledger"
+	"fallshadow/imageio"
+)
+
+// drawing is a region of interest that waits for the first shot it holds for.
+type drawing struct{ region image.Rectangle }
+
+// Judge stores a person's word against a shot; an empty one takes it back.
+func (w *Watcher) Judge(ctx context.Context, shot, word string) error {
+	r, err := w.Row(ctx, shot)
+	if err != nil {
+		return err
+	}
+	if r == nil {
+		return errNoShot(shot)
+	}
+	if r.Content == (ledger.Digest{}) {
+		return fmt.Errorf("the frames of %s could not be read, so there is nothing to judge", shot)
+	}
+	if err := w.store.Judge(ctx, r.Content, word); err != nil {
+		return err
+	}
+	w.audience.Changed()
+	w.askTable()
+	return nil
+}
+
+// Region returns the region in force for the last shot, nil where no one drew any, and
+// the one that waits for its first shot.
+func (w *Watcher) Region() (now, next *image.Rectangle) {
+	if !w.isReady() {
+		return nil, nil
+	}
+	last := w.roll.last()
+	w.mu.Lock()
+	defer w.mu.Unlock()
+	if g, ok := ledger.RegionFor(w.regions, last); ok {
+		now = &image.Rectangle{Min: image.Pt(g.X0, g.Y0), Max: image.Pt(g.X1, g.Y1)}
+	}
+	if w.drawn != nil {
+		next = &w.drawn.region
+	}
+	return now, next
+}
+
+// smallest is the least side of a region, in saved pixels.
+const smallest = 16
+
+// Draw sets the region of interest, in saved pixels, from the next shot on.
+func (w *Watcher) Draw(region image.Rectangle) error {
+	if !w.isReady() {
+		return errors.New("there is no night yet")
+	}
+	frame, ok := w.desk.frame()
+	if !ok {
+		return errors.New("no shot was read yet: the size of a frame is not known")
+	}
+	region = region.Canon().Intersect(image.Rectangle{Max: frame})
+	if region.Dx() < smallest || region.Dy() < smallest {
+		return fmt.Errorf("a region has at least %d x %d saved pixels inside the frame", smallest, smallest)
+	}
+	w.mu.Lock()
+	w.drawn = &drawing{region}
+	w.mu.Unlock()
+	w.desk.foresee(w.settings(), region)
+	w.audience.Changed()
+	return nil
+}
+
+// Undraw takes back a region that has not held for any shot yet.
+func (w *Watcher) Undraw() {
+	w.mu.Lock()
+	w.drawn = nil
+	w.mu.Unlock()
+	w.audience.Changed()
+}
+
+// beginRegion stores the region that was drawn with the first new shot behind all that
+// were there. Shots that come late but belong before them keep what held then.
+func (w *Watcher) beginRegion(ctx context.Context, jobs []*job, last string) {
+	w.mu.Lock()
+	defer w.mu.Unlock()
+	if w.drawn == nil {
+		return
+	}
+	for _, j := range jobs {
+		if !j.isNew || last != "" && imageio.Natural(j.Name, last) <= 0 {
+			continue
+		}
+		r := w.drawn.region
+		g := ledger.Region{First: j.Name, X0: r.Min.X, Y0: r.Min.Y, X1: r.Max.X, Y1: r.Max.Y}
+		ctx = context.WithoutCancel(ctx)
+		err := w.store.SetRegion(ctx, g)
+		var regions []ledger.Region
+		if err == nil {
+			regions, err = w.store.Regions(ctx)
+		}
+		if err != nil {
+			w.notes.set("ledger", err.Error())
+			return
+		}
+		w.regions, w.drawn = regions, nil
+		return
+	}
+}
+
+// regionOf returns the region that a person drew and that is in force for a shot.
+func (w *Watcher) regionOf(shot string) *ledger.Region {
+	w.mu.Lock()
+	defer w.mu.Unlock()
+	if g, ok := ledger.RegionFor(w.regions, shot); ok {
+		return &g
+	}
+	return nil
+}

@@ -1,0 +1,330 @@
+package watch
+
+import (
+	"errors"
+	"maps"
+	"os"
+	"path/filepath"
+	"slices"
+	"sync"
+	"time"
+
+	"fallshadow/cmd/fallshadow/internal/ledger"
+	"fallshadow/imageio"
+	"fallshadow/imageio/fault"
+)
+
+const (
+	// settle is for how long a file must have looked the same before what was read of it
+	// is believed: a camera program may make the file in its final size and fill it then.
+	settle = 150 * time.Millisecond
+	// unfinished is how long after its last change a shot with a file cut short or a frame
+	// missing is waited for before that is reported.
+	unfinished = 20 * time.Second
+	// broken is the same for a file that contradicts its format.
+	broken = 2 * time.Second
+	// soon and late bound the waits between two looks at such a shot.
+	soon, late = 50 * time.Millisecond, 2 * time.Second
+)
+
+// roll is what is known of the shots in the folder. It decides which of them are read now.
+type roll struct {
+	root string
+	rows map[string]known // by shot, of the ledger
+	seen map[string]ledger.Sighting
+
+	mu       sync.Mutex
+	shots    map[string]*entry
+	arrivals []*entry // by arrival; those that are gone too
+}
+
+// known is what the ledger says of a shot.
+type known struct {
+	content, frames ledger.Digest
+	meta            map[string]string
+}
+
+// entry is a shot of the folder.
+type entry struct {
+	shot    imageio.Shot
+	looks   []ledger.Sighting // of its files
+	since   time.Time         // of their last change
+	state   state
+	tries   int
+	next    time.Time // for the next look
+	why     error     // it waits
+	arrival int       // -1 before it was whole
+	known   known     // of its row; zero where it has none
+}
+
+type state int
+
+const (
+	waiting state = iota // for its files to be whole
+	taken                // by a job
+	done
+)
+
+// job is a shot to be read, and what it looked like.
+type job struct {
+	imageio.Shot
+	looks   []ledger.Sighting
+	since   time.Time
+	arrival int
+	isNew   bool // no job was made of it before
+}
+
+func newRoll(root string, rows []ledger.Row, seen map[string]ledger.Sighting) *roll {
+	r := &roll{root: root, rows: make(map[string]known, len(rows)), seen: seen, shots: map[string]*entry{}}
+	for i := range rows {
+		r.rows[rows[i].Shot] = known{rows[i].Content, rows[i].Currency.Frames, rows[i].Meta}
+	}
+	return r
+}
+
+// update takes in what a scan found and returns the shots to be read now, in natural
+// order, and whether shots have left the folder.
+func (r *roll) update(shots []imageio.Shot, now time.Time) (jobs []*job, gone bool) {
+	r.mu.Lock()
+	defer r.mu.Unlock()
+	here := make(map[string]bool, len(shots))
+	for _, s := range shots {
+		here[s.Name] = true
+		if j := r.meet(s, now); j != nil {
+			jobs = append(jobs, j)
+		}
+	}
+	for name := range r.shots {
+		if !here[name] {
+			delete(r.shots, name)
+			gone = true
+		}
+	}
+	return jobs, gone
+}
+
+// meet takes in one shot of a scan.
+func (r *roll) meet(s imageio.Shot, now time.Time) *job {
+	looks, ok := look(r.root, s)
+	if !ok {
+		return nil // a file went away in between; the next scan tells
+	}
+	e := r.shots[s.Name]
+	switch {
+	case e == nil:
+		e = &entry{shot: s, looks: looks, since: now, next: now, arrival: -1, known: r.rows[s.Name]}
+		r.shots[s.Name] = e
+		if r.isCurrent(e) {
+			e.state = done
+			r.arrive(e)
+		}
+		e.known.meta = nil // has served
+		delete(r.rows, s.Name)
+	case !slices.Equal(e.looks, looks) || !maps.Equal(e.shot.Meta, s.Meta):
+		e.shot, e.looks, e.since, e.tries, e.next = s, looks, now, 0, now
+		if e.state == done {
+			e.state = waiting
+		}
+	}
+	if e.state != waiting || now.Before(e.next) {
+		return nil
+	}
+	if err := whole(r.root, s); err != nil && !r.fails(e, err, now) {
+		return nil
+	}
+	return r.take(e)
+}
+
+// isCurrent reports whether the row of a shot was made of files that looked like this.
+func (r *roll) isCurrent(e *entry) bool {
+	for _, l := range e.looks {
+		if r.seen[l.Path] != l {
+			return false
+		}
+	}
+	for k, v := range e.shot.Meta {
+		if e.known.meta[k] != v {
+			return false
+		}
+	}
+	return e.known.content != ledger.Digest{} && len(e.looks) > 0
+}
+
+// arrive gives a shot its place in the order of arrival.
+func (r *roll) arrive(e *entry) {
+	if e.arrival < 0 {
+		e.arrival = len(r.arrivals)
+		r.arrivals = append(r.arrivals, e)
+	}
+}
+
+func (r *roll) take(e *entry) *job {
+	isNew := e.arrival < 0
+	r.arrive(e)
+	e.state = taken
+	return &job{Shot: e.shot, looks: e.looks, since: e.since, arrival: e.arrival, isNew: isNew}
+}
+
+// fails notes why a shot cannot be read yet, and reports whether to give it up.
+func (r *roll) fails(e *entry, err error, now time.Time) (givenUp bool) {
+	patience := broken
+	if errors.Is(err, fault.Truncated) || e.shot.Problem != nil {
+		patience = unfinished
+	}
+	e.why = err
+	if now.Sub(e.since) >= patience {
+		return true
+	}
+	e.state = waiting
+	e.next = now.Add(min(soon<<min(e.tries, 10), late))
+	e.tries++
+	return false
+}
+
+// refused is told that a job's frames could not be read, and reports whether to give up.
+func (r *roll) refused(j *job, err error, now time.Time) (givenUp bool) {
+	r.mu.Lock()
+	defer r.mu.Unlock()
+	e := r.shots[j.Name]
+	return e != nil && r.fails(e, err, now)
+}
+
+// hold puts a job back for a while, without limit.
+func (r *roll) hold(j *job, now time.Time) {
+	r.mu.Lock()
+	defer r.mu.Unlock()
+	if e := r.shots[j.Name]; e != nil {
+		e.state, e.next = waiting, now.Add(late)
+	}
+}
+
+// unchanged reports whether the files of a job look as they did when it was made; where
+// they do not, they are read again.
+func (r *roll) unchanged(j *job, now time.Time) bool {
+	looks, ok := look(r.root, j.Shot)
+	r.mu.Lock()
+	defer r.mu.Unlock()
+	e := r.shots[j.Name]
+	if ok && e != nil && slices.Equal(looks, j.looks) && maps.Equal(e.shot.Meta, j.Meta) {
+		return true
+	}
+	if e != nil {
+		e.state, e.next, e.tries = waiting, now, 0
+	}
+	return false
+}
+
+// finish closes a job whose row stands.
+func (r *roll) finish(j *job, k known) {
+	r.mu.Lock()
+	defer r.mu.Unlock()
+	e := r.shots[j.Name]
+	if e == nil {
+		return
+	}
+	e.known, e.why, e.state = k, nil, done
+	if !slices.Equal(e.looks, j.looks) || !maps.Equal(e.shot.Meta, j.Meta) {
+		e.state = waiting
+	}
+}
+
+// knownOf returns what the ledger says of a shot.
+func (r *roll) knownOf(name string) known {
+	r.mu.Lock()
+	defer r.mu.Unlock()
+	if e := r.shots[name]; e != nil {
+		return e.known
+	}
+	return known{}
+}
+
+// present lists the shots that are there and were read, for the ledger.
+func (r *roll) present() (list []ledger.Present) {
+	r.mu.Lock()
+	defer r.mu.Unlock()
+	for name, e := range r.shots {
+		p := ledger.Present{Shot: name, Content: e.known.content}
+		for _, f := range e.shot.Files {
+			p.Files = append(p.Files, f.Path)
+		}
+		list = append(list, p)
+	}
+	slices.SortFunc(list, func(a, b ledger.Present) int { return imageio.Natural(a.Shot, b.Shot) })
+	return list
+}
+
+// at returns the shot of an arrival; ok is false where it is gone.
+func (r *roll) at(arrival int) (s imageio.Shot, ok bool) {
+	r.mu.Lock()
+	defer r.mu.Unlock()
+	if arrival < 0 || arrival >= len(r.arrivals) {
+		return s, false
+	}
+	e := r.arrivals[arrival]
+	return e.shot, r.shots[e.shot.Name] == e
+}
+
+// find returns a shot that was whole, with its arrival.
+func (r *roll) find(name string) (s imageio.Shot, arrival int, ok bool) {
+	r.mu.Lock()
+	defer r.mu.Unlock()
+	e := r.shots[name]
+	if e == nil || e.arrival < 0 {
+		return s, 0, false
+	}
+	return e.shot, e.arrival, true
+}
+
+// last returns the last shot in natural order that was whole, "" where there is none.
+func (r *roll) last() (name string) {
+	r.mu.Lock()
+	defer r.mu.Unlock()
+	for other, e := range r.shots {
+		if e.arrival >= 0 && (name == "" || imageio.Natural(other, name) > 0) {
+			name = other
+		}
+	}
+	return name
+}
+
+// patience returns the time of the next look at a shot that waits, and what it waits for.
+func (r *roll) patience() (next time.Time, waits int, why error) {
+	r.mu.Lock()
+	defer r.mu.Unlock()
+	for _, e := range r.shots {
+		if e.state != waiting {
+			continue
+		}
+		waits++
+		if next.IsZero() || e.next.Before(next) {
+			next, why = e.next, e.why
+		}
+	}
+	return next, waits, why
+}
+
+// look returns what the files of a shot look like from outside; ok is false where one is
+// not there.
+func look(root string, s imageio.Shot) (looks []ledger.Sighting, ok bool) {
+	for _, f := range s.Files {
+		info, err := os.Stat(filepath.Join(root, filepath.FromSlash(f.Path)))
+		if err != nil {
+			return nil, false
+		}
+		looks = append(looks, ledger.Sighting{Path: f.Path, Size: info.Size(), Modified: info.ModTime().UnixNano()})
+	}
+	return looks, true
+}
+
+// whole reports what is missing of a shot.
+func whole(root string, s imageio.Shot) error {
+	if s.Problem != nil {
+		return s.Problem
+	}
+	for _, f := range s.Files {
+		if err := imageio.Whole(filepath.Join(root, filepath.FromSlash(f.Path))); err != nil {
+			return err
+		}
+	}
+	return nil
+}

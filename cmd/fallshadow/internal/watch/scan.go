@@ -1,0 +1,92 @@
+package watch
+
+import (
+	"context"
+	"fmt"
+	"time"
+
+	"fallshadow/imageio"
+)
+
+// gap is the least time between two scans: a camera program that writes a file in pieces
+// wakes the watch with each. A long scan rests longer.
+const gap = 25 * time.Millisecond
+
+// scan looks through the folder whenever it is woken or a shot is due for another look.
+func (w *Watcher) scan(ctx context.Context, wake <-chan struct{}) {
+	for {
+		began := time.Now()
+		w.rereadSettings()
+		w.scanOnce(ctx)
+		took := time.Since(began)
+		if !pause(ctx, max(gap, 3*took)-took) {
+			return
+		}
+		timer := time.NewTimer(w.untilDue())
+		select {
+		case <-wake:
+		case <-timer.C:
+		case <-ctx.Done():
+		}
+		timer.Stop()
+		if ctx.Err() != nil {
+			return
+		}
+	}
+}
+
+// untilDue is the time until a waiting shot is to be looked at again.
+func (w *Watcher) untilDue() time.Duration {
+	next, _, _ := w.roll.patience()
+	if next.IsZero() {
+		return w.Poll
+	}
+	return max(0, time.Until(next))
+}
+
+// scanOnce finds what is new and hands it to the workers.
+func (w *Watcher) scanOnce(ctx context.Context) {
+	scanned, err := imageio.Scan(ctx, w.root, w.settings().Layout())
+	if ctx.Err() != nil {
+		return
+	}
+	if err != nil {
+		w.notes.set("folder", "the folder cannot be read: "+err.Error())
+		return
+	}
+	w.notes.set("folder", "")
+	w.noteStrays(scanned.Strays)
+	w.desk.setDarks(scanned.Darks)
+	last := w.roll.last()
+	jobs, gone := w.roll.update(scanned.Shots, time.Now())
+	if gone {
+		if err := w.store.Reconcile(context.WithoutCancel(ctx), w.roll.present()); err != nil {
+			w.notes.set("ledger", err.Error())
+		}
+		w.audience.Changed()
+		w.askTable()
+	}
+	w.beginRegion(ctx, jobs, last)
+	w.queue.push(jobs...)
+	w.noteWaiting()
+}
+
+// noteStrays says that there are files that are no shots; a layout that does not fit the
+// files would otherwise look like a night without shots.
+func (w *Watcher) noteStrays(strays []imageio.Stray) {
+	text := ""
+	if n := len(strays); n > 0 && len(w.roll.present()) == 0 {
+		text = fmt.Sprintf("no shots yet; %d files fit none, such as %s: %s", n, strays[0].Path, strays[0].Reason)
+	}
+	w.notes.set("strays", text)
+}
+
+// noteWaiting says which shot is waited for, once that has lasted.
+func (w *Watcher) noteWaiting() {
+	next, n, why := w.roll.patience()
+	text := ""
+	if n > 0 && why != nil && time.Until(next) > late/2 {
+		text = fmt.Sprintf("waiting for %d unfinished shots: %v", n, why)
+	}
+	w.notes.set("unfinished", text)
+}
