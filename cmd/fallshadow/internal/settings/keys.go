@@ -189,7 +189,7 @@ var keys = []key{
 		doc: "Saved pixels summed along each side before the fit: 1, 2 or 4."},
 	{table: "fit", name: "reference", field: func(s *Settings) any { return &s.Fit.Reference }, def: `"auto"`, words: []string{"auto", "own", "basis"},
 		doc: "The light the cloud would have seen: the shot's own light frame, the best combination of the night's light frames, or whichever is better on parts left out."},
-	{table: "fit", name: "basis_size", field: func(s *Settings) any { return &s.Fit.BasisSize }, def: "20", low: 2, high: 200,
+	{table: "fit", name: "basis_size", field: func(s *Settings) any { return &s.Fit.BasisSize }, def: "40", low: 2, high: 200,
 		doc: "How many neighbouring light frames the combination may use."},
 }
 
