@@ -75,27 +75,14 @@ func (b *bench) worker() measure {
 	}
 }
 
-// measure fits a shot. Where the night lends a better light than the shot's own, the
-// cloud is located first, which says where the lights may be compared.
 func (b *bench) measure(ctx context.Context, at int, raw *imageio.Raw, workspace *fit.Workspace) (*report.Facts, error) {
 	flight, err := b.settings.Flight(raw.Meta)
 	if err != nil {
 		return nil, err
 	}
-	exposure, err := b.night.Expose(raw)
+	exposure, result, err := b.fit(ctx, at, raw, flight, workspace)
 	if err != nil {
 		return nil, err
-	}
-	b.exposed.Store(at, true)
-	options := b.options
-	if b.references != nil {
-		if exposure, options.Near, err = b.relight(ctx, at, exposure, flight, workspace); err != nil {
-			return nil, err
-		}
-	}
-	result, err := fit.Cloud(ctx, b.picture(exposure), &b.lab, flight, options, workspace)
-	if err != nil {
-		return nil, fmt.Errorf("fit: %w", err)
 	}
 	f := &report.Facts{
 		Flight: flight, Reference: exposure.Reference, Notes: exposure.Notes,
@@ -103,6 +90,27 @@ func (b *bench) measure(ctx context.Context, at int, raw *imageio.Raw, workspace
 	}
 	f.X, f.Y = b.night.Camera.ToSaved(result.X, result.Y)
 	return f, nil
+}
+
+// fit exposes a shot and fits it after a flight (s). Where the night lends a better light than
+// the shot's own, the cloud is located first, which says where the lights may be compared.
+func (b *bench) fit(ctx context.Context, at int, raw *imageio.Raw, flight float64, workspace *fit.Workspace) (*imageio.Exposure, *fit.Result, error) {
+	exposure, err := b.night.Expose(raw)
+	if err != nil {
+		return nil, nil, err
+	}
+	b.exposed.Store(at, true)
+	options := b.options
+	if b.references != nil {
+		if exposure, options.Near, err = b.relight(ctx, at, exposure, flight, workspace); err != nil {
+			return nil, nil, err
+		}
+	}
+	result, err := fit.Cloud(ctx, b.picture(exposure), &b.lab, flight, options, workspace)
+	if err != nil {
+		return nil, nil, fmt.Errorf("fit: %w", err)
+	}
+	return exposure, result, nil
 }
 
 // lender returns what reads a shot whose light may serve others. A shot that cannot be
