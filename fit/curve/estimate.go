@@ -1,0 +1,262 @@
+package curve
+
+import (
+	"context"
+	"fmt"
+	"math"
+	"slices"
+
+	"gonum.org/v1/gonum/mat"
+
+	"fallshadow/fit/lm"
+)
+
+// Estimate is a number with its errors, one standard deviation each. Err is statistical,
+// times √(χ²/dof) where the points scatter by more than their errors. Cal is NaN where a
+// calibration that moves the number has no stated uncertainty.
+type Estimate struct{ V, Err, Cal float64 }
+
+// Error returns both errors together, the statistical one alone where Cal is NaN.
+func (e Estimate) Error() float64 {
+	if math.IsNaN(e.Cal) {
+		return e.Err
+	}
+	return math.Hypot(e.Err, e.Cal)
+}
+
+// power returns e to the power p, with errors by the delta method.
+func (e Estimate) power(p float64) Estimate {
+	v := math.Pow(e.V, p)
+	slope := math.Abs(p * v / e.V)
+	return Estimate{v, slope * e.Err, slope * e.Cal}
+}
+
+// Quality is how well a law describes points.
+type Quality struct {
+	Points int
+	Chi2   float64
+	Dof    int
+}
+
+// PerDof returns χ² over the degrees of freedom, NaN without any.
+func (q Quality) PerDof() float64 {
+	if q.Dof < 1 {
+		return math.NaN()
+	}
+	return q.Chi2 / float64(q.Dof)
+}
+
+// scale is the factor by which points scatter beyond their errors, at least 1.
+func (q Quality) scale() float64 {
+	if s := math.Sqrt(q.PerDof()); s > 1 {
+		return s
+	}
+	return 1
+}
+
+// tolerance is the relative change under a calibration of unknown uncertainty beyond which
+// an estimate has no calibration error (absolute where the estimate should be 0).
+const tolerance = 1e-4
+
+// problem fits the parameters θ of a relation to points; the residuals are the signed
+// distances of the points.
+type problem struct {
+	night      *Night
+	points     []*Point
+	relation   relation
+	parameters int
+	near       []near
+	at         []float64 // θ of near
+}
+
+// fit returns the estimates of θ, found from a start. ignore names calibrations that take
+// no part in the calibration errors.
+func (p *problem) fit(ctx context.Context, start []float64, ignore ...string) ([]Estimate, Quality, error) {
+	p.parameters, p.near = len(start), make([]near, len(p.points))
+	q := Quality{Points: len(p.points), Dof: len(p.points)*p.relation.size - len(start)}
+	if q.Dof < 0 {
+		return nil, q, fmt.Errorf("%d points cannot tell %d parameters", len(p.points), len(start))
+	}
+	found, err := lm.MinimizeDense(ctx, p, start, &lm.Settings{XTol: 1e-7, FTol: 1e-9})
+	if err != nil {
+		return nil, q, err
+	}
+	q.Chi2 = found.F
+	cov := make([]float64, len(start)*len(start))
+	if err := found.Covariance(cov); err != nil {
+		return nil, q, err
+	}
+	out := make([]Estimate, len(start))
+	for a := range out {
+		out[a] = Estimate{V: found.X[a], Err: math.Sqrt(cov[a*len(out)+a]) * q.scale()}
+	}
+	p.find(found.X)
+	p.calibrate(found.X, cov, out, ignore)
+	return out, q, nil
+}
+
+// quality returns χ² at fixed θ.
+func (p *problem) quality(theta []float64) Quality {
+	q := Quality{Points: len(p.points), Dof: len(p.points) * p.relation.size}
+	for _, pt := range p.points {
+		n := p.relation.nearest(pt, &p.night.Gas, theta)
+		q.Chi2 += n.r[0]*n.r[0] + n.r[1]*n.r[1]
+	}
+	return q
+}
+
+// mean returns the mean of the relation's first value at the measured numbers.
+func (p *problem) mean() Estimate {
+	var e Estimate
+	p.near = make([]near, len(p.points))
+	count := float64(len(p.points))
+	for i, pt := range p.points {
+		_, j := p.relation.linear(pt, &p.night.Gas, nil, &pt.Vector)
+		for a := range numMeasured {
+			for b := range numMeasured {
+				e.Err += j[0][a] * pt.Cov[a][b] * j[0][b] / (count * count)
+			}
+		}
+		var h [2]float64
+		p.relation.eval(&pt.Vector, &p.night.Gas, nil, h[:p.relation.size])
+		e.V += h[0] / count
+		p.near[i] = near{latent: pt.Vector, lower: [3]float64{1, 0, 0}}
+	}
+	e.Err = math.Sqrt(e.Err)
+	sum := p.night.noCalibration()
+	for c, calibration := range p.night.Calibrations {
+		change := 0.0
+		for i := range p.points {
+			change += p.moved(i, c, nil)[0] / count
+		}
+		sum.add(calibration.Known, change, tolerance)
+	}
+	e.Cal = sum.root()
+	return e
+}
+
+// calibrationSum adds up the changes of an estimate under calibrations.
+type calibrationSum struct {
+	squares float64
+	any     bool // the night has calibrations
+}
+
+func (n *Night) noCalibration() calibrationSum {
+	return calibrationSum{any: len(n.Calibrations) > 0}
+}
+
+// add takes a change; one of unknown uncertainty above the tolerance leaves no error.
+func (s *calibrationSum) add(known bool, change, tolerance float64) {
+	switch {
+	case known:
+		s.squares += change * change
+	case !(math.Abs(change) <= tolerance):
+		s.squares = math.NaN()
+	}
+}
+
+// root returns the error, NaN without any calibration.
+func (s *calibrationSum) root() float64 {
+	if !s.any {
+		return math.NaN()
+	}
+	return math.Sqrt(s.squares)
+}
+
+// Size returns the number of residuals and of parameters.
+func (p *problem) Size() (m, n int) { return len(p.points) * p.relation.size, p.parameters }
+
+// Residuals fills r with the distances.
+func (p *problem) Residuals(theta, r []float64) {
+	p.find(theta)
+	k := p.relation.size
+	for i := range p.near {
+		copy(r[k*i:k*(i+1)], p.near[i].r[:k])
+	}
+}
+
+// find fills near for θ.
+func (p *problem) find(theta []float64) {
+	if slices.Equal(theta, p.at) {
+		return
+	}
+	p.at = append(p.at[:0], theta...)
+	for i, pt := range p.points {
+		p.near[i] = p.relation.nearest(pt, &p.night.Gas, theta)
+	}
+}
+
+// Jacobian differentiates with the nearest points held: the distance is stationary there.
+func (p *problem) Jacobian(theta []float64, j *mat.Dense) {
+	k := p.relation.size
+	p.find(theta)
+	for i := range p.points {
+		for a := range theta {
+			w := p.slope(i, theta, a)
+			for b := range k {
+				j.Set(k*i+b, a, w[b])
+			}
+		}
+	}
+}
+
+// slope returns the derivative of the distance of point i by parameter a.
+func (p *problem) slope(i int, theta []float64, a int) [2]float64 {
+	var up, down [2]float64
+	k, at := p.relation.size, &p.near[i]
+	moved := slices.Clone(theta)
+	step := 1e-4 * math.Max(math.Abs(theta[a]), 0.01)
+	moved[a] = theta[a] + step
+	p.relation.eval(&at.latent, &p.night.Gas, moved, up[:k])
+	moved[a] = theta[a] - step
+	p.relation.eval(&at.latent, &p.night.Gas, moved, down[:k])
+	return at.whiten([2]float64{(up[0] - down[0]) / (2 * step), (up[1] - down[1]) / (2 * step)})
+}
+
+// calibrate fills in the calibration errors: when a calibration moves the residuals by Δr
+// the estimates move by −cov JᵀΔr.
+func (p *problem) calibrate(theta, cov []float64, out []Estimate, ignore []string) {
+	n := len(out)
+	slopes := make([][2]float64, len(p.points)*n)
+	for i := range p.points {
+		for a := range n {
+			slopes[i*n+a] = p.slope(i, theta, a)
+		}
+	}
+	sums := slices.Repeat([]calibrationSum{p.night.noCalibration()}, n)
+	for c, calibration := range p.night.Calibrations {
+		if slices.Contains(ignore, calibration.Name) {
+			continue
+		}
+		g := make([]float64, n)
+		for i := range p.points {
+			d := p.moved(i, c, theta)
+			for a := range n {
+				g[a] += slopes[i*n+a][0]*d[0] + slopes[i*n+a][1]*d[1]
+			}
+		}
+		for a := range n {
+			change := 0.0
+			for b := range n {
+				change -= cov[a*n+b] * g[b]
+			}
+			sums[a].add(calibration.Known, change, tolerance*math.Abs(out[a].V))
+		}
+	}
+	for a := range out {
+		out[a].Cal = sums[a].root()
+	}
+}
+
+// moved returns the change of the distance of point i under calibration c.
+func (p *problem) moved(i, c int, theta []float64) [2]float64 {
+	var rest, h [2]float64
+	k, at := p.relation.size, &p.near[i]
+	p.relation.eval(&at.latent, &p.night.Gas, theta, rest[:k])
+	v := at.latent
+	for a, d := range p.points[i].Shifts[c] {
+		v[a] += d
+	}
+	p.relation.eval(&v, &p.night.Calibrations[c].Gas, theta, h[:k])
+	return at.whiten([2]float64{h[0] - rest[0], h[1] - rest[1]})
+}

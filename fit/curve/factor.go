@@ -1,0 +1,186 @@
+package curve
+
+import (
+	"context"
+	"errors"
+	"math"
+
+	"fallshadow/model"
+)
+
+// The settings that a number factor is looked for in.
+const (
+	Alpha         = "alpha"
+	Magnification = "magnification"
+)
+
+// exponents says with which power of a setting the measured numbers go where no calibration
+// of a point tells it: a cross-section σ0/alpha, and lengths over the magnification.
+var exponents = map[string]Vector{
+	Alpha:         {1, 1, 0, 0},
+	Magnification: {-2, -2, -2, -2},
+}
+
+// Factor is a hypothesis on a night: the thermal part follows a law, and one setting is
+// wrong by a factor.
+type Factor struct {
+	Law     string // Ideal: N_thermal is the saturated number; SemiIdeal: it has the excess
+	Setting string // Alpha, Magnification, or empty: no setting is wrong
+	// Factor is what the setting is to be multiplied with.
+	Factor Estimate
+	Quality
+}
+
+// Factors are the hypotheses, the best one first, and how well they are told apart.
+type Factors struct {
+	List []Factor
+	// Lead is by how much χ² of the second setting is above that of the best one, each with
+	// its better law, in units of the scatter (the best χ²/dof where that is above 1). Two
+	// settings are told apart where it is above DecisiveLead.
+	Lead float64
+	// Mu is the mean of μ from the radii over μ from N0, Saturated that of N_thermal over its
+	// number by the law of the best hypothesis, both as measured.
+	Mu, Saturated Estimate
+}
+
+// DecisiveLead is the Lead from which on a setting is named: two standard deviations.
+const DecisiveLead = 4
+
+// leastParameter is the N0 a/ā from which on a condensate is Thomas-Fermi enough, to a few
+// percent of μ (tf_vs_gp.csv in testdata/reference).
+const leastParameter = 30
+
+// ErrNoFactor says that a night does not tell a number factor.
+var ErrNoFactor = errors.New("a number factor needs at least three shots with a thermal part and a condensate, T known to a third, and a repulsive gas whose condensate is large (N0 a over the oscillator length above 30)")
+
+// FindFactor fits one common factor of alpha or of the magnification to the night: with it
+// μ from the radii and μ from N0 agree, and N_thermal and the number that T lets it have,
+//
+//	ln μ = ln μ_TF(N0),   ln N_thermal = ln N_sat(T) [+ ln(1 + e(μ/kT)) in a semi-ideal gas].
+//
+// N goes with alpha and both lengths squared, T and μ with lengths squared, so that alpha
+// moves the two ratios by powers −2/5 and 1, the magnification by −6/5 and 4: near enough
+// to one another that weak data cannot tell them apart, see Lead. The calibration error
+// leaves out the setting itself.
+func (n *Night) FindFactor(ctx context.Context) (Factors, error) {
+	points := n.pick(func(p *Point) bool {
+		return p.Condensed() && p.radii() && p.relative(T) < 1./3 &&
+			p.Vector[Condensate]*n.Gas.ScatteringLength/n.Gas.Trap.Length(n.Gas.Mass) > leastParameter
+	})
+	if len(points) < 3 {
+		return Factors{}, ErrNoFactor
+	}
+	var f Factors
+	for _, law := range []string{Ideal, SemiIdeal} {
+		for _, setting := range []string{"", Alpha, Magnification} {
+			h, err := n.factor(ctx, points, law, setting)
+			if err != nil {
+				return Factors{}, err
+			}
+			f.insert(h)
+		}
+	}
+	f.lead()
+	var err error
+	f.Mu, f.Saturated, err = n.ratios(ctx, points, f.List[0].Law)
+	return f, err
+}
+
+// insert keeps the list in order of χ².
+func (f *Factors) insert(h Factor) {
+	at := len(f.List)
+	for at > 0 && h.Chi2 < f.List[at-1].Chi2 {
+		at--
+	}
+	f.List = append(f.List, Factor{})
+	copy(f.List[at+1:], f.List[at:])
+	f.List[at] = h
+}
+
+func (f *Factors) lead() {
+	best := f.List[0]
+	for _, h := range f.List {
+		if h.Setting != best.Setting && h.Setting != "" {
+			scale := best.scale()
+			f.Lead = (h.Chi2 - best.Chi2) / (scale * scale)
+			return
+		}
+	}
+}
+
+func (n *Night) factor(ctx context.Context, points []*Point, law, setting string) (Factor, error) {
+	h := Factor{Law: law, Setting: setting, Factor: Estimate{1, 0, 0}}
+	if setting == "" {
+		p := n.ratioProblem(points, law, func(theta []float64, v Vector) Vector { return v })
+		h.Quality = p.quality(nil)
+		return h, nil
+	}
+	power := n.exponents(points, setting)
+	p := n.ratioProblem(points, law, func(theta []float64, v Vector) Vector {
+		for i := range v {
+			v[i] *= math.Exp(theta[0] * power[i])
+		}
+		return v
+	})
+	e, q, err := p.fit(ctx, []float64{0}, setting)
+	if err != nil {
+		return h, err
+	}
+	factor := math.Exp(e[0].V)
+	h.Factor, h.Quality = Estimate{factor, factor * e[0].Err, factor * e[0].Cal}, q
+	return h, nil
+}
+
+// ratioProblem is that of the two relations after a correction of the measured numbers.
+func (n *Night) ratioProblem(points []*Point, law string, correct func(theta []float64, v Vector) Vector) *problem {
+	return &problem{night: n, points: points, relation: relation{2, func(v *Vector, g *Gas, theta, h []float64) {
+		c := correct(theta, *v)
+		h[0] = math.Log(c[Mu] / g.mu(c[Condensate]))
+		h[1] = math.Log(c[Thermal]/g.saturated(c[T])) - excessOf(law, &c)
+	}}}
+}
+
+// excessOf returns the logarithm of what a law lets the thermal part have above saturation.
+func excessOf(law string, v *Vector) float64 {
+	if law != SemiIdeal {
+		return 0
+	}
+	return math.Log1p(Excess(v[Mu] / (model.KB * v[T])))
+}
+
+// exponents returns the mean powers with which the numbers of the points go with a setting.
+func (n *Night) exponents(points []*Point, setting string) Vector {
+	for c, calibration := range n.Calibrations {
+		if calibration.Name != setting || calibration.Step == 0 {
+			continue
+		}
+		var sum Vector
+		for _, p := range points {
+			for i := range sum {
+				sum[i] += math.Log1p(p.Shifts[c][i]/p.Vector[i]) / calibration.Step / float64(len(points))
+			}
+		}
+		return sum
+	}
+	return exponents[setting]
+}
+
+// ratios returns the means of the two ratios as measured.
+func (n *Night) ratios(ctx context.Context, points []*Point, law string) (mu, saturated Estimate, err error) {
+	for i, into := range []*Estimate{&mu, &saturated} {
+		p := n.ratioProblem(points, law, func(_ []float64, v Vector) Vector { return v })
+		both := p.relation.eval
+		p.relation = relation{1, func(v *Vector, g *Gas, theta, h []float64) {
+			var two [2]float64
+			both(v, g, theta, two[:])
+			h[0] = two[i] - theta[0]
+		}}
+		e, _, err := p.fit(ctx, []float64{0})
+		if err != nil {
+			return mu, saturated, err
+		}
+		ratio := math.Exp(e[0].V)
+		*into = Estimate{ratio, ratio * e[0].Err, ratio * e[0].Cal}
+	}
+	return mu, saturated, nil
+}

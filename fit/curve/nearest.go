@@ -1,0 +1,120 @@
+package curve
+
+import "math"
+
+// relation is what the true numbers of a cloud obey: it fills h with values that vanish
+// there. θ are its parameters.
+type relation struct {
+	size int // values, 1 or 2
+	eval func(v *Vector, g *Gas, theta, h []float64)
+}
+
+// near is the point on a relation that is nearest to a measured one in the metric of its
+// covariance.
+type near struct {
+	latent Vector
+	r      [2]float64 // signed distance, whitened: χ² is the sum of its squares
+	lower  [3]float64 // Cholesky factor of J C Jᵀ: l11, l21, l22
+}
+
+// nearest minimises (v − v*)ᵀC⁻¹(v − v*) over v* with h(v*) = 0 by repeated linearisation,
+//
+//	v* ← v − C Jᵀ (J C Jᵀ)⁻¹ (h + J (v − v*)),   J = ∂h/∂v at v*,
+//
+// so that a curved relation is met where the cloud truly was and not where its error put
+// it. NaN where the relation has no value there.
+func (r *relation) nearest(p *Point, g *Gas, theta []float64) near {
+	at := p.Vector
+	last := math.Inf(1)
+	var n near
+	for range 30 {
+		var c [2]Vector // C Jᵀ, by value of h
+		v, j := r.linear(p, g, theta, &at)
+		for k := range r.size {
+			for a := range numMeasured {
+				for b := range numMeasured {
+					c[k][a] += p.Cov[a][b] * j[k][b]
+				}
+			}
+		}
+		n.lower = r.factor(&j, &c)
+		n.r = n.whiten(v)
+		chi2 := n.r[0]*n.r[0] + n.r[1]*n.r[1]
+		multiplier := n.unwhiten(n.r)
+		next := p.Vector
+		for a := range next {
+			for k := range r.size {
+				next[a] -= c[k][a] * multiplier[k]
+			}
+			if !(next[a] > 0.2*at[a]) && p.Cov[a][a] > 0 {
+				next[a] = 0.2 * at[a] // numbers, T and μ are positive
+			}
+		}
+		at = next
+		n.latent = at
+		if !(math.Abs(chi2-last) > 1e-7*(1+chi2)) {
+			break
+		}
+		last = chi2
+	}
+	return n
+}
+
+// linear returns h + J (v − at) and J at the given numbers, by central differences over a
+// fiftieth of an error.
+func (r *relation) linear(p *Point, g *Gas, theta []float64, at *Vector) (v [2]float64, j [2]Vector) {
+	var h, up, down [2]float64
+	r.eval(at, g, theta, h[:r.size])
+	v = h
+	for a := range numMeasured {
+		step := math.Sqrt(p.Cov[a][a]) / 50
+		if step == 0 {
+			continue
+		}
+		step = math.Min(step, at[a]/20)
+		moved := *at
+		moved[a] = at[a] + step
+		r.eval(&moved, g, theta, up[:r.size])
+		moved[a] = at[a] - step
+		r.eval(&moved, g, theta, down[:r.size])
+		for k := range r.size {
+			j[k][a] = (up[k] - down[k]) / (2 * step)
+			v[k] += j[k][a] * (p.Vector[a] - at[a])
+		}
+	}
+	return v, j
+}
+
+// factor returns the Cholesky factor of J C Jᵀ.
+func (r *relation) factor(j, c *[2]Vector) (l [3]float64) {
+	dot := func(a, b *Vector) (sum float64) {
+		for i := range a {
+			sum += a[i] * b[i]
+		}
+		return sum
+	}
+	l[0] = math.Sqrt(dot(&j[0], &c[0]))
+	if r.size == 2 {
+		l[1] = dot(&j[0], &c[1]) / l[0]
+		l[2] = math.Sqrt(dot(&j[1], &c[1]) - l[1]*l[1])
+	}
+	return l
+}
+
+// whiten returns L⁻¹v.
+func (n *near) whiten(v [2]float64) (w [2]float64) {
+	w[0] = v[0] / n.lower[0]
+	if n.lower[2] != 0 {
+		w[1] = (v[1] - n.lower[1]*w[0]) / n.lower[2]
+	}
+	return w
+}
+
+// unwhiten returns L⁻ᵀw.
+func (n *near) unwhiten(w [2]float64) (v [2]float64) {
+	if n.lower[2] != 0 {
+		v[1] = w[1] / n.lower[2]
+	}
+	v[0] = (w[0] - n.lower[1]*v[1]) / n.lower[0]
+	return v
+}

@@ -1,0 +1,94 @@
+package curve
+
+import (
+	"math"
+	"testing"
+
+	"fallshadow/model"
+	"fallshadow/model/bose"
+)
+
+// TestNearestOfLine compares with the closed form of a straight line through correlated
+// errors: (y − a x)²/(σy² − 2a σxy + a² σx²).
+func TestNearestOfLine(t *testing.T) {
+	p := &Point{Vector: Vector{2, 5, 1, 1}}
+	p.Cov[0][0], p.Cov[1][1], p.Cov[0][1], p.Cov[1][0] = 0.04, 0.09, 0.03, 0.03
+	r := relation{1, func(v *Vector, _ *Gas, theta, h []float64) { h[0] = v[1] - theta[0]*v[0] }}
+	n := r.nearest(p, &Gas{}, []float64{2})
+	within(t, "distance", n.r[0], (5-2*2)/math.Sqrt(0.09-4*0.03+4*0.04), 1e-9)
+	within(t, "nearest point", n.latent[1]-2*n.latent[0], 0, 1e-9)
+	within(t, "number without an error", n.latent[2], 1, 0)
+}
+
+// TestNearestOfCurve compares with a search along a curve where the error is large against
+// its bend, as that of T is in a nearly pure condensate.
+func TestNearestOfCurve(t *testing.T) {
+	p := &Point{Vector: Vector{1, 0.93, 0.55, 1}}
+	p.Cov[1][1], p.Cov[2][2], p.Cov[1][2], p.Cov[2][1] = 1e-5, 0.02, -1e-4, -1e-4
+	r := relation{1, func(v *Vector, _ *Gas, _, h []float64) { h[0] = v[1] - (1 - v[2]*v[2]*v[2]) }}
+	n := r.nearest(p, &Gas{}, nil)
+	det := p.Cov[1][1]*p.Cov[2][2] - p.Cov[1][2]*p.Cov[1][2]
+	least := math.Inf(1)
+	for u := 0.0; u < 1; u += 1e-5 {
+		a, b := 0.93-(1-u*u*u), 0.55-u
+		least = math.Min(least, (a*a*p.Cov[2][2]-2*a*b*p.Cov[1][2]+b*b*p.Cov[1][1])/det)
+	}
+	within(t, "chi2", n.r[0]*n.r[0], least, 1e-5*(1+least))
+}
+
+// TestNearestOfTwo: two linear relations of independent numbers add their squares.
+func TestNearestOfTwo(t *testing.T) {
+	p := &Point{Vector: Vector{3, 4, 1, 1}}
+	p.Cov[0][0], p.Cov[1][1], p.Cov[0][1], p.Cov[1][0] = 1, 4, 0.5, 0.5
+	r := relation{2, func(v *Vector, _ *Gas, _, h []float64) { h[0], h[1] = v[0], v[1] }}
+	n := r.nearest(p, &Gas{}, nil)
+	want := (9*4 - 2*3*4*0.5 + 16*1) / (1*4 - 0.25)
+	within(t, "chi2", n.r[0]*n.r[0]+n.r[1]*n.r[1], want, 1e-9)
+}
+
+func TestExcess(t *testing.T) {
+	within(t, "at 0", Excess(0), 0, 0)
+	within(t, "below 0", Excess(-1), 0, 0)
+	within(t, "slope at 0", Excess(1e-6)/1e-6, bose.Zeta2/bose.Zeta3, 1e-2)
+	g := rubidium(t)
+	const temperature = 100e-9
+	for _, y := range []float64{0.013, 0.2, 1.7, 6, 20} {
+		m, err := model.SemiIdealAt(temperature, y*model.KB*temperature, g.Mass, g.ScatteringLength, g.Trap)
+		if err != nil {
+			t.Fatal(err)
+		}
+		want := m.Thermal/g.saturated(temperature) - 1
+		within(t, "excess", Excess(y), want, 1e-4*(want+0.01))
+	}
+	if !math.IsNaN(Excess(math.NaN())) {
+		t.Error("NaN has an excess")
+	}
+}
+
+func TestGroups(t *testing.T) {
+	values := []float64{3, 1, 3, math.NaN(), 1, 2.4}
+	if g := ByValue(values); len(g) != 3 || g[0].At != 1 || len(g[0].Places) != 2 || g[2].Places[1] != 2 {
+		t.Errorf("by value: %+v", g)
+	}
+	if g := ByWidth(values, 1); len(g) != 3 || g[1].At != 2.5 || g[2].At != 3.5 {
+		t.Errorf("by width: %+v", g)
+	}
+}
+
+// TestMeanOf: weights 1 and 1/4, and a value without an error.
+func TestMeanOf(t *testing.T) {
+	values, errs := []float64{10, 15, 99}, []float64{1, 2, math.NaN()}
+	m := MeanOf(values, errs, []int{0, 1, 2})
+	within(t, "mean", m.V, 11, 1e-12)
+	within(t, "error", m.Err, math.Sqrt(0.8), 1e-12)
+	within(t, "chi2", m.Chi2, 1+4, 1e-12)
+	within(t, "scatter", m.Scatter(), math.Sqrt(5), 1e-12)
+	within(t, "spread", m.Spread, 5/math.Sqrt2, 1e-12)
+	within(t, "own spread", m.Own, math.Sqrt(12.5-2.5), 1e-12)
+	if m.Count != 2 {
+		t.Errorf("%d values count", m.Count)
+	}
+	if m := MeanOf(values, errs, []int{2}); m.Count != 0 || !math.IsNaN(m.V) {
+		t.Errorf("mean of nothing: %+v", m)
+	}
+}

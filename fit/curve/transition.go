@@ -1,0 +1,147 @@
+package curve
+
+import (
+	"context"
+	"math"
+
+	"fallshadow/model"
+)
+
+// Transition is where the night has its transition, in three ways, beside what theory says.
+type Transition struct {
+	// Saturation is the way by the thermal part at fixed T; nil with fewer than four points.
+	Saturation *Saturation
+	// Onsets are the way by the fraction against t, by law; empty with fewer than three
+	// points of a fraction below OnsetFraction.
+	Onsets []Onset
+	// Hottest is the largest t of a point with a condensate, Coldest the least one of a point
+	// without, NaN where there is none.
+	Hottest, Coldest float64
+	// Atoms is the number at which the predictions stand: the geometric mean near the onset.
+	Atoms       float64
+	Predictions []Prediction
+}
+
+// Saturation is the fit of N_thermal = N_sat(T) (s + λ e(μ/kT)) to the points with both
+// parts: s is the critical number over that of the ideal gas at the same T, e the excess of
+// a semi-ideal gas, so that λ is 0 where the thermal part saturates and 1 in a semi-ideal
+// gas (compare N. Tammuz et al., Phys. Rev. Lett. 106, 230401 (2011)). μ is that of N0.
+type Saturation struct {
+	Critical Estimate // s
+	Excess   Estimate // λ; NaN in a gas without Thomas-Fermi condensate, where it is 0
+	Ratio    Estimate // Tc/Tc⁰ = s^(−1/3)
+	Quality
+}
+
+// Onset is the fit of f = law(t Tc⁰/Tc) to the points of small fraction.
+type Onset struct {
+	Law   Law
+	Ratio Estimate // Tc over the Tc of the law
+	Quality
+}
+
+// OnsetFraction is the condensate fraction below which a point takes part in Onsets.
+const OnsetFraction = 0.5
+
+// Prediction is a theoretical Tc/Tc⁰.
+type Prediction struct {
+	Name, Note string
+	Ratio      float64
+}
+
+// Locate finds the transition of a night.
+func (n *Night) Locate(ctx context.Context, th *Theory) (Transition, error) {
+	t := Transition{Hottest: math.NaN(), Coldest: math.NaN()}
+	for i := range n.Points {
+		p := &n.Points[i]
+		reduced := n.Gas.Reduced(p.Vector[T], p.Atoms())
+		switch {
+		case p.Condensed() && !(t.Hottest >= reduced):
+			t.Hottest = reduced
+		case p.Vector[Condensate] == 0 && !(t.Coldest <= reduced) && reduced > 0:
+			t.Coldest = reduced
+		}
+	}
+	points := n.condensed()
+	var err error
+	if t.Saturation, err = n.saturation(ctx, points); err != nil {
+		return t, err
+	}
+	small := n.pick(func(p *Point) bool { return p.Condensed() && p.Fraction() < OnsetFraction })
+	if len(small) >= 3 {
+		points = small
+		if t.Onsets, err = n.onsets(ctx, th, small); err != nil {
+			return t, err
+		}
+	}
+	t.Atoms = geometricMean(points, func(p *Point) float64 { return p.Atoms() })
+	t.Predictions = n.Gas.predictions(t.Atoms)
+	return t, nil
+}
+
+func (n *Night) saturation(ctx context.Context, points []*Point) (*Saturation, error) {
+	if len(points) < 4 {
+		return nil, nil
+	}
+	p := &problem{night: n, points: points, relation: relation{1, func(v *Vector, g *Gas, theta, h []float64) {
+		held := theta[0]
+		if len(theta) > 1 {
+			held += theta[1] * Excess(g.mu(v[Condensate])/(model.KB*v[T]))
+		}
+		h[0] = v[Thermal]/g.saturated(v[T]) - held
+	}}}
+	start := []float64{1, 0.5}
+	if !n.Gas.repulsive() {
+		start = start[:1]
+	}
+	e, q, err := p.fit(ctx, start)
+	if err != nil {
+		return nil, err
+	}
+	s := &Saturation{Critical: e[0], Excess: Estimate{math.NaN(), math.NaN(), math.NaN()}, Ratio: e[0].power(-1. / 3), Quality: q}
+	if len(e) > 1 {
+		s.Excess = e[1]
+	}
+	return s, nil
+}
+
+func (n *Night) onsets(ctx context.Context, th *Theory, points []*Point) ([]Onset, error) {
+	var list []Onset
+	for _, l := range th.Laws() {
+		if l.Name != Ideal && !l.numeric {
+			continue
+		}
+		p := &problem{night: n, points: points, relation: relation{1, func(v *Vector, g *Gas, theta, h []float64) {
+			h[0] = v.Fraction() - th.at(l, v, g, theta[0])
+		}}}
+		e, q, err := p.fit(ctx, []float64{1})
+		if err != nil {
+			return nil, err
+		}
+		list = append(list, Onset{l, e[0], q})
+	}
+	return list, nil
+}
+
+// predictions returns Tc/Tc⁰ of n atoms with each correction and with both.
+func (g *Gas) predictions(n float64) []Prediction {
+	finite := model.FiniteSizeShift(n, g.Trap)
+	list := []Prediction{
+		{"ideal gas", "thermodynamic limit", 1},
+		{"finite size", "Dalfovo et al. (1999), Eq. (20)", 1 + finite},
+	}
+	if !g.repulsive() {
+		return list
+	}
+	field := model.InteractionShift(n, g.Mass, g.ScatteringLength, g.Trap)
+	beyond := model.BeyondMeanFieldShift(n, g.Mass, g.ScatteringLength, g.Trap)
+	return append(list,
+		Prediction{"mean field", "first order in a; Giorgini, Pitaevskii, Stringari (1996)", 1 + field},
+		Prediction{"finite size and mean field", "the two shifts added", 1 + finite + field},
+		Prediction{"finite size and beyond mean field", "with the measured second order 46(5) (a/lambda)^2 of Smith et al. (2011), a coefficient quoted from memory", 1 + finite + beyond})
+}
+
+// Sigmas returns by how many of its errors a measured ratio is above a predicted one.
+func (p Prediction) Sigmas(measured Estimate) float64 {
+	return (measured.V - p.Ratio) / measured.Error()
+}
