@@ -76,7 +76,7 @@ func searched(t *testing.T, seed uint64, ws *Workspace) (b basin) {
 		t.Error(err)
 		return b
 	}
-	c, _, err := s.explore()
+	c, err := s.explore()
 	if err != nil {
 		t.Error(err)
 		return b
@@ -198,4 +198,3 @@ func prolateLab(t testing.TB) *Lab {
 		Optics: Optics{Pixel: 3.2e-6, Blur: 3e-6, Alpha: 2, Saturation: 9000},
 	}
 }
-

@@ -2,6 +2,7 @@ package fit
 
 import (
 	"math"
+	"sort"
 
 	"fallshadow/fit/lm"
 )
@@ -46,17 +47,16 @@ func (c *candidates) dropIdle() {
 
 // explore finds the candidates on the coarsest level from a first look, then follows them
 // down to the level of choices.
-func (s *session) explore() (*candidates, guess, error) {
+func (s *session) explore() (*candidates, error) {
 	top := len(s.levels) - 1
-	c, g := new(candidates), guess{}
+	c := new(candidates)
 	if near := s.opt.Near; near != nil && near.found != nil && !near.Rough {
-		*c, g, top = *near.found, near.guess, s.work
+		*c, top = *near.found, s.work
 	} else {
 		p := s.problem(top, &params{}, kind{})
 		p.level.freezeData()
-		g = p.look()
-		if err := s.first(top, p, g, c); err != nil {
-			return nil, g, err
+		if err := s.first(top, p.look(), c); err != nil {
+			return nil, err
 		}
 	}
 	for i := top; i >= s.work; i-- {
@@ -64,15 +64,15 @@ func (s *session) explore() (*candidates, guess, error) {
 		s.freeze(i, b)
 		c.drop(b.chi2)
 		if err := s.follow(i, c); err != nil {
-			return nil, g, err
+			return nil, err
 		}
 	}
-	return c, g, nil
+	return c, nil
 }
 
-// first tries every start of every kind.
-func (s *session) first(top int, p *problem, g guess, c *candidates) error {
-	none, err := s.run(top, kind{}, params{pLight: g.light}, 0.5)
+// first tries every kind from the starts of every place.
+func (s *session) first(top int, places []guess, c *candidates) error {
+	none, err := s.run(top, kind{}, params{pLight: places[0].light}, 0.5)
 	if err != nil {
 		return err
 	}
@@ -82,23 +82,45 @@ func (s *session) first(top int, p *problem, g guess, c *candidates) error {
 		k  kind
 		to **state
 	}{{s.thermal(), &c.thermal}, {s.both(), &c.both}, {s.alone(), &c.alone}} {
-		for _, q := range p.starts(g, t.k) {
-			st, err := s.run(top, t.k, q, 0.5)
-			if err != nil {
+		for _, g := range places {
+			if err := s.tryStarts(top, t.k, g, t.to); err != nil {
 				return err
-			}
-			if st.reason != lm.StartOutside && (*t.to == nil || st.chi2 < (*t.to).chi2) {
-				*t.to = st
 			}
 		}
 		if *t.to == nil {
 			continue
 		}
-		st, err := s.run(top, t.k, (*t.to).p, 0.1)
+		if *t.to, err = s.run(top, t.k, (*t.to).p, 0.1); err != nil {
+			return err
+		}
+	}
+	return nil
+}
+
+// tried is how many starts of one kind and place are followed: those of least χ².
+const tried = 4
+
+// tryStarts keeps in best the least χ² that the starts of a kind at one place lead to.
+func (s *session) tryStarts(top int, k kind, g guess, best **state) error {
+	type start struct {
+		q    params
+		chi2 float64
+	}
+	var list []start
+	for _, q := range s.starts(g, k) {
+		q = s.prepared(k, q)
+		p := s.problem(top, &q, k)
+		list = append(list, start{q, p.normal(&q, nil, nil)})
+	}
+	sort.SliceStable(list, func(i, j int) bool { return list[i].chi2 < list[j].chi2 })
+	for _, v := range list[:min(tried, len(list))] {
+		st, err := s.run(top, k, v.q, 0.5)
 		if err != nil {
 			return err
 		}
-		*t.to = st
+		if st.reason != lm.StartOutside && (*best == nil || st.chi2 < (*best).chi2) {
+			*best = st
+		}
 	}
 	return nil
 }

@@ -18,7 +18,7 @@ func Cloud(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt Opti
 	if err != nil {
 		return nil, err
 	}
-	c, g, err := s.explore()
+	c, err := s.explore()
 	if err != nil {
 		return nil, err
 	}
@@ -37,7 +37,7 @@ func Cloud(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt Opti
 		}
 	}
 	r.Iterations = s.iterations
-	r.Flags = append(r.Flags, s.warnings(g, r)...)
+	r.Flags = append(r.Flags, s.warnings(r)...)
 	return r, nil
 }
 

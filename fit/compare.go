@@ -169,7 +169,7 @@ const hopeless = 200
 func (s *session) exploreFree() error {
 	t := *s
 	t.opt.Free, t.opt.searchFree, t.opt.Near = true, true, nil
-	c, _, err := t.explore()
+	c, err := t.explore()
 	if err != nil {
 		return err
 	}

@@ -65,7 +65,7 @@ var Flags = []Flag{
 }
 
 // warnings raises the flags of a result.
-func (s *session) warnings(g guess, r *Result) []string {
+func (s *session) warnings(r *Result) []string {
 	var f []string
 	raise := func(on bool, name string) {
 		if on {

@@ -3,6 +3,9 @@ package fit
 import (
 	"math"
 	"sort"
+
+	"fallshadow/model"
+	"fallshadow/model/bose"
 )
 
 // guess is what a first look at a coarse picture tells, with no help from anyone.
@@ -11,27 +14,51 @@ type guess struct {
 	x, y   float64 // centre, px of the full picture
 	peak   float64 // σ0 n
 	moment [3]float64
+	sum    float64 // of σ0 n over the window that holds it, in pixels
 	core   float64 // geometric mean half width at half the peak, px
 	signal float64 // of the cloud's sum, in standard deviations
 }
 
-// look finds the cloud on a coarse level: the place and size of the window in which the
-// summed density stands farthest above its noise, then moments in a window that follows it.
-// Single bright bins are put out by a median first.
-func (p *problem) look() guess {
+// look finds the places where a cloud may be on a coarse level, the likeliest first: the window in
+// which the summed density stands farthest above its noise, then moments in a window that
+// follows it; and the same once more with that cloud taken away, where what is left is not
+// much less.
+func (p *problem) look() []guess {
 	l := p.level
-	g := guess{light: l.borderLight()}
-	od, noise := p.densityMap(g.light)
-	od = median3(od, l.w, l.h)
+	light := l.borderLight()
+	od, noise := p.densityMap(light)
 	if base := borderMedian(od, l.w, l.h); !math.IsNaN(base) {
 		for i := range od {
 			od[i] -= base
 		}
 	}
-	x, y, half, signal := bestWindow(od, noise, l.w, l.h)
-	g.signal = signal
-	g.follow(od, l, x, y, half)
-	return g
+	var list []guess
+	for len(list) < 2 {
+		g := guess{light: light}
+		x, y, half, signal := bestWindow(od, noise, l.w, l.h)
+		g.signal = signal
+		g.follow(od, l, x, y, half)
+		if len(list) > 0 && signal < secondSignal*list[0].signal {
+			break
+		}
+		list = append(list, g)
+		g.erase(od, l)
+	}
+	return list
+}
+
+// secondSignal is the share of the first signal that a second place needs to be tried.
+const secondSignal = 0.3
+
+// erase sets the density to 0 within three widths of the cloud.
+func (g *guess) erase(od []float64, l *level) {
+	in := model.Shape{XX: g.moment[0], XY: g.moment[1], YY: g.moment[2]}.Inverse()
+	for o := range od {
+		dx, dy := l.at(o%l.w)-g.x, l.at(o/l.w)-g.y
+		if !(dx*(in.XX*dx+2*in.XY*dy)+in.YY*dy*dy > 9) {
+			od[o] = 0
+		}
+	}
 }
 
 // densityMap inverts the absorption law bin by bin; black bins get what their noise still
@@ -121,27 +148,6 @@ func medianOf(v []float64) float64 {
 	return v[len(v)/2]
 }
 
-// median3 replaces every bin by the median of its 3×3 neighbours.
-func median3(v []float64, w, h int) []float64 {
-	out := make([]float64, len(v))
-	var near [9]float64
-	for j := range h {
-		for i := range w {
-			n := 0
-			for y := max(j-1, 0); y <= min(j+1, h-1); y++ {
-				for x := max(i-1, 0); x <= min(i+1, w-1); x++ {
-					near[n] = v[y*w+x]
-					n++
-				}
-			}
-			s := near[:n]
-			sort.Float64s(s)
-			out[j*w+i] = s[n/2]
-		}
-	}
-	return out
-}
-
 // bestWindow returns the square window, of half sizes 1, 2, 4, … bins, whose sum is largest
 // against the noise of so many bins: centre in bins, half size, and that ratio.
 func bestWindow(v []float64, noise float64, w, h int) (x, y, half int, best float64) {
@@ -194,14 +200,17 @@ func (g *guess) follow(od []float64, l *level, x, y, half int) {
 		sxx, syy = clampLow(sxx, 0.5), clampLow(syy, 0.5)
 		rx, ry = math.Max(2, 2.5*math.Sqrt(sxx)), math.Max(2, 2.5*math.Sqrt(syy))
 	}
-	each(l, cx, cy, rx, ry, func(o int, _, _ float64) { g.peak = math.Max(g.peak, od[o]) })
+	bin := float64(l.bin)
+	each(l, cx, cy, rx, ry, func(o int, _, _ float64) {
+		g.peak = math.Max(g.peak, od[o])
+		g.sum += od[o] * bin * bin
+	})
 	n := 0
 	each(l, cx, cy, rx, ry, func(o int, _, _ float64) {
 		if od[o] > 0.5*g.peak {
 			n++
 		}
 	})
-	bin := float64(l.bin)
 	g.x, g.y = cx*bin+0.5*(bin-1), cy*bin+0.5*(bin-1)
 	g.moment = [3]float64{sxx * bin * bin, sxy * bin * bin, syy * bin * bin}
 	g.core = bin * math.Sqrt(float64(max(n, 1))/math.Pi)
@@ -225,12 +234,15 @@ func each(l *level, cx, cy, rx, ry float64, f func(o int, dx, dy float64)) {
 	}
 }
 
-// starts returns the points from which the fits of a first look begin: the size of the thermal
-// part from the moments of the whole cloud, over and under it, the condensate from the core.
-func (p *problem) starts(g guess, k kind) []params {
+// starts returns the points from which the fits of a first look begin. Some follow the picture:
+// the size of the thermal part from the moments of the whole cloud, over and under it, the
+// condensate from the core; they do not mind wrong settings. The others follow the physics of as
+// many atoms as were counted, at several condensate fractions.
+func (s *session) starts(g guess, k kind) []params {
+	t := &s.tmpl
 	base := params{pX: g.x, pY: g.y, pLight: g.light}
-	wide := math.Sqrt((g.moment[0] + g.moment[2]) / (p.tmpl.thermal.square[0] + p.tmpl.thermal.square[1]))
-	c := p.tmpl.condensate.square
+	wide := math.Sqrt((g.moment[0] + g.moment[2]) / (t.thermal.square[0] + t.thermal.square[1]))
+	c := t.condensate.square
 	core := g.core / 0.6 / math.Sqrt(math.Sqrt(c[0]*c[1]))
 	whole := math.Sqrt(7 * (g.moment[0] + g.moment[2]) / (c[0] + c[1]))
 	base[pWidth1] = math.Log(wide)
@@ -243,6 +255,10 @@ func (p *problem) starts(g guess, k kind) []params {
 			q[pRadius1] = math.Log(radius)
 		}
 		q[pWidth2], q[pRadius2] = q[pWidth1], q[pRadius1]
+		q[pAlpha] = 0.5
+		if k.condensate {
+			q[pAlpha] = 0.1 // where it is free
+		}
 		list = append(list, q)
 	}
 	switch {
@@ -251,18 +267,36 @@ func (p *problem) starts(g guess, k kind) []params {
 		add(0.15, 1.8, 0.85, core)
 		add(0.7, 1, 0.3, core/2)
 		add(0.1, 1, 0.9, whole)
-		for i := range list {
-			list[i][pAlpha] = 0.1 // where it is free
+		for _, f := range []float64{0.04, 0.2, 0.6, 0.95} {
+			list = s.fraction(list, base, g, f, k)
 		}
 	case k.thermal:
 		add(1, 1.1, 0, core)
 		add(1, 0.5, 0, core)
-		for i := range list {
-			list[i][pAlpha] = 0.5
-		}
 	default:
 		add(0, 1, 1, core)
 		add(0, 1, 1, whole)
+		list = s.fraction(list, base, g, 0.999, k)
 	}
 	return list
+}
+
+// fraction adds the start of an ideal gas with the counted atoms, a part f of them condensed.
+func (s *session) fraction(list []params, q params, g guess, f float64, k kind) []params {
+	n := math.Max(g.sum, 1) * s.perSum()
+	T := model.CriticalTemperature(n, s.lab.Trap) * math.Cbrt(1-f)
+	q[pWidth1] = 0.5 * math.Log(T/templateT)
+	if sp := &s.lab.Species; !k.fixRadius {
+		mu, err := model.Mu(f*n, sp.Mass, sp.ScatteringLength, s.lab.Trap)
+		if err != nil {
+			return list
+		}
+		q[pRadius1] = 0.5 * math.Log(mu/templateMu)
+	}
+	q[pWidth2], q[pRadius2] = q[pWidth1], q[pRadius1]
+	e, c := s.tmpl.thermalOf(&q), s.tmpl.condensateOf(&q)
+	q[pThermal] = (1 - f) * g.sum / (2 * math.Pi * math.Sqrt(e.square[0]*e.square[1]) * bose.Zeta3 / bose.Zeta2)
+	q[pCondensate] = f * g.sum / (s.tmpl.condensateArea() * math.Sqrt(c.square[0]*c.square[1]))
+	q[pAlpha] = 0.1
+	return append(list, q)
 }

@@ -1,6 +1,9 @@
 package fit
 
-import "math"
+import (
+	"math"
+	"sort"
+)
 
 // level is a picture at one binning: sums of bin×bin pixels, and what the noise of those
 // sums is. Coordinates stay those of the full picture: the centre of bin i is at
@@ -47,6 +50,7 @@ func fullLevel(pic *Picture, o *Optics) *level {
 	}
 	l.saturate = o.perElectron()
 	l.smooth = smoothed(l.light, l.count, l.w, l.h, 2)
+	l.strike()
 	l.setProbe()
 	return l
 }
@@ -72,6 +76,36 @@ func (l *level) halved() *level {
 	}
 	m.setProbe()
 	return m
+}
+
+// strike leaves out single pixels that stand alone: more than struck standard deviations from the
+// median of their neighbours, none of which is half as far from it. A cloud of any size that
+// a fit can measure covers neighbours, too.
+func (l *level) strike() {
+	for j := 1; j+1 < l.h; j++ {
+		for i := 1; i+1 < l.w; i++ {
+			if o := j*l.w + i; l.count[o] > 0 && l.alone(o) {
+				l.count[o] = 0
+			}
+		}
+	}
+}
+
+const struck = 8
+
+func (l *level) alone(o int) bool {
+	sigma := math.Sqrt(math.Max(l.smooth[o], 0)*(1+l.noise.LightShot) + l.readVariance(o) + l.noise.LightRead)
+	r := func(o int) float64 { return l.atoms[o] - l.light[o] }
+	v := r(o)
+	// Most pixels are like those beside them: no median for them.
+	if math.Abs(v-r(o-1)) < struck*sigma || math.Abs(v-r(o+1)) < struck*sigma {
+		return false
+	}
+	near := [8]float64{r(o - l.w - 1), r(o - l.w), r(o - l.w + 1), r(o - 1), r(o + 1), r(o + l.w - 1), r(o + l.w), r(o + l.w + 1)}
+	sort.Float64s(near[:])
+	median := 0.5 * (near[3] + near[4])
+	far := math.Max(near[7]-median, median-near[0])
+	return math.Abs(v-median) > struck*sigma && far < 0.5*math.Abs(v-median)
 }
 
 // setProbe fills probe from the smooth reference.

@@ -16,7 +16,6 @@ type Place struct {
 	Rough bool
 
 	found *candidates // where the next fit of the same picture may begin
-	guess guess
 }
 
 // roughChi2 is χ² a bin beyond which a fit is rough.
@@ -29,11 +28,11 @@ func Locate(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt Opt
 	if err != nil {
 		return nil, err
 	}
-	c, g, err := s.explore()
+	c, err := s.explore()
 	if err != nil {
 		return nil, err
 	}
-	place := &Place{Mask: make([]bool, pic.Width*pic.Height), found: c, guess: g}
+	place := &Place{Mask: make([]bool, pic.Width*pic.Height), found: c}
 	l := s.levels[s.work]
 	place.Rough = c.best().chi2 > roughChi2*float64(l.w*l.h)
 	st, model := s.choose(c)
