@@ -83,8 +83,8 @@ func Night(ctx context.Context, o Options, p night.Progress) (*Outcome, error) {
 }
 
 func (v *visit) outcome() *Outcome {
-	title := fmt.Sprintf("%s: %s", filepath.Clean(v.Dir), plural(len(v.shots), "shot"))
-	v.page.line(report.Printable(title + ", settings of " + v.File))
+	v.page.line(report.Printable(fmt.Sprintf("%s: %s", filepath.Clean(v.Dir), plural(len(v.shots), "shot"))))
+	v.page.line(report.Printable("settings: " + v.File))
 	v.writeShots()
 	v.writeMetadata()
 	if v.look.Ready() {

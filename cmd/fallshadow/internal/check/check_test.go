@@ -1,0 +1,357 @@
+package check
+
+import (
+	"bytes"
+	"context"
+	"fmt"
+	"io/fs"
+	"os"
+	"path/filepath"
+	"regexp"
+	"strings"
+	"testing"
+
+	"fallshadow/cmd/fallshadow/internal/settings"
+	"fallshadow/cmd/fallshadow/internal/simulate"
+	"fallshadow/imageio/fits"
+)
+
+type silent struct{}
+
+func (silent) Begin(string, int) {}
+func (silent) Step(string, bool) {}
+func (silent) End()              {}
+
+// simulated writes a night of a preset, the settings changed by edits (old, new).
+func simulated(t *testing.T, preset string, shots int, edits ...string) string {
+	t.Helper()
+	scenario, lab, err := simulate.Preset(preset)
+	if err != nil {
+		t.Fatal(err)
+	}
+	n, err := simulate.New(scenario.WithShots(shots), []byte(edited(t, string(lab), edits)), "test")
+	if err != nil {
+		t.Fatal(err)
+	}
+	dir := filepath.Join(t.TempDir(), "night")
+	if err := n.Write(context.Background(), dir, 2, nil); err != nil {
+		t.Fatal(err)
+	}
+	return dir
+}
+
+func edited(t *testing.T, text string, edits []string) string {
+	t.Helper()
+	for i := 0; i < len(edits); i += 2 {
+		if !strings.Contains(text, edits[i]) {
+			t.Fatalf("the settings hold no %q", edits[i])
+		}
+		text = strings.Replace(text, edits[i], edits[i+1], 1)
+	}
+	return text
+}
+
+// look checks a night under its own settings, changed by edits, and returns the text.
+func look(t *testing.T, dir string, fits int, edits ...string) (*Outcome, string) {
+	t.Helper()
+	file := filepath.Join(dir, settings.FileName)
+	data, err := os.ReadFile(file)
+	if err != nil {
+		t.Fatal(err)
+	}
+	lab, err := settings.Parse([]byte(edited(t, string(data), edits)), file)
+	if err != nil {
+		t.Fatal(err)
+	}
+	out, err := Night(context.Background(), Options{Dir: dir, File: file, Settings: lab, Fits: fits}, silent{})
+	if err != nil {
+		t.Fatal(err)
+	}
+	var text bytes.Buffer
+	if _, err := out.WriteTo(&text); err != nil {
+		t.Fatal(err)
+	}
+	for _, line := range strings.Split(text.String(), "\n") {
+		if n := len([]rune(line)); n > 104 && !strings.Contains(line, dir) {
+			t.Errorf("a line of %d characters: %s", n, line)
+		}
+	}
+	return out, text.String()
+}
+
+// says looks for expressions in a text, blanks in them standing for any white space.
+func says(t *testing.T, text string, wanted ...string) {
+	t.Helper()
+	for _, w := range wanted {
+		if !regexp.MustCompile(`(?m)` + strings.ReplaceAll(w, " ", `\s+`)).MatchString(text) {
+			t.Errorf("nothing like %q in\n%s", w, text)
+		}
+	}
+}
+
+// section returns a titled part of the text.
+func section(text, title string) string {
+	_, part, _ := strings.Cut(text, "\n"+title)
+	part, _, _ = strings.Cut(part, "\n\n")
+	return part
+}
+
+// TestSoundNight looks for every figure of a simulated night. Isat of 87Rb is
+// 1.66933 mW/cm², its wavelength 780.241 nm, its linewidth 38.117e6/s, its shift 7.542 kHz
+// a recoil (Steck, Rubidium 87 D line data): 40 us and 3.225 um a pixel are 27280 photons,
+// and s = 0.35 at alpha = 2 scatters 114 of them, 0.86 MHz.
+func TestSoundNight(t *testing.T) {
+	dir := simulated(t, "rubidium", 9)
+	before := listing(t, dir)
+	out, text := look(t, dir, 3)
+	if out.Usable != 9 || out.Unusable != 0 || out.Problems != 0 {
+		t.Errorf("%d usable, %d unusable, %d problems", out.Usable, out.Unusable, out.Problems)
+	}
+	says(t, text, "night: 9 shots$", "^settings: .*fallshadow.toml$", "layout cube: atoms, light, dark", "shots 9 in 9 files\n",
+		"27 of 256 x 256 pixels", "825.6 x 825.6 um in the plane of the atoms, 3.225 um a pixel", "flight 24 ms, from TOF in the header",
+		"passed over truth.csv: no camera frames", "rubidium_0001 1 3 256x256 24 ", "SHOT 9 values, 1 to 9, from the header", "TOF = 24.0",
+		`gain 1 electrons a count, from the settings; (1\.0|0\.99)\d*\(\d+\) measured from 8 pairs`, `the darks have [56]\.?9?`,
+		"9 in the master dark", "full_scale_counts is not given", "Isat x exposure x pixel area is 27[23].0 photons",
+		"efficiency 0.33 electrons a photon", `I/Isat 0\.3[45]\d* in the cloud`, `photons 11\d scattered`, "Doppler shift 0.14 of the linewidth",
+		"no uncertainty atom.scattering_length_a0", "No problems found", `1\. an atom scatters 11\d photons`)
+	if after := listing(t, dir); after != before {
+		t.Errorf("the folder held\n%s\nand holds\n%s", before, after)
+	}
+}
+
+// listing tells of the files below a folder, with size and time.
+func listing(t *testing.T, dir string) string {
+	t.Helper()
+	var all strings.Builder
+	err := filepath.WalkDir(dir, func(path string, d fs.DirEntry, err error) error {
+		if err != nil {
+			return err
+		}
+		info, err := d.Info()
+		if err == nil {
+			fmt.Fprintln(&all, path, info.Size(), info.ModTime(), info.Mode())
+		}
+		return err
+	})
+	if err != nil {
+		t.Fatal(err)
+	}
+	return all.String()
+}
+
+// The wrong settings and the flags that must name them; that the ratios follow a pattern
+// which names the setting is common practice.
+var wrongSettings = []struct {
+	name, flag string
+	edits      func(flightErr string) []string
+}{
+	{"angular frequencies", "suspect_frequency_unit", func(string) []string {
+		return []string{"axis1_hz = { value = 20.0", "axis1_hz = { value = 125.66", "axis2_hz = { value = 120.0", "axis2_hz = { value = 753.98", "sight_hz = { value = 120.0", "sight_hz = { value = 753.98"}
+	}},
+	{"axes exchanged", "suspect_axes", func(string) []string {
+		return []string{"axis1_hz = { value = 20.0", "axis1_hz = { value = 120.0", "axis2_hz = { value = 120.0", "axis2_hz = { value = 20.0"}
+	}},
+	{"sight halved", "suspect_sight", func(string) []string { return []string{"sight_hz = { value = 120.0", "sight_hz = { value = 60.0"} }},
+	{"flight long", "suspect_flight", func(tenth string) []string {
+		return []string{"zero_ms = { value = 0.0", "zero_ms = { value = " + tenth}
+	}},
+	{"binning not told", "suspect_pixel", func(string) []string { return []string{"pixel_um = 6.45", "pixel_um = 3.225"} }},
+	{"alpha 1 for 2", "suspect_cross_section", func(string) []string { return []string{"alpha = { value = 2.0", "alpha = { value = 1.0"} }},
+}
+
+func TestWrongSettings(t *testing.T) {
+	checkWrong(t, simulated(t, "rubidium", 9, "[shots]", "[fit]\nrebin = 2\n[shots]"), "2.4")
+}
+
+// TestWrongSettingsEvap does the same on a night that other code drew; its settings are
+// those that came with it.
+func TestWrongSettingsEvap(t *testing.T) {
+	dir := os.Getenv("FALLSHADOW_NIGHT_EVAP")
+	if dir == "" {
+		t.Skip("FALLSHADOW_NIGHT_EVAP is not set")
+	}
+	if _, err := os.Stat(filepath.Join(dir, settings.FileName)); err != nil {
+		t.Skip("that night has no settings")
+	}
+	if _, text := look(t, dir, 3); !strings.Contains(text, "No problems found") {
+		t.Errorf("under the right settings:\n%s", text)
+	}
+	checkWrong(t, dir, "2.8")
+}
+
+func checkWrong(t *testing.T, dir, tenth string) {
+	for _, c := range wrongSettings {
+		out, text := look(t, dir, 3, c.edits(tenth)...)
+		named := regexp.MustCompile(`suspect_\w+:`).FindAllString(section(text, "Problems"), -1)
+		if out.Problems == 0 || len(named) != 1 || named[0] != c.flag+":" {
+			t.Errorf("%s: %q is named, want %s, in\n%s", c.name, named, c.flag, text)
+		}
+	}
+}
+
+// TestFoldersInDisorder mixes two layouts, files of other kinds and shots that are not
+// whole, and reads the folder both ways.
+func TestFoldersInDisorder(t *testing.T) {
+	dir := simulated(t, "rubidium", 9)
+	files := simulated(t, "rubidium", 3, `planes = `, "layout = \"files\"\nsuffixes = [\"_probe_atoms\", \"_probe_light\", \"_probe_dark\"]\nplanes = ")
+	others, err := filepath.Glob(filepath.Join(files, "*.fits"))
+	if err != nil || len(others) != 9 {
+		t.Fatal(others, err)
+	}
+	for _, f := range others {
+		copyFile(t, f, filepath.Join(dir, "b_"+filepath.Base(f)), 1<<30)
+	}
+	whole := filepath.Join(dir, "rubidium_0005.fits")
+	copyFile(t, whole, filepath.Join(dir, "rubidium_0010.fits"), 200000)
+	copyFile(t, whole, filepath.Join(dir, "rubidium_0011.fits"), 0)
+	copyFile(t, whole, filepath.Join(dir, "rubidium_0012.fits.part"), 3000)
+	if err := os.WriteFile(filepath.Join(dir, "notes.txt"), []byte("dear diary"), 0o644); err != nil {
+		t.Fatal(err)
+	}
+
+	out, text := look(t, dir, 1)
+	if out.Usable != 9 || out.Unusable != 11 || out.Problems != 3 {
+		t.Errorf("%d usable, %d unusable, %d problems", out.Usable, out.Unusable, out.Problems)
+	}
+	says(t, text, "20 in 20 files, 11 of which a batch would fail", "notes.txt, truth.csv: no camera frames",
+		"rubidium_0012.fits.part: unfinished, by its ending", "b_rubidium_0001_probe_atoms 1 not read", "rubidium_0010 1 unfinished",
+		"b_rubidium_0001_probe_atoms, .* and 6 more: 1 plane where the layout has 3",
+		"rubidium_0010, rubidium_0011: the file is not whole: wait until it is written, or copy it again",
+		`look like one file a frame: layout = "files" with suffixes = \["_atoms", "_dark", "_light"\]`)
+
+	out, text = look(t, dir, 1, `planes = `, "layout = \"files\"\nsuffixes = [\"_probe_atoms\", \"_probe_light\", \"_probe_dark\"]\nplanes = ")
+	if out.Usable != 3 || out.Unusable != 0 || out.Problems != 1 {
+		t.Errorf("%d usable, %d unusable, %d problems", out.Usable, out.Unusable, out.Problems)
+	}
+	says(t, text, "3 in 9 files\n", `files: atoms "_probe_atoms", light`, "rubidium_0001.fits, .* the name fits no frame",
+		`rubidium_0001.fits holds 3 frames, as with layout = "cube"`)
+
+	if err := os.Remove(filepath.Join(dir, "b_rubidium_0002_probe_dark.fits")); err != nil {
+		t.Fatal(err)
+	}
+	out, text = look(t, dir, 1, `planes = `, "layout = \"files\"\nsuffixes = [\"_probe_atoms\", \"_probe_light\", \"_probe_dark\"]\nplanes = ")
+	if out.Unusable != 1 {
+		t.Errorf("%d unusable", out.Unusable)
+	}
+	says(t, text, "b_rubidium_0002 2 incomplete", "b_rubidium_0002: .*the dark frame is missing")
+}
+
+// copyFile copies at most so many bytes.
+func copyFile(t *testing.T, from, to string, most int) {
+	t.Helper()
+	data, err := os.ReadFile(from)
+	if err == nil {
+		err = os.WriteFile(to, data[:min(len(data), most)], 0o644)
+	}
+	if err != nil {
+		t.Fatal(err)
+	}
+}
+
+// TestSlips goes through slips of settings that shots, not ratios, give away.
+func TestSlips(t *testing.T) {
+	dir := simulated(t, "rubidium", 4)
+	for _, c := range []struct {
+		name     string
+		edits    []string
+		problems int
+		want     []string
+	}{
+		{"name of the flight", []string{`"TOF"`, `"TOFF"`}, 2, []string{"TOFF is in no header", "no TOFF in the header", "these hold numbers: TOF, SHOT", "rubidium_0001 .*no flight"}},
+		{"order of the planes", []string{`["atoms", "light"`, `["light", "atoms"`}, 1, []string{"rubidium_0001, .*", "the two are exchanged: correct the order of the planes"}},
+		{"unit of the flight", []string{`"TOF"`, "\"TOF\"\nunit = \"us\""}, 1, []string{"the longest flight is 0.024 ms"}},
+		{"region", []string{"[shots]", "[region]\nx = 100\ny = 100\nwidth = 200\nheight = 200\n[shots]"}, 1, []string{"none of which a batch can fit", "columns 100 to 299", "is not inside a frame of 256x256 pixels"}},
+		{"scan variable", []string{"[shots]", "[shots]\nscan = [\"EVAP\", \"SHOT\"]"}, 0, []string{"EVAP is nowhere", "SHOT: 4 values", "scan: EVAP is in no header"}},
+		{"gain and full scale", []string{"electrons_per_count = 1.0", "electrons_per_count = 0.5\nfull_scale_counts = 3400"}, 2,
+			[]string{`electrons_per_count = 0.5, but light and dark frames give`, "frames hold up to .* counts, above full_scale_counts = 3400"}},
+		{"read noise", []string{"read_noise_electrons = 6.0", "read_noise_electrons = 12.0"}, 0, []string{"read_noise_electrons = 12, but the darks have"}},
+		{"counts per Isat", []string{"counts_per_isat = { value = 9000.0", "counts_per_isat = { value = 900.0"}, 1,
+			[]string{"counts_per_isat = 900 means 0.033 electrons .* 0.05 to 0.95 is plausible: .*at 0.5 it would be 136.0"}},
+		{"no gain", []string{"electrons_per_count = 1.0", "", "read_noise_electrons = 6.0", ""}, 0, []string{`electrons a count, measured from 3 pairs`, "rms, measured from the darks"}},
+		{"no exposure", []string{"exposure_us = 40.0", ""}, 0, []string{"exposure_us is not given, so that they cannot be recomputed"}},
+		{"weak probe", []string{"counts_per_isat = { value = 9000.0, err = 300.0 }", ""}, 0, []string{"counts at Isat not given; Isat x exposure x pixel area is 27[23].0 photons"}},
+	} {
+		out, text := look(t, dir, 0, c.edits...)
+		if out.Problems != c.problems {
+			t.Errorf("%s: %d problems, want %d", c.name, out.Problems, c.problems)
+		}
+		says(t, text, c.want...)
+	}
+}
+
+func TestStrayLight(t *testing.T) {
+	dir := simulated(t, "rubidium", 7, "exposure_us", "stray_fraction = 0.2\nexposure_us")
+	_, text := look(t, dir, 1)
+	says(t, text, `stray light caps the apparent density at 1.61`, "rubidium_0004: in the middle of the cloud most of the counted light is the stray light")
+	dir = simulated(t, "rubidium", 7, "exposure_us", "stray_fraction = 0.001\nexposure_us")
+	if _, text = look(t, dir, 1); strings.Contains(text, "most of the counted light") {
+		t.Errorf("a thousandth of stray light is taken for most of it:\n%s", text)
+	}
+}
+
+// TestDensityImages reads a night without camera frames.
+func TestDensityImages(t *testing.T) {
+	dir := t.TempDir()
+	lab := edited(t, sodium(t), []string{`planes = ["atoms", "light", "dark"]`, "layout = \"density\"\ndensity_unit = \"log_ratio\"", `from = "TOF"`, "fixed_ms = 14.0"})
+	if err := os.WriteFile(filepath.Join(dir, settings.FileName), []byte(lab), 0o644); err != nil {
+		t.Fatal(err)
+	}
+	for i := range 3 {
+		pix := make([]float32, 64*48)
+		for k := range pix {
+			pix[k] = float32((k*7919+i*104729)%1000-500) * 1e-4
+		}
+		var data bytes.Buffer
+		if err := fits.WriteFloats(&data, 64, 48, [][]float32{pix}, nil); err != nil {
+			t.Fatal(err)
+		}
+		if err := os.WriteFile(filepath.Join(dir, fmt.Sprintf("od_%d.fits", i)), data.Bytes(), 0o644); err != nil {
+			t.Fatal(err)
+		}
+	}
+	out, text := look(t, dir, 1)
+	if out.Usable != 3 {
+		t.Errorf("%d usable", out.Usable)
+	}
+	says(t, text, "density: one density image a shot, of log_ratio", "3 of 64 x 48 pixels", "flight 14 ms for all shots", "frames none: density images say nothing of saturated",
+		"od_0 1 1 64x48", "no_cloud", "density_image")
+}
+
+func sodium(t *testing.T) string {
+	t.Helper()
+	_, lab, err := simulate.Preset("sodium-bright")
+	if err != nil {
+		t.Fatal(err)
+	}
+	return string(lab)
+}
+
+func parsed(t *testing.T) *settings.Settings {
+	t.Helper()
+	lab, err := settings.Parse([]byte(sodium(t)), "sodium")
+	if err != nil {
+		t.Fatal(err)
+	}
+	return lab
+}
+
+func TestNothingThere(t *testing.T) {
+	dir := t.TempDir()
+	o := Options{Dir: dir, Settings: parsed(t), Fits: 3}
+	if _, err := Night(context.Background(), o, silent{}); err == nil || !strings.Contains(err.Error(), "it holds no camera files") {
+		t.Errorf("an empty folder: %v", err)
+	}
+	if err := os.WriteFile(filepath.Join(dir, "diary.txt"), []byte("dear diary"), 0o644); err != nil {
+		t.Fatal(err)
+	}
+	out, err := Night(context.Background(), o, silent{})
+	if err != nil || out.Usable != 0 || out.Problems != 1 {
+		t.Errorf("a folder of other things: %+v, %v", out, err)
+	}
+	ctx, cancel := context.WithCancel(context.Background())
+	cancel()
+	o.Dir = simulated(t, "rubidium", 1)
+	if _, err := Night(ctx, o, silent{}); err == nil {
+		t.Error("went on after it was stopped")
+	}
+}
