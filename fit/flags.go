@@ -13,6 +13,7 @@ const (
 	FlagNoCloud            = "no_cloud"
 	FlagNoThermal          = "no_thermal"
 	FlagDense              = "dense"
+	FlagCeiling            = "ceiling"
 	FlagMisfit             = "misfit"
 	FlagNoise              = "noise"
 	FlagCut                = "cut"
@@ -41,6 +42,7 @@ var Flags = []Flag{
 	{FlagNoCloud, "no cloud stands out of the noise; the number of atoms is an upper limit"},
 	{FlagNoThermal, "no thermal wing can be told from the noise; T is an upper limit that assumes a saturated thermal part"},
 	{FlagDense, "the peak optical density is above 3: multiple scattering and stray light bend the law there; lengthen the flight or detune"},
+	{FlagCeiling, "in the middle of the cloud most of the counted light is the stray light of stray_fraction: the density there follows from its edges; lengthen the flight or detune"},
 	{FlagMisfit, "the residuals under the cloud are above their noise: shape, blur, fringes or a saturated camera do not fit the model"},
 	{FlagNoise, "the residuals of the whole picture do not match the stated noise: check electrons_per_count and read_noise_electrons"},
 	{FlagCut, "the cloud reaches beyond the picture or over many bad pixels; numbers lean on the model there"},
@@ -77,6 +79,7 @@ func (s *session) warnings(r *Result) []string {
 	raise(r.Model == ModelCondensate, FlagNoThermal)
 	raise(s.levels[0].linear, FlagDensityNoReference)
 	raise(r.PeakOD > 3*s.law.a, FlagDense)
+	raise(s.atCeiling(r), FlagCeiling)
 	raise(r.ChiCloud > 1.6, FlagMisfit)
 	raise(math.Abs(r.ChiPerDof-1) > 0.25, FlagNoise)
 	if r.Model == ModelNone {
