@@ -28,9 +28,9 @@ func (n *Night) Compare(ctx context.Context, th *Theory) ([]Comparison, error) {
 	var list []Comparison
 	for _, l := range th.Laws() {
 		c := Comparison{Law: l, Amplitude: Estimate{math.NaN(), math.NaN(), math.NaN()}}
-		p := &problem{night: n, points: points, relation: relation{1, func(v *Vector, g *Gas, _, h []float64) {
+		p := n.problem(points, relation{1, func(v *Vector, g *scales, _, h []float64) {
 			h[0] = v.Fraction() - th.at(l, v, g, 1)
-		}}}
+		}})
 		c.Quality, c.Deviation = p.quality(nil), p.mean()
 		if l.Name != Ideal {
 			var err error
@@ -46,10 +46,10 @@ func (n *Night) Compare(ctx context.Context, th *Theory) ([]Comparison, error) {
 // amplitude fits λ in f = ideal + λ (law − ideal).
 func (n *Night) amplitude(ctx context.Context, th *Theory, l Law, points []*Point) (Estimate, error) {
 	ideal, _ := Find(Ideal)
-	p := &problem{night: n, points: points, relation: relation{1, func(v *Vector, g *Gas, theta, h []float64) {
+	p := n.problem(points, relation{1, func(v *Vector, g *scales, theta, h []float64) {
 		none := th.at(ideal, v, g, 1)
 		h[0] = v.Fraction() - none - theta[0]*(th.at(l, v, g, 1)-none)
-	}}}
+	}})
 	e, _, err := p.fit(ctx, []float64{0.5})
 	if err != nil {
 		return Estimate{}, err
@@ -58,9 +58,9 @@ func (n *Night) amplitude(ctx context.Context, th *Theory, l Law, points []*Poin
 }
 
 // at returns the fraction that a law gives a cloud whose transition is at ratio Tc⁰.
-func (th *Theory) at(l Law, v *Vector, g *Gas, ratio float64) float64 {
+func (th *Theory) at(l Law, v *Vector, g *scales, ratio float64) float64 {
 	n := v.Atoms()
-	return th.fraction(l, g.Reduced(v[T], n)/ratio, n, g)
+	return th.fraction(l, g.reduced(v[T], n)/ratio, n, g)
 }
 
 // Best returns the place of the comparison with the least χ², -1 where there is none.
@@ -77,7 +77,7 @@ func Best(list []Comparison) int {
 // Distance returns the signed distance of a point to a law in its statistical errors, with
 // its full covariance: f above the law counts as positive.
 func (n *Night) Distance(th *Theory, l Law, p *Point) float64 {
-	r := relation{1, func(v *Vector, g *Gas, _, h []float64) { h[0] = v.Fraction() - th.at(l, v, g, 1) }}
-	near := r.nearest(p, &n.Gas, nil)
+	r := relation{1, func(v *Vector, g *scales, _, h []float64) { h[0] = v.Fraction() - th.at(l, v, g, 1) }}
+	near := r.nearest(p, n.Gas.scales(), nil, &p.Vector)
 	return near.r[0]
 }

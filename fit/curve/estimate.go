@@ -4,7 +4,9 @@ import (
 	"context"
 	"fmt"
 	"math"
+	"runtime"
 	"slices"
+	"sync"
 
 	"gonum.org/v1/gonum/mat"
 
@@ -62,6 +64,7 @@ const tolerance = 1e-4
 // distances of the points.
 type problem struct {
 	night      *Night
+	gas        *scales
 	points     []*Point
 	relation   relation
 	parameters int
@@ -69,15 +72,23 @@ type problem struct {
 	at         []float64 // θ of near
 }
 
+func (n *Night) problem(points []*Point, r relation) *problem {
+	p := &problem{night: n, gas: n.Gas.scales(), points: points, relation: r, near: make([]near, len(points))}
+	for i, pt := range points {
+		p.near[i].latent = pt.Vector
+	}
+	return p
+}
+
 // fit returns the estimates of θ, found from a start. ignore names calibrations that take
 // no part in the calibration errors.
 func (p *problem) fit(ctx context.Context, start []float64, ignore ...string) ([]Estimate, Quality, error) {
-	p.parameters, p.near = len(start), make([]near, len(p.points))
+	p.parameters = len(start)
 	q := Quality{Points: len(p.points), Dof: len(p.points)*p.relation.size - len(start)}
 	if q.Dof < 0 {
 		return nil, q, fmt.Errorf("%d points cannot tell %d parameters", len(p.points), len(start))
 	}
-	found, err := lm.MinimizeDense(ctx, p, start, &lm.Settings{XTol: 1e-7, FTol: 1e-9})
+	found, err := lm.MinimizeDense(ctx, p, start, &lm.Settings{XTol: 1e-6, FTol: 1e-8})
 	if err != nil {
 		return nil, q, err
 	}
@@ -98,8 +109,8 @@ func (p *problem) fit(ctx context.Context, start []float64, ignore ...string) ([
 // quality returns χ² at fixed θ.
 func (p *problem) quality(theta []float64) Quality {
 	q := Quality{Points: len(p.points), Dof: len(p.points) * p.relation.size}
-	for _, pt := range p.points {
-		n := p.relation.nearest(pt, &p.night.Gas, theta)
+	p.find(theta)
+	for _, n := range p.near {
 		q.Chi2 += n.r[0]*n.r[0] + n.r[1]*n.r[1]
 	}
 	return q
@@ -108,26 +119,25 @@ func (p *problem) quality(theta []float64) Quality {
 // mean returns the mean of the relation's first value at the measured numbers.
 func (p *problem) mean() Estimate {
 	var e Estimate
-	p.near = make([]near, len(p.points))
 	count := float64(len(p.points))
 	for i, pt := range p.points {
-		_, j := p.relation.linear(pt, &p.night.Gas, nil, &pt.Vector)
+		_, j := p.relation.linear(pt, p.gas, nil, &pt.Vector)
 		for a := range numMeasured {
 			for b := range numMeasured {
 				e.Err += j[0][a] * pt.Cov[a][b] * j[0][b] / (count * count)
 			}
 		}
 		var h [2]float64
-		p.relation.eval(&pt.Vector, &p.night.Gas, nil, h[:p.relation.size])
+		p.relation.eval(&pt.Vector, p.gas, nil, h[:p.relation.size])
 		e.V += h[0] / count
 		p.near[i] = near{latent: pt.Vector, lower: [3]float64{1, 0, 0}}
 	}
 	e.Err = math.Sqrt(e.Err)
 	sum := p.night.noCalibration()
 	for c, calibration := range p.night.Calibrations {
-		change := 0.0
+		change, gas := 0.0, calibration.Gas.scales()
 		for i := range p.points {
-			change += p.moved(i, c, nil)[0] / count
+			change += p.moved(i, c, gas, nil)[0] / count
 		}
 		sum.add(calibration.Known, change, tolerance)
 	}
@@ -175,15 +185,23 @@ func (p *problem) Residuals(theta, r []float64) {
 	}
 }
 
-// find fills near for θ.
+// find fills near for θ, from where the last ones were. The points are shared out to
+// processors; each has its own place in near, so that the result is the same for any number.
 func (p *problem) find(theta []float64) {
-	if slices.Equal(theta, p.at) {
+	if p.at != nil && slices.Equal(theta, p.at) {
 		return
 	}
-	p.at = append(p.at[:0], theta...)
-	for i, pt := range p.points {
-		p.near[i] = p.relation.nearest(pt, &p.night.Gas, theta)
+	p.at = append([]float64{}, theta...)
+	var workers sync.WaitGroup
+	size := max(64, (len(p.points)+runtime.GOMAXPROCS(0)-1)/runtime.GOMAXPROCS(0))
+	for first := 0; first < len(p.points); first += size {
+		workers.Go(func() {
+			for i := first; i < min(first+size, len(p.points)); i++ {
+				p.near[i] = p.relation.nearest(p.points[i], p.gas, theta, &p.near[i].latent)
+			}
+		})
 	}
+	workers.Wait()
 }
 
 // Jacobian differentiates with the nearest points held: the distance is stationary there.
@@ -207,9 +225,9 @@ func (p *problem) slope(i int, theta []float64, a int) [2]float64 {
 	moved := slices.Clone(theta)
 	step := 1e-4 * math.Max(math.Abs(theta[a]), 0.01)
 	moved[a] = theta[a] + step
-	p.relation.eval(&at.latent, &p.night.Gas, moved, up[:k])
+	p.relation.eval(&at.latent, p.gas, moved, up[:k])
 	moved[a] = theta[a] - step
-	p.relation.eval(&at.latent, &p.night.Gas, moved, down[:k])
+	p.relation.eval(&at.latent, p.gas, moved, down[:k])
 	return at.whiten([2]float64{(up[0] - down[0]) / (2 * step), (up[1] - down[1]) / (2 * step)})
 }
 
@@ -228,9 +246,9 @@ func (p *problem) calibrate(theta, cov []float64, out []Estimate, ignore []strin
 		if slices.Contains(ignore, calibration.Name) {
 			continue
 		}
-		g := make([]float64, n)
+		g, gas := make([]float64, n), calibration.Gas.scales()
 		for i := range p.points {
-			d := p.moved(i, c, theta)
+			d := p.moved(i, c, gas, theta)
 			for a := range n {
 				g[a] += slopes[i*n+a][0]*d[0] + slopes[i*n+a][1]*d[1]
 			}
@@ -248,15 +266,16 @@ func (p *problem) calibrate(theta, cov []float64, out []Estimate, ignore []strin
 	}
 }
 
-// moved returns the change of the distance of point i under calibration c.
-func (p *problem) moved(i, c int, theta []float64) [2]float64 {
+// moved returns the change of the distance of point i under calibration c, which makes the
+// gas another.
+func (p *problem) moved(i, c int, gas *scales, theta []float64) [2]float64 {
 	var rest, h [2]float64
 	k, at := p.relation.size, &p.near[i]
-	p.relation.eval(&at.latent, &p.night.Gas, theta, rest[:k])
+	p.relation.eval(&at.latent, p.gas, theta, rest[:k])
 	v := at.latent
 	for a, d := range p.points[i].Shifts[c] {
 		v[a] += d
 	}
-	p.relation.eval(&v, &p.night.Calibrations[c].Gas, theta, h[:k])
+	p.relation.eval(&v, gas, theta, h[:k])
 	return at.whiten([2]float64{h[0] - rest[0], h[1] - rest[1]})
 }

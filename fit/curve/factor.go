@@ -133,11 +133,11 @@ func (n *Night) factor(ctx context.Context, points []*Point, law, setting string
 
 // ratioProblem is that of the two relations after a correction of the measured numbers.
 func (n *Night) ratioProblem(points []*Point, law string, correct func(theta []float64, v Vector) Vector) *problem {
-	return &problem{night: n, points: points, relation: relation{2, func(v *Vector, g *Gas, theta, h []float64) {
+	return n.problem(points, relation{2, func(v *Vector, g *scales, theta, h []float64) {
 		c := correct(theta, *v)
 		h[0] = math.Log(c[Mu] / g.mu(c[Condensate]))
 		h[1] = math.Log(c[Thermal]/g.saturated(c[T])) - excessOf(law, &c)
-	}}}
+	}})
 }
 
 // excessOf returns the logarithm of what a law lets the thermal part have above saturation.
@@ -170,7 +170,7 @@ func (n *Night) ratios(ctx context.Context, points []*Point, law string) (mu, sa
 	for i, into := range []*Estimate{&mu, &saturated} {
 		p := n.ratioProblem(points, law, func(_ []float64, v Vector) Vector { return v })
 		both := p.relation.eval
-		p.relation = relation{1, func(v *Vector, g *Gas, theta, h []float64) {
+		p.relation = relation{1, func(v *Vector, g *scales, theta, h []float64) {
 			var two [2]float64
 			both(v, g, theta, two[:])
 			h[0] = two[i] - theta[0]

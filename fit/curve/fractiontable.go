@@ -20,7 +20,7 @@ type equilibrium func(T, mu, mass, a float64, trap model.Trap) (model.Mixture, e
 
 // tabulate prepares the law of an equilibrium for numbers of atoms between low and high,
 // and somewhat beyond, where errors may carry them.
-func tabulate(g *Gas, low, high float64, state equilibrium) *fractionTable {
+func tabulate(g *scales, low, high float64, state equilibrium) *fractionTable {
 	const margin = 1.2
 	low, high = low/margin, high*margin
 	var f fractionTable
@@ -44,7 +44,7 @@ var nodes = func() []float64 {
 }()
 
 // fractions returns N0/N at the nodes for n atoms; 0 where no condensed state holds them.
-func fractions(g *Gas, n float64, state equilibrium) []float64 {
+func fractions(g *scales, n float64, state equilibrium) []float64 {
 	f := make([]float64, len(nodes))
 	f[0] = 1
 	full := g.mu(n)

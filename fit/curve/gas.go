@@ -26,19 +26,30 @@ func (g *Gas) repulsive() bool { return g.ScatteringLength > 0 }
 // Reduced returns t = T/Tc⁰ of n atoms at T in K.
 func (g *Gas) Reduced(T, n float64) float64 { return T / model.CriticalTemperature(n, g.Trap) }
 
-// eta returns μ(T=0)/kTc⁰ of n atoms.
-func (g *Gas) eta(n float64) float64 {
-	return model.Eta(n, g.Mass, g.ScatteringLength, g.Trap)
+// scales are a gas with what the laws need of it for one atom; the rest goes with powers
+// of N and T.
+type scales struct {
+	Gas
+	tc, logEta, mu1, sat float64
 }
+
+func (g Gas) scales() *scales {
+	s := &scales{Gas: g, tc: model.CriticalTemperature(1, g.Trap), sat: model.ThermalNumber(1, 0, g.Trap), logEta: math.NaN(), mu1: math.NaN()}
+	if g.repulsive() {
+		s.logEta = math.Log(model.Eta(1, g.Mass, g.ScatteringLength, g.Trap))
+		s.mu1, _ = model.Mu(1, g.Mass, g.ScatteringLength, g.Trap)
+	}
+	return s
+}
+
+// reduced returns t = T/Tc⁰ of n atoms at T in K.
+func (s *scales) reduced(T, n float64) float64 { return T / (s.tc * math.Cbrt(n)) }
+
+// eta returns μ(T=0)/kTc⁰ of n atoms, which goes with n^(1/15).
+func (s *scales) eta(n float64) float64 { return math.Exp(s.logEta + math.Log(n)/15) }
 
 // mu returns the Thomas-Fermi chemical potential in J of n0 atoms, NaN where there is none.
-func (g *Gas) mu(n0 float64) float64 {
-	mu, err := model.Mu(n0, g.Mass, g.ScatteringLength, g.Trap)
-	if err != nil {
-		return math.NaN()
-	}
-	return mu
-}
+func (s *scales) mu(n0 float64) float64 { return s.mu1 * math.Pow(n0, 0.4) }
 
 // saturated returns ζ(3)(kT/ħω̄)³, the most atoms that an ideal thermal part holds at T in K.
-func (g *Gas) saturated(T float64) float64 { return model.ThermalNumber(T, 0, g.Trap) }
+func (s *scales) saturated(T float64) float64 { return s.sat * T * T * T }

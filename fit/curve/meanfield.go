@@ -24,16 +24,16 @@ func (n *Night) CheckMeanField(ctx context.Context) (*MeanField, error) {
 		return nil, nil
 	}
 	middle := geometricMean(points, (*Point).condensate)
-	line := &problem{night: n, points: points, relation: relation{1, func(v *Vector, g *Gas, theta, h []float64) {
+	line := n.problem(points, relation{1, func(v *Vector, g *scales, theta, h []float64) {
 		h[0] = math.Log(v[Mu]/g.mu(middle)) - theta[0] - theta[1]*math.Log(v[Condensate]/middle)
-	}}}
+	}})
 	e, q, err := line.fit(ctx, []float64{0, 0.4})
 	if err != nil {
 		return nil, err
 	}
-	mean := &problem{night: n, points: points, relation: relation{1, func(v *Vector, g *Gas, theta, h []float64) {
+	mean := n.problem(points, relation{1, func(v *Vector, g *scales, theta, h []float64) {
 		h[0] = v[Mu]/g.mu(v[Condensate]) - theta[0]
-	}}}
+	}})
 	ratio, _, err := mean.fit(ctx, []float64{1})
 	if err != nil {
 		return nil, err
@@ -67,6 +67,7 @@ type Release struct {
 // shot is scaled to the mean number by N0^(2/5). Less than three flights, or flights within
 // 20 % of one another, give nil.
 func (n *Night) release(points []*Point) (*Release, error) {
+	g := n.Gas.scales()
 	flights := map[float64][3]float64{} // the growth of the radii
 	shortest, longest := math.Inf(1), 0.0
 	for _, p := range points {
@@ -95,12 +96,12 @@ func (n *Night) release(points []*Point) (*Release, error) {
 		}
 		shown := size(p.Vector[Mu])
 		x, y = append(x, p.Flight*p.Flight), append(y, shown)
-		expected = append(expected, size(n.Gas.mu(p.Vector[Condensate])))
+		expected = append(expected, size(g.mu(p.Vector[Condensate])))
 		errs = append(errs, shown*math.Hypot(p.relative(Mu), 0.4*p.relative(Condensate)))
 	}
 	slope, want := line(x, y, errs), line(x, expected, errs)
 	r.Ratio = Estimate{slope.V / want.V, slope.Err / want.V, math.NaN()}
-	energy := model.ReleaseEnergy(n.Gas.mu(r.Atoms))
+	energy := model.ReleaseEnergy(g.mu(r.Atoms))
 	r.Energy = Estimate{r.Ratio.V * energy, r.Ratio.Err * energy, math.NaN()}
 	return r, nil
 }

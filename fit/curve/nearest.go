@@ -6,7 +6,7 @@ import "math"
 // there. θ are its parameters.
 type relation struct {
 	size int // values, 1 or 2
-	eval func(v *Vector, g *Gas, theta, h []float64)
+	eval func(v *Vector, g *scales, theta, h []float64)
 }
 
 // near is the point on a relation that is nearest to a measured one in the metric of its
@@ -23,9 +23,8 @@ type near struct {
 //
 // so that a curved relation is met where the cloud truly was and not where its error put
 // it. NaN where the relation has no value there.
-func (r *relation) nearest(p *Point, g *Gas, theta []float64) near {
-	at := p.Vector
-	last := math.Inf(1)
+func (r *relation) nearest(p *Point, g *scales, theta []float64, start *Vector) near {
+	at := *start
 	var n near
 	for range 30 {
 		var c [2]Vector // C Jᵀ, by value of h
@@ -39,30 +38,36 @@ func (r *relation) nearest(p *Point, g *Gas, theta []float64) near {
 		}
 		n.lower = r.factor(&j, &c)
 		n.r = n.whiten(v)
-		chi2 := n.r[0]*n.r[0] + n.r[1]*n.r[1]
 		multiplier := n.unwhiten(n.r)
-		next := p.Vector
-		for a := range next {
+		step := 0.0
+		for a := range at {
+			if p.Cov[a][a] == 0 {
+				continue
+			}
+			next := p.Vector[a]
 			for k := range r.size {
-				next[a] -= c[k][a] * multiplier[k]
+				next -= c[k][a] * multiplier[k]
 			}
-			if !(next[a] > 0.2*at[a]) && p.Cov[a][a] > 0 {
-				next[a] = 0.2 * at[a] // numbers, T and μ are positive
-			}
+			next = math.Max(next, 0.2*at[a]) // numbers, T and μ are positive
+			d := next - at[a]
+			step = math.Max(step, d*d/p.Cov[a][a])
+			at[a] = next
 		}
-		at = next
 		n.latent = at
-		if !(math.Abs(chi2-last) > 1e-7*(1+chi2)) {
+		if !(step > settled) {
 			break
 		}
-		last = chi2
 	}
 	return n
 }
 
+// settled is the square of the last step, a thousandth of an error: it is of the second
+// order in the steps before.
+const settled = 1e-6
+
 // linear returns h + J (v − at) and J at the given numbers, by central differences over a
 // fiftieth of an error.
-func (r *relation) linear(p *Point, g *Gas, theta []float64, at *Vector) (v [2]float64, j [2]Vector) {
+func (r *relation) linear(p *Point, g *scales, theta []float64, at *Vector) (v [2]float64, j [2]Vector) {
 	var h, up, down [2]float64
 	r.eval(at, g, theta, h[:r.size])
 	v = h

@@ -51,7 +51,7 @@ func draw(t testing.TB, g Gas, th *Theory, law string, reduced []float64, r *ran
 	for k, x := range reduced {
 		n := 1e5 * (1 + 0.3*math.Sin(float64(k)))
 		f := th.Fraction(l, x, n)
-		truth := Vector{(1 - f) * n, f * n, x * model.CriticalTemperature(n, g.Trap), g.mu(f * n)}
+		truth := Vector{(1 - f) * n, f * n, x * model.CriticalTemperature(n, g.Trap), g.scales().mu(f * n)}
 		p := Point{Name: "drawn", Vector: truth}
 		var z [numMeasured]float64
 		for i := range z {
@@ -277,7 +277,7 @@ func TestRelease(t *testing.T) {
 	n.Gas = g
 	for i := range 12 {
 		n0 := 5e4 * (1 + 0.05*float64(i%5))
-		p := Point{Flight: 0.012 + 0.004*float64(i%4), Vector: Vector{2e4, n0, 80e-9, 1.21 * g.mu(n0)}}
+		p := Point{Flight: 0.012 + 0.004*float64(i%4), Vector: Vector{2e4, n0, 80e-9, 1.21 * g.scales().mu(n0)}}
 		p.Cov[Condensate][Condensate], p.Cov[Mu][Mu] = math.Pow(0.003*n0, 2), math.Pow(0.002*p.Vector[Mu], 2)
 		n.Points = append(n.Points, p)
 	}
@@ -286,7 +286,7 @@ func TestRelease(t *testing.T) {
 		t.Fatalf("mean field %v, %v", m, err)
 	}
 	within(t, "release energy over 2/7 mu(N0)", m.Release.Ratio.V, 1.21, 1e-9)
-	within(t, "release energy", m.Release.Energy.V, 1.21*2./7*g.mu(m.Release.Atoms), 1e-9*g.mu(5e4))
+	within(t, "release energy", m.Release.Energy.V, 1.21*2./7*g.scales().mu(m.Release.Atoms), 1e-9*g.scales().mu(5e4))
 	for i := range n.Points {
 		n.Points[i].Flight = 0.02
 	}

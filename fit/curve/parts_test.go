@@ -13,8 +13,8 @@ import (
 func TestNearestOfLine(t *testing.T) {
 	p := &Point{Vector: Vector{2, 5, 1, 1}}
 	p.Cov[0][0], p.Cov[1][1], p.Cov[0][1], p.Cov[1][0] = 0.04, 0.09, 0.03, 0.03
-	r := relation{1, func(v *Vector, _ *Gas, theta, h []float64) { h[0] = v[1] - theta[0]*v[0] }}
-	n := r.nearest(p, &Gas{}, []float64{2})
+	r := relation{1, func(v *Vector, _ *scales, theta, h []float64) { h[0] = v[1] - theta[0]*v[0] }}
+	n := r.nearest(p, &scales{}, []float64{2}, &p.Vector)
 	within(t, "distance", n.r[0], (5-2*2)/math.Sqrt(0.09-4*0.03+4*0.04), 1e-9)
 	within(t, "nearest point", n.latent[1]-2*n.latent[0], 0, 1e-9)
 	within(t, "number without an error", n.latent[2], 1, 0)
@@ -25,8 +25,8 @@ func TestNearestOfLine(t *testing.T) {
 func TestNearestOfCurve(t *testing.T) {
 	p := &Point{Vector: Vector{1, 0.93, 0.55, 1}}
 	p.Cov[1][1], p.Cov[2][2], p.Cov[1][2], p.Cov[2][1] = 1e-5, 0.02, -1e-4, -1e-4
-	r := relation{1, func(v *Vector, _ *Gas, _, h []float64) { h[0] = v[1] - (1 - v[2]*v[2]*v[2]) }}
-	n := r.nearest(p, &Gas{}, nil)
+	r := relation{1, func(v *Vector, _ *scales, _, h []float64) { h[0] = v[1] - (1 - v[2]*v[2]*v[2]) }}
+	n := r.nearest(p, &scales{}, nil, &p.Vector)
 	det := p.Cov[1][1]*p.Cov[2][2] - p.Cov[1][2]*p.Cov[1][2]
 	least := math.Inf(1)
 	for u := 0.0; u < 1; u += 1e-5 {
@@ -40,8 +40,8 @@ func TestNearestOfCurve(t *testing.T) {
 func TestNearestOfTwo(t *testing.T) {
 	p := &Point{Vector: Vector{3, 4, 1, 1}}
 	p.Cov[0][0], p.Cov[1][1], p.Cov[0][1], p.Cov[1][0] = 1, 4, 0.5, 0.5
-	r := relation{2, func(v *Vector, _ *Gas, _, h []float64) { h[0], h[1] = v[0], v[1] }}
-	n := r.nearest(p, &Gas{}, nil)
+	r := relation{2, func(v *Vector, _ *scales, _, h []float64) { h[0], h[1] = v[0], v[1] }}
+	n := r.nearest(p, &scales{}, nil, &p.Vector)
 	want := (9*4 - 2*3*4*0.5 + 16*1) / (1*4 - 0.25)
 	within(t, "chi2", n.r[0]*n.r[0]+n.r[1]*n.r[1], want, 1e-9)
 }
@@ -57,7 +57,7 @@ func TestExcess(t *testing.T) {
 		if err != nil {
 			t.Fatal(err)
 		}
-		want := m.Thermal/g.saturated(temperature) - 1
+		want := m.Thermal/g.scales().saturated(temperature) - 1
 		within(t, "excess", Excess(y), want, 1e-4*(want+0.01))
 	}
 	if !math.IsNaN(Excess(math.NaN())) {
@@ -90,5 +90,24 @@ func TestMeanOf(t *testing.T) {
 	}
 	if m := MeanOf(values, errs, []int{2}); m.Count != 0 || !math.IsNaN(m.V) {
 		t.Errorf("mean of nothing: %+v", m)
+	}
+}
+
+// TestScales holds the powers against the formulas of package model.
+func TestScales(t *testing.T) {
+	g := rubidium(t)
+	s := g.scales()
+	const n, temperature = 123456., 87e-9
+	mu, err := model.Mu(n, g.Mass, g.ScatteringLength, g.Trap)
+	if err != nil {
+		t.Fatal(err)
+	}
+	within(t, "mu", s.mu(n)/mu, 1, 1e-12)
+	within(t, "eta", s.eta(n)/model.Eta(n, g.Mass, g.ScatteringLength, g.Trap), 1, 1e-12)
+	within(t, "t", s.reduced(temperature, n)/g.Reduced(temperature, n), 1, 1e-12)
+	within(t, "saturated", s.saturated(temperature)/model.ThermalNumber(temperature, 0, g.Trap), 1, 1e-12)
+	g.ScatteringLength = -g.ScatteringLength
+	if s := g.scales(); !math.IsNaN(s.mu(n)) || !math.IsNaN(s.eta(n)) {
+		t.Error("an attractive gas has a Thomas-Fermi condensate")
 	}
 }

@@ -17,7 +17,8 @@ type Transition struct {
 	// Hottest is the largest t of a point with a condensate, Coldest the least one of a point
 	// without, NaN where there is none.
 	Hottest, Coldest float64
-	// Atoms is the number at which the predictions stand: the geometric mean near the onset.
+	// Atoms is the number at which the predictions stand: the geometric mean near the onset,
+	// of all points where none has a condensate.
 	Atoms       float64
 	Predictions []Prediction
 }
@@ -74,6 +75,9 @@ func (n *Night) Locate(ctx context.Context, th *Theory) (Transition, error) {
 			return t, err
 		}
 	}
+	if len(points) == 0 {
+		points = n.pick(func(p *Point) bool { return p.Atoms() > 0 })
+	}
 	t.Atoms = geometricMean(points, func(p *Point) float64 { return p.Atoms() })
 	t.Predictions = n.Gas.predictions(t.Atoms)
 	return t, nil
@@ -83,13 +87,13 @@ func (n *Night) saturation(ctx context.Context, points []*Point) (*Saturation, e
 	if len(points) < 4 {
 		return nil, nil
 	}
-	p := &problem{night: n, points: points, relation: relation{1, func(v *Vector, g *Gas, theta, h []float64) {
+	p := n.problem(points, relation{1, func(v *Vector, g *scales, theta, h []float64) {
 		held := theta[0]
 		if len(theta) > 1 {
 			held += theta[1] * Excess(g.mu(v[Condensate])/(model.KB*v[T]))
 		}
 		h[0] = v[Thermal]/g.saturated(v[T]) - held
-	}}}
+	}})
 	start := []float64{1, 0.5}
 	if !n.Gas.repulsive() {
 		start = start[:1]
@@ -111,9 +115,9 @@ func (n *Night) onsets(ctx context.Context, th *Theory, points []*Point) ([]Onse
 		if l.Name != Ideal && !l.numeric {
 			continue
 		}
-		p := &problem{night: n, points: points, relation: relation{1, func(v *Vector, g *Gas, theta, h []float64) {
+		p := n.problem(points, relation{1, func(v *Vector, g *scales, theta, h []float64) {
 			h[0] = v.Fraction() - th.at(l, v, g, theta[0])
-		}}}
+		}})
 		e, q, err := p.fit(ctx, []float64{1})
 		if err != nil {
 			return nil, err
