@@ -38,6 +38,7 @@ type commands struct {
 	Batch     batchCmd     `cmd:"" help:"Fit the shots of a night and write the table of results."`
 	Check     checkCmd     `cmd:"" help:"Look at a night before it is fitted: what would be read, and what is wrong. Nothing is written."`
 	Calibrate calibrateCmd `cmd:"" help:"Measure what the settings need."`
+	Curve     curveCmd     `cmd:"" help:"Analyse a fitted night: the condensate fraction against temperature, theory, the transition."`
 	Init      initCmd      `cmd:"" help:"Print commented settings of a laboratory to start from."`
 	Simulate  simulateCmd  `cmd:"" help:"Write a night of simulated raw shots with known truth."`
 }

@@ -1,0 +1,129 @@
+package main
+
+import (
+	"context"
+	"fmt"
+	"io"
+	"path/filepath"
+
+	"fallshadow/cmd/fallshadow/internal/figure"
+	"fallshadow/cmd/fallshadow/internal/report"
+	"fallshadow/cmd/fallshadow/internal/study"
+)
+
+// nightArgs name a fitted night and choose among its shots.
+type nightArgs struct {
+	Night    string        `arg:"" help:"Folder of a night that batch has fitted."`
+	Settings string        `placeholder:"FILE" help:"Settings of the laboratory; fallshadow.toml in the night's folder if left out."`
+	Out      string        `placeholder:"DIR" help:"Folder with the ledger; results/NIGHT if left out."`
+	Where    []study.Range `placeholder:"NAME=LOW:HIGH" sep:"none" help:"Take only shots in this range of a column, of a scan variable, or of number, that of the shot. May be repeated."`
+	Without  []string      `placeholder:"FLAG" help:"Leave out shots with this flag; any stands for every flag."`
+}
+
+// load reads the night and selects.
+func (c *nightArgs) load(ctx context.Context) (*study.Night, *study.Chosen, error) {
+	lab, err := loadSettings(c.Settings, c.Night)
+	if err != nil {
+		return nil, nil, err
+	}
+	n, err := study.Load(ctx, c.Night, c.Out, lab)
+	if err != nil {
+		return nil, nil, err
+	}
+	chosen, err := n.Select(study.Selection{Where: c.Where, Without: c.Without})
+	return n, chosen, err
+}
+
+// figureArgs are the sizes of figures and where they go.
+type figureArgs struct {
+	Figure []figureFile `placeholder:"FILE" help:"File to draw the figure in, .png, .svg or .pdf; may be repeated."`
+	Width  float64      `default:"86" help:"Width of the figure in mm; letters keep their size."`
+	Height float64      `default:"66" help:"Height of the figure in mm."`
+}
+
+// figureFile is the name of a file whose ending is a format.
+type figureFile string
+
+// UnmarshalText refuses other endings.
+func (f *figureFile) UnmarshalText(text []byte) error {
+	*f = figureFile(text)
+	_, err := figure.FormatOf(string(text))
+	return err
+}
+
+// save writes a figure to the named files, or to all formats under the name that is usual.
+func (c *figureArgs) save(t terminal, f *figure.Figure, usual string) error {
+	files := c.Figure
+	if files == nil {
+		for _, ending := range figure.Formats {
+			files = append(files, figureFile(usual+"."+ending))
+		}
+	}
+	for _, file := range files {
+		if err := study.Save(f, string(file), c.Width, c.Height); err != nil {
+			return err
+		}
+		fmt.Fprintln(t.out, file)
+	}
+	return nil
+}
+
+// curveCmd reads a fitted night as one experiment.
+type curveCmd struct {
+	nightArgs
+	X     string         `default:"t_reduced" help:"What to draw along: a column, a scan variable, or number, that of the shot."`
+	Y     string         `default:"fraction" help:"What to draw against it."`
+	XUnit string         `placeholder:"UNIT" help:"Unit of a scan variable on the axis."`
+	Law   []string       `placeholder:"LAW" enum:"ideal,finite-size,interacting,semi-ideal,hartree-fock" help:"Laws to draw, of ${enum}."`
+	Group study.Grouping `placeholder:"NAME[:WIDTH]" help:"Draw and list means of shots with equal NAME, or of bins of it."`
+	figureArgs
+}
+
+// Run analyses the night and writes its figure.
+func (c *curveCmd) Run(ctx context.Context, t terminal) error {
+	n, chosen, err := c.load(ctx)
+	if err != nil {
+		return err
+	}
+	a, err := n.Analyse(ctx, chosen)
+	if err != nil {
+		return err
+	}
+	d, err := a.Plot(study.Axes{X: c.X, Y: c.Y, XUnit: c.XUnit, Laws: c.Law, Group: c.Group})
+	if err != nil {
+		return err
+	}
+	if err := a.WriteText(t.out); err != nil {
+		return err
+	}
+	if c.Group.Quantity != "" {
+		if err := a.WriteGroups(t.out, c.Group); err != nil {
+			return err
+		}
+	}
+	fmt.Fprintln(t.out)
+	for _, l := range d.LeftOut {
+		fmt.Fprintf(t.out, "not drawn: %s: %s\n", report.Printable(l.Shot), report.Printable(l.Why))
+	}
+	if d.Note != "" {
+		fmt.Fprintln(t.out, d.Note)
+	}
+	if err := c.save(t, d.Figure, filepath.Join(n.Dir, "curve")); err != nil {
+		return err
+	}
+	return c.tables(t, a, filepath.Join(n.Dir, "curve"))
+}
+
+// tables writes the shots and the numbers for other programs.
+func (c *curveCmd) tables(t terminal, a *study.Analysis, base string) error {
+	for _, out := range []struct {
+		file  string
+		write func(io.Writer) error
+	}{{base + ".csv", a.WriteTable}, {base + ".json", a.WriteJSON}} {
+		if err := report.Replace(out.file, out.write); err != nil {
+			return fmt.Errorf("write %s: %w", out.file, err)
+		}
+		fmt.Fprintln(t.out, out.file)
+	}
+	return nil
+}

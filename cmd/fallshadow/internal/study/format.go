@@ -1,0 +1,68 @@
+package study
+
+import (
+	"fmt"
+	"math"
+	"strconv"
+	"strings"
+
+	"fallshadow/fit/curve"
+)
+
+// format writes a number with its statistical and its calibration error in parentheses,
+// 0.9981(42)(35) in units of its last digit; the second is a dash where it is not known.
+func format(e curve.Estimate) string {
+	if math.IsNaN(e.V) {
+		return ""
+	}
+	decimals := 3
+	large, small := math.Max(e.Err, orZero(e.Cal)), math.Min(e.Err, orInfinity(e.Cal))
+	if large > 0 && !math.IsInf(large, 0) {
+		decimals = 1 - int(math.Floor(math.Log10(large)))
+		if small > 0 && small < large/10 {
+			decimals++
+		}
+	}
+	decimals = min(max(decimals, 0), 12)
+	return strconv.FormatFloat(e.V, 'f', decimals, 64) + digits(e.Err, decimals) + digits(e.Cal, decimals)
+}
+
+// digits writes an error in units of the last of so many decimals.
+func digits(e float64, decimals int) string {
+	if math.IsNaN(e) {
+		return "(-)"
+	}
+	text := strconv.FormatFloat(e, 'f', decimals, 64)
+	if e < 1 {
+		text = strings.TrimLeft(strings.Replace(text, ".", "", 1), "0")
+	}
+	if text == "" {
+		text = "0"
+	}
+	return "(" + text + ")"
+}
+
+func orZero(v float64) float64 {
+	if math.IsNaN(v) {
+		return 0
+	}
+	return v
+}
+
+func orInfinity(v float64) float64 {
+	if math.IsNaN(v) || v == 0 {
+		return math.Inf(1)
+	}
+	return v
+}
+
+// sigmas writes a distance in errors.
+func sigmas(v float64) string { return fmt.Sprintf("%+.1f", v) }
+
+// count writes a number of things, 1 shot, 2 shots.
+func count(n int, what string) string {
+	if n == 1 {
+		return "1 " + what
+	}
+	return strconv.Itoa(n) + " " + what + "s"
+}

@@ -1,0 +1,442 @@
+package study
+
+import (
+	"fmt"
+	"io"
+	"math"
+	"slices"
+
+	"fallshadow/cmd/fallshadow/internal/figure"
+	"fallshadow/cmd/fallshadow/internal/report"
+	"fallshadow/fit/curve"
+	"fallshadow/model"
+)
+
+// Axes choose what is drawn.
+type Axes struct {
+	X, Y   string   // quantities
+	XUnit  string   // of a scan variable, which has none of its own
+	Laws   []string // names of laws; nil for the usual ones
+	Group  Grouping // whose means are drawn, if any
+	Single bool     // draw single shots however many there are
+}
+
+// The quantities that the usual figure shows.
+const (
+	DefaultX = "t_reduced"
+	DefaultY = "fraction"
+)
+
+// usualLaws are drawn where none is asked for.
+var usualLaws = []string{curve.Ideal, curve.SemiIdeal, curve.HartreeFock}
+
+// crowd is the number of shots beyond which means of bins are drawn in their place.
+const crowd = 400
+
+// Drawn is a figure and the shots that could not be drawn in it.
+type Drawn struct {
+	Figure  *figure.Figure
+	LeftOut []LeftOut
+	Note    string // of what stands for the shots, where they are not drawn one by one
+}
+
+// Plot makes the figure of one quantity against another with the laws that hold between
+// them.
+func (a *Analysis) Plot(axes Axes) (*Drawn, error) {
+	x, err := a.Night.Quantity(axes.X)
+	if err != nil {
+		return nil, err
+	}
+	y, err := a.Night.Quantity(axes.Y)
+	if err != nil {
+		return nil, err
+	}
+	d := &Drawn{Figure: &figure.Figure{}}
+	p := &plotting{Analysis: a, axes: axes, x: x, y: y, drawn: d, figure: d.Figure}
+	p.xs, p.ys = a.Night.series(a.Chosen, x), a.Night.series(a.Chosen, y)
+	p.keep()
+	if len(p.places) == 0 {
+		return nil, fmt.Errorf("none of the %s has both %s and %s: nothing to draw", count(len(a.Chosen.Rows), "shot"), x.Name, y.Name)
+	}
+	p.range_()
+	if err := p.laws(); err != nil {
+		return nil, err
+	}
+	return d, p.points()
+}
+
+// plotting is a figure in the making.
+type plotting struct {
+	*Analysis
+	axes   Axes
+	x, y   *Quantity
+	xs, ys series
+	places []int // of the rows that have both
+	drawn  *Drawn
+	figure *figure.Figure
+}
+
+// keep finds the shots that have both quantities.
+func (p *plotting) keep() {
+	for i, r := range p.Chosen.Rows {
+		switch {
+		case math.IsNaN(p.xs.v[i]):
+			p.drawn.LeftOut = append(p.drawn.LeftOut, LeftOut{r.Shot, "no " + p.x.Name + " to draw it at"})
+		case math.IsNaN(p.ys.v[i]):
+			p.drawn.LeftOut = append(p.drawn.LeftOut, LeftOut{r.Shot, "no " + p.y.Name + " to draw it at"})
+		case p.log() && !(p.xs.v[i] > 0 && p.ys.v[i] > 0):
+			p.drawn.LeftOut = append(p.drawn.LeftOut, LeftOut{r.Shot, "not above 0 on an axis of logarithms"})
+		default:
+			p.places = append(p.places, i)
+		}
+	}
+}
+
+// log says that both axes have logarithms: μ against N0 is a power law.
+func (p *plotting) log() bool {
+	return p.x.Name == "condensate" && (p.y.Name == "mu_nK" || p.y.Name == "mu_from_atoms_nK")
+}
+
+// range_ sets axes and ranges: from 0 where the values come near it.
+func (p *plotting) range_() {
+	f := p.figure
+	f.X = axis(p.x, p.axes.XUnit, p.pick(p.xs.v), p.pick(p.xs.err), p.log())
+	f.Y = axis(p.y, "", p.pick(p.ys.v), p.pick(p.ys.err), p.log())
+	if p.y.Name == "fraction" {
+		f.Y.Min, f.Y.Max = -0.02, 1.05
+	}
+}
+
+func (p *plotting) pick(values []float64) []float64 {
+	list := make([]float64, len(p.places))
+	for k, i := range p.places {
+		list[k] = values[i]
+	}
+	return list
+}
+
+func axis(q *Quantity, unit string, values, errs []float64, log bool) figure.Axis {
+	a := figure.Axis{Label: figure.Markup(q.Label), Log: log}
+	if q.Label == "" {
+		text := q.Name
+		if unit == "" {
+			unit = q.Unit
+		}
+		if unit != "" {
+			text += "  (" + unit + ")"
+		}
+		a.Label = figure.Plain(text)
+	}
+	a.Min, a.Max = math.Inf(1), math.Inf(-1)
+	for i, v := range values {
+		e := 0.0
+		if errs[i] > 0 && errs[i] < math.Abs(v)/2 {
+			e = errs[i]
+		}
+		a.Min, a.Max = math.Min(a.Min, v-e), math.Max(a.Max, v+e)
+	}
+	switch room := (a.Max - a.Min) * 0.06; {
+	case log:
+		a.Min, a.Max = a.Min/1.15, a.Max*1.15
+	case a.Max == a.Min:
+		a.Min, a.Max = a.Min-0.5-math.Abs(a.Min)/10, a.Max+0.5+math.Abs(a.Max)/10
+	case a.Min >= 0 && a.Min < 0.4*a.Max:
+		a.Min, a.Max = 0, a.Max+room
+	default:
+		a.Min, a.Max = a.Min-room, a.Max+room
+	}
+	return a
+}
+
+// points draws the shots, or means where there are too many of them or groups are asked for.
+func (p *plotting) points() error {
+	grouping, err := p.grouping()
+	if err != nil {
+		return err
+	}
+	if grouping == nil {
+		p.single()
+		return nil
+	}
+	pt := figure.Points{Legend: "means of groups", Role: figure.Data}
+	for _, g := range grouping {
+		x, y := p.xs.mean(g.Places), p.ys.mean(g.Places)
+		pt.X, pt.XErr = append(pt.X, x.V), append(pt.XErr, x.Err)
+		pt.Y, pt.YErr = append(pt.Y, y.V), append(pt.YErr, y.Err)
+		pt.YTotal = append(pt.YTotal, y.Spread)
+	}
+	p.drawn.Note = fmt.Sprintf("%s drawn as the means of %s: thick bars are errors of the mean, thin ones the spread of the shots", count(len(p.places), "shot"), count(len(grouping), "group"))
+	p.figure.Points = append(p.figure.Points, pt)
+	return nil
+}
+
+// grouping returns the groups to draw, nil for single shots.
+func (p *plotting) grouping() ([]curve.Group, error) {
+	if p.axes.Group.Quantity != "" {
+		groups, err := p.Groups(p.axes.Group)
+		if err != nil {
+			return nil, err
+		}
+		return p.within(groups), nil
+	}
+	if p.axes.Single || len(p.places) <= crowd {
+		return nil, nil
+	}
+	return p.within(curve.ByWidth(p.xs.v, (p.figure.X.Max-p.figure.X.Min)/40)), nil
+}
+
+// within drops from groups what cannot be drawn.
+func (p *plotting) within(groups []curve.Group) []curve.Group {
+	var list []curve.Group
+	for _, g := range groups {
+		g.Places = slices.DeleteFunc(slices.Clone(g.Places), func(i int) bool { return !slices.Contains(p.places, i) })
+		if len(g.Places) > 0 {
+			list = append(list, g)
+		}
+	}
+	return list
+}
+
+// single draws every shot: closed marks with a condensate, open ones without.
+func (p *plotting) single() {
+	with := figure.Points{Legend: "shots, stat. error", Role: figure.Data}
+	if !p.anyError() {
+		with.Legend, with.Plain = "shots", true
+	}
+	none := figure.Points{Legend: "no condensate", Role: figure.Data, Open: true, Plain: with.Plain}
+	banded := p.banded()
+	for _, i := range p.places {
+		into := &with
+		if p.Curve.Points[i].Vector[curve.Condensate] == 0 {
+			into = &none
+		}
+		into.X, into.Y = append(into.X, p.xs.v[i]), append(into.Y, p.ys.v[i])
+		into.XErr, into.YErr = append(into.XErr, p.xs.err[i]), append(into.YErr, p.ys.err[i])
+		into.XLow, into.XHigh = append(into.XLow, p.xs.low[i]), append(into.XHigh, p.xs.high[i])
+		if !banded {
+			into.XTotal = append(into.XTotal, math.Hypot(p.xs.err[i], p.xs.cal[i]))
+			into.YTotal = append(into.YTotal, math.Hypot(p.ys.err[i], p.ys.cal[i]))
+		}
+	}
+	for _, pt := range []figure.Points{with, none} {
+		if len(pt.X) > 0 {
+			p.figure.Points = append(p.figure.Points, pt)
+		}
+	}
+}
+
+// anyError says that a shot has a statistical error on an axis.
+func (p *plotting) anyError() bool {
+	return slices.ContainsFunc(p.places, func(i int) bool { return p.xs.err[i] > 0 || p.ys.err[i] > 0 })
+}
+
+// banded says that calibration errors are drawn as a band about a law and not on the points.
+func (p *plotting) banded() bool { return p.x.Name == DefaultX && p.y.Name == DefaultY }
+
+// laws draws the theory that belongs to the axes, if any.
+func (p *plotting) laws() error {
+	var chosen []curve.Law
+	names := p.axes.Laws
+	if names == nil {
+		names = usualLaws
+	}
+	for _, name := range names {
+		l, ok := curve.Find(name)
+		if !ok {
+			return fmt.Errorf("no law is called %q: there are %s", name, lawNames())
+		}
+		chosen = append(chosen, l)
+	}
+	switch {
+	case p.y.Name == "fraction" && (p.x.Name == "t_reduced" || p.x.Name == "T_nK"):
+		p.fractions(chosen)
+	case p.y.Name == "entropy_per_atom" && p.x.Name == "t_reduced":
+		p.entropies()
+	case p.log():
+		p.thomasFermi()
+	case p.x.Name == "atoms_over_saturated" && p.y.Name == "condensate_over_saturated":
+		p.saturated()
+	case p.x.Name == "mu_over_kT" && p.y.Name == "thermal_over_saturated":
+		p.excess()
+	}
+	return nil
+}
+
+func lawNames() (text string) {
+	for i, l := range curve.Laws {
+		if i > 0 {
+			text += ", "
+		}
+		text += l.Name
+	}
+	return text
+}
+
+// roles are the looks of laws.
+var roles = map[string]figure.Role{
+	curve.Ideal: figure.Law1, curve.SemiIdeal: figure.Law2, curve.HartreeFock: figure.Law3,
+	curve.FiniteSize: figure.Law4, curve.Interacting: figure.Law5,
+}
+
+// legends are the titles of laws with their letters set.
+var legends = map[string]string{curve.Ideal: "ideal gas, 1 \u2212 *t*^{3}"}
+
+func legendOf(l curve.Law) string {
+	if text, ok := legends[l.Name]; ok {
+		return text
+	}
+	return l.Title
+}
+
+// samples is the number of points of a curve.
+const samples = 241
+
+func (p *plotting) across() []float64 {
+	x := make([]float64, samples)
+	for i := range x {
+		x[i] = p.figure.X.Min + (p.figure.X.Max-p.figure.X.Min)*float64(i)/(samples-1)
+		if p.figure.X.Log {
+			x[i] = p.figure.X.Min * math.Pow(p.figure.X.Max/p.figure.X.Min, float64(i)/(samples-1))
+		}
+	}
+	return x
+}
+
+// fractions draws f against t or T, at the middle N of the condensed shots, with a band
+// from the least to the largest N, and the calibration band about the best law.
+func (p *plotting) fractions(laws []curve.Law) {
+	low, mid, high := p.atomNumbers()
+	reduced := func(x, n float64) float64 {
+		if p.x.Name == "T_nK" {
+			return p.Curve.Gas.Reduced(x*1e-9, n)
+		}
+		return x
+	}
+	x := p.across()
+	if p.banded() {
+		p.calibration()
+	}
+	named := false
+	for _, l := range laws {
+		var y, a, b []float64
+		for _, v := range x {
+			at := func(n float64) float64 { return p.Theory.Fraction(l, reduced(v, n), n) }
+			f, g := at(low), at(high)
+			y, a, b = append(y, at(mid)), append(a, math.Min(f, g)), append(b, math.Max(f, g))
+		}
+		if math.IsNaN(y[0]) {
+			continue // not for this gas
+		}
+		if band := (figure.Band{Role: roles[l.Name], X: x, Low: a, High: b}); wide(&band) {
+			if !named {
+				band.Legend, named = "least to largest *N*", true
+			}
+			p.figure.Bands = append(p.figure.Bands, band)
+		}
+		p.figure.Curves = append(p.figure.Curves, figure.Curve{Legend: legendOf(l), Role: roles[l.Name], X: x, Y: y})
+	}
+}
+
+// wide says that a band can be seen.
+func wide(b *figure.Band) bool {
+	for i := range b.X {
+		if b.High[i]-b.Low[i] > 0.01 {
+			return true
+		}
+	}
+	return false
+}
+
+// atomNumbers returns the least, the middle and the largest N of the condensed shots, of all
+// where none is.
+func (p *plotting) atomNumbers() (low, mid, high float64) {
+	var list []float64
+	for _, only := range []bool{true, false} {
+		for i := range p.Curve.Points {
+			if pt := &p.Curve.Points[i]; !only || pt.Condensed() {
+				list = append(list, pt.Atoms())
+			}
+		}
+		if len(list) > 0 {
+			break
+		}
+	}
+	slices.Sort(list)
+	return list[0], list[len(list)/2], list[len(list)-1]
+}
+
+// calibration draws how far errors that are common to all shots may have moved the best law.
+func (p *plotting) calibration() {
+	_, mid, _ := p.atomNumbers()
+	b := p.Curve.CalibrationBand(p.Theory, p.Best(), mid, p.across())
+	if !slices.Equal(b.Low, b.High) {
+		p.figure.Bands = append(p.figure.Bands, figure.Band{Legend: "calibration, 1 *σ*", Role: figure.Data, X: b.T, Low: b.Low, High: b.High})
+	}
+}
+
+func (p *plotting) entropies() {
+	_, mid, _ := p.atomNumbers()
+	x := p.across()
+	var ideal, semi []float64
+	for _, t := range x {
+		ideal, semi = append(ideal, model.IdealEntropy(t)), append(semi, p.Theory.Entropy(t, mid))
+	}
+	p.figure.Curves = append(p.figure.Curves, figure.Curve{Legend: "ideal gas", Role: figure.Law1, X: x, Y: ideal})
+	if p.Curve.Gas.ScatteringLength > 0 {
+		p.figure.Curves = append(p.figure.Curves, figure.Curve{Legend: "semi-ideal", Role: figure.Law2, X: x, Y: semi})
+	}
+}
+
+func (p *plotting) thomasFermi() {
+	x := p.across()
+	var y []float64
+	for _, n := range x {
+		mu, err := model.Mu(n, p.Curve.Gas.Mass, p.Curve.Gas.ScatteringLength, p.Curve.Gas.Trap)
+		if err != nil {
+			return
+		}
+		y = append(y, mu/model.KB*1e9)
+	}
+	p.figure.Curves = append(p.figure.Curves, figure.Curve{Legend: "Thomas-Fermi, *N*_{0}^{2/5}", Role: figure.Law2, X: x, Y: y})
+}
+
+// saturated draws N0 against N, both over the saturated number of the shot's own T.
+func (p *plotting) saturated() {
+	x := p.across()
+	var y []float64
+	for _, v := range x {
+		y = append(y, math.Max(0, v-1))
+	}
+	p.figure.Curves = append(p.figure.Curves, figure.Curve{Legend: "saturated thermal part", Role: figure.Law1, X: x, Y: y})
+}
+
+// excess draws what the thermal part holds beyond saturation.
+func (p *plotting) excess() {
+	x := p.across()
+	one, semi := make([]float64, len(x)), make([]float64, len(x))
+	for i, v := range x {
+		one[i], semi[i] = 1, 1+curve.Excess(math.Max(0, v))
+	}
+	p.figure.Curves = append(p.figure.Curves,
+		figure.Curve{Legend: "saturated", Role: figure.Law1, X: x, Y: one},
+		figure.Curve{Legend: "semi-ideal", Role: figure.Law2, X: x, Y: semi})
+	if s := p.Transition.Saturation; s != nil && !math.IsNaN(s.Excess.V) {
+		fitted := make([]float64, len(x))
+		for i, v := range x {
+			fitted[i] = s.Critical.V + s.Excess.V*curve.Excess(math.Max(0, v))
+		}
+		p.figure.Curves = append(p.figure.Curves, figure.Curve{Legend: "fit", Role: figure.Law3, X: x, Y: fitted})
+	}
+}
+
+// Save draws a figure into a file; the ending of its name is the format.
+func Save(f *figure.Figure, file string, width, height float64) error {
+	format, err := figure.FormatOf(file)
+	if err != nil {
+		return err
+	}
+	if err := report.Replace(file, func(w io.Writer) error { return f.Render(w, format, width, height) }); err != nil {
+		return fmt.Errorf("write the figure %s: %w", file, err)
+	}
+	return nil
+}

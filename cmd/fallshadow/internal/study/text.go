@@ -1,0 +1,154 @@
+package study
+
+import (
+	"bufio"
+	"fmt"
+	"io"
+	"math"
+	"slices"
+	"strings"
+	"text/tabwriter"
+
+	"fallshadow/cmd/fallshadow/internal/ledger"
+	"fallshadow/cmd/fallshadow/internal/report"
+	"fallshadow/fit/curve"
+	"fallshadow/model"
+)
+
+// WriteText words the analysis for a person.
+func (a *Analysis) WriteText(w io.Writer) error {
+	out := bufio.NewWriter(w)
+	a.writeShots(out)
+	a.writeLaws(out)
+	a.writeTransition(out)
+	a.writeMeanField(out)
+	a.writeAttractive(out)
+	fmt.Fprintln(out, "\nerrors in parentheses: statistical, then that of the calibrations, which moves all shots together; (-) where a setting has no stated uncertainty"+a.unstated())
+	return out.Flush()
+}
+
+func (a *Analysis) unstated() string {
+	if names := a.Night.Settings.Unstated(); len(names) > 0 {
+		return ": " + strings.Join(names, ", ")
+	}
+	return ""
+}
+
+func (a *Analysis) writeShots(w io.Writer) {
+	both := 0
+	for i := range a.Curve.Points {
+		if a.Curve.Points[i].Condensed() {
+			both++
+		}
+	}
+	fmt.Fprintf(w, "%s: %s of %d take part, %d of them with thermal part and condensate\n",
+		a.Night.Name, count(len(a.Chosen.Rows), "shot"), len(a.Night.Rows), both)
+	a.Chosen.writeLeftOut(w)
+}
+
+// writeLeftOut lists every shot that takes no part.
+func (c *Chosen) writeLeftOut(w io.Writer) {
+	for _, l := range c.LeftOut {
+		fmt.Fprintf(w, "left out: %s: %s\n", report.Printable(l.Shot), report.Printable(l.Why))
+	}
+}
+
+func (a *Analysis) writeLaws(w io.Writer) {
+	if len(a.Comparisons) == 0 {
+		fmt.Fprintln(w, "\nfewer than three shots have both parts: no comparison with the laws")
+		return
+	}
+	fmt.Fprintf(w, "\nfraction f = N0/N against T/Tc0(N) of %s, chi2 with the covariance of thermal number, N0 and T:\n", count(a.Comparisons[0].Points, "shot"))
+	best := curve.Best(a.Comparisons)
+	t := tabwriter.NewWriter(w, 0, 0, 2, ' ', 0)
+	fmt.Fprintln(t, "law\tchi2/shot\tmean f - law\tshare of the law\t")
+	for i, c := range a.Comparisons {
+		mark := ""
+		if i == best {
+			mark = "least chi2"
+		}
+		fmt.Fprintf(t, "%s\t%.3g\t%s\t%s\t%s\n", c.Law.Title, c.PerDof(), format(c.Deviation), format(c.Amplitude), mark)
+	}
+	t.Flush()
+	fmt.Fprintln(w, "share: x in f = ideal + x (law - ideal), 0 for the ideal gas and 1 for the law")
+	for _, c := range a.Comparisons {
+		fmt.Fprintf(w, "%s: %s\n", c.Law.Title, c.Law.Note)
+	}
+	if a.plainForm() {
+		fmt.Fprintln(w, "caution: the fit gave the thermal part its ideal form. Where a condensate keeps thermal atoms out of the middle, that form reads T some 5 to 10 % low, and share and Tc lean on it")
+	}
+}
+
+// plainForm says that an interacting law is the best one while thermal parts were fitted
+// without the field of the condensate.
+func (a *Analysis) plainForm() bool {
+	if a.Best().Name == curve.Ideal || a.Best().Name == curve.FiniteSize {
+		return false
+	}
+	return slices.ContainsFunc(a.Chosen.Rows, func(r *ledger.Row) bool {
+		thermal, _, both := strings.Cut(r.Words["form"], "+")
+		return both && (thermal == "bose" || thermal == "gauss")
+	})
+}
+
+func (a *Analysis) writeTransition(w io.Writer) {
+	t := &a.Transition
+	fmt.Fprintf(w, "\ntransition: condensates up to T/Tc0 = %s, none found from %s on\n", short(t.Hottest), short(t.Coldest))
+	if s := t.Saturation; s != nil {
+		fmt.Fprintf(w, "  by saturation at fixed T: Tc/Tc0 = %s, thermal part %s of the semi-ideal excess beyond saturation (chi2/dof %.2g, %s)\n",
+			format(s.Ratio), format(s.Excess), s.PerDof(), count(s.Points, "shot"))
+	}
+	for _, o := range t.Onsets {
+		fmt.Fprintf(w, "  by onset, f below %g as %s: Tc over that of the law = %s (chi2/dof %.2g, %s)\n",
+			curve.OnsetFraction, o.Law.Title, format(o.Ratio), o.PerDof(), count(o.Points, "shot"))
+	}
+	measured := a.Measured()
+	if measured == nil {
+		return
+	}
+	fmt.Fprintf(w, "theory for Tc/Tc0 of %.3g atoms, and how far the value by saturation is above it in its errors:\n", t.Atoms)
+	tab := tabwriter.NewWriter(w, 0, 0, 2, ' ', 0)
+	for _, p := range t.Predictions {
+		fmt.Fprintf(tab, "  %s\t%.4f\t%s\t%s\n", p.Name, p.Ratio, sigmas(p.Sigmas(*measured)), p.Note)
+	}
+	tab.Flush()
+}
+
+// Measured returns the Tc/Tc⁰ that is compared with theory, nil where there is none.
+func (a *Analysis) Measured() *curve.Estimate {
+	if a.Transition.Saturation == nil {
+		return nil
+	}
+	return &a.Transition.Saturation.Ratio
+}
+
+func short(v float64) string {
+	if math.IsNaN(v) {
+		return "nowhere"
+	}
+	return fmt.Sprintf("%.3f", v)
+}
+
+func (a *Analysis) writeMeanField(w io.Writer) {
+	m := a.MeanField
+	if m == nil {
+		return
+	}
+	fmt.Fprintf(w, "\nmean field, %s with N0 a/a_ho above 30:\n", count(m.Points, "condensate"))
+	fmt.Fprintf(w, "  mu from the radii goes as N0^%s, Thomas-Fermi 2/5 (chi2/dof %.2g); mu from the radii over mu from N0: %s\n", format(m.Slope), m.PerDof(), format(m.Ratio))
+	if r := m.Release; r != nil {
+		fmt.Fprintf(w, "  release energy from %d flights: %.4g nK k for %.3g atoms, over (2/7) mu(N0): %s\n",
+			r.Flights, r.Energy.V/model.KB*1e9, r.Atoms, format(r.Ratio))
+	}
+}
+
+func (a *Analysis) writeAttractive(w io.Writer) {
+	t := a.Attractive
+	if t == nil {
+		return
+	}
+	fmt.Fprintf(w, "\nattractive gas: collapse at N0 = %.0f in this trap; 0.575 a_ho/|a| of an isotropic one is %.0f, the gaussian variation gives %.0f\n", t.Critical, t.Isotropic, t.Variational)
+	if t.Shot != "" {
+		fmt.Fprintf(w, "  nearest: %s with %.2f of it\n", report.Printable(t.Shot), t.Largest)
+	}
+}
