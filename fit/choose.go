@@ -29,7 +29,7 @@ const beaten = 300
 // drop gives up the kinds that the picture has refused; none stays, to measure against.
 func (c *candidates) drop(best float64) {
 	for _, to := range []**state{&c.thermal, &c.both, &c.alone} {
-		if *to != nil && (!(*to).used() || (*to).chi2 > best+beaten) {
+		if *to != nil && (*to).chi2 > best+beaten {
 			*to = nil
 		}
 	}
@@ -53,9 +53,9 @@ func (s *session) explore() (*candidates, error) {
 	if near := s.opt.Near; near != nil && near.found != nil && !near.Rough {
 		*c, top = *near.found, s.work
 	} else {
-		p := s.problem(top, &params{}, kind{})
-		p.level.freezeData()
-		if err := s.first(top, p.look(), c); err != nil {
+		var places []guess
+		places, top = s.lookCloser(top)
+		if err := s.first(top, places, c); err != nil {
 			return nil, err
 		}
 	}
@@ -69,6 +69,27 @@ func (s *session) explore() (*candidates, error) {
 	}
 	return c, nil
 }
+
+// lookCloser looks at level top, or at a finer one where a cloud covers only a few bins, down to
+// the level of choices.
+func (s *session) lookCloser(top int) ([]guess, int) {
+	for ; ; top-- {
+		p := s.problem(top, &params{}, kind{})
+		p.level.freezeData()
+		places := p.look()
+		small := false
+		for _, g := range places {
+			bin := float64(p.level.bin)
+			small = small || math.Min(g.moment[0], g.moment[2]) < fewBins*fewBins*bin*bin
+		}
+		if !small || top <= s.work {
+			return places, top
+		}
+	}
+}
+
+// fewBins is the rms size in bins below which a cloud is looked at more closely.
+const fewBins = 2.5
 
 // first tries every kind from the starts of every place.
 func (s *session) first(top int, places []guess, c *candidates) error {
