@@ -33,6 +33,9 @@ func (c *checkCmd) Run(ctx context.Context, t terminal) error {
 	out, err := check.Night(ctx, check.Options{
 		Dir: c.Folder, File: c.Settings, Settings: lab, Workers: c.Workers, Fits: max(c.Fits, 0), Every: c.Every,
 	}, newProgress(t))
+	if ctx.Err() != nil {
+		return errors.New("stopped before the end; nothing was written")
+	}
 	if err != nil {
 		return err
 	}

@@ -281,6 +281,25 @@ func TestSlips(t *testing.T) {
 	}
 }
 
+// TestSideTable: where metadata come from, and shots that the table does not name.
+func TestSideTable(t *testing.T) {
+	dir := simulated(t, "rubidium", 3)
+	for name, text := range map[string]string{"log.csv": "shot,tof,power\n1,25,0.5\n2,26,0.6\n", "other.csv": "shot,power\nrun7,0.5\n"} {
+		if err := os.WriteFile(filepath.Join(dir, name), []byte(text), 0o644); err != nil {
+			t.Fatal(err)
+		}
+	}
+	pattern := "[shots]\npattern = '_0*(?P<nr>\\d+)'\nscan = [\"nr\", \"power\"]\nside_table = "
+	_, text := look(t, dir, 0, "[shots]", pattern+`"log.csv"`)
+	says(t, text, "flight 3 values, 24 to 26 ms, from tof in log.csv and the header", "nr: 3 values, 1 to 3, from the file name",
+		"power: 2 values, 0.5 to 0.6, from log.csv", "power 2 values, .* in 2 of 3 shots", "log.csv has a row for 2 of 3 shots", "log.csv has no row for rubidium_0003", "rubidium_0002 1 3 256x256 26 2 0.6 ")
+	out, text := look(t, dir, 0, "[shots]", pattern+`"other.csv"`)
+	if out.Problems != 1 {
+		t.Errorf("%d problems", out.Problems)
+	}
+	says(t, text, "other.csv names no shot", "such as that of rubidium_0001")
+}
+
 func TestStrayLight(t *testing.T) {
 	dir := simulated(t, "rubidium", 7, "exposure_us", "stray_fraction = 0.2\nexposure_us")
 	_, text := look(t, dir, 1)

@@ -17,11 +17,12 @@ import (
 // structural are header keywords that tell of the file and not of the shot.
 var structural = regexp.MustCompile(`^(SIMPLE|BITPIX|NAXIS\d*|EXTEND|BSCALE|BZERO|PCOUNT|GCOUNT|XTENSION|EXTNAME|CHECKSUM|DATASUM|COMMENT|HISTORY|END|)$`)
 
-// entry is one key of the metadata over the readable shots.
+// entry is one key of the metadata over the readable shots, in whatever case.
 type entry struct {
-	key, from string
-	values    []string // each once, in the order of the shots
-	shots     int      // that have it
+	key    string   // as it is first found
+	from   []string // each source once
+	values []string // each once, in the order of the shots
+	shots  int      // that have it
 }
 
 // entriesOf returns what the metadata of the readable shots hold, by key.
@@ -35,14 +36,18 @@ func (v *visit) entriesOf() []entry {
 			if structural.MatchString(key) {
 				continue
 			}
-			e := all[key]
+			folded := strings.ToLower(key)
+			e := all[folded]
 			if e == nil {
-				e = &entry{key: key, from: v.source(s.Shot, key)}
-				all[key] = e
+				e = &entry{key: key}
+				all[folded] = e
 			}
 			e.shots++
-			if value := s.Meta[key]; !known[[2]string{key, value}] {
-				known[[2]string{key, value}] = true
+			if from := v.source(s.Shot, key); !slices.Contains(e.from, from) {
+				e.from = append(e.from, from)
+			}
+			if value := s.Meta[key]; !known[[2]string{folded, value}] {
+				known[[2]string{folded, value}] = true
 				e.values = append(e.values, value)
 			}
 		}
@@ -53,6 +58,8 @@ func (v *visit) entriesOf() []entry {
 	}
 	return out
 }
+
+func (e *entry) source() string { return strings.Join(e.from, " and ") }
 
 // source says where a key of a shot's metadata comes from.
 func (v *visit) source(s imageio.Shot, key string) string {
@@ -72,6 +79,27 @@ func (v *visit) source(s imageio.Shot, key string) string {
 		}
 	}
 	return "the file name"
+}
+
+// writeSideTable tells which shots the side table has a row for.
+func (v *visit) writeSideTable() {
+	table := v.Settings.Shots.SideTable
+	if table == "" || len(v.shots) == 0 {
+		return
+	}
+	var without []string
+	for _, s := range v.look.Shots {
+		if !slices.ContainsFunc(slices.Collect(maps.Keys(s.Shot.Meta)), func(key string) bool { return v.source(s.Shot, key) == table }) {
+			without = append(without, s.Name)
+		}
+	}
+	v.page.pair("side table", "%s has a row for %d of %d shots", table, len(v.shots)-len(without), len(v.shots))
+	switch {
+	case len(without) == len(v.shots):
+		v.trouble.problem("", "%s names no shot: its column side_key must hold a shot's path, a file name, or the last number in the shot's name, such as that of %s", table, without[0])
+	case len(without) > 0:
+		v.trouble.caution("", "%s has no row for %s", table, some(without))
+	}
 }
 
 // span tells of the values of an entry.
@@ -106,19 +134,12 @@ func digits(x float64, n int) string {
 	return text
 }
 
-// find returns the entry that a name means, as Metadata.Get does.
+// find returns the entry that a name means, in whatever case.
 func (v *visit) find(name string) (entry, bool) {
-	var near *entry
 	for _, e := range v.entries {
-		if e.key == name {
+		if strings.EqualFold(e.key, name) {
 			return e, true
 		}
-		if near == nil && strings.EqualFold(e.key, name) {
-			near = &e
-		}
-	}
-	if near != nil {
-		return *near, true
 	}
 	return entry{}, false
 }
@@ -132,7 +153,7 @@ func (v *visit) flightSource() string {
 		if !ok {
 			return fmt.Sprintf("%s is in no header, file name or side table", c.From)
 		}
-		text = fmt.Sprintf("%s %s, from %s in %s", e.span(), c.Unit, e.key, e.from)
+		text = fmt.Sprintf("%s %s, from %s in %s", e.span(), c.Unit, e.key, e.source())
 	}
 	if z := c.ZeroMs.Value; z != 0 {
 		text += fmt.Sprintf("; zero_ms = %g is added", z)
@@ -146,7 +167,7 @@ func (v *visit) scanSource(name string) string {
 		v.trouble.caution("", "scan: %s is in no header, file name or side table: its column stays empty", name)
 		return name + " is nowhere"
 	}
-	return fmt.Sprintf("%s: %s, from %s", e.key, e.span(), e.from)
+	return fmt.Sprintf("%s: %s, from %s", e.key, e.span(), e.source())
 }
 
 // numeric lists the keys that hold a number in every readable shot, those that are likely
@@ -188,7 +209,7 @@ func (v *visit) writeMetadata() {
 		if shown++; shown > most {
 			continue
 		}
-		text := e.span() + ", from " + e.from
+		text := e.span() + ", from " + e.source()
 		if e.shots < readable {
 			text += fmt.Sprintf(", in %d of %d shots", e.shots, readable)
 		}

@@ -32,6 +32,7 @@ func (v *visit) writeShots() {
 			v.page.pair("scan variable", "%s", v.scanSource(name))
 		}
 	}
+	v.writeSideTable()
 	v.writeStrays()
 	if len(v.shots) > 0 {
 		v.page.line("")
