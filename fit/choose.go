@@ -89,7 +89,7 @@ func (s *session) lookCloser(top int) ([]guess, int) {
 }
 
 // fewBins is the rms size in bins below which a cloud is looked at more closely.
-const fewBins = 2.5
+const fewBins = 1.2
 
 // first tries every kind from the starts of every place.
 func (s *session) first(top int, places []guess, c *candidates) error {

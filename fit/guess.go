@@ -50,12 +50,17 @@ func (p *problem) look() []guess {
 // secondSignal is the share of the first signal that a second place needs to be tried.
 const secondSignal = 0.3
 
-// erase sets the density to 0 within three widths of the cloud.
+// erased is how many widths of a cloud are taken away before another is looked for: the moments
+// of a window are smaller than those of the wings beyond it.
+const erased = 5
+
+// erase sets the density to 0 where the cloud is.
 func (g *guess) erase(od []float64, l *level) {
 	in := model.Shape{XX: g.moment[0], XY: g.moment[1], YY: g.moment[2]}.Inverse()
+	const far = erased * erased
 	for o := range od {
 		dx, dy := l.at(o%l.w)-g.x, l.at(o/l.w)-g.y
-		if !(dx*(in.XX*dx+2*in.XY*dy)+in.YY*dy*dy > 9) {
+		if !(dx*(in.XX*dx+2*in.XY*dy)+in.YY*dy*dy > far) {
 			od[o] = 0
 		}
 	}
