@@ -19,6 +19,7 @@ const (
 	FlagCut                = "cut"
 	FlagSmall              = "small_condensate"
 	FlagHot                = "poor_temperature"
+	FlagByNumber           = "temperature_from_number"
 	FlagWidths             = "axes_disagree"
 	FlagWings              = "wings_disagree"
 	FlagSum                = "sum_disagrees"
@@ -48,6 +49,7 @@ var Flags = []Flag{
 	{FlagCut, "the cloud reaches beyond the picture or over many bad pixels; numbers lean on the model there"},
 	{FlagSmall, "the condensate holds too few atoms for the Thomas-Fermi form (N0 a/ā below 10): mu from its radius is low in trust"},
 	{FlagHot, "the temperature is known to worse than a fifth; T_nK_low and T_nK_high give the interval"},
+	{FlagByNumber, "the widths of the faint thermal part cannot be those of its number; T follows from the number of a saturated thermal part and hangs on the cross-section"},
 	{FlagWidths, "the widths along the two axes do not follow from one T and one mu: check trap frequencies, angle and flight; heating or hydrodynamic expansion look alike"},
 	{FlagWings, "the wings alone give another temperature than the whole cloud"},
 	{FlagSum, "the fitted atom number and the plain sum of the density disagree"},
@@ -59,7 +61,7 @@ var Flags = []Flag{
 	{FlagSight, "the ratios agree with another frequency along the line of sight: check sight_hz"},
 	{FlagFlight, "the ratios agree with another flight: check the flight's source and unit, and zero_ms"},
 	{FlagPixel, "the ratios agree with another pixel in the object plane: check pixel_um, binning and magnification"},
-	{FlagNumber, "the ratios agree with another cross-section: check alpha, detuning_gamma and counts_per_isat"},
+	{FlagNumber, "the ratios agree with another cross-section: check alpha, detuning_gamma and counts_per_isat (a magnification that is off can look alike)"},
 	{FlagBlurred, "the blur is above a third of the smallest radius or width: the resolution decides the result"},
 	{FlagAttractive, "the gas is attractive: Thomas-Fermi does not exist; the condensate is a gaussian of the variational width and has no mu from a radius"},
 	{FlagCollapse, "N0 is above the number at which an attractive condensate collapses: check the scattering length and the cross-section"},

@@ -93,6 +93,15 @@ func exchange(i, j int) slip {
 	}}
 }
 
+// pixelSlip is a pixel wrong by a binning, which is forgotten more often than a magnification is
+// wrong by as much.
+func pixelSlip(cost float64, factors ...float64) slip {
+	return slip{FlagPixel, factors, cost, func(lab Lab, flight, f float64) (Lab, float64, float64) {
+		lab.Optics.Pixel *= f
+		return lab, flight, 1
+	}}
+}
+
 // slips is the table of what goes wrong in laboratories (common practice), the plainest first.
 var slips = []slip{
 	{FlagFrequencyUnit, []float64{1 / (2 * math.Pi), 2 * math.Pi}, 1, func(lab Lab, flight, f float64) (Lab, float64, float64) {
@@ -102,10 +111,7 @@ var slips = []slip{
 		return lab, flight, 1
 	}},
 	exchange(0, 1), exchange(0, 2), exchange(1, 2),
-	{FlagPixel, nil, 1.5, func(lab Lab, flight, f float64) (Lab, float64, float64) {
-		lab.Optics.Pixel *= f
-		return lab, flight, 1
-	}},
+	pixelSlip(1.5, 0.25, 0.5, 2, 4), pixelSlip(3),
 	{FlagNumber, nil, 1.5, func(lab Lab, flight, f float64) (Lab, float64, float64) { return lab, flight, f }},
 	{FlagFlight, nil, 1.5, func(lab Lab, flight, f float64) (Lab, float64, float64) { return lab, flight * f, 1 }},
 	axisSlip(FlagSight, 2), axisSlip(FlagAxis1, 0), axisSlip(FlagAxis2, 1),

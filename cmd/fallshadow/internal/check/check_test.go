@@ -61,7 +61,14 @@ func look(t *testing.T, dir string, fits int, edits ...string) (*Outcome, string
 	if err != nil {
 		t.Fatal(err)
 	}
-	lab, err := settings.Parse([]byte(edited(t, string(data), edits)), file)
+	return lookAs(t, dir, fits, edited(t, string(data), edits))
+}
+
+// lookAs checks a night under any settings.
+func lookAs(t *testing.T, dir string, fits int, text string) (*Outcome, string) {
+	t.Helper()
+	file := filepath.Join(dir, settings.FileName)
+	lab, err := settings.Parse([]byte(text), file)
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -69,16 +76,16 @@ func look(t *testing.T, dir string, fits int, edits ...string) (*Outcome, string
 	if err != nil {
 		t.Fatal(err)
 	}
-	var text bytes.Buffer
-	if _, err := out.WriteTo(&text); err != nil {
+	var said bytes.Buffer
+	if _, err := out.WriteTo(&said); err != nil {
 		t.Fatal(err)
 	}
-	for _, line := range strings.Split(text.String(), "\n") {
+	for _, line := range strings.Split(said.String(), "\n") {
 		if n := len([]rune(line)); n > 104 && !strings.Contains(line, dir) {
 			t.Errorf("a line of %d characters: %s", n, line)
 		}
 	}
-	return out, text.String()
+	return out, said.String()
 }
 
 // says looks for expressions in a text, blanks in them standing for any white space.
@@ -162,28 +169,35 @@ var wrongSettings = []struct {
 }
 
 func TestWrongSettings(t *testing.T) {
-	checkWrong(t, simulated(t, "rubidium", 9, "[shots]", "[fit]\nrebin = 2\n[shots]"), "2.4")
+	_, lab, err := simulate.Preset("rubidium")
+	if err != nil {
+		t.Fatal(err)
+	}
+	checkWrong(t, simulated(t, "rubidium", 9), string(lab)+"\n[fit]\nrebin = 2\n", "2.4")
 }
 
-// TestWrongSettingsEvap does the same on a night that other code drew; its settings are
-// those that came with it.
+// TestWrongSettingsEvap does the same on the night of testdata/reference/evap_truth.csv,
+// which other code drew with the same camera and trap as the preset.
 func TestWrongSettingsEvap(t *testing.T) {
 	dir := os.Getenv("FALLSHADOW_NIGHT_EVAP")
 	if dir == "" {
 		t.Skip("FALLSHADOW_NIGHT_EVAP is not set")
 	}
-	if _, err := os.Stat(filepath.Join(dir, settings.FileName)); err != nil {
-		t.Skip("that night has no settings")
+	_, lab, err := simulate.Preset("rubidium")
+	if err != nil {
+		t.Fatal(err)
 	}
-	if _, text := look(t, dir, 3); !strings.Contains(text, "No problems found") {
-		t.Errorf("under the right settings:\n%s", text)
+	text := edited(t, string(lab), []string{"exposure_us = 40.0\n", ""}) // nobody told the exposure
+	if _, said := lookAs(t, dir, 3, text); !strings.Contains(said, "No problems found") {
+		t.Errorf("under the right settings:\n%s", said)
 	}
-	checkWrong(t, dir, "2.8")
+	checkWrong(t, dir, text, "2.8")
 }
 
-func checkWrong(t *testing.T, dir, tenth string) {
+func checkWrong(t *testing.T, dir, lab, tenth string) {
+	t.Helper()
 	for _, c := range wrongSettings {
-		out, text := look(t, dir, 3, c.edits(tenth)...)
+		out, text := lookAs(t, dir, 3, edited(t, lab, c.edits(tenth)))
 		named := regexp.MustCompile(`suspect_\w+:`).FindAllString(section(text, "Problems"), -1)
 		if out.Problems == 0 || len(named) != 1 || named[0] != c.flag+":" {
 			t.Errorf("%s: %q is named, want %s, in\n%s", c.name, named, c.flag, text)
