@@ -17,7 +17,7 @@ import (
 func basins(t *testing.T) int {
 	text := os.Getenv("FALLSHADOW_BASIN")
 	if text == "" {
-		return 60
+		return 30
 	}
 	n, err := strconv.Atoi(text)
 	if err != nil || n < 1 {
