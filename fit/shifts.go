@@ -3,6 +3,8 @@ package fit
 import (
 	"math"
 
+	"gonum.org/v1/gonum/mat"
+
 	"fallshadow/model/numbers"
 )
 
@@ -67,14 +69,43 @@ func (s *session) answer(st *state, lab *Lab, flight float64) (numbers.Measured,
 	}
 	h, g := make([]float64, len(y)*len(y)), make([]float64, len(y))
 	sr.Normal(y, h, g)
-	for a := range y {
-		for b := range g {
-			y[a] -= st.cov[a*len(y)+b] * g[b]
-		}
+	if !st.step(y, h, g) {
+		nan := math.NaN()
+		return numbers.Measured{ThermalSum: nan, CondensateSum: nan, T: nan, Mu: nan, Alpha: nan}, nil
 	}
 	q = sr.expand(y)
 	q[pThermal], q[pCondensate] = math.Max(0, q[pThermal]), math.Max(0, q[pCondensate])
 	q[pAlpha] = math.Max(0, q[pAlpha])
 	m, _ := tmpl.measured(&q, st.kind)
 	return m, nil
+}
+
+// step takes −H⁻¹g from y over the parameters that no bound held; false where H is singular.
+// H is that of the level that g is of: the full picture's would not lead to its minimum.
+func (s *state) step(y, h, g []float64) bool {
+	n := len(y)
+	var free []int
+	for a := range n {
+		if s.cov[a*n+a] > 0 {
+			free = append(free, a)
+		}
+	}
+	if len(free) == 0 {
+		return true
+	}
+	normal, down := mat.NewSymDense(len(free), nil), mat.NewVecDense(len(free), nil)
+	for i, a := range free {
+		for k, b := range free[:i+1] {
+			normal.SetSym(i, k, h[a*n+b])
+		}
+		down.SetVec(i, g[a])
+	}
+	var c mat.Cholesky
+	if !c.Factorize(normal) || c.SolveVecTo(down, down) != nil {
+		return false
+	}
+	for i, a := range free {
+		y[a] -= down.AtVec(i)
+	}
+	return true
 }
