@@ -128,7 +128,7 @@ func (p *problem) mean() Estimate {
 			}
 		}
 		var h [2]float64
-		p.relation.eval(&pt.Vector, p.gas, nil, h[:p.relation.size])
+		p.relation.eval(pt, &pt.Vector, p.gas, nil, h[:p.relation.size])
 		e.V += h[0] / count
 		p.near[i] = near{latent: pt.Vector, lower: [3]float64{1, 0, 0}}
 	}
@@ -225,9 +225,9 @@ func (p *problem) slope(i int, theta []float64, a int) [2]float64 {
 	moved := slices.Clone(theta)
 	step := 1e-4 * math.Max(math.Abs(theta[a]), 0.01)
 	moved[a] = theta[a] + step
-	p.relation.eval(&at.latent, p.gas, moved, up[:k])
+	p.relation.eval(p.points[i], &at.latent, p.gas, moved, up[:k])
 	moved[a] = theta[a] - step
-	p.relation.eval(&at.latent, p.gas, moved, down[:k])
+	p.relation.eval(p.points[i], &at.latent, p.gas, moved, down[:k])
 	return at.whiten([2]float64{(up[0] - down[0]) / (2 * step), (up[1] - down[1]) / (2 * step)})
 }
 
@@ -271,11 +271,11 @@ func (p *problem) calibrate(theta, cov []float64, out []Estimate, ignore []strin
 func (p *problem) moved(i, c int, gas *scales, theta []float64) [2]float64 {
 	var rest, h [2]float64
 	k, at := p.relation.size, &p.near[i]
-	p.relation.eval(&at.latent, p.gas, theta, rest[:k])
+	p.relation.eval(p.points[i], &at.latent, p.gas, theta, rest[:k])
 	v := at.latent
 	for a, d := range p.points[i].Shifts[c] {
 		v[a] += d
 	}
-	p.relation.eval(&v, gas, theta, h[:k])
+	p.relation.eval(p.points[i], &v, gas, theta, h[:k])
 	return at.whiten([2]float64{h[0] - rest[0], h[1] - rest[1]})
 }

@@ -6,7 +6,8 @@ import "math"
 // there. θ are its parameters.
 type relation struct {
 	size int // values, 1 or 2
-	eval func(v *Vector, g *scales, theta, h []float64)
+	// eval is asked for numbers v that the point p may truly have.
+	eval func(p *Point, v *Vector, g *scales, theta, h []float64)
 }
 
 // near is the point on a relation that is nearest to a measured one in the metric of its
@@ -69,7 +70,7 @@ const settled = 1e-6
 // fiftieth of an error.
 func (r *relation) linear(p *Point, g *scales, theta []float64, at *Vector) (v [2]float64, j [2]Vector) {
 	var h, up, down [2]float64
-	r.eval(at, g, theta, h[:r.size])
+	r.eval(p, at, g, theta, h[:r.size])
 	v = h
 	for a := range numMeasured {
 		step := math.Sqrt(p.Cov[a][a]) / 50
@@ -79,9 +80,9 @@ func (r *relation) linear(p *Point, g *scales, theta []float64, at *Vector) (v [
 		step = math.Min(step, at[a]/20)
 		moved := *at
 		moved[a] = at[a] + step
-		r.eval(&moved, g, theta, up[:r.size])
+		r.eval(p, &moved, g, theta, up[:r.size])
 		moved[a] = at[a] - step
-		r.eval(&moved, g, theta, down[:r.size])
+		r.eval(p, &moved, g, theta, down[:r.size])
 		for k := range r.size {
 			j[k][a] = (up[k] - down[k]) / (2 * step)
 			v[k] += j[k][a] * (p.Vector[a] - at[a])

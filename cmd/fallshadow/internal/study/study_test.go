@@ -5,6 +5,7 @@ import (
 	"context"
 	"encoding/csv"
 	"encoding/json"
+	"errors"
 	"fmt"
 	"io"
 	"math"
@@ -444,6 +445,41 @@ func TestLoad(t *testing.T) {
 	}
 	if _, err := Load(ctx, root, t.TempDir(), n.Settings); err == nil {
 		t.Error("a folder without a ledger is loaded")
+	}
+}
+
+// TestWriteNumber: atom numbers a tenth low in all shots are laid to alpha, with the value
+// to paste; the right ones to nothing.
+func TestWriteNumber(t *testing.T) {
+	for _, c := range []struct {
+		factor float64
+		want   []string
+	}{
+		{1, []string{"no common factor is needed"}},
+		{0.9, []string{"alpha fits better", "[probe]\nalpha = { value = 2.2"}},
+	} {
+		n := made(t, 120)
+		for i := range n.Rows {
+			r := &n.Rows[i]
+			for _, name := range []string{"thermal", "condensate", "thermal_err", "condensate_err"} {
+				if v, ok := r.Numbers[name]; ok {
+					r.Numbers[name] = v * c.factor
+				}
+			}
+		}
+		var b bytes.Buffer
+		if err := n.WriteNumber(context.Background(), &b, chosen(t, n, Selection{})); err != nil {
+			t.Fatal(err)
+		}
+		for _, want := range c.want {
+			if !strings.Contains(b.String(), want) {
+				t.Errorf("factor %g: no %q in\n%s", c.factor, want, &b)
+			}
+		}
+	}
+	n := made(t, 2)
+	if err := n.WriteNumber(context.Background(), io.Discard, chosen(t, n, Selection{})); !errors.Is(err, curve.ErrNoFactor) {
+		t.Errorf("two shots give %v", err)
 	}
 }
 
