@@ -18,7 +18,7 @@ func Frame(raw *imageio.Raw) *image.Paletted {
 				high = math.Max(high, v)
 			}
 		}
-		return raster(d.Pix, d.Width, 0, high, DensityColors)
+		return raster(d.Pix, d.Width, linear(0, high), DensityColors)
 	}
 	a, l, d := raw.Frames[imageio.Atoms], raw.Frames[imageio.Light], raw.Frames[imageio.Dark]
 	if a == nil || l == nil {
@@ -35,7 +35,7 @@ func Frame(raw *imageio.Raw) *image.Paletted {
 			dark := blockMean(d.Pix, a.Width, x*b, y*b, b)
 			light := blockMean(l.Pix, a.Width, x*b, y*b, b) - dark
 			atoms := blockMean(a.Pix, a.Width, x*b, y*b, b) - dark
-			img.Pix[y*img.Stride+x] = level(1-atoms/light, 0, 1)
+			img.Pix[y*img.Stride+x] = level(1 - atoms/light)
 		}
 	}
 	return img

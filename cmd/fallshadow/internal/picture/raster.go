@@ -9,16 +9,17 @@ import (
 // widest is the side above which a picture is averaged down; no screen shows more of it.
 const widest = 640
 
-// raster draws values from low to high in a scale, blocks of pixels averaged where the
-// picture is wider than a screen shows. Not-a-number takes the last colour.
-func raster(pix []float32, width int, low, high float64, colors color.Palette) *image.Paletted {
+// raster draws values in a scale, of which place gives the fraction from its low to its
+// high end, blocks of pixels averaged where the picture is wider than a screen shows.
+// Not-a-number takes the last colour.
+func raster(pix []float32, width int, place func(float64) float64, colors color.Palette) *image.Paletted {
 	height := len(pix) / width
 	b := (max(width, height) + widest - 1) / widest
 	img := image.NewPaletted(image.Rect(0, 0, (width+b-1)/b, (height+b-1)/b), colors)
 	for y := range img.Rect.Dy() {
 		row := img.Pix[y*img.Stride:]
 		for x := range img.Rect.Dx() {
-			row[x] = level(blockMean(pix, width, x*b, y*b, b), low, high)
+			row[x] = level(place(blockMean(pix, width, x*b, y*b, b)))
 		}
 	}
 	return img
@@ -41,11 +42,15 @@ func blockMean(pix []float32, width, x0, y0, b int) float64 {
 	return sum / float64(n)
 }
 
-// level is the place of a value in a scale.
-func level(v, low, high float64) uint8 {
-	if math.IsNaN(v) {
+// linear places values evenly from low to high.
+func linear(low, high float64) func(float64) float64 {
+	return func(v float64) float64 { return (v - low) / (high - low) }
+}
+
+// level is the colour at a fraction of a scale.
+func level(f float64) uint8 {
+	if math.IsNaN(f) {
 		return levels
 	}
-	f := (v - low) / (high - low)
 	return uint8(math.Round(math.Min(math.Max(f, 0), 1) * (levels - 1)))
 }

@@ -21,6 +21,7 @@ type View struct {
 	Outlines      []Outline
 	Cuts          []Cut // along axis 1 and axis 2
 	Density       *image.Paletted
+	Faint         *image.Paletted // density by its root, so that thin wings show beside a dense core
 	Residual      *image.Paletted
 }
 
@@ -43,8 +44,9 @@ func New(f *report.Facts) *View {
 	for axis := range 2 {
 		v.Cuts = append(v.Cuts, newCut(m, x, y, angle+float64(axis)*math.Pi/2, v.PixelUm))
 	}
-	v.Density = raster(m.Density, m.Width, 0, v.Top, DensityColors)
-	v.Residual = raster(m.Residual, m.Width, -sigmas, sigmas, ResidualColors)
+	v.Density = raster(m.Density, m.Width, linear(0, v.Top), DensityColors)
+	v.Faint = raster(m.Density, m.Width, func(d float64) float64 { return math.Sqrt(math.Max(d, 0) / v.Top) }, DensityColors)
+	v.Residual = raster(m.Residual, m.Width, linear(-sigmas, sigmas), ResidualColors)
 	return v
 }
 
