@@ -1,0 +1,20 @@
+// Requests to the program that serves the page.
+
+async function checked(response) {
+  if (!response.ok) throw new Error((await response.text()).trim() || response.statusText);
+  return response.status === 204 ? null : response.json();
+}
+
+export async function get(path, parameters = {}) {
+  return checked(await fetch(path + "?" + new URLSearchParams(parameters)));
+}
+
+export async function post(path, body) {
+  return checked(await fetch(path, {
+    method: "POST", headers: { "Content-Type": "application/json" }, body: JSON.stringify(body),
+  }));
+}
+
+export function pictureOf(kind, shot, version) {
+  return "/picture/" + kind + "?" + new URLSearchParams({ shot, v: version });
+}

@@ -1,0 +1,223 @@
+// The page: what is shown, and what keys and buttons do.
+import { $, el } from "./dom.js";
+import { get, post } from "./api.js";
+import { Shots } from "./shots.js";
+import { showNumbers } from "./numbers.js";
+import { Pictures, parts } from "./picture.js";
+import { Cuts } from "./cuts.js";
+import { Trend } from "./trend.js";
+import { RegionTool } from "./region.js";
+import { Live } from "./live.js";
+
+const shots = new Shots((shot) => choose(shot));
+const pictures = new Pictures();
+const cuts = new Cuts();
+const trend = new Trend(shots, (shot) => choose(shot));
+const region = new RegionTool(pictures, (text) => say(text));
+
+let columns = [], sentences = {};
+let following = true, connected = false;
+let newest = -1;        // the latest arrival that was shown
+let version = 0;        // of pictures, counts up as they change
+let latestAt = null;    // when the last shot came
+let wanted = null;      // the shot that is being shown
+let detail = null;      // its row
+
+// load reads everything but the numbers of single shots.
+async function load() {
+  const night = await get("/api/night");
+  columns = night.columns;
+  sentences = night.flags;
+  document.title = night.night + " · fallshadow";
+  $("night").textContent = night.night;
+  $("settings-text").textContent = night.settings;
+  showNotes(night.notes);
+  showRegion(night.region, night.drawn);
+  pictures.scales(night.scales);
+  shots.reset(night.rows || []);
+  trend.offer([...columns, ...(night.scan || []).map((name) => ({ name, meaning: "scan variable" }))], night.scan || []);
+  const stays = wanted !== null && shots.has(wanted) && !following;
+  const shot = stays ? wanted : shots.last();
+  if (shot === undefined) {
+    wanted = null;
+    $("shot").textContent = "no shots yet";
+    pictures.clear();
+  } else {
+    show(shot);
+  }
+  await trend.load();
+  return night.event;
+}
+
+// show shows a shot: its numbers, and its picture as soon as there is one.
+async function show(shot, row) {
+  wanted = shot;
+  shots.select(shot);
+  pictures.wait();
+  trend.plot?.redraw(false);
+  try {
+    showRow(row ?? await get("/api/row", { shot }), shot);
+    if (row === undefined) await showView(shot);
+    else if (row.failed) showNothing();
+  } catch (error) {
+    if (wanted !== shot) return;
+    if (detail?.shot === shot && detail.failed) showNothing();
+    else say(error.message);
+  }
+}
+
+// showNothing stands for a picture that there is none of.
+function showNothing() {
+  pictures.clear();
+  cuts.show(null);
+}
+
+function showRow(row, shot) {
+  if (wanted !== shot) return;
+  detail = row;
+  showNumbers(row, columns, sentences);
+  document.body.dataset.shown = shot;
+  showStatus();
+}
+
+async function showView(shot) {
+  const view = await get("/api/view", { shot });
+  if (wanted !== shot) return;
+  pictures.show(shot, view, version);
+  showCuts();
+  document.body.dataset.seen = shot;
+}
+
+// choose shows a shot that a person asked for; that ends following, unless it is the last.
+function choose(shot) {
+  if (shot === undefined) return;
+  following = shot === shots.last();
+  show(shot);
+}
+
+function follow() {
+  following = true;
+  if (shots.last() !== undefined) show(shots.last());
+}
+
+const live = new Live({
+  row({ arrival, row }) {
+    shots.put(row);
+    trend.put(row);
+    latestAt = Date.now();
+    if (following && arrival >= newest || wanted === row.shot) show(row.shot, row);
+    newest = Math.max(newest, arrival);
+    showStatus();
+  },
+  picture(shot) {
+    version++;
+    if (wanted === shot) showView(shot).catch((error) => say(error.message));
+  },
+  changed: () => load().catch(() => {}),
+  begin: () => load().catch(() => {}),
+  notes: showNotes,
+}, (is) => { connected = is; showStatus(); });
+
+function showStatus() {
+  const age = latestAt === null ? "" : "last shot " + ago(Date.now() - latestAt);
+  const status = $("status");
+  status.className = !connected ? "lost" : following ? "" : "held";
+  status.textContent = !connected ? "connection lost, trying again" : following ? age || "live" : "looking back" + (age && " · " + age);
+  $("follow").hidden = following;
+  $("mark").firstChild.textContent = detail?.bad ? "bad: change " : "bad ";
+}
+
+function ago(ms) {
+  const s = Math.round(ms / 1000);
+  return s < 100 ? s + " s ago" : s < 6000 ? Math.round(s / 60) + " min ago" : Math.round(s / 3600) + " h ago";
+}
+
+function showNotes(notes) {
+  $("notes").hidden = !notes?.length;
+  $("notes").textContent = (notes || []).join("\n");
+}
+
+function showRegion(now, next) {
+  pictures.region = { now, next };
+  $("region-now").textContent = next ? "a region waits for the next shot" : now ? "region drawn by hand" : "";
+  pictures.draw();
+}
+
+function say(text) {
+  showNotes([text]);
+}
+
+function askBad() {
+  if (!detail) return;
+  $("bad-shot").textContent = detail.shot;
+  $("bad-word").value = detail.bad || "";
+  $("bad-back").hidden = !detail.bad;
+  $("bad-words").replaceChildren(...[...new Set(shots.rows.map((r) => r.bad).filter(Boolean))].map((value) => el("option", { value })));
+  $("bad-dialog").returnValue = "";
+  $("bad-dialog").showModal();
+}
+
+$("bad-dialog").addEventListener("close", async () => {
+  const answer = $("bad-dialog").returnValue;
+  if (answer !== "take" && answer !== "back") return;
+  const word = answer === "back" ? "" : $("bad-word").value.trim() || "bad";
+  try {
+    await post("/api/verdict", { shot: detail.shot, word });
+  } catch (error) {
+    say(error.message);
+  }
+});
+
+function toggleTheme() {
+  const theme = document.documentElement.dataset.theme === "dark" ? "light" : "dark";
+  document.documentElement.dataset.theme = theme;
+  localStorage.setItem("theme", theme);
+  cuts.recolour();
+  trend.build();
+}
+
+function showCuts() {
+  if (!pictures.view?.width) return;
+  const [, , width, height] = pictures.box();
+  cuts.show(pictures.view, Math.hypot(width, height) / 2 * pictures.view.pixel_um);
+}
+
+function choosePart(part) {
+  if (region.on) region.end();
+  pictures.choose(part);
+  showCuts();
+}
+
+const actions = {
+  ArrowLeft: () => choose(shots.beside(-1)),
+  ArrowDown: () => choose(shots.beside(-1)),
+  ArrowRight: () => choose(shots.beside(1)),
+  ArrowUp: () => choose(shots.beside(1)),
+  End: follow,
+  b: askBad,
+  c: () => pictures.toggleScale(),
+  f: () => choosePart(parts[(parts.indexOf(pictures.part) + 1) % parts.length]),
+  r: () => (region.on ? region.end() : region.begin()),
+  s: () => $("settings-dialog").showModal(),
+  t: toggleTheme,
+  "?": () => $("help-dialog").showModal(),
+  Enter: () => region.on && region.take(),
+  Escape: () => region.on && region.end(),
+};
+
+addEventListener("keydown", (e) => {
+  const busy = e.target.closest("input, select, textarea, dialog") || e.ctrlKey || e.metaKey || e.altKey;
+  const action = actions[e.key] ?? actions[e.key.toLowerCase()];
+  if (busy || !action || e.key === "Enter" && !region.on) return;
+  e.preventDefault();
+  action();
+});
+
+for (const [id, action] of Object.entries({
+  scale: actions.c, older: actions.ArrowLeft, newer: actions.ArrowRight, follow, mark: askBad, draw: actions.r,
+  settings: actions.s, theme: toggleTheme, help: actions["?"],
+})) $(id).addEventListener("click", action);
+for (const part of parts) $("tab-" + part).addEventListener("click", () => choosePart(part));
+
+setInterval(showStatus, 1000);
+load().then((event) => live.open(event)).catch(() => live.open(""));

@@ -1,0 +1,81 @@
+// Drawing the region of interest on the whole frame.
+import { $ } from "./dom.js";
+import { post } from "./api.js";
+
+export class RegionTool {
+  constructor(pictures, say) {
+    this.pictures = pictures;
+    this.say = say;
+    this.on = false;
+    const stage = $("density");
+    stage.addEventListener("pointerdown", (e) => this.down(e));
+    stage.addEventListener("pointermove", (e) => this.move(e));
+    stage.addEventListener("pointerup", (e) => { this.move(e); this.from = null; });
+    stage.addEventListener("pointercancel", () => { this.from = null; });
+    $("drawing-take").addEventListener("click", () => this.take());
+    $("drawing-whole").addEventListener("click", () => {
+      const [w, h] = this.pictures.view.frame;
+      this.set([0, 0, w, h]);
+    });
+    $("drawing-cancel").addEventListener("click", () => this.end());
+  }
+
+  begin() {
+    if (!this.pictures.view?.frame[0]) return;
+    this.on = true;
+    this.before = this.pictures.part;
+    this.pictures.part = "frame";
+    $("drawing").hidden = false;
+    $("density").classList.add("draws");
+    this.set(null);
+  }
+
+  end() {
+    this.on = false;
+    this.from = null;
+    this.pictures.drag = null;
+    $("drawing").hidden = true;
+    $("density").classList.remove("draws");
+    this.pictures.choose(this.before);
+  }
+
+  set(region) {
+    this.pictures.drag = region;
+    const usable = region && region[2] - region[0] >= 16 && region[3] - region[1] >= 16;
+    $("drawing-take").disabled = !usable;
+    $("drawing-text").textContent = region
+      ? `x ${region[0]} to ${region[2]}, y ${region[1]} to ${region[3]}`
+      : "draw a rectangle on the frame";
+    this.pictures.draw();
+  }
+
+  // point returns the saved pixel under the pointer.
+  point(e) {
+    const stage = $("density"), [w, h] = this.pictures.view.frame;
+    const p = new DOMPoint(e.clientX, e.clientY).matrixTransform(stage.getScreenCTM().inverse());
+    return [Math.min(Math.max(Math.round(p.x), 0), w), Math.min(Math.max(Math.round(p.y), 0), h)];
+  }
+
+  down(e) {
+    if (!this.on) return;
+    e.preventDefault();
+    $("density").setPointerCapture(e.pointerId);
+    this.from = this.point(e);
+  }
+
+  move(e) {
+    if (!this.on || !this.from) return;
+    const [x, y] = this.point(e), [a, b] = this.from;
+    this.set([Math.min(a, x), Math.min(b, y), Math.max(a, x), Math.max(b, y)]);
+  }
+
+  async take() {
+    if (!this.on || $("drawing-take").disabled) return;
+    try {
+      await post("/api/region", { region: this.pictures.drag });
+      this.end();
+    } catch (error) {
+      this.say(error.message);
+    }
+  }
+}

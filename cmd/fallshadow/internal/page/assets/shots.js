@@ -1,0 +1,87 @@
+// The list of shots: kept in natural order, drawn newest first, and only the part that is
+// in sight, so that a long night stays light.
+import { $, el } from "./dom.js";
+import { natural } from "./natural.js";
+
+const height = 30;
+
+export class Shots {
+  constructor(choose) {
+    this.rows = [];
+    this.current = null;
+    this.choose = choose;
+    $("list").addEventListener("scroll", () => this.draw());
+    new ResizeObserver(() => this.draw()).observe($("list"));
+  }
+
+  reset(rows) {
+    this.rows = rows;
+    this.draw();
+  }
+
+  // place returns where a shot is or belongs.
+  place(shot) {
+    let low = 0, high = this.rows.length;
+    while (low < high) {
+      const mid = (low + high) >> 1;
+      if (natural(this.rows[mid].shot, shot) < 0) low = mid + 1;
+      else high = mid;
+    }
+    return low;
+  }
+
+  has(shot) {
+    const row = this.rows[this.place(shot)];
+    return row !== undefined && row.shot === shot;
+  }
+
+  put(row) {
+    const i = this.place(row.shot);
+    this.rows.splice(i, this.has(row.shot) ? 1 : 0, row);
+    this.draw();
+  }
+
+  select(shot) {
+    this.current = shot;
+    const list = $("list"), top = (this.rows.length - 1 - this.place(shot)) * height;
+    if (top < list.scrollTop) list.scrollTop = top;
+    if (top + height > list.scrollTop + list.clientHeight) list.scrollTop = top + height - list.clientHeight;
+    this.draw();
+  }
+
+  // beside returns the shot so many steps newer than the current one, if there is one.
+  beside(step) {
+    const i = this.place(this.current ?? "") + step;
+    return this.rows[i]?.shot;
+  }
+
+  last() {
+    return this.rows[this.rows.length - 1]?.shot;
+  }
+
+  draw() {
+    $("count").textContent = this.rows.length;
+    const list = $("list"), all = $("list-all"), n = this.rows.length;
+    all.style.height = n * height + "px";
+    const from = Math.max(0, Math.floor(list.scrollTop / height) - 4);
+    const to = Math.min(n, from + Math.ceil(list.clientHeight / height) + 8);
+    const items = [];
+    for (let k = from; k < to; k++) items.push(this.item(this.rows[n - 1 - k], k * height));
+    all.replaceChildren(...items);
+  }
+
+  item(row, top) {
+    const flags = (row.flags || []).filter((f) => f !== "provisional");
+    const node = el("button", {
+      class: "item" + (row.bad ? " bad" : "") + (row.failed ? " failed" : ""),
+      title: [row.shot, row.bad, ...flags].filter(Boolean).join("\n"),
+      "aria-current": row.shot === this.current,
+    },
+    el("span", { class: "dot" }, row.bad || row.failed ? "✕" : flags.length ? "▲" : ""),
+    el("span", { class: "name" }, row.shot),
+    el("span", { class: "what" }, row.failed ? "failed" : row.model === "none" ? "none" : row.atoms || ""));
+    node.style.top = top + "px";
+    node.addEventListener("click", () => this.choose(row.shot));
+    return node;
+  }
+}

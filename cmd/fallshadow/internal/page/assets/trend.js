@@ -1,0 +1,177 @@
+// The trend of one column over the shots or against a scan variable.
+import { $, css, el } from "./dom.js";
+import { get } from "./api.js";
+
+/* global uPlot */
+
+const first = ["atoms", "fraction", "T_nK", "mu_nK", "condensate", "t_reduced", "chi2_cloud"];
+const order = "shot";
+
+export class Trend {
+  constructor(shots, choose) {
+    this.shots = shots;
+    this.choose = choose;
+    this.values = { x: new Map(), y: new Map(), e: new Map() };
+    this.points = [];
+    $("trend-y").addEventListener("change", () => this.load());
+    $("trend-x").addEventListener("change", () => this.load());
+    $("trend-all").addEventListener("click", () => this.zoomOut());
+    new ResizeObserver(() => this.fit()).observe($("trend-plot"));
+  }
+
+  get y() { return $("trend-y").value; }
+  get x() { return $("trend-x").value; }
+
+  offer(columns, scan) {
+    this.columns = new Map(columns.map((c) => [c.name, c]));
+    const rest = columns.map((c) => c.name).filter((n) => !first.includes(n));
+    fill($("trend-y"), [...first.filter((n) => this.columns.has(n)), ...rest], this.columns);
+    fill($("trend-x"), [order, ...scan], new Map());
+  }
+
+  // load reads both columns for all shots.
+  async load() {
+    const [x, y] = [this.x, this.y];
+    if (!y) return;
+    const [ys, xs] = await Promise.all([get("/api/column", { name: y }), x === order ? null : get("/api/column", { name: x })]);
+    if (x !== this.x || y !== this.y) return;
+    const map = (names, values) => new Map(names.map((n, i) => [n, values[i]]));
+    this.values = {
+      y: map(ys.shots, ys.values), e: map(ys.shots, ys.errors),
+      x: xs ? map(xs.shots, xs.values) : new Map(),
+    };
+    this.build();
+  }
+
+  // put takes in the numbers of one shot.
+  put(row) {
+    this.values.y.set(row.shot, row.numbers[this.y] ?? null);
+    this.values.e.set(row.shot, row.numbers[this.y + "_err"] ?? null);
+    if (this.x !== order) this.values.x.set(row.shot, row.numbers[this.x] ?? null);
+    this.refresh();
+  }
+
+  data() {
+    this.points = [];
+    this.shots.rows.forEach((row, i) => {
+      const y = this.values.y.get(row.shot) ?? null;
+      const x = this.x === order ? i + 1 : this.values.x.get(row.shot) ?? null;
+      if (x !== null && y !== null) this.points.push({ x, y, e: this.values.e.get(row.shot) ?? null, row });
+    });
+    this.points.sort((a, b) => a.x - b.x);
+    const pick = (f) => this.points.map((p) => (f(p) ? p.y : null));
+    return [this.points.map((p) => p.x), pick((p) => !p.row.bad), pick((p) => p.row.bad)];
+  }
+
+  refresh() {
+    if (!this.plot) return this.build();
+    const zoomed = !$("trend-all").hidden;
+    this.plot.setData(this.data(), !zoomed);
+    if (zoomed) this.plot.redraw(false);
+  }
+
+  fit() {
+    const { clientWidth: width, clientHeight: height } = $("trend-plot");
+    if (this.plot && width && height) this.plot.setSize({ width, height });
+    else this.build();
+  }
+
+  build() {
+    const box = $("trend-plot"), { clientWidth: width, clientHeight: height } = box;
+    if (!width || !height || !this.columns) return;
+    this.plot?.destroy();
+    $("trend-all").hidden = true;
+    const axis = { stroke: css("--muted"), grid: { stroke: css("--line"), width: 1 }, ticks: { show: false }, font: "12px system-ui" };
+    const dots = (fill) => ({ paths: () => null, points: { show: true, size: 7, width: 1.5, stroke: css(fill ? "--data" : "--muted"), fill: fill ? css("--data") : "transparent" } });
+    this.plot = new uPlot({
+      width, height, padding: [8, 14, 0, 0],
+      scales: { x: { time: false, range: (u, a, b) => roomy(a, b, .02) }, y: { range: (u, a, b) => this.span(a, b) } },
+      legend: { show: false },
+      cursor: { y: false, points: { show: false }, drag: { x: true, y: false }, bind: { click: () => () => this.click() } },
+      axes: [{ ...axis, size: 24, ...(this.x === order ? { incrs: [1, 2, 5, 10, 20, 50, 100, 200, 500, 1000] } : {}) }, { ...axis, size: 62 }],
+      series: [{}, dots(true), dots(false)],
+      hooks: {
+        draw: [(u) => this.drawErrors(u)],
+        setCursor: [(u) => this.read(u.cursor.idx)],
+        setScale: [(u, key) => { if (key === "x") this.noteZoom(u); }],
+      },
+    }, this.data(), box);
+  }
+
+  // span leaves room for the errors of usual size: a shot with a huge one would hide the rest.
+  span(low, high) {
+    if (low === null) return [0, 1];
+    const errors = this.points.map((p) => p.e).filter((e) => e > 0).sort((a, b) => a - b);
+    const usual = 3 * (errors[errors.length >> 1] ?? 0);
+    for (const p of this.points) {
+      const e = Math.min(p.e ?? 0, usual);
+      low = Math.min(low, p.y - e);
+      high = Math.max(high, p.y + e);
+    }
+    return roomy(low, high, .06);
+  }
+
+  drawErrors(u) {
+    const c = u.ctx;
+    c.save();
+    c.beginPath();
+    c.rect(u.bbox.left, u.bbox.top, u.bbox.width, u.bbox.height);
+    c.clip();
+    c.strokeStyle = css("--data");
+    c.lineWidth = devicePixelRatio * 1.2;
+    c.beginPath();
+    for (const p of this.points) {
+      if (!(p.e > 0) || p.row.bad) continue;
+      const x = u.valToPos(p.x, "x", true);
+      c.moveTo(x, u.valToPos(p.y - p.e, "y", true));
+      c.lineTo(x, u.valToPos(p.y + p.e, "y", true));
+    }
+    c.stroke();
+    const now = this.points.find((p) => p.row.shot === this.shots.current);
+    if (now) {
+      c.strokeStyle = css("--ink");
+      c.lineWidth = devicePixelRatio * 2;
+      c.beginPath();
+      c.arc(u.valToPos(now.x, "x", true), u.valToPos(now.y, "y", true), 8 * devicePixelRatio, 0, 7);
+      c.stroke();
+    }
+    c.restore();
+  }
+
+  noteZoom(u) {
+    const xs = u.data[0], { min, max } = u.scales.x;
+    $("trend-all").hidden = !xs.length || (min <= xs[0] && max >= xs[xs.length - 1]);
+  }
+
+  zoomOut() {
+    this.plot?.setData(this.plot.data, true);
+  }
+
+  // read says what is under the cursor.
+  read(i) {
+    const p = this.points[i];
+    this.under = p;
+    const unit = this.columns.get(this.y)?.unit ?? "";
+    $("trend-read").textContent = p
+      ? `${p.row.shot}: ${Number(p.y.toPrecision(5))}${p.e > 0 ? " ± " + Number(p.e.toPrecision(2)) : ""} ${unit}`
+        + (this.x === order ? "" : ` at ${this.x} ${p.x}`) + (p.row.bad ? `, bad: ${p.row.bad}` : "")
+      : "";
+  }
+
+  click() {
+    const selected = this.plot.select.width > 3;
+    if (this.under && !selected) this.choose(this.under.row.shot);
+  }
+}
+
+function fill(select, names, columns) {
+  const before = select.value;
+  select.replaceChildren(...names.map((n) => el("option", { value: n, title: columns.get(n)?.meaning }, n)));
+  if (names.includes(before)) select.value = before;
+}
+
+function roomy(low, high, part) {
+  if (low === null || low === undefined) return [0, 1];
+  const d = (high - low) * part || Math.abs(high) * part || 1;
+  return [low - d, high + d];
+}

@@ -1,0 +1,385 @@
+//go:build browser
+
+package page_test
+
+import (
+	"context"
+	"fmt"
+	"os"
+	"path/filepath"
+	"slices"
+	"strings"
+	"sync"
+	"testing"
+	"time"
+
+	"github.com/chromedp/cdproto/input"
+	"github.com/chromedp/chromedp"
+	"github.com/chromedp/chromedp/kb"
+
+	"fallshadow/cmd/fallshadow/internal/page"
+	"fallshadow/cmd/fallshadow/internal/watch"
+)
+
+// The page in a real browser. FALLSHADOW_SCREENS names a folder for screenshots.
+
+const demoNight = "../../../../testdata/night"
+
+// browser starts a Chromium of its own; a tab is made of what it returns.
+func browser(t *testing.T) context.Context {
+	t.Helper()
+	options := append(slices.Clone(chromedp.DefaultExecAllocatorOptions[:]),
+		chromedp.NoSandbox, chromedp.DisableGPU, chromedp.NoFirstRun, chromedp.UserDataDir(t.TempDir()),
+		chromedp.Flag("disable-quic", true), chromedp.Flag("disable-background-networking", true),
+		chromedp.Flag("disable-component-update", true), chromedp.Flag("disable-sync", true),
+		chromedp.Flag("enable-precise-memory-info", true), chromedp.Flag("js-flags", "--expose-gc"))
+	all, cancel := chromedp.NewExecAllocator(context.Background(), options...)
+	t.Cleanup(cancel)
+	tab, cancel := chromedp.NewContext(all)
+	t.Cleanup(cancel)
+	tab, cancel = context.WithTimeout(tab, 2*time.Minute)
+	t.Cleanup(cancel)
+	return tab
+}
+
+// do takes steps in the tab.
+func do(t *testing.T, tab context.Context, steps ...chromedp.Action[chromedp.Void]) {
+	t.Helper()
+	if err := chromedp.Do(tab, steps...); err != nil {
+		t.Fatal(err)
+	}
+}
+
+// eval returns the value of a script.
+func eval[T any](t *testing.T, tab context.Context, script string) (v T) {
+	t.Helper()
+	v, err := chromedp.Run(tab, chromedp.Evaluate[T](script))
+	if err != nil {
+		t.Fatalf("%s: %v", script, err)
+	}
+	return v
+}
+
+// until waits until a script is true.
+func until(t *testing.T, tab context.Context, what, script string) {
+	t.Helper()
+	for end := time.Now().Add(40 * time.Second); time.Now().Before(end); time.Sleep(50 * time.Millisecond) {
+		if eval[bool](t, tab, "!!("+script+")") {
+			return
+		}
+	}
+	screenshot(t, tab, "failed")
+	t.Fatalf("waited in vain for: %s; the page says %q", what, eval[string](t, tab, "document.body.innerText.slice(0, 600)"))
+}
+
+// screenshot keeps what the window shows, if anybody wants it.
+func screenshot(t *testing.T, tab context.Context, name string) {
+	t.Helper()
+	dir := os.Getenv("FALLSHADOW_SCREENS")
+	if dir == "" {
+		return
+	}
+	do(t, tab, chromedp.Sleep(300*time.Millisecond))
+	png, err := chromedp.Run(tab, chromedp.CaptureScreenshot())
+	if err != nil {
+		t.Fatal(err)
+	}
+	if err := os.WriteFile(filepath.Join(dir, name+".png"), png, 0o644); err != nil {
+		t.Fatal(err)
+	}
+}
+
+// watched is a night that is watched and shown.
+type watched struct {
+	url   string
+	watch *watch.Watcher
+	stop  func()
+}
+
+// watchNight watches a night and shows it at an address.
+func watchNight(t *testing.T, dir, address string) *watched {
+	t.Helper()
+	p := page.New(filepath.Base(dir))
+	w, err := watch.New(watch.Options{Dir: dir, Out: filepath.Join(filepath.Dir(dir), "results"), Poll: 500 * time.Millisecond}, p)
+	if err != nil {
+		t.Fatal(err)
+	}
+	p.Show(w)
+	l, url, err := p.Listen(address, "")
+	if err != nil {
+		t.Fatal(err)
+	}
+	ctx, cancel := context.WithCancel(context.Background())
+	ended := make(chan error, 2)
+	go func() { ended <- w.Run(ctx) }()
+	go func() { ended <- p.Serve(ctx, l) }()
+	stop := sync.OnceFunc(func() {
+		cancel()
+		for range 2 {
+			if err := <-ended; err != nil {
+				t.Errorf("watch and page: %v", err)
+			}
+		}
+	})
+	t.Cleanup(stop)
+	return &watched{url, w, stop}
+}
+
+// newNight makes a night with the settings of the demo and some of its shots under their
+// own names.
+func newNight(t *testing.T, shots ...int) string {
+	t.Helper()
+	dir := filepath.Join(t.TempDir(), "night")
+	addFile(t, filepath.Join(demoNight, "fallshadow.toml"), filepath.Join(dir, "fallshadow.toml"))
+	for _, n := range shots {
+		addShot(t, dir, n, fmt.Sprintf("ramp_%04d", n))
+	}
+	return dir
+}
+
+func addShot(t *testing.T, dir string, n int, name string) {
+	t.Helper()
+	addFile(t, filepath.Join(demoNight, fmt.Sprintf("ramp_%04d.fits", n)), filepath.Join(dir, name+".fits"))
+}
+
+func addFile(t *testing.T, from, to string) {
+	t.Helper()
+	data, err := os.ReadFile(from)
+	if err == nil {
+		err = os.MkdirAll(filepath.Dir(to), 0o755)
+	}
+	if err == nil {
+		err = os.WriteFile(to, data, 0o644)
+	}
+	if err != nil {
+		t.Fatal(err)
+	}
+}
+
+const (
+	shownIs  = `document.body.dataset.shown === %q && document.querySelector('#shot').textContent === %q`
+	seenIs   = `document.body.dataset.seen === %q && document.querySelector('#density image')?.dataset.shot === %q`
+	countIs  = `document.querySelector('#count').textContent === '%d'`
+	isLive   = `document.querySelector('#status').className === ''`
+	fontSize = `parseFloat(getComputedStyle(document.querySelector('.card[data-name=atoms] .value')).fontSize)`
+)
+
+func shown(t *testing.T, tab context.Context, shot string) {
+	t.Helper()
+	until(t, tab, "numbers of "+shot, fmt.Sprintf(shownIs, shot, shot))
+	until(t, tab, "picture of "+shot, fmt.Sprintf(seenIs, shot, shot))
+}
+
+// The page loads, a shot that arrives is shown without a reload, arrow keys go through the
+// older ones and End follows again.
+func TestBrowserFollowsShots(t *testing.T) {
+	dir := newNight(t, 1, 2, 3)
+	n := watchNight(t, dir, "127.0.0.1:0")
+	tab := browser(t)
+	do(t, tab, chromedp.EmulateViewport(1440, 900), chromedp.Navigate(n.url))
+	until(t, tab, "three shots", fmt.Sprintf(countIs, 3))
+	shown(t, tab, "ramp_0003")
+	eval[bool](t, tab, `window.sameLoad = true`)
+	addShot(t, dir, 6, "ramp_0006")
+	shown(t, tab, "ramp_0006")
+	if !eval[bool](t, tab, `window.sameLoad === true`) {
+		t.Error("the page was loaded again")
+	}
+	if got := eval[string](t, tab, `document.querySelector('.card[data-name=fraction] .value').textContent`); !strings.HasPrefix(got, "0.7") && !strings.HasPrefix(got, "0.69") {
+		t.Errorf("the fraction reads %q", got)
+	}
+	for _, part := range []string{"thermal", "condensate"} {
+		if n := eval[int](t, tab, `document.querySelectorAll('#density path.`+part+`').length`); n != 1 {
+			t.Errorf("%d outlines of the %s", n, part)
+		}
+	}
+	screenshot(t, tab, "desk-light")
+	do(t, tab, chromedp.KeyEvent(kb.ArrowLeft))
+	shown(t, tab, "ramp_0003")
+	addShot(t, dir, 7, "ramp_0007")
+	until(t, tab, "the fifth shot in the list", fmt.Sprintf(countIs, 5))
+	time.Sleep(300 * time.Millisecond)
+	shown(t, tab, "ramp_0003") // a person who looks at an older shot is left alone
+	do(t, tab, chromedp.KeyEvent(kb.ArrowRight))
+	shown(t, tab, "ramp_0006")
+	do(t, tab, chromedp.KeyEvent(kb.End))
+	shown(t, tab, "ramp_0007")
+	addShot(t, dir, 8, "ramp_0008")
+	shown(t, tab, "ramp_0008")
+}
+
+// The screens that were looked at: a desk in light and dark, and a phone.
+func TestBrowserScreens(t *testing.T) {
+	n := watchNight(t, newNight(t, 1, 2, 3, 4, 5, 6, 7, 8, 9), "127.0.0.1:0")
+	tab := browser(t)
+	for _, s := range []struct {
+		name          string
+		width, height int64
+		theme, shot   string
+	}{
+		{"desk-light", 1440, 900, "light", "ramp_0005"}, {"desk-dark", 1440, 900, "dark", "ramp_0009"},
+		{"phone-dark", 390, 844, "dark", "ramp_0006"}, {"phone-light", 390, 844, "light", "ramp_0002"},
+	} {
+		do(t, tab, chromedp.EmulateViewport(s.width, s.height), chromedp.Navigate(n.url))
+		until(t, tab, "nine shots", fmt.Sprintf(countIs, 9))
+		eval[bool](t, tab, fmt.Sprintf(`localStorage.setItem('theme', %q); document.documentElement.dataset.theme === %q || document.querySelector('#theme').click(); true`, s.theme, s.theme))
+		for shown := "ramp_0009"; shown > s.shot; shown = fmt.Sprintf("ramp_%04d", int(shown[8]-'0')-1) {
+			do(t, tab, chromedp.KeyEvent(kb.ArrowLeft))
+		}
+		shown(t, tab, s.shot)
+		screenshot(t, tab, s.name)
+		if wide := eval[bool](t, tab, `document.documentElement.scrollWidth > innerWidth`); wide {
+			t.Errorf("%s: the page is wider than the window", s.name)
+		}
+		if size := eval[float64](t, tab, fontSize); !(size >= 28) {
+			t.Errorf("%s: the atom number is %g px high, too small from afar", s.name, size)
+		}
+	}
+}
+
+// shotName is hostile to whoever takes it for markup, a path or a parameter.
+const shotName = `ramp_0010 <img src=x onerror=window.hacked=1>&"'%2e%2e`
+
+// Names from files are shown as text and are no way out.
+func TestBrowserHostileNames(t *testing.T) {
+	dir := newNight(t, 1)
+	n := watchNight(t, dir, "127.0.0.1:0")
+	tab := browser(t)
+	do(t, tab, chromedp.EmulateViewport(1440, 900), chromedp.Navigate(n.url))
+	addShot(t, dir, 5, shotName)
+	shown(t, tab, shotName)
+	until(t, tab, "it in the list", `document.querySelector('.item .name').textContent.startsWith('ramp_0010 <img')`)
+	do(t, tab, chromedp.Click("#mark"), chromedp.SendKeys("#bad-word", `<script>window.hacked=2</script>`), chromedp.KeyEvent(kb.Enter))
+	until(t, tab, "the word", `document.querySelector('#verdict').textContent === 'marked bad: <script>window.hacked=2</script>'`)
+	if eval[bool](t, tab, `window.hacked !== undefined || document.querySelectorAll('img, body script').length > 0`) {
+		t.Error("a name became markup")
+	}
+	screenshot(t, tab, "hostile")
+}
+
+// A shot is marked bad with a word, which can be taken back.
+func TestBrowserVerdict(t *testing.T) {
+	ctx := context.Background()
+	n := watchNight(t, newNight(t, 4, 5), "127.0.0.1:0")
+	tab := browser(t)
+	do(t, tab, chromedp.EmulateViewport(1440, 900), chromedp.Navigate(n.url))
+	shown(t, tab, "ramp_0005")
+	do(t, tab, chromedp.Click("#mark"), chromedp.SendKeys("#bad-word", "laser unlocked"), chromedp.KeyEvent(kb.Enter))
+	until(t, tab, "the word", `document.querySelector('#verdict').textContent.includes('laser unlocked') && document.querySelector('.item.bad')`)
+	screenshot(t, tab, "bad")
+	if r, err := n.watch.Row(ctx, "ramp_0005"); err != nil || r.Bad != "laser unlocked" {
+		t.Errorf("stored: %+v, %v", r, err)
+	}
+	do(t, tab, chromedp.KeyEvent("b"), chromedp.Click("#bad-back"))
+	until(t, tab, "it taken back", `document.querySelector('#verdict').hidden && !document.querySelector('.item.bad')`)
+	if r, err := n.watch.Row(ctx, "ramp_0005"); err != nil || r.Bad != "" {
+		t.Errorf("stored: %+v, %v", r, err)
+	}
+}
+
+// A region is drawn with the mouse on the whole frame and holds from the next shot on.
+func TestBrowserRegion(t *testing.T) {
+	dir := newNight(t, 4, 5)
+	n := watchNight(t, dir, "127.0.0.1:0")
+	tab := browser(t)
+	do(t, tab, chromedp.EmulateViewport(1440, 900), chromedp.Navigate(n.url))
+	shown(t, tab, "ramp_0005")
+	do(t, tab, chromedp.KeyEvent("r"))
+	until(t, tab, "the whole frame", `document.querySelector('#density image').getAttribute('href').startsWith('/picture/frame')`)
+	at := func(x, y float64) (float64, float64) {
+		p := eval[[]float64](t, tab, fmt.Sprintf(`(() => { const p = new DOMPoint(%g, %g).matrixTransform(document.querySelector('#density').getScreenCTM()); return [p.x, p.y]; })()`, x, y))
+		return p[0], p[1]
+	}
+	x0, y0 := at(30, 20)
+	x1, y1 := at(130, 125)
+	do(t, tab, chromedp.DragAndDropXY(x0, y0, x1, y1, 5))
+	until(t, tab, "the rectangle", `document.querySelector('#density rect.drag')`)
+	screenshot(t, tab, "region")
+	do(t, tab, chromedp.KeyEvent(kb.Enter))
+	until(t, tab, "word that it waits", `document.querySelector('#region-now').textContent.includes('waits for the next shot')`)
+	_, next := n.watch.Region()
+	if next == nil || abs(next.Min.X-30) > 1 || abs(next.Min.Y-20) > 1 || abs(next.Max.X-130) > 1 || abs(next.Max.Y-125) > 1 {
+		t.Fatalf("the region is %v", next)
+	}
+	addShot(t, dir, 6, "ramp_0006")
+	shown(t, tab, "ramp_0006")
+	do(t, tab, chromedp.Click("#tab-fitted"))
+	want := fmt.Sprintf("0 0 %d %d", next.Dx(), next.Dy())
+	until(t, tab, "the region in the picture", fmt.Sprintf(`document.querySelector('#density').getAttribute('viewBox') === %q`, want))
+}
+
+func abs(i int) int { return max(i, -i) }
+
+// After the program was stopped and started the page finds back by itself and shows what
+// it missed.
+func TestBrowserReconnects(t *testing.T) {
+	dir := newNight(t, 1, 2)
+	n := watchNight(t, dir, "127.0.0.1:0")
+	tab := browser(t)
+	do(t, tab, chromedp.EmulateViewport(1440, 900), chromedp.Navigate(n.url))
+	shown(t, tab, "ramp_0002")
+	eval[bool](t, tab, `window.sameLoad = true`)
+	n.stop()
+	until(t, tab, "word of the loss", `document.querySelector('#status').className === 'lost'`)
+	screenshot(t, tab, "lost")
+	addShot(t, dir, 3, "ramp_0003")
+	address := strings.TrimSuffix(strings.TrimPrefix(n.url, "http://"), "/")
+	watchNight(t, dir, address)
+	until(t, tab, "the connection", isLive)
+	shown(t, tab, "ramp_0003")
+	addShot(t, dir, 4, "ramp_0004")
+	shown(t, tab, "ramp_0004")
+	until(t, tab, "all shots", fmt.Sprintf(countIs, 4))
+	if !eval[bool](t, tab, `window.sameLoad === true`) {
+		t.Error("the page was loaded again")
+	}
+}
+
+// The trend reads a value under the mouse, zooms by dragging and takes a person to a shot.
+func TestBrowserTrend(t *testing.T) {
+	n := watchNight(t, newNight(t, 1, 2, 3, 4, 5, 6, 7), "127.0.0.1:0")
+	tab := browser(t)
+	do(t, tab, chromedp.EmulateViewport(1440, 900), chromedp.Navigate(n.url))
+	until(t, tab, "seven shots", fmt.Sprintf(countIs, 7))
+	choose := func(id, value string) {
+		eval[bool](t, tab, fmt.Sprintf(`(() => { const s = document.querySelector(%q); s.value = %q; s.dispatchEvent(new Event('change')); return true; })()`, id, value))
+	}
+	choose("#trend-y", "fraction")
+	choose("#trend-x", "RAMPEND")
+	until(t, tab, "the trend", `document.querySelector('#trend-plot .u-over') && document.querySelector('#trend-x').value === 'RAMPEND'`)
+	box := eval[[]float64](t, tab, `(() => { const b = document.querySelector('#trend-plot .u-over').getBoundingClientRect(); return [b.x, b.y, b.width, b.height]; })()`)
+	time.Sleep(300 * time.Millisecond)
+	at := func(part float64) (float64, float64) { return box[0] + part*box[2], box[1] + box[3]/2 }
+	x, y := at(0.02)
+	do(t, tab, chromedp.MouseEvent(input.DispatchMouseEventTypeMouseMoved, x, y))
+	until(t, tab, "the value", `/^ramp_0007: 0\.8.* at RAMPEND 250/.test(document.querySelector('#trend-read').textContent)`)
+	do(t, tab, chromedp.MouseClickXY(x, y))
+	shown(t, tab, "ramp_0007")
+	x0, y0 := at(0.4)
+	x1, y1 := at(0.9)
+	do(t, tab, chromedp.DragAndDropXY(x0, y0, x1, y1, 5))
+	until(t, tab, "the zoom", `!document.querySelector('#trend-all').hidden`)
+	screenshot(t, tab, "trend")
+	do(t, tab, chromedp.Click("#trend-all"))
+	until(t, tab, "all of it", `document.querySelector('#trend-all').hidden`)
+}
+
+// The first picture that means something is there within a second of asking for the page.
+func TestBrowserFirstPicture(t *testing.T) {
+	n := watchNight(t, newNight(t, 1, 2, 3), "127.0.0.1:0")
+	tab := browser(t)
+	do(t, tab, chromedp.EmulateViewport(1440, 900), chromedp.Navigate(n.url))
+	shown(t, tab, "ramp_0003")
+	var times []float64
+	for range 5 {
+		do(t, tab, chromedp.Navigate(n.url))
+		shown(t, tab, "ramp_0003")
+		times = append(times, eval[float64](t, tab, `(performance.getEntriesByType('resource').find((r) => r.name.includes('/picture/'))?.responseEnd ?? 1e9)`))
+	}
+	slices.Sort(times)
+	sent := eval[float64](t, tab, `[...performance.getEntriesByType('resource'), ...performance.getEntriesByType('navigation')].filter((r) => !r.name.includes('/picture/')).reduce((n, r) => n + r.transferSize, 0)`)
+	t.Logf("picture after %.0f ms (median of 5), %.0f ms at most; %.0f kB before pictures", times[2], times[4], sent/1e3)
+	if sent > 300e3 {
+		t.Errorf("%.0f bytes before pictures", sent)
+	}
+}

@@ -1,0 +1,428 @@
+package page
+
+import (
+	"bufio"
+	"context"
+	"encoding/json"
+	"errors"
+	"fmt"
+	"image"
+	"io"
+	"net"
+	"net/http"
+	"net/http/httptest"
+	"slices"
+	"strings"
+	"testing"
+	"time"
+
+	"github.com/google/go-cmp/cmp"
+
+	"fallshadow/cmd/fallshadow/internal/ledger"
+	"fallshadow/cmd/fallshadow/internal/report"
+	"fallshadow/fit"
+	"fallshadow/imageio"
+)
+
+// still is a night of fixed rows that notes what is done to it.
+type still struct {
+	rows   []ledger.Row
+	judged []string
+	drawn  image.Rectangle
+	undone bool
+}
+
+func (s *still) Rows(context.Context) ([]ledger.Row, error) { return s.rows, nil }
+func (s *still) Row(_ context.Context, shot string) (*ledger.Row, error) {
+	if i := slices.IndexFunc(s.rows, func(r ledger.Row) bool { return r.Shot == shot }); i >= 0 {
+		return &s.rows[i], nil
+	}
+	return nil, nil
+}
+func (s *still) Measure(_ context.Context, shot string) (*report.Facts, *imageio.Raw, error) {
+	if shot == "unread" {
+		return nil, nil, errors.New("the frames cannot be read")
+	}
+	m := &fit.Maps{Width: 4, Height: 3}
+	for range 12 {
+		m.Density, m.Thermal, m.Total, m.Residual = append(m.Density, 1), append(m.Thermal, 1), append(m.Total, 1), append(m.Residual, 0)
+	}
+	frame := &imageio.Frame{Width: 8, Height: 6, Pix: make([]float32, 48)}
+	raw := &imageio.Raw{}
+	raw.Frames[imageio.Atoms], raw.Frames[imageio.Light] = frame, frame
+	return &report.Facts{Pixel: 1e-6, Region: image.Rect(2, 2, 6, 5), Fit: &fit.Result{Model: fit.ModelNone, Maps: m}}, raw, nil
+}
+func (s *still) Scan() []string       { return []string{"RAMP"} }
+func (s *still) SettingsText() string { return "[trap]\n" }
+func (s *still) Notes() []string      { return nil }
+func (s *still) Region() (now, next *image.Rectangle) {
+	return &image.Rectangle{Max: image.Pt(3, 4)}, nil
+}
+func (s *still) Judge(_ context.Context, shot, word string) error {
+	s.judged = append(s.judged, shot+": "+word)
+	return nil
+}
+func (s *still) Draw(region image.Rectangle) error {
+	if region.Empty() {
+		return errors.New("too small")
+	}
+	s.drawn = region
+	return nil
+}
+func (s *still) Undraw() { s.undone = true }
+
+const hostile = `<img src=x onerror=alert(1)>/../"'&%00`
+
+func newStill() *still {
+	good := ledger.Row{Shot: "shot_2", Files: []string{"shot_2.fits"}, Provisional: true, Meta: map[string]string{"RAMP": "2.5"}}
+	for column, v := range map[string]float64{"flight_ms": 16, "atoms": 123456, "atoms_err": 789, "atoms_cal": 2900, "fraction_high": 0.0123} {
+		good.SetNumber(column, v)
+	}
+	good.SetWord("model", "thermal")
+	return &still{rows: []ledger.Row{
+		good,
+		{Shot: "unread", Reason: "the file is cut short", Bad: "lamp on"},
+		{Shot: hostile, Meta: map[string]string{"RAMP": "<b>"}},
+	}}
+}
+
+// newServer serves a still night on loopback.
+func newServer(t *testing.T, token string) (*Page, *still, string) {
+	t.Helper()
+	p, s := New("night"), newStill()
+	p.Show(s)
+	l, url, err := p.Listen("127.0.0.1:0", "")
+	if err != nil {
+		t.Fatal(err)
+	}
+	if token != "" { // as on an address that other machines reach
+		p.guard.token = token
+		url = p.guard.url()
+	}
+	ctx, cancel := context.WithCancel(context.Background())
+	end := make(chan error, 1)
+	go func() { end <- p.Serve(ctx, l) }()
+	t.Cleanup(func() {
+		cancel()
+		if err := <-end; err != nil {
+			t.Error(err)
+		}
+	})
+	return p, s, strings.TrimSuffix(url, "/")
+}
+
+// ask sends a request and returns status and body.
+func ask(t *testing.T, method, url, body string, headers ...string) (int, string) {
+	t.Helper()
+	r, err := http.NewRequest(method, url, strings.NewReader(body))
+	if err != nil {
+		t.Fatal(err)
+	}
+	for i := 0; i < len(headers); i += 2 {
+		if headers[i] == "Host" {
+			r.Host = headers[i+1]
+		} else {
+			r.Header.Set(headers[i], headers[i+1])
+		}
+	}
+	client := http.Client{CheckRedirect: func(*http.Request, []*http.Request) error { return http.ErrUseLastResponse }}
+	response, err := client.Do(r)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer response.Body.Close()
+	text, err := io.ReadAll(response.Body)
+	if err != nil {
+		t.Fatal(err)
+	}
+	return response.StatusCode, string(text)
+}
+
+// What is refused, and what is not.
+func TestProtection(t *testing.T) {
+	_, s, url := newServer(t, "")
+	port := url[strings.LastIndex(url, ":"):]
+	change := []string{"Origin", url, "Content-Type", "application/json"}
+	verdict := `{"shot":"shot_2","word":"x"}`
+	tests := []struct {
+		name, method, path, body string
+		headers                  []string
+		status                   int
+	}{
+		{"the page", "GET", "/", "", nil, 200},
+		{"under localhost", "GET", "/api/night", "", []string{"Host", "localhost" + port}, 200},
+		{"under a foreign name", "GET", "/api/night", "", []string{"Host", "evil.example" + port}, 403},
+		{"under a foreign name without port", "GET", "/", "", []string{"Host", "127.0.0.1"}, 403},
+		{"another port", "GET", "/", "", []string{"Host", "127.0.0.1:1"}, 403},
+		{"a verdict", "POST", "/api/verdict", verdict, change, 204},
+		{"a verdict from elsewhere", "POST", "/api/verdict", verdict, []string{"Origin", "http://evil.example", "Content-Type", "application/json"}, 403},
+		{"a verdict from nowhere", "POST", "/api/verdict", verdict, []string{"Content-Type", "application/json"}, 403},
+		{"a verdict of a null origin", "POST", "/api/verdict", verdict, []string{"Origin", "null", "Content-Type", "application/json"}, 403},
+		{"a verdict by a form", "POST", "/api/verdict", verdict, []string{"Origin", url, "Content-Type", "text/plain"}, 403},
+		{"a verdict by GET", "GET", "/api/verdict", "", nil, 404},
+		{"a verdict on no shot", "POST", "/api/verdict", `{"shot":"nothing","word":"x"}`, change, 404},
+		{"a verdict of many letters", "POST", "/api/verdict", `{"shot":"shot_2","word":"` + strings.Repeat("x", 201) + `"}`, change, 400},
+		{"a verdict too long to read", "POST", "/api/verdict", `{"shot":"shot_2","word":"` + strings.Repeat("x", 5000) + `"}`, change, 400},
+		{"junk", "POST", "/api/verdict", `{`, change, 400},
+		{"a region", "POST", "/api/region", `{"region":[1,2,30,40]}`, change, 204},
+		{"a region of nothing", "POST", "/api/region", `{"region":[1,1,1,1]}`, change, 400},
+		{"no region", "POST", "/api/region", `{}`, change, 204},
+		{"deleting", "DELETE", "/api/night", "", change, 405},
+		{"a row", "GET", "/api/row?shot=shot_2", "", nil, 200},
+		{"no row", "GET", "/api/row?shot=../../etc/passwd", "", nil, 404},
+		{"a file as shot", "GET", "/picture/density?shot=%2e%2e%2fetc%2fpasswd", "", nil, 404},
+		{"a picture", "GET", "/picture/density?shot=shot_2", "", nil, 200},
+		{"no such picture", "GET", "/picture/other?shot=shot_2", "", nil, 404},
+		{"a path upwards is cleaned", "GET", "/../page.go", "", nil, 307},
+		{"and is not there", "GET", "/page.go", "", nil, 404},
+		{"a path upwards, in disguise", "GET", "/%2e%2e/page.go", "", nil, 404},
+		{"no such column", "GET", "/api/column?name=reason", "", nil, 404},
+		{"a column", "GET", "/api/column?name=atoms", "", nil, 200},
+	}
+	for _, test := range tests {
+		status, body := ask(t, test.method, url+test.path, test.body, test.headers...)
+		if status != test.status {
+			t.Errorf("%s: status %d, want %d: %s", test.name, status, test.status, body)
+		}
+	}
+	if diff := cmp.Diff([]string{"shot_2: x"}, s.judged); diff != "" {
+		t.Error(diff)
+	}
+	if s.drawn != image.Rect(1, 2, 30, 40) || !s.undone {
+		t.Errorf("drawn %v, taken back %v", s.drawn, s.undone)
+	}
+}
+
+// Beyond this machine nothing is served without the token, which the address carries once.
+func TestToken(t *testing.T) {
+	_, _, url := newServer(t, "sesame")
+	base := strings.TrimSuffix(url, "?token=sesame")
+	base = strings.TrimSuffix(base, "/")
+	for path, want := range map[string]int{
+		"/": 403, "/api/night": 403, "/events": 403, "/style.css": 403, "/?token=sesam": 403, "/?token=": 403, "/?token=sesame": 303,
+	} {
+		if status, _ := ask(t, "GET", base+path, ""); status != want {
+			t.Errorf("%s: status %d, want %d", path, status, want)
+		}
+	}
+	if status, _ := ask(t, "GET", base+"/api/night", "", "Cookie", "fallshadow=sesame"); status != 200 {
+		t.Errorf("with the cookie: status %d", status)
+	}
+	if status, _ := ask(t, "GET", base+"/api/night", "", "Cookie", "fallshadow=other"); status != 403 {
+		t.Errorf("with another cookie: status %d", status)
+	}
+}
+
+// An address that other machines reach gets a token by itself, loopback none.
+func TestTokenIsMadeUp(t *testing.T) {
+	for address, want := range map[string]bool{"127.0.0.1:0": false, "localhost:0": false, "0.0.0.0:0": true} {
+		p := New("night")
+		l, url, err := p.Listen(address, "")
+		if err != nil {
+			t.Fatal(err)
+		}
+		l.Close()
+		if got := strings.Contains(url, "token="); got != want || want && len(p.guard.token) < 20 {
+			t.Errorf("%s: %s, token %q", address, url, p.guard.token)
+		}
+	}
+	if _, _, err := New("night").Listen("nonsense", ""); err == nil {
+		t.Error("an address without a port was taken")
+	}
+}
+
+// What files bring in goes out as JSON text, in which no markup stands.
+func TestHostileNames(t *testing.T) {
+	_, _, url := newServer(t, "")
+	_, body := ask(t, "GET", url+"/api/night", "")
+	if strings.Contains(body, "<img") {
+		t.Error("markup stands in the answer as it is")
+	}
+	var night struct{ Rows []struct{ Shot string } }
+	if err := json.Unmarshal([]byte(body), &night); err != nil || night.Rows[2].Shot != hostile {
+		t.Errorf("%v, %+v", err, night)
+	}
+	for _, path := range []string{"/", "/style.css", "/api/night"} {
+		r, err := http.Get(url + path)
+		if err != nil {
+			t.Fatal(err)
+		}
+		r.Body.Close()
+		if policy := r.Header.Get("Content-Security-Policy"); !strings.Contains(policy, "default-src 'self'") || strings.Contains(policy, "unsafe") {
+			t.Errorf("%s: policy %q", path, policy)
+		}
+	}
+}
+
+// A row tells its numbers with the digits that their errors leave.
+func TestDetail(t *testing.T) {
+	s := newStill()
+	d := newDetail(&s.rows[0], s.Scan())
+	want := []card{
+		{Name: "atoms", Label: "N", Value: "123\u2009500", Err: "± 800", Cal: "± 2900"},
+		{Name: "fraction", Label: "N₀/N", Value: "< 0.0123"},
+	}
+	if diff := cmp.Diff(want, d.Cards); diff != "" {
+		t.Error(diff)
+	}
+	if d.Flight != "16 ms" || len(d.Scan) != 1 || d.Numbers["RAMP"] != 2.5 || !slices.Contains(d.Flags, "provisional") {
+		t.Errorf("%+v", d)
+	}
+}
+
+func TestFigures(t *testing.T) {
+	row := func(v, e, cal, low, high float64) *ledger.Row {
+		r := &ledger.Row{}
+		for name, x := range map[string]float64{"x": v, "x_err": e, "x_cal": cal, "x_low": low, "x_high": high} {
+			if x != 0 {
+				r.SetNumber(name, x)
+			}
+		}
+		return r
+	}
+	tests := []struct {
+		r    *ledger.Row
+		want card
+	}{
+		{row(46.13, 9.02, 0, 0, 0), card{Value: "46", Err: "± 9"}},
+		{row(0.4932, 0.0032, 0.0023, 0, 0), card{Value: "0.4932", Err: "± 0.0032", Cal: "± 0.0023"}},
+		{row(2.5e6, 1.23e4, 5e4, 0, 0), card{Value: "2.500", Unit: "×10⁶", Err: "± 0.012", Cal: "± 0.050"}},
+		{row(4.2e-5, 3e-6, 0, 0, 0), card{Value: "4.20", Unit: "×10⁻⁵", Err: "± 0.30"}},
+		{row(67, 0, 0, 46, 99), card{Value: "67", Err: "+32 −21"}},
+		{row(0, 0, 0, 0, 35.81), card{Value: "< 35.8"}},
+		{row(0, 0, 0, 12.5, 0), card{Value: "> 12.5"}},
+		{row(1234567, 0, 0, 0, 0), card{Value: "1.23", Unit: "×10⁶"}},
+		{row(-0.034, 0.5, 0, 0, 0), card{Value: "0.0", Err: "± 0.5"}},
+		{row(0, 0, 0, 0, 0), card{}},
+	}
+	for _, test := range tests {
+		if diff := cmp.Diff(test.want, newCard(test.r, "x")); diff != "" {
+			t.Error(diff)
+		}
+	}
+}
+
+// events reads the kinds of events that come within a moment.
+func events(t *testing.T, url, after string, n int) (kinds []string, last string) {
+	t.Helper()
+	ctx, cancel := context.WithTimeout(context.Background(), 5*time.Second)
+	defer cancel()
+	r, err := http.NewRequestWithContext(ctx, "GET", url+"/events", nil)
+	if err != nil {
+		t.Fatal(err)
+	}
+	r.Header.Set("Last-Event-ID", after)
+	response, err := http.DefaultClient.Do(r)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer response.Body.Close()
+	for lines := bufio.NewScanner(response.Body); len(kinds) < n && lines.Scan(); {
+		if id, ok := strings.CutPrefix(lines.Text(), "id: "); ok {
+			last = id
+		}
+		if kind, ok := strings.CutPrefix(lines.Text(), "event: "); ok {
+			kinds = append(kinds, kind)
+		}
+	}
+	return kinds, last
+}
+
+// Who comes back gets what was missed, or word to begin anew.
+func TestCatchUp(t *testing.T) {
+	p, _, url := newServer(t, "")
+	p.Notes([]string{"a"})
+	first := p.stream.last()
+	p.Changed()
+	p.Row(&ledger.Row{Shot: "shot_3"}, 3)
+	if kinds, last := events(t, url, first, 2); !slices.Equal(kinds, []string{"changed", "row"}) || last != p.stream.last() {
+		t.Errorf("missed %v up to %s", kinds, last)
+	}
+	for range 3 * keep {
+		p.Changed()
+	}
+	for _, after := range []string{first, "", "otherrun-3", p.stream.start + "-999999", p.stream.start + "-x"} {
+		if kinds, last := events(t, url, after, 1); !slices.Equal(kinds, []string{"begin"}) || last != p.stream.last() {
+			t.Errorf("after %q: %v, %s", after, kinds, last)
+		}
+	}
+	if n := len(p.stream.kept); n > 2*keep {
+		t.Errorf("%d events are kept", n)
+	}
+}
+
+// A browser that does not read is cut off and does not hold up the others.
+func TestSlowBrowser(t *testing.T) {
+	s := newStream()
+	slow, _ := s.join("")
+	for i := range 2 * pending {
+		s.send("n", i)
+	}
+	n := 0
+	for range slow {
+		n++
+	}
+	if n != pending {
+		t.Errorf("%d events were kept for it", n)
+	}
+}
+
+// Few views are kept; others are measured again, one at a time, and a shot that cannot be
+// read has none.
+func TestViews(t *testing.T) {
+	s := newStill()
+	measured := 0
+	v := newViews(func(ctx context.Context, shot string) (*report.Facts, *imageio.Raw, error) {
+		measured++
+		return s.Measure(ctx, shot)
+	})
+	ctx := context.Background()
+	for i := range 3 * remembered {
+		if _, err := v.get(ctx, fmt.Sprint(i%(2*remembered))); err != nil {
+			t.Fatal(err)
+		}
+	}
+	if v.recent.Len() != remembered || len(v.at) != remembered {
+		t.Errorf("%d views are kept", v.recent.Len())
+	}
+	before := measured
+	got, err := v.get(ctx, fmt.Sprint(remembered-1))
+	if err != nil || measured != before || got.Frame != [2]int{8, 6} || got.Region != [4]int{2, 2, 6, 5} || got.pictures["residual"] == nil {
+		t.Errorf("%+v, %v, measured %d times more", got, err, measured-before)
+	}
+	if _, err := v.get(ctx, "unread"); err == nil {
+		t.Error("there is a view of what cannot be read")
+	}
+}
+
+// The page stays below 300 kB before pictures, also with a night of 1,500 shots.
+func TestWeight(t *testing.T) {
+	p, s := New("night"), newStill()
+	p.Show(s)
+	row := s.rows[0]
+	s.rows = nil
+	for i := range 1500 {
+		row.Shot = fmt.Sprintf("ramp_%04d", i)
+		s.rows = append(s.rows, row)
+	}
+	p.guard, _ = newGuard(&net.TCPAddr{IP: net.IPv4(127, 0, 0, 1), Port: 80}, "127.0.0.1:80", "")
+	total := 0
+	for _, path := range []string{
+		"/", "/style.css", "/theme.js", "/app.js", "/api.js", "/dom.js", "/natural.js", "/shots.js", "/numbers.js", "/picture.js",
+		"/region.js", "/cuts.js", "/trend.js", "/live.js", "/icon.svg", "/uplot/uPlot.iife.min.js", "/uplot/uPlot.min.css",
+		"/api/night", "/api/column?name=atoms",
+	} {
+		r := httptest.NewRequest("GET", "http://127.0.0.1"+path, nil)
+		r.Header.Set("Accept-Encoding", "gzip")
+		w := httptest.NewRecorder()
+		p.handler().ServeHTTP(w, r)
+		if w.Code != 200 || w.Body.Len() == 0 {
+			t.Errorf("%s: status %d", path, w.Code)
+		}
+		total += w.Body.Len()
+	}
+	t.Logf("%d bytes", total)
+	if total > 300e3 {
+		t.Errorf("the page weighs %d bytes", total)
+	}
+}

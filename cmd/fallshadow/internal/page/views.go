@@ -1,0 +1,177 @@
+package page
+
+import (
+	"container/list"
+	"context"
+	"image"
+	"math"
+	"sync"
+
+	"fallshadow/cmd/fallshadow/internal/picture"
+	"fallshadow/cmd/fallshadow/internal/report"
+	"fallshadow/imageio"
+)
+
+// view is what a browser draws of a shot: pictures ready to be sent, and lines in the
+// pixels of the fitted map.
+type view struct {
+	Width    int           `json:"width"`
+	Height   int           `json:"height"`
+	Region   [4]int        `json:"region"` // x0, y0, x1, y1 of the saved frame
+	Frame    [2]int        `json:"frame"`  // size of the saved frame
+	PixelUm  float64       `json:"pixel_um"`
+	Top      float64       `json:"top"`
+	Sigmas   float64       `json:"sigmas"`
+	Outlines []viewOutline `json:"outlines"`
+	Cuts     []viewCut     `json:"cuts"`
+	pictures map[string][]byte
+}
+
+type viewOutline struct {
+	Part string       `json:"part"`
+	Line [][2]float64 `json:"line"`
+}
+
+// viewCut holds null where no pixel counts.
+type viewCut struct {
+	Line    [4]float64 `json:"line"`
+	Strip   int        `json:"strip"`
+	Um      []*float64 `json:"um"`
+	Data    []*float64 `json:"data"`
+	Thermal []*float64 `json:"thermal"`
+	Total   []*float64 `json:"total"`
+}
+
+// newView draws a shot. Either argument may be nil.
+func newView(f *report.Facts, raw *imageio.Raw) *view {
+	v := &view{pictures: map[string][]byte{}}
+	if raw != nil {
+		for _, frame := range raw.Frames {
+			if frame != nil {
+				v.Frame = [2]int{frame.Width, frame.Height}
+			}
+		}
+		if img := picture.Frame(raw); img != nil {
+			v.add("frame", img)
+		}
+	}
+	if f == nil {
+		return v
+	}
+	p := picture.New(f)
+	if p == nil {
+		return v
+	}
+	v.Width, v.Height, v.PixelUm, v.Top, v.Sigmas = p.Width, p.Height, p.PixelUm, p.Top, p.Sigmas
+	v.Region = [4]int{p.Region.Min.X, p.Region.Min.Y, p.Region.Max.X, p.Region.Max.Y}
+	for _, o := range p.Outlines {
+		v.Outlines = append(v.Outlines, viewOutline{o.Part, rounded(o.Line)})
+	}
+	for _, c := range p.Cuts {
+		v.Cuts = append(v.Cuts, viewCut{
+			[4]float64{c.StartX, c.StartY, c.EndX, c.EndY}, c.Strip,
+			digits(c.Um, 0.1), digits(c.Data, 1e-4), digits(c.Thermal, 1e-4), digits(c.Total, 1e-4),
+		})
+	}
+	v.add("density", p.Density)
+	v.add("faint", p.Faint)
+	v.add("residual", p.Residual)
+	return v
+}
+
+func (v *view) add(kind string, img image.Image) {
+	if data, err := picture.PNG(img); err == nil {
+		v.pictures[kind] = data
+	}
+}
+
+func rounded(line []picture.Point) [][2]float64 {
+	out := make([][2]float64, len(line))
+	for i, p := range line {
+		out[i] = [2]float64{math.Round(100*p.X) / 100, math.Round(100*p.Y) / 100}
+	}
+	return out
+}
+
+// digits rounds values to a step for the way to the browser.
+func digits(values []float64, step float64) []*float64 {
+	out := make([]*float64, len(values))
+	for i, v := range values {
+		if v-v == 0 {
+			r := math.Round(v/step) / math.Round(1/step)
+			out[i] = &r
+		}
+	}
+	return out
+}
+
+// views keeps the views of the shots seen last. Others are measured again when they are
+// asked for, one at a time.
+type views struct {
+	measure func(ctx context.Context, shot string) (*report.Facts, *imageio.Raw, error)
+	one     chan struct{} // held by who measures
+
+	mu     sync.Mutex
+	recent *list.List // of *kept, the latest first
+	at     map[string]*list.Element
+}
+
+type kept struct {
+	shot string
+	view *view
+}
+
+// remembered is how many views are kept: about 0.3 MB each.
+const remembered = 48
+
+func newViews(measure func(context.Context, string) (*report.Facts, *imageio.Raw, error)) *views {
+	return &views{measure: measure, one: make(chan struct{}, 1), recent: list.New(), at: map[string]*list.Element{}}
+}
+
+func (s *views) put(shot string, f *report.Facts, raw *imageio.Raw) *view {
+	v := newView(f, raw)
+	s.mu.Lock()
+	defer s.mu.Unlock()
+	if e, ok := s.at[shot]; ok {
+		s.recent.Remove(e)
+	}
+	s.at[shot] = s.recent.PushFront(&kept{shot, v})
+	for s.recent.Len() > remembered {
+		last := s.recent.Back()
+		delete(s.at, last.Value.(*kept).shot)
+		s.recent.Remove(last)
+	}
+	return v
+}
+
+func (s *views) find(shot string) *view {
+	s.mu.Lock()
+	defer s.mu.Unlock()
+	e, ok := s.at[shot]
+	if !ok {
+		return nil
+	}
+	s.recent.MoveToFront(e)
+	return e.Value.(*kept).view
+}
+
+// get returns the view of a shot, measured now where it is not kept.
+func (s *views) get(ctx context.Context, shot string) (*view, error) {
+	if v := s.find(shot); v != nil {
+		return v, nil
+	}
+	select {
+	case s.one <- struct{}{}:
+		defer func() { <-s.one }()
+	case <-ctx.Done():
+		return nil, ctx.Err()
+	}
+	if v := s.find(shot); v != nil {
+		return v, nil
+	}
+	f, raw, err := s.measure(ctx, shot)
+	if raw == nil {
+		return nil, err
+	}
+	return s.put(shot, f, raw), nil // a shot that cannot be fitted shows its frame
+}
