@@ -41,6 +41,7 @@ type commands struct {
 	Curve     curveCmd     `cmd:"" help:"Analyse a fitted night: the condensate fraction against temperature, theory, the transition."`
 	Init      initCmd      `cmd:"" help:"Print commented settings of a laboratory to start from."`
 	Simulate  simulateCmd  `cmd:"" help:"Write a night of simulated raw shots with known truth."`
+	Watch     watchCmd     `cmd:"" help:"Fit the shots of a night while it is being taken, with a line and a page that show each."`
 }
 
 // terminal is where a command writes to.
