@@ -30,11 +30,8 @@ func Cloud(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt Opti
 	if err := s.finish(c, chosen, r); err != nil {
 		return nil, err
 	}
-	if r.Model == ModelBimodal && s.impossible(r) && c.alone.used() {
-		r = &Result{Model: ModelCondensate, Form: s.form(c.alone.kind)}
-		if err := s.finish(c, c.alone, r); err != nil {
-			return nil, err
-		}
+	if r, err = s.secondThoughts(c, chosen, r); err != nil {
+		return nil, err
 	}
 	r.Iterations = s.iterations
 	r.Flags = append(r.Flags, s.warnings(r)...)
@@ -81,8 +78,9 @@ func (s *session) finish(c *candidates, chosen *state, r *Result) error {
 	return s.limits(c, full, r)
 }
 
-// impossible says that a poorly known thermal part is not one: even at the high end of its
-// interval of T the trap could not hold two thirds of its atoms, semi-ideal ones included.
+// impossible says that the widths of a poorly known thermal part do not belong to its number: even
+// at the high end of its interval of T the trap could not hold two thirds of its atoms,
+// semi-ideal ones included.
 func (s *session) impossible(r *Result) bool {
 	n := &r.Numbers
 	if math.IsNaN(n.T.High) || s.tmpl.gaussian {
@@ -94,6 +92,47 @@ func (s *session) impossible(r *Result) bool {
 		most = mix.Thermal
 	}
 	return n.Thermal.V > 1.5*most
+}
+
+// secondThoughts looks again at a condensed cloud whose thermal part the widths alone do not
+// tell: in equilibrium it is saturated, so that one number, T, says both how wide and how many.
+// The answer is kept where it sees thermal atoms.
+func (s *session) secondThoughts(c *candidates, chosen *state, r *Result) (*Result, error) {
+	if s.opt.Fugacity != FugacityModel || s.tmpl.gaussian {
+		return r, nil
+	}
+	st := *chosen
+	switch {
+	case r.Model == ModelBimodal && s.impossible(r):
+		m, _ := s.tmpl.measured(&st.p, st.kind)
+		s.saturate(&st.p, templateT*math.Cbrt(m.ThermalSum*s.perSum()/model.ThermalNumber(templateT, 0, s.lab.Trap)))
+	case r.Model == ModelCondensate && r.Numbers.T.High > 0:
+		st.kind = s.both()
+		s.saturate(&st.p, 0.8*r.Numbers.T.High)
+	default:
+		return r, nil
+	}
+	again := *s
+	again.opt.Fugacity = FugacityNumber
+	n := &Result{Model: ModelBimodal, Form: again.form(st.kind)}
+	if err := again.finish(c, &st, n); err != nil {
+		// A second thought that comes to nothing leaves the first; only the end of ctx is an end.
+		return r, s.ctx.Err()
+	}
+	s.iterations, s.shown = again.iterations, again.shown
+	if thermal := n.Numbers.Thermal; r.Model == ModelCondensate && !(thermal.V > 2*thermal.Err) {
+		return r, nil
+	}
+	n.Flags = append(n.Flags, FlagByNumber)
+	return n, nil
+}
+
+// saturate gives the parameters the thermal part of a saturated gas at T in K.
+func (s *session) saturate(q *params, T float64) {
+	l := 0.5 * math.Log(T/templateT)
+	q[pWidth1], q[pWidth2], q[pAlpha] = l, l, 0
+	m, _ := s.tmpl.measured(&params{pThermal: 1, pWidth1: l, pWidth2: l}, kind{thermal: true})
+	q[pThermal] = model.ThermalNumber(T, 0, s.lab.Trap) / s.perSum() / m.ThermalSum
 }
 
 // settled is the step in standard deviations after which variances taken from the model anew

@@ -52,7 +52,7 @@ type numberTie struct {
 	perSum float64
 }
 
-const numberWidth = 1e-4
+const numberWidth = 1e-3
 
 func (n *numberTie) add(s *search, q *params, h, g []float64) float64 {
 	m, j := s.tmpl.measured(q, s.kind)
@@ -219,13 +219,7 @@ func (s *session) limitCondensate(st *state, n *numbers.Result, c *Checks) {
 func (s *session) limitThermal(st *state, n *numbers.Result) error {
 	k := st.kind
 	k.thermal, k.fixWidth, k.fixThermal = true, true, true
-	set := func(q *params, t float64) {
-		l := 0.5 * math.Log(t/templateT)
-		q[pWidth1], q[pWidth2], q[pAlpha] = l, l, 0
-		m, _ := s.tmpl.measured(&params{pThermal: 1, pWidth1: l, pWidth2: l}, kind{thermal: true})
-		q[pThermal] = model.ThermalNumber(t, 0, s.lab.Trap) / s.perSum() / m.ThermalSum
-	}
-	limit, err := s.climb(st, k, set, 0.05*n.Tc0.V, 2*n.Tc0.V)
+	limit, err := s.climb(st, k, s.saturate, 0.05*n.Tc0.V, 2*n.Tc0.V)
 	if err != nil || math.IsNaN(limit) {
 		return err
 	}
