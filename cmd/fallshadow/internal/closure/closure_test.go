@@ -55,6 +55,11 @@ func TestClosure(t *testing.T) {
 		t.Run(name, func(t *testing.T) {
 			shots := simulated{preset: name, shots: n, every: every}.run(t)
 			keep(t, name, shots)
+			for _, s := range shots {
+				if s.failure != nil {
+					t.Errorf("%s: %v", s.truth.Shot, s.failure)
+				}
+			}
 			for _, q := range quantities {
 				s := scoreOf(q, shots)
 				table = append(table, s.line(name, q.name))

@@ -15,6 +15,7 @@ import (
 	"fallshadow/fit"
 	"fallshadow/imageio"
 	"fallshadow/imageio/synth"
+	"fallshadow/model/numbers"
 )
 
 // simulated is a preset of simulate with changes: what else is drawn, and in what the laboratory
@@ -37,6 +38,7 @@ type shot struct {
 	noise     imageio.Noise // of the exposure that was fitted
 	reference string
 	limit     limit
+	failure   error // why there is no fit, which then has no model and no numbers
 }
 
 // workers share the nights: the tests hold two processors at most.
@@ -140,9 +142,12 @@ func (n simulated) fitted(ctx context.Context) ([]shot, error) {
 		s.truth = d.truths[i]
 		exposure, result, err := bench.Fit(ctx, i, stretch*s.truth.Flight, ws)
 		if err != nil {
-			return err
+			s.fit, s.failure = &fit.Result{Numbers: numbers.Nothing()}, err
+			exposure = &imageio.Exposure{Noise: imageio.Noise{LightShot: 1}} // for the bound
+		} else {
+			s.fit = result
 		}
-		s.fit, s.noise, s.reference = result, exposure.Noise, exposure.Reference
+		s.noise, s.reference = exposure.Noise, exposure.Reference
 		s.limit, err = limitOf(ctx, d, i, exposure.Noise)
 		return err
 	})

@@ -86,7 +86,7 @@ func found(q quantity, r *fit.Result) bool {
 	case "N0", "mu":
 		return r.Model == fit.ModelCondensate || r.Model == fit.ModelBimodal
 	}
-	return r.Model != fit.ModelNone
+	return r.Model != fit.ModelNone && r.Model != ""
 }
 
 // head and line make the table.
