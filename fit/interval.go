@@ -110,9 +110,12 @@ func (s *session) perSum() float64 {
 
 // interval replaces a symmetric error by where χ² has risen by 1 on either side; where one
 // side has no end the other is moved to the one-sided 95 % limit. It works on the full picture:
-// a poorly known wing hangs on small misfits of a coarse one.
+// a poorly known wing hangs on small misfits of a coarse one. A fugacity at an end of its range
+// hides from the covariance how far it would let the number go: half of the interval is then the
+// error, too.
 func (s *session) interval(full *state, at int, v *numbers.Value, unit float64) error {
-	if !(v.Err > poor*math.Abs(v.V)) || full.cov == nil {
+	ended := full.ended(pAlpha)
+	if !(v.Err > poor*math.Abs(v.V) || ended) || full.cov == nil {
 		return nil
 	}
 	rest, err := s.runFull(full.kind, full.p, 1e-3)
@@ -135,6 +138,9 @@ func (s *session) interval(full *state, at int, v *numbers.Value, unit float64) 
 		}
 	}
 	v.Low, v.High = math.Max(0, v.V+(low-p.best)*unit), v.V+(high-p.best)*unit
+	if half := 0.5 * (v.High - v.Low); ended && half > v.Err {
+		v.Err = half
+	}
 	return nil
 }
 

@@ -15,6 +15,7 @@ type level struct {
 	light     []float64 // Σ reference
 	smooth    []float64 // the reference smoothed: where noise must not steer weights
 	probe     []float64 // I/Isat of the reference, 0 for a weak probe or a bin left out
+	beam      []float64 // the light before the optics blurred it, in no unit: weights of the blur
 	count     []float64 // good pixels in the bin; 0 leaves it out
 	varAtoms  []float64 // variance of atoms from the model, frozen within a minimisation
 	noise     Noise
@@ -106,6 +107,50 @@ func (l *level) alone(o int) bool {
 	median := 0.5 * (near[3] + near[4])
 	far := math.Max(near[7]-median, median-near[0])
 	return math.Abs(v-median) > struck*sigma && far < 0.5*math.Abs(v-median)
+}
+
+// setBeam estimates the light before the optics blurred it by a variance of v px²: the reference
+// smoothed a little against its noise, sharpened by −v/2 of its curvature, and never below a
+// fifth of its surroundings.
+func (l *level) setBeam(v float64) {
+	v /= float64(l.bin * l.bin)
+	mean := make([]float64, len(l.light))
+	for o, c := range l.count {
+		if mean[o] = l.smooth[o]; c > 0 {
+			mean[o] = l.light[o] / c
+		}
+	}
+	thirds(mean, l.w, l.h)
+	l.beam = make([]float64, len(mean))
+	for j := range l.h {
+		up, down := max(j-1, 0)*l.w, min(j+1, l.h-1)*l.w
+		for i := range l.w {
+			o := j*l.w + i
+			curve := mean[up+i] + mean[down+i] + mean[j*l.w+max(i-1, 0)] + mean[j*l.w+min(i+1, l.w-1)] - 4*mean[o]
+			least := math.Max(0.2*l.smooth[o]/math.Max(l.count[o], 1), 1e-6)
+			l.beam[o] = math.Max(mean[o]-0.5*v*curve, least)
+		}
+	}
+}
+
+// thirds replaces every value by (1, 2, 1)/4 of its neighbours along rows and columns.
+func thirds(v []float64, w, h int) {
+	for j := range h {
+		row := v[j*w : (j+1)*w]
+		before := row[0]
+		for i, x := range row {
+			row[i] = 0.25*before + 0.5*x + 0.25*row[min(i+1, w-1)]
+			before = x
+		}
+	}
+	before := append([]float64(nil), v[:w]...)
+	for j := range h {
+		row, next := v[j*w:(j+1)*w], v[min(j+1, h-1)*w:]
+		for i, x := range row {
+			row[i] = 0.25*before[i] + 0.5*x + 0.25*next[i]
+			before[i] = x
+		}
+	}
 }
 
 // setProbe fills probe from the smooth reference.

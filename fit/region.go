@@ -57,13 +57,16 @@ func (r room) union(q room) room {
 	return room{math.Min(r.x0, q.x0), math.Min(r.y0, q.y0), math.Max(r.x1, q.x1), math.Max(r.y1, q.y1)}
 }
 
-// The images that are blurred: the transmission, s times its derivative to s, and its
-// derivative to each density parameter.
+// The images that are blurred: the transmission, s times its derivative to s, its derivative to
+// each density parameter, and the light they are weighted with. The optics blur the light that
+// atoms let through, I T, while the reference holds I blurred: what lets the reference through
+// is blur(I T)/blur(I), which differs from blur(T) where light and cloud both change.
 const (
 	imageT     = 0
 	imageTS    = 1
 	imageFirst = 2
-	numImages  = imageFirst + firstLight
+	imageLight = imageFirst + firstLight
+	numImages  = imageLight + 1
 )
 
 type regionBuffers struct {
@@ -128,12 +131,44 @@ func (p *problem) blurred(q *params, in box, full bool) (pad, w int) {
 	b.size(w*h, max(w, h))
 	sharp := p.geometry(q, 0)
 	p.paint(q, &sharp, in.x0-pad, in.y0-pad, w, h, full)
-	for i := range numImages {
-		if i == imageT || full && p.used(i) {
-			b.blur(b.images[i], w, h)
+	if !p.fine.linear {
+		p.weight(in.x0-pad, in.y0-pad, w, h, full)
+		b.blur(b.images[imageLight], w, h)
+	}
+	for i := range imageLight {
+		if i != imageT && (!full || !p.used(i)) {
+			continue
+		}
+		b.blur(b.images[i], w, h)
+		if !p.fine.linear {
+			for n, v := range b.images[imageLight] {
+				b.images[i][n] /= v
+			}
 		}
 	}
 	return pad, w
+}
+
+// weight multiplies the images by the light, beyond the picture that of the nearest pixel.
+func (p *problem) weight(i0, j0, w, h int, full bool) {
+	l, b := p.fine, &p.buf.region
+	if l.beam == nil {
+		l.setBeam(p.blur * p.blur)
+	}
+	light := b.images[imageLight]
+	for j := range h {
+		row := min(max(j0+j, 0), l.h-1) * l.w
+		for i := range w {
+			light[j*w+i] = l.beam[row+min(max(i0+i, 0), l.w-1)]
+		}
+	}
+	for i := range imageLight {
+		if i == imageT || full && p.used(i) {
+			for n, v := range light {
+				b.images[i][n] *= v
+			}
+		}
+	}
 }
 
 // regionNormal adds the pixels of the box to the normal matrix and gradient, and returns

@@ -166,6 +166,9 @@ func (s *state) variance(i int) float64 {
 	return s.cov[a*s.tie.n+a]
 }
 
+// ended says that parameter i was free and ended on a bound.
+func (s *state) ended(i int) bool { return s.tie.slot[i] >= 0 && s.atBound[s.tie.slot[i]] }
+
 // unboundError is the standard deviation of parameter i as if no bound held it.
 func (s *state) unboundError(i int) float64 {
 	n := s.tie.n
