@@ -19,57 +19,75 @@ const (
 	capHeight            = 0.72 // of letters, in parts of their size
 )
 
-var black = color.NRGBA{A: 255}
+var (
+	black = color.NRGBA{A: 255}
+	white = color.NRGBA{255, 255, 255, 255}
+)
 
 // sheet is a figure being drawn: the canvas and the frame that the axes span.
 type sheet struct {
 	*Figure
-	c      vg.Canvas
-	frame  vg.Rectangle
-	xTicks []tick
-	yTicks []tick
+	c              vg.Canvas
+	frame          vg.Rectangle
+	xTicks, yTicks []tick
+	xPower, yPower int
+	bare           bool // another figure below it labels the x axis
 }
 
-func (f *Figure) draw(c vg.Canvas, width, height vg.Length) {
-	s := &sheet{Figure: f, c: c}
-	c.SetColor(color.NRGBA{255, 255, 255, 255})
+// draw lays the figures out from the top, their frames one below the other.
+func (s Stack) draw(c vg.Canvas, width, height vg.Length) {
+	c.SetColor(white)
 	c.Fill(vg.Rectangle{Max: vg.Point{X: width, Y: height}}.Path())
-	var xPower, yPower int
-	s.xTicks, xPower = f.X.ticks()
-	s.yTicks, yPower = f.Y.ticks()
-	s.layOut(width, height, yPower != 0)
-	for i := range f.Bands {
-		s.band(&f.Bands[i])
+	sheets := make([]*sheet, len(s))
+	left, foot := vg.Length(0), vg.Length(0)
+	for i, f := range s {
+		h := &sheet{Figure: f, c: c, bare: i < len(s)-1}
+		h.xTicks, h.xPower = f.X.ticks()
+		h.yTicks, h.yPower = f.Y.ticks()
+		left = max(left, h.left())
+		sheets[i] = h
 	}
-	for _, l := range f.Lines {
-		s.line(l)
+	foot = 2 + labelSize*1.15 + gap + tickSize*capHeight + gap
+	part := (height - foot) / vg.Length(len(s))
+	for i, h := range sheets {
+		top := height - part*vg.Length(i)
+		h.frame.Min = vg.Point{X: left, Y: top - part}
+		h.frame.Max = vg.Point{X: width - 4 - h.overhang(), Y: top - 4}
+		if h.yPower != 0 {
+			h.frame.Max.Y -= tickSize * 1.2
+		}
+		h.draw(top)
 	}
-	for i := range f.Curves {
-		s.curve(&f.Curves[i])
-	}
-	for i := range f.Points {
-		s.points(&f.Points[i])
-	}
-	s.axes(xPower, yPower, height)
-	for _, m := range f.Marks {
-		s.text(m.Label, legendSize, s.at(m.X, m.Y), 0)
-	}
-	s.legend()
 }
 
-// layOut finds the frame from the labels around it.
-func (s *sheet) layOut(width, height vg.Length, room bool) {
+// left is the room that a figure needs to the left of its frame.
+func (s *sheet) left() vg.Length {
 	wide := vg.Length(0)
 	for _, t := range s.yTicks {
 		wide = max(wide, t.label.width(tickSize))
 	}
-	s.frame.Min.X = 2 + labelSize*1.15 + gap + wide + gap
-	s.frame.Min.Y = 2 + labelSize*1.15 + gap + tickSize*capHeight + gap
-	s.frame.Max.X = width - 4 - s.overhang()
-	s.frame.Max.Y = height - 4
-	if room {
-		s.frame.Max.Y -= tickSize * 1.2
+	return 2 + labelSize*1.15 + gap + wide + gap
+}
+
+// draw draws a figure whose room ends at top.
+func (s *sheet) draw(top vg.Length) {
+	for i := range s.Bands {
+		s.band(&s.Bands[i])
 	}
+	for _, l := range s.Lines {
+		s.line(l)
+	}
+	for i := range s.Curves {
+		s.curve(&s.Curves[i])
+	}
+	for i := range s.Points {
+		s.points(&s.Points[i])
+	}
+	s.axes(top)
+	for _, m := range s.Marks {
+		s.text(m.Label, legendSize, s.at(m.X, m.Y), 0)
+	}
+	s.legend()
 }
 
 // overhang is how far the last label below the frame reaches over its end.
@@ -147,14 +165,16 @@ func (s *sheet) stroke(c color.Color, width float64, dash []float64, points ...v
 }
 
 // axes draws frame, marks and labels.
-func (s *sheet) axes(xPower, yPower int, height vg.Length) {
+func (s *sheet) axes(top vg.Length) {
 	f := s.frame
 	s.stroke(black, float64(frameWidth), nil, f.Min, vg.Point{X: f.Max.X, Y: f.Min.Y}, f.Max, vg.Point{X: f.Min.X, Y: f.Max.Y}, f.Min, vg.Point{X: f.Min.X + 1, Y: f.Min.Y})
 	for _, t := range s.xTicks {
 		x, long := s.x(t.at), lengthOf(t)
 		s.stroke(black, float64(frameWidth), nil, vg.Point{X: x, Y: f.Min.Y}, vg.Point{X: x, Y: f.Min.Y + long})
 		s.stroke(black, float64(frameWidth), nil, vg.Point{X: x, Y: f.Max.Y}, vg.Point{X: x, Y: f.Max.Y - long})
-		s.text(t.label, tickSize, vg.Point{X: x - t.label.width(tickSize)/2, Y: f.Min.Y - gap - tickSize*capHeight}, 0)
+		if !s.bare {
+			s.text(t.label, tickSize, vg.Point{X: x - t.label.width(tickSize)/2, Y: f.Min.Y - gap - tickSize*capHeight}, 0)
+		}
 	}
 	for _, t := range s.yTicks {
 		y, long := s.y(t.at), lengthOf(t)
@@ -162,17 +182,26 @@ func (s *sheet) axes(xPower, yPower int, height vg.Length) {
 		s.stroke(black, float64(frameWidth), nil, vg.Point{X: f.Max.X, Y: y}, vg.Point{X: f.Max.X - long, Y: y})
 		s.text(t.label, tickSize, vg.Point{X: f.Min.X - gap - t.label.width(tickSize), Y: y - tickSize*capHeight/2}, 0)
 	}
+	s.names(top)
+}
+
+// names writes what the axes are, and the powers of ten taken out of their marks.
+func (s *sheet) names(top vg.Length) {
+	f := s.frame
+	y := s.Y.Label.width(labelSize)
+	s.text(s.Y.Label, labelSize, vg.Point{X: 2 + labelSize*0.85, Y: (f.Min.Y+f.Max.Y)/2 - y/2}, math.Pi/2)
+	if s.yPower != 0 {
+		s.text(Plain("×").And(powerOfTen(s.yPower)), tickSize, vg.Point{X: f.Min.X, Y: top - 2 - tickSize*1.05}, 0)
+	}
+	if s.bare {
+		return
+	}
 	below := 2 + labelSize*0.25
 	x := s.X.Label.width(labelSize)
 	s.text(s.X.Label, labelSize, vg.Point{X: (f.Min.X+f.Max.X)/2 - x/2, Y: below}, 0)
-	y := s.Y.Label.width(labelSize)
-	s.text(s.Y.Label, labelSize, vg.Point{X: 2 + labelSize*0.85, Y: (f.Min.Y+f.Max.Y)/2 - y/2}, math.Pi/2)
-	if xPower != 0 {
-		l := Plain("×").And(powerOfTen(xPower))
+	if s.xPower != 0 {
+		l := Plain("×").And(powerOfTen(s.xPower))
 		s.text(l, tickSize, vg.Point{X: f.Max.X - l.width(tickSize), Y: below}, 0)
-	}
-	if yPower != 0 {
-		s.text(Plain("×").And(powerOfTen(yPower)), tickSize, vg.Point{X: f.Min.X, Y: height - 2 - tickSize*1.05}, 0)
 	}
 }
 

@@ -103,34 +103,49 @@ func init() {
 
 // Render draws the figure in a format of Formats. Sizes are in mm; letters keep their size.
 // The same figure gives the same bytes.
-func (f *Figure) Render(w io.Writer, format string, width, height float64) (err error) {
+func (f *Figure) Render(w io.Writer, format string, width, height float64) error {
+	return Stack{f}.Render(w, format, width, height)
+}
+
+// Stack are figures over one another that share their x axis, which the lowest one labels.
+type Stack []*Figure
+
+// Render draws the stack as Figure.Render does; each figure has its part of the height.
+func (s Stack) Render(w io.Writer, format string, width, height float64) (err error) {
 	defer func() {
 		if r := recover(); r != nil {
 			err = fmt.Errorf("draw the figure: %v", r) // the canvases panic on what they cannot draw
 		}
 	}()
 	wl, hl := vg.Length(width)*vg.Millimeter, vg.Length(height)*vg.Millimeter
-	var c vg.CanvasWriterTo
-	switch format {
-	case "png":
-		c = vgimg.PngCanvas{Canvas: vgimg.NewWith(vgimg.UseWH(wl, hl), vgimg.UseDPI(dpi))}
-	case "svg":
-		c = vgsvg.New(wl, hl)
-	case "pdf":
-		c = vgpdf.New(wl, hl)
-	default:
-		return fmt.Errorf("draw the figure: unknown format %q", format)
-	}
-	if err := f.check(); err != nil {
+	c, err := canvas(format, wl, hl)
+	if err != nil {
 		return err
 	}
-	f.draw(c, wl, hl)
+	for _, f := range s {
+		if err := f.check(); err != nil {
+			return err
+		}
+	}
+	s.draw(c, wl, hl)
 	var b bytes.Buffer
 	if _, err := c.WriteTo(&b); err != nil {
 		return fmt.Errorf("draw the figure: %w", err)
 	}
 	_, err = w.Write(b.Bytes())
 	return err
+}
+
+func canvas(format string, width, height vg.Length) (vg.CanvasWriterTo, error) {
+	switch format {
+	case "png":
+		return vgimg.PngCanvas{Canvas: vgimg.NewWith(vgimg.UseWH(width, height), vgimg.UseDPI(dpi))}, nil
+	case "svg":
+		return vgsvg.New(width, height), nil
+	case "pdf":
+		return vgpdf.New(width, height), nil
+	}
+	return nil, fmt.Errorf("draw the figure: unknown format %q", format)
 }
 
 // check refuses ranges that cannot be drawn.

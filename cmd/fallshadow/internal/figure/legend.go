@@ -1,10 +1,6 @@
 package figure
 
-import (
-	"image/color"
-
-	"gonum.org/v1/plot/vg"
-)
+import "gonum.org/v1/plot/vg"
 
 // entry is a line of the legend.
 type entry struct {
@@ -62,7 +58,7 @@ func (s *sheet) legend() {
 	}
 	size := vg.Point{X: sample + gap + wide, Y: vg.Length(len(list)) * lineFeed}
 	box := s.corner(size)
-	s.c.SetColor(color.NRGBA{255, 255, 255, 255})
+	s.c.SetColor(white)
 	s.c.Fill(vg.Rectangle{Min: vg.Point{X: box.Min.X - 2, Y: box.Min.Y - 1}, Max: vg.Point{X: box.Max.X + 2, Y: box.Max.Y + 1}}.Path())
 	y := box.Max.Y - lineFeed
 	for _, e := range list {

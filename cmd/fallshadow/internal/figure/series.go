@@ -43,19 +43,19 @@ const bandPart = 0.22
 // curve draws a line where it is inside the frame.
 func (s *sheet) curve(c *Curve) {
 	l := looks[c.Role]
-	var run []vg.Point
+	var part []vg.Point
 	flush := func() {
-		s.stroke(l.color, l.width, l.dash, run...)
-		run = nil
+		s.stroke(l.color, l.width, l.dash, part...)
+		part = nil
 	}
 	for i := range c.X {
 		inside := s.X.holds(c.X[i]) && s.Y.holds(c.Y[i])
 		if i > 0 {
 			if a, b, ok := s.cut(c.X[i-1], c.Y[i-1], c.X[i], c.Y[i]); ok {
-				if len(run) == 0 {
-					run = append(run, a)
+				if len(part) == 0 {
+					part = append(part, a)
 				}
-				run = append(run, b)
+				part = append(part, b)
 			}
 		}
 		if !inside {
@@ -179,7 +179,7 @@ func (s *sheet) mark(r Role, open bool, at vg.Point, size vg.Length) {
 	}
 	s.c.SetColor(looks[r].color)
 	if open {
-		s.c.SetColor(color.NRGBA{255, 255, 255, 255})
+		s.c.SetColor(white)
 	}
 	s.c.Fill(p)
 	s.c.SetColor(looks[r].color)

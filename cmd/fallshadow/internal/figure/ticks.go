@@ -64,7 +64,7 @@ func logTicks(low, high float64) []tick {
 	for _, more := range []struct {
 		below  float64
 		digits []float64
-	}{{1.6, []float64{2, 5}}, {1, []float64{3, 7}}, {0.5, []float64{4, 6, 8, 9}}} {
+	}{{2.2, []float64{2, 5}}, {1, []float64{3, 7}}, {0.5, []float64{4, 6, 8, 9}}} {
 		for _, m := range more.digits {
 			labelled[m] = labelled[m] || decades < more.below
 		}
