@@ -51,6 +51,11 @@ func (f *figureFile) UnmarshalText(text []byte) error {
 	return err
 }
 
+func (f figureFile) format() string {
+	format, _ := figure.FormatOf(string(f))
+	return format
+}
+
 // save writes a figure to the named files, or to all formats under the name that is usual.
 func (c *figureArgs) save(t terminal, f *figure.Figure, usual string) error {
 	files := c.Figure

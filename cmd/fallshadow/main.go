@@ -40,6 +40,7 @@ type commands struct {
 	Calibrate calibrateCmd `cmd:"" help:"Measure what the settings need."`
 	Curve     curveCmd     `cmd:"" help:"Analyse a fitted night: the condensate fraction against temperature, theory, the transition."`
 	Init      initCmd      `cmd:"" help:"Print commented settings of a laboratory to start from."`
+	Predict   predictCmd   `cmd:"" help:"Say what a planned shot will show after any flight, and how well it will tell N, T and the fraction."`
 	Simulate  simulateCmd  `cmd:"" help:"Write a night of simulated raw shots with known truth."`
 	Watch     watchCmd     `cmd:"" help:"Fit the shots of a night while it is being taken, with a line and a page that show each."`
 }

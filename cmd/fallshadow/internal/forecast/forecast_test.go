@@ -1,0 +1,130 @@
+package forecast
+
+import (
+	"bytes"
+	"context"
+	"io"
+	"math"
+	"strings"
+	"testing"
+
+	"fallshadow/cmd/fallshadow/internal/settings"
+)
+
+const laboratory = `[atom]
+species = "87Rb"
+[trap]
+axis1_hz = 20.0
+axis2_hz = 120.0
+sight_hz = 120.0
+[camera]
+pixel_um = 6.45
+magnification = 2.0
+electrons_per_count = 1.0
+read_noise_electrons = 6.0
+resolution_um = 3.0
+[probe]
+alpha = 2.0
+counts_per_isat = 9000.0
+exposure_us = 40.0
+[flight]
+from = "TOF"
+[region]
+x = 10
+y = 20
+width = 120
+height = 90
+`
+
+func lab(t *testing.T, replace ...string) *settings.Settings {
+	t.Helper()
+	s, err := settings.Parse([]byte(strings.NewReplacer(replace...).Replace(laboratory)), "test.toml")
+	if err != nil {
+		t.Fatal(err)
+	}
+	return s
+}
+
+var usual = Request{Atoms: 1e5, T: 90e-9, From: 2e-3, To: 30e-3}
+
+func text(t *testing.T, f *Forecast) string {
+	t.Helper()
+	var b bytes.Buffer
+	if err := f.WriteText(&b); err != nil {
+		t.Fatal(err)
+	}
+	return b.String()
+}
+
+func TestForecast(t *testing.T) {
+	f, err := New(context.Background(), lab(t), usual)
+	if err != nil {
+		t.Fatal(err)
+	}
+	got := text(t, f)
+	for _, want := range []string{"T/Tc0 = ", "semi-ideal", "from memory", "falls below 3 after", "leave the picture of 120 x 90 pixels after", Caution, "photons in the pulse", "assumed: a probe of 0.2 Isat"} {
+		if !strings.Contains(got, want) {
+			t.Errorf("the text lacks %q:\n%s", want, got)
+		}
+	}
+	if len(f.Assumed) != 1 {
+		t.Errorf("assumed: %q", f.Assumed)
+	}
+	if e := f.Plan.Experiment; math.Abs(e.Light(3, 4)-1800) > 1e-9 || e.X != 59.5 || e.Y != 44.5 {
+		t.Errorf("light %g, centre (%g, %g)", e.Light(3, 4), e.X, e.Y)
+	}
+	if err := f.Plot().Render(io.Discard, "svg", 86, 150); err != nil {
+		t.Error(err)
+	}
+}
+
+// TestRebin: fitted pixels of 2x2 saved ones count four times the light and twice the noise
+// of a read (of four reads), and cover the same field.
+func TestRebin(t *testing.T) {
+	r := usual
+	r.Intensity = 0.5
+	f, err := New(context.Background(), lab(t, "[region]", "[fit]\nrebin = 2\n[region]"), r)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if e := f.Plan.Experiment; math.Abs(e.Light(0, 0)-4*4500) > 1e-9 || e.Noise.Read != 12 || e.Width != 60 || e.Height != 45 || math.Abs(e.Optics.Pixel-6.45e-6) > 1e-15 || len(f.Assumed) != 0 {
+		t.Errorf("%+v, assumed %q", e, f.Assumed)
+	}
+}
+
+// TestSparse: what settings leave out is assumed and said; a hot gas and a gas without a
+// scattering length of its own have forecasts too.
+func TestSparse(t *testing.T) {
+	s := lab(t, "electrons_per_count = 1.0", "", "read_noise_electrons = 6.0", "", "counts_per_isat = 9000.0", "", "exposure_us = 40.0", "",
+		"[region]\nx = 10\ny = 20\nwidth = 120\nheight = 90", "", `"87Rb"`, `"7Li"`)
+	f, err := New(context.Background(), s, Request{Atoms: 1e5, Reduced: 1.2, From: 1e-3, To: 5e-3})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if len(f.Assumed) != 3 || math.Abs(f.Gas.Reduced-1.2) > 1e-12 || f.Gas.Condensate != 0 {
+		t.Errorf("assumed %q, %+v", f.Assumed, f.Gas)
+	}
+	if got := text(t, f); strings.Contains(got, "NaN") || strings.Contains(got, "photons") {
+		t.Errorf("text:\n%s", got)
+	}
+	if err := f.Plot().Render(io.Discard, "pdf", 86, 150); err != nil {
+		t.Error(err)
+	}
+}
+
+func TestRefused(t *testing.T) {
+	ctx := context.Background()
+	for _, r := range []Request{{T: 1e-7, From: 1e-3, To: 2e-3}, {Atoms: 1e5, From: 1e-3, To: 2e-3}, {Atoms: 1e5, T: 1e-7, From: 2e-3, To: 2e-3}} {
+		if _, err := New(ctx, lab(t), r); err == nil {
+			t.Errorf("%+v is planned", r)
+		}
+	}
+	if _, err := New(ctx, lab(t, "[region]", "[shots]\nlayout = \"density\"\ndensity_unit = \"log_ratio\"\n[region]"), usual); err == nil {
+		t.Error("density images are planned")
+	}
+	stopped, stop := context.WithCancel(ctx)
+	stop()
+	if _, err := New(stopped, lab(t), usual); err == nil {
+		t.Error("a stopped forecast is made")
+	}
+}
