@@ -39,6 +39,7 @@ type commands struct {
 	Check     checkCmd     `cmd:"" help:"Look at a night before it is fitted: what would be read, and what is wrong. Nothing is written."`
 	Calibrate calibrateCmd `cmd:"" help:"Measure what the settings need."`
 	Curve     curveCmd     `cmd:"" help:"Analyse a fitted night: the condensate fraction against temperature, theory, the transition."`
+	Export    exportCmd    `cmd:"" help:"Write the table of a fitted night as CSV, FITS table or JSON lines."`
 	Init      initCmd      `cmd:"" help:"Print commented settings of a laboratory to start from."`
 	Predict   predictCmd   `cmd:"" help:"Say what a planned shot will show after any flight, and how well it will tell N, T and the fraction."`
 	Simulate  simulateCmd  `cmd:"" help:"Write a night of simulated raw shots with known truth."`

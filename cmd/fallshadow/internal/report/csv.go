@@ -31,7 +31,10 @@ func CheckScan(scan []string) error {
 // WriteCSV writes the table of rows with the scan variables behind the columns: UTF-8,
 // comma, one header line, an empty cell where there is nothing.
 func WriteCSV(w io.Writer, rows []ledger.Row, scan []string) error {
-	out := csv.NewWriter(w)
+	return writeTable(csv.NewWriter(w), rows, scan)
+}
+
+func writeTable(out *csv.Writer, rows []ledger.Row, scan []string) error {
 	line := make([]string, 0, len(Columns)+len(scan))
 	for _, c := range Columns {
 		line = append(line, c.Name)
