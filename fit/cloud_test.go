@@ -251,6 +251,33 @@ func TestPulls(t *testing.T) {
 	}
 }
 
+// TestEndedFugacity: a fugacity at an end of its range leaves T less free than the picture does;
+// the interval then says how far T may be off.
+func TestEndedFugacity(t *testing.T) {
+	const shots = 10
+	ended, sum := 0, 0.0
+	for i := range uint64(shots) {
+		sc := standardScene(t, 420e-9, 0, 300+i)
+		sc.alpha, sc.electrons = 0.15, 12
+		sc.thermal = model.ThermalNumber(sc.T, sc.alpha, sc.lab.Trap)
+		r := mustFit(t, sc, sc.draw(t), Options{})
+		v := r.Numbers.T
+		sum += math.Pow((v.V-sc.T)/v.Err, 2) / shots
+		if z := r.Numbers.Fugacity.V; r.Model != ModelThermal || z < 0.99 && z > math.Exp(-0.9999*alphaMost) {
+			continue
+		}
+		ended++
+		if !(v.Low < v.V && v.V < v.High) {
+			t.Errorf("shot %d: T is %.3g with the interval %.3g to %.3g", i, v.V, v.Low, v.High)
+		}
+		within(t, fmt.Sprintf("shot %d: error against half of the interval", i), v.Err/(0.5*(v.High-v.Low)), 1, 0.4)
+	}
+	if ended < 2 {
+		t.Errorf("the fugacity ended in %d of %d shots: the scene tests nothing", ended, shots)
+	}
+	within(t, "rms pull of T", math.Sqrt(sum), 1, 0.5)
+}
+
 // TestFindsTheCloud: without help, from corner to corner, beside hot pixels and a second cloud.
 func TestFindsTheCloud(t *testing.T) {
 	for i, c := range []scene{

@@ -114,7 +114,7 @@ func (s *session) perSum() float64 {
 // hides from the covariance how far it would let the number go: half of the interval is then the
 // error, too.
 func (s *session) interval(full *state, at int, v *numbers.Value, unit float64) error {
-	ended := full.ended(pAlpha)
+	ended := full.ended()
 	if !(v.Err > poor*math.Abs(v.V) || ended) || full.cov == nil {
 		return nil
 	}

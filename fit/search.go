@@ -166,8 +166,14 @@ func (s *state) variance(i int) float64 {
 	return s.cov[a*s.tie.n+a]
 }
 
-// ended says that parameter i was free and ended on a bound.
-func (s *state) ended(i int) bool { return s.tie.slot[i] >= 0 && s.atBound[s.tie.slot[i]] }
+// ended says that a free fugacity is at an end of its range, or so close to 1 that the slopes in
+// −ln z, which diverge there, say little.
+func (s *state) ended() bool {
+	a := s.tie.slot[pAlpha]
+	return a >= 0 && (s.atBound[a] || s.p[pAlpha] < steepAlpha)
+}
+
+const steepAlpha = 0.01
 
 // unboundError is the standard deviation of parameter i as if no bound held it.
 func (s *state) unboundError(i int) float64 {
