@@ -119,8 +119,11 @@ func (s *session) interval(full *state, at int, v *numbers.Value, unit float64) 
 		return nil
 	}
 	rest, err := s.runFull(full.kind, full.p, 1e-3)
-	if err != nil || !rest.used() {
+	if err != nil {
 		return err
+	}
+	if !rest.used() {
+		rest = full // nothing is lower than where it began
 	}
 	m, j := s.tmpl.measured(&rest.p, rest.kind)
 	p := profile{s: s, rest: rest, at: at, best: *measuredAt(&m, at), sigma: math.Sqrt(rest.spread(j[at : at+1])[0][0])}
