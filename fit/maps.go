@@ -9,6 +9,7 @@ type Maps struct {
 	Density       []float32 // σ0 n by the inverted law
 	Thermal       []float32 // of the model, without the camera's blur
 	Total         []float32 // both parts
+	Seen          []float32 // both parts through the camera's blur, to be held against Density
 	Residual      []float32 // counts minus model in standard deviations
 }
 
@@ -18,7 +19,8 @@ func (s *session) maps(st *state) *Maps {
 	n := l.w * l.h
 	m := &Maps{
 		Width: l.w, Height: l.h,
-		Density: make([]float32, n), Thermal: make([]float32, n), Total: make([]float32, n), Residual: make([]float32, n),
+		Density: make([]float32, n), Thermal: make([]float32, n), Total: make([]float32, n),
+		Seen: make([]float32, n), Residual: make([]float32, n),
 	}
 	p := s.problem(0, &st.p, st.kind)
 	p.render(&st.p, s.ws.kappa, s.ws.kappa)
@@ -32,21 +34,24 @@ func (s *session) maps(st *state) *Maps {
 		x, y := float64(o%l.w), float64(o/l.w)
 		m.Thermal[o], m.Total[o] = float32(thermal(x, y)), float32(total(x, y))
 		m.Residual[o] = float32(s.ws.resid[o])
-		m.Density[o] = float32(s.seen(&geo, o, x, y))
+		density, seen := s.seen(&geo, o, x, y)
+		m.Density[o], m.Seen[o] = float32(density), float32(seen)
 	}
 	return m
 }
 
-// seen is the density that one pixel shows.
-func (s *session) seen(geo *geometry, o int, x, y float64) float64 {
+// seen is the density that one pixel shows, and the one that the rendered model shows there.
+func (s *session) seen(geo *geometry, o int, x, y float64) (density, model float64) {
 	l := s.levels[0]
 	switch {
 	case l.count[o] == 0:
-		return math.NaN()
+		return math.NaN(), math.NaN()
 	case l.linear:
-		return l.atoms[o] - geo.plane(x, y)
+		plane := geo.plane(x, y)
+		return l.atoms[o] - plane, s.ws.kappa[o] - plane
 	}
-	k := geo.scale(x, y) * l.light[o]
+	scale := geo.scale(x, y)
+	k := scale * l.light[o]
 	floor := math.Max(1, 0.5*math.Sqrt(l.readVariance(o)))
-	return s.law.od(math.Max(l.atoms[o], floor)/k, k*l.saturate)
+	return s.law.od(math.Max(l.atoms[o], floor)/k, k*l.saturate), s.law.od(s.ws.kappa[o]/scale, k*l.saturate)
 }
