@@ -12,7 +12,6 @@ func (s *session) atCeiling(r *Result) bool {
 	}
 	x := math.Min(math.Max(math.Round(r.X), 0), float64(l.w-1))
 	y := math.Min(math.Max(math.Round(r.Y), 0), float64(l.h-1))
-	var w walk
-	t, _, _ := w.transmit(&s.law, r.PeakOD, l.probe[int(y)*l.w+int(x)])
-	return t <= 2*s.law.stray
+	o := int(y)*l.w + int(x)
+	return r.PeakOD >= s.law.od(2*s.law.stray, math.Max(l.smooth[o], 0)*l.saturate)
 }

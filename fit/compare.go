@@ -225,7 +225,8 @@ func (s *session) compareWings(st *state, c *Checks) error {
 	start := st.p
 	start[pCondensate] = 0
 	p := s.problem(s.work, &start, k)
-	p.skip = skip
+	p.level = p.level.without(skip)
+	p.fine = p.level
 	w, err := s.ws.minimize(s.ctx, p, k, start, 0.01)
 	if err != nil {
 		return err
@@ -235,107 +236,4 @@ func (s *session) compareWings(st *state, c *Checks) error {
 		c.WingsT, c.WingsTErr = m.T, math.Sqrt(w.spread(j[2:3])[0][0])
 	}
 	return nil
-}
-
-// sum adds up the density pixel by pixel inside a window that holds the cloud, each by the
-// inverted law; bad and black pixels take the model's density. The bias of a logarithm of
-// noisy counts is taken off: ⟨od⟩−od = α[v_A/2A² − v_L/2L²]. It follows on residuals, whose κ it
-// uses.
-func (s *session) sum(st *state, r *Result) {
-	l := s.levels[0]
-	window := s.window(st)
-	model := s.densityOf(st)
-	p := s.problem(0, &st.p, st.kind)
-	geo := p.geometry(&st.p, p.blurOn(p.level))
-	var total, fitted, variance, pull, counts float64
-	pixels := 0
-	for o := range l.atoms {
-		x, y := float64(o%l.w), float64(o/l.w)
-		if !window(x, y) {
-			continue
-		}
-		d := model(x, y)
-		fitted += d
-		if l.count[o] == 0 {
-			total += d
-			continue
-		}
-		v, e, k := s.pixelDensity(p, &geo, o, x, y, d)
-		total += v
-		variance += e
-		pull += k
-		counts += l.atoms[o]
-		pixels++
-	}
-	scale := s.tmpl.pixel * s.tmpl.pixel / s.lab.Species.Sigma0()
-	r.Sum = total * scale
-	r.SumErr = math.Sqrt(variance+pull*pull*st.variance(pLight)) * scale
-	if l.linear || counts > fewCounts*float64(pixels) {
-		r.Checks.AtomsOverSum = fitted / total
-	}
-}
-
-// fewCounts is the mean number of electrons a pixel below which the sum of logarithms is not
-// held against the fit: their bias is then more than its first term.
-const fewCounts = 60
-
-// pixelDensity returns σ0 n of one good pixel by the inverted law, its variance, and its
-// derivative to the light's logarithm. d is the model's density there.
-func (s *session) pixelDensity(p *problem, geo *geometry, o int, x, y, d float64) (v, variance, pull float64) {
-	l := p.level
-	if l.linear {
-		return l.atoms[o] - geo.plane(x, y), l.sigma * l.sigma, 1
-	}
-	k := geo.scale(x, y)
-	sat := k * l.smooth[o] * l.saturate
-	t := s.ws.kappa[o] / k
-	vl, vd := l.variances(o)
-	a := math.Max(k*t*l.smooth[o], 1)
-	light := k * math.Max(l.smooth[o], 1)
-	da, dl := p.law.a/a+sat/light, p.law.a/light+sat/light
-	va := a + l.readVariance(o)
-	variance = da*da*va + dl*dl*k*k*vl + (p.law.a/a-p.law.a/light)*(p.law.a/a-p.law.a/light)*vd
-	if l.atoms[o] < 3*math.Sqrt(l.readVariance(o)) || l.light[o] <= 0 {
-		return d, variance, 0
-	}
-	v = p.law.od(l.atoms[o]/(k*l.light[o]), k*l.light[o]*l.saturate)
-	if !finite(v) {
-		return d, variance, 0
-	}
-	v -= p.law.a * (va/(2*a*a) - k*k*vl/(2*light*light))
-	return v, variance, p.law.a + sat*(1-t)
-}
-
-// window says whether a place belongs to the cloud: 4.5 widths or 1.4 radii.
-func (s *session) window(st *state) func(x, y float64) bool {
-	thermal := s.tmpl.thermalOf(&st.p).reach(st.p[pX], st.p[pY])
-	cond := s.tmpl.condensateOf(&st.p).reach(st.p[pX], st.p[pY])
-	most := 2.0
-	if s.tmpl.gaussian {
-		most = 20
-	}
-	return func(x, y float64) bool {
-		return st.kind.thermal && thermal(x, y) < 20.25 || st.kind.condensate && cond(x, y) < most
-	}
-}
-
-// densityOf returns the model's σ0 n as a function of place, without blur.
-func (s *session) densityOf(st *state) func(x, y float64) float64 {
-	p := s.problem(0, &st.p, st.kind)
-	geo := p.geometry(&st.p, p.blurOn(p.level))
-	e := s.tmpl.condensateOf(&st.p)
-	inv := e.shape().Inverse()
-	return func(x, y float64) float64 {
-		dx, dy := x-geo.x0, y-geo.y0
-		g, _ := boseFast(dx*(0.5*geo.axx*dx+geo.axy*dy) + 0.5*geo.ayy*dy*dy + geo.alpha)
-		d := geo.ampGrown * g * geo.norm
-		if s.tmpl.excess != nil {
-			d *= geo.excess(s.tmpl.excess, dx, dy)
-		}
-		if st.p[pCondensate] > 0 {
-			c, _ := p.condensate(dx, dy, &inv)
-			d += st.p[pCondensate] * c
-		}
-		return d
-	}
 }

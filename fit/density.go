@@ -116,8 +116,7 @@ func DensityChi2(img *DensityImage, p *DensityParams, ws *DensityWorkspace) (flo
 func (ws *DensityWorkspace) init() {
 	if ws.levels == nil {
 		ws.levels = make([]densityLevel, densityLevels)
-		all := allKernels()
-		ws.problem.kernels = all[len(all)-1]
+		ws.problem.kernels = bestKernels()
 	}
 }
 

@@ -6,12 +6,8 @@ import (
 	"fallshadow/model/bose"
 )
 
-// Where z = e^−t is below 1e-10 only the background is left. A condensate may reach further:
-// beyond densityDark z is taken as 0, so that no ratio of it overflows.
-const (
-	densitySkip = 23
-	densityDark = 80
-)
+// densitySkip is the t beyond which e^−t is below 1e-10 and only the background is left.
+const densitySkip = 23
 
 // densityKept is for how many passes over the full image one matrix serves.
 const densityKept = 3
@@ -31,8 +27,7 @@ type densityProblem struct {
 	g, h, k, r []float64
 	tail       []float64
 	geo        densityGeometry
-	line       kernelLine
-	light      float64 // background at the first column of the row
+	bose       boseRow
 	moments    densityMoments
 	sum        kernelSums
 	total      kernelTotals
@@ -48,10 +43,6 @@ type densityGeometry struct {
 	t20, t11, t02 float64    // t = t20 X² + t11 XY + t02 Y²
 	q20, q11, q02 float64
 	x0, dx        float64 // X of the first column, and the step
-	// The ratio of e^−t over one pixel falls by bend1 from pixel to pixel, that over a group
-	// by bend8, from group to group by bend64; bend28 is what it has fallen by within one.
-	bend1, bend8, bend28, bend64 float64
-	run                          kernelFar
 }
 
 // set prepares a pass over level l at p, and says whether p has a picture.
@@ -68,8 +59,6 @@ func (geo *densityGeometry) set(p *DensityParams, l *densityLevel) bool {
 	}
 	geo.t20, geo.t11, geo.t02 = quadratic(0.5*geo.inv[0], 0.5*geo.inv[1])
 	geo.q20, geo.q11, geo.q02 = quadratic(geo.inv[2], geo.inv[3])
-	curve := -2 * geo.t20 * geo.dx * geo.dx
-	geo.bend1, geo.bend8, geo.bend28, geo.bend64 = math.Exp(curve), math.Exp(8*curve), math.Exp(28*curve), math.Exp(64*curve)
 	sum := geo.q20 + geo.q02 + geo.t20 + geo.t02
 	for _, v := range p {
 		sum += math.Abs(v)
@@ -94,10 +83,12 @@ func (p *densityProblem) Normal(x, h, g []float64) float64 {
 	p.moments = densityMoments{}
 	full := h != nil && (l.bin > 1 || p.passes == 0 || p.passes >= densityKept)
 	geo := &p.geo
-	p.line = kernelLine{
+	p.bose.kernels, p.bose.x0 = p.kernels, geo.x0
+	p.bose.line = kernelLine{
 		dx: geo.dx, db: params[DensityLightX] * float64(l.bin) / float64(l.fullW),
 		t2: geo.t20, amp: params[DensityThermal] * (1 / bose.Zeta2), q2: geo.q20, peak: params[DensityPeak],
 	}
+	p.bose.bend()
 	for j := range l.h {
 		p.row(j, full)
 	}
@@ -109,32 +100,16 @@ func (p *densityProblem) Normal(x, h, g []float64) float64 {
 	return p.moments.rr
 }
 
-// columns are those of the row between the roots of a·X² + b·X + c ≤ 0, within the row.
-func (geo *densityGeometry) columns(a, b, c float64, n int) (lo, hi int) {
-	d := b*b - 4*a*c
-	if !(d > 0) {
-		return 0, 0
-	}
-	d = math.Sqrt(d)
-	scale := 0.5 / (a * geo.dx)
-	offset := geo.x0 / geo.dx
-	first, last := (-b-d)*scale-offset, (-b+d)*scale-offset
-	if !(last >= 0) || !(first < float64(n)) {
-		return 0, 0
-	}
-	return int(math.Ceil(max(first, 0))), int(min(last, float64(n-1))) + 1
-}
-
 // row adds row j to the moments.
 func (p *densityProblem) row(j int, full bool) {
-	l, geo, params := p.level, &p.geo, p.geo.p
+	l, geo, params, bose := p.level, &p.geo, p.geo.p, &p.bose
 	y := (l.at(j) - params[DensityY]) / geo.unit
-	p.light = params[DensityLight] + params[DensityLightY]*l.rowY(j) + params[DensityLightX]*l.columnX(0)
-	line := &p.line
+	bose.b0 = params[DensityLight] + params[DensityLightY]*l.rowY(j) + params[DensityLightX]*l.columnX(0)
+	line := &bose.line
 	line.t1, line.t0 = geo.t11*y, geo.t02*y*y
 	line.q1, line.q0 = geo.q11*y, geo.q02*y*y
-	a, b := geo.columns(line.t2, line.t1, line.t0-densitySkip, l.stride)
-	ca, cb := geo.columns(line.q2, line.q1, line.q0-1, l.stride)
+	a, b := bose.below(densitySkip, l.stride)
+	ca, cb := bose.columns(line.q2, line.q1, line.q0-1, l.stride)
 	ca, cb = ca&^(kernelLanes-1), groups(cb)
 	switch {
 	case a >= b:
@@ -145,7 +120,7 @@ func (p *densityProblem) row(j int, full bool) {
 	a, b = a&^(densityBlock-1), (b+densityBlock-1)&^(densityBlock-1)
 	p.background(j, a, b, y)
 	if a < b {
-		p.fill(j, a, b)
+		bose.fill(p.g, p.h, p.r, p.pixels(j), a, b)
 		p.sums(j, a, b, ca, cb, full)
 		p.fold(y, ca < cb, full)
 	}
@@ -153,14 +128,14 @@ func (p *densityProblem) row(j int, full bool) {
 
 // background adds the pixels of row j outside [a,b), whose model is the background.
 func (p *densityProblem) background(j, a, b int, y float64) {
-	l, m, line := p.level, &p.moments, &p.line
+	l, m, line := p.level, &p.moments, &p.bose.line
 	if a == 0 && b == l.stride {
 		return
 	}
 	run := l.running[j*(l.stride/densityBlock+1) : (j+1)*(l.stride/densityBlock+1)]
 	s := run[len(run)-1].less(&run[b/densityBlock])
 	s.add(&run[a/densityBlock])
-	b0, db := p.light, line.db
+	b0, db := p.bose.b0, line.db
 	r0 := b0*s[0] + db*s[1] - s[3]
 	ri := b0*s[1] + db*s[2] - s[4]
 	m.rr += b0*(b0*s[0]+2*db*s[1]-2*s[3]) + db*(db*s[2]-2*s[4]) + s[5]
@@ -169,89 +144,16 @@ func (p *densityProblem) background(j, a, b int, y float64) {
 	m.r[2] += y * r0
 }
 
-// from is the row's arithmetic for a run that begins at column a.
-func (p *densityProblem) from(a int) *kernelLine {
-	l := &p.line
-	l.x0 = p.geo.x0 + float64(a)*p.geo.dx
-	l.b0 = p.light + l.db*float64(a)
-	return l
-}
-
-// groups is n rounded up to whole groups.
-func groups(n int) int { return (n + kernelLanes - 1) &^ (kernelLanes - 1) }
-
-// pixels are the n data of row j from column a on. Where a last group runs past the end of
-// the image they are a copy that ends in zeros.
-func (p *densityProblem) pixels(j, a, n int) []float64 {
-	d := p.level.data[j*p.level.stride+a:]
-	if len(d) >= n {
-		return d[:n]
+// pixels are the data of row j, with what the last group of a run may read beyond its end:
+// the next row, or zeros in a copy.
+func (p *densityProblem) pixels(j int) []float64 {
+	d := p.level.data[j*p.level.stride:]
+	if len(d) >= p.level.stride+kernelLanes {
+		return d
 	}
 	clear(p.tail)
 	copy(p.tail, d)
-	return p.tail[:n]
-}
-
-// fill computes g, h and the residual without the condensate over [a,b) of row j. Runs are
-// of whole groups: what one writes beyond its end the next overwrites.
-func (p *densityProblem) fill(j, a, b int) {
-	line, geo, w := &p.line, &p.geo, p.level.stride
-	na, nb := geo.columns(line.t2, line.t1, line.t0-boseSplit, w)
-	if na < nb {
-		p.fillFar(j, a, na)
-		n := groups(nb - na)
-		p.kernels.near(p.g[na:na+n], p.h[na:na+n], p.r[na:na+n], p.pixels(j, na, n), p.from(na))
-		a = nb
-	}
-	p.fillFar(j, a, b)
-}
-
-// noThermal is the state in which a run has no thermal part.
-var noThermal kernelFar
-
-// fillFar is fill where t ≥ boseSplit.
-func (p *densityProblem) fillFar(j, a, b int) {
-	if a >= b {
-		return
-	}
-	t := func(i int) float64 { return p.line.at(p.geo.x0 + float64(i)*p.geo.dx) }
-	if t(a) > densityDark || t(b-1) > densityDark {
-		line := &p.line
-		da, db := p.geo.columns(line.t2, line.t1, line.t0-densityDark, p.level.stride)
-		da, db = min(max(da, a), b), min(max(db, a), b)
-		p.runFar(j, a, da, &noThermal)
-		p.runFar(j, da, db, p.geo.recurrence(&p.line, da))
-		p.runFar(j, db, b, &noThermal)
-		return
-	}
-	p.runFar(j, a, b, p.geo.recurrence(&p.line, a))
-}
-
-func (p *densityProblem) runFar(j, a, b int, f *kernelFar) {
-	if n := groups(b - a); a < b {
-		p.kernels.far(p.g[a:a+n], p.h[a:a+n], p.r[a:a+n], p.pixels(j, a, n), f, p.from(a))
-	}
-}
-
-// at is t at X.
-func (l *kernelLine) at(x float64) float64 { return (l.t2*x+l.t1)*x + l.t0 }
-
-// recurrence starts z = e^−t at column a.
-func (geo *densityGeometry) recurrence(l *kernelLine, a int) *kernelFar {
-	f := &geo.run
-	x := geo.x0 + float64(a)*geo.dx
-	z, r := math.Exp(-l.at(x)), math.Exp(-geo.dx*(l.t2*(2*x+geo.dx)+l.t1))
-	all := r * r // over a group: r⁸ and what r falls by on the way
-	all *= all
-	all *= all * geo.bend28
-	for i := range kernelLanes {
-		f.z[i], f.r[i] = z, all
-		z *= r
-		r *= geo.bend1
-		all *= geo.bend8
-	}
-	f.q = geo.bend64
-	return f
+	return p.tail
 }
 
 // sums runs the kernels over [a,b) of row j, with the condensate in [ca,cb).
@@ -259,9 +161,9 @@ func (p *densityProblem) sums(j, a, b, ca, cb int, full bool) {
 	k, o := p.kernels, j*p.level.stride
 	weight := p.level.weight[o:]
 	if ca < cb {
-		k.edge(p.k[ca:cb], p.r[ca:cb], p.from(ca))
+		k.edge(p.k[ca:cb], p.r[ca:cb], p.bose.from(ca))
 	}
-	line := p.from(a)
+	line := p.bose.from(a)
 	w, g, h, r := weight[a:b], p.g[a:b], p.h[a:b], p.r[a:b]
 	k.slope(&p.sum, w, r, g, h, line)
 	if full {
@@ -271,7 +173,7 @@ func (p *densityProblem) sums(j, a, b, ca, cb int, full bool) {
 	if ca >= cb {
 		return
 	}
-	line = p.from(ca)
+	line = p.bose.from(ca)
 	w, g, h, r = weight[ca:cb], p.g[ca:cb], p.h[ca:cb], p.r[ca:cb]
 	root := p.k[ca:cb]
 	k.edgeSlope(&p.sum, w, r, root, line)

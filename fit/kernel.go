@@ -129,4 +129,37 @@ type kernelSet struct {
 	// totals fills t with the sums over the lanes of s, of which there are a multiple of
 	// kernelLanes, and clears s.
 	totals func(t []float64, s []lanes)
+
+	// absorb carries d = σ0n/a through the absorption law: t is the transmitted fraction,
+	// d becomes −∂t/∂d, c is t and its derivative by the logarithm of the light together, and
+	// g and h are multiplied with the new d. s is the smooth reference. thin does so where
+	// d ≤ thinMost.
+	absorb func(t, c, d, g, h, s []float64, l *kernelLight)
+	thin   func(t, c, d, g, h, s []float64, l *kernelLight)
+	// compare fills the weight w and the weighted residual e of derivatives, both over their
+	// common factor, from transmission t, counts a, reference b, smooth reference s and the
+	// frozen variance v of a, and adds the sum of squares to rr. bare does so where t = 1, and
+	// adds to the sums up to passLL2 instead.
+	compare func(rr *lanes, w, e, t, a, b, s, v []float64, l *kernelLight)
+	bare    func(sum *passSums, a, b, s, v []float64, l *kernelLight, line *kernelLine)
+	// tilt adds to the sums from passRL0 to passRH2, lightCross from there to passGL1,
+	// lightPowers to the others.
+	tilt        func(s *passSums, w, e, g, h, c []float64, l *kernelLine)
+	lightCross  func(s *passSums, w, g, h, c []float64, l *kernelLine)
+	lightPowers func(s *passSums, w, h, c []float64, l *kernelLine)
+	// times fills dst with v·w.
+	times func(dst, v, w []float64)
+	// shape fills dst with the derivative that f makes of g, h and k.
+	shape func(dst, g, h, k []float64, f *kernelShape, l *kernelLine)
+	// smear fills dst with the sums of src from at on, steps apart, times the taps of a
+	// symmetric kernel.
+	smear func(dst, src []float64, at, step int, taps []float64)
+	// products adds the products of productRows rows with productColumns columns, each of n
+	// numbers and stride apart.
+	products func(s *productSums, rows, columns []float64, stride, n int)
+}
+
+func bestKernels() *kernelSet {
+	all := allKernels()
+	return all[len(all)-1]
 }

@@ -37,12 +37,24 @@ const (
 	wideBias
 	wideLeastWeight
 	wideOrder // of the numbers that two unpacked registers hold, as integers
+	wideBend
+	wideBend4
+	wideBendInv2
+	wideAbsorbMost
+	wideTwoThirds
+	wideMinusThird
+	wideSixth
+	wideMinus24th
+	wideMinusHalf
+	wideMinusLog2E
+	wideExpMagic
 	wideFarG
 	wideFarH  = wideFarG + 7
 	wideNearG = wideFarH + 7
 	wideNearH = wideNearG + 6
 	wideLog   = wideNearH + 6
-	numWide   = wideLog + 5
+	wideExp   = wideLog + 5
+	numWide   = wideExp + 9
 )
 
 func widen() (w [numWide]lanes) {
@@ -55,6 +67,9 @@ func widen() (w [numWide]lanes) {
 			wideZeta2: bose.Zeta2, wideLn2: math.Ln2, wideLeast: nearLeast, wideMost: nearMost,
 			wideSplit: math.Float64frombits(split), wideExponent: math.Float64frombits(exponentBits), wideBias: exponentBias,
 			wideLeastWeight: leastWeight, wideOrder: math.Float64frombits(uint64([...]int{0, 2, 4, 6, 1, 3, 5, 7}[i])),
+			wideBend: absorbBend, wideBend4: 4 * absorbBend, wideBendInv2: 1 / (2 * absorbBend), wideAbsorbMost: absorbMost,
+			wideTwoThirds: 2.0 / 3, wideMinusThird: -1.0 / 3, wideSixth: 1.0 / 6, wideMinus24th: -1.0 / 24, wideMinusHalf: -0.5,
+			wideMinusLog2E: minusLog2E, wideExpMagic: expMagic,
 		} {
 			w[k][i] = v
 		}
@@ -68,6 +83,7 @@ func widen() (w [numWide]lanes) {
 		fill(wideNearG, boseNearG[:])
 		fill(wideNearH, boseNearH[:])
 		fill(wideLog, boseLog[:])
+		fill(wideExp, expForm[:])
 	}
 	return w
 }
@@ -77,6 +93,9 @@ var avx2Kernels = kernelSet{
 	name: "avx2", far: far2, near: near2, edge: edge2, slope: slope2, cross: cross2, powers: powers2,
 	edgeSlope: edgeSlope2, peak: peak2, rootCross: rootCross2,
 	weigh: weigh2, halve: halve2, blocks: blocks2, totals: totals2,
+	absorb: absorb2, thin: thin2, compare: compare2, bare: bare2,
+	tilt: tilt2, lightCross: lightCross2, lightPowers: lightPowers2,
+	times: times2, shape: shape2, smear: smear2, products: products2,
 }
 
 //go:noescape
@@ -111,6 +130,9 @@ var avx512Kernels = kernelSet{
 	name: "avx512", far: far512, near: near512, edge: edge512, slope: slope512, cross: cross512, powers: powers512,
 	edgeSlope: edgeSlope512, peak: peak512, rootCross: rootCross512,
 	weigh: weigh512, halve: halve512, blocks: blocks512, totals: totals512,
+	absorb: absorb512, thin: thin512, compare: compare512, bare: bare512,
+	tilt: tilt512, lightCross: lightCross512, lightPowers: lightPowers512,
+	times: times512, shape: shape512, smear: smear512, products: products512,
 }
 
 //go:noescape

@@ -38,7 +38,21 @@
 #define ORDER
 #define INORDER(v) VPERMPD $0xD8, v, v
 
+#define ABSORB ·absorb2(SB)
+#define THIN ·thin2(SB)
+#define COMPARE ·compare2(SB)
+#define BARE ·bare2(SB)
+#define TILT ·tilt2(SB)
+#define LIGHTCROSS ·lightCross2(SB)
+#define LIGHTPOWERS ·lightPowers2(SB)
+#define TIMES ·times2(SB)
+#define SHAPE ·shape2(SB)
+#define SMEAR ·smear2(SB)
+#define PRODUCTS ·products2(SB)
+#define VBYTES 32
+
 #include "kernel_amd64.h"
+#include "kernel_light_amd64.h"
 
 // PAIR leaves in xa, which is the low half of al, the totals of two sums whose lanes are in
 // al and ah, and bl and bh, in the order of lanes.total.

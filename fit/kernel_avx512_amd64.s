@@ -38,7 +38,21 @@
 #define ORDER VMOVUPD WIDE(const_wideOrder), V14
 #define INORDER(v) VPERMPD v, V14, v
 
+#define ABSORB ·absorb512(SB)
+#define THIN ·thin512(SB)
+#define COMPARE ·compare512(SB)
+#define BARE ·bare512(SB)
+#define TILT ·tilt512(SB)
+#define LIGHTCROSS ·lightCross512(SB)
+#define LIGHTPOWERS ·lightPowers512(SB)
+#define TIMES ·times512(SB)
+#define SHAPE ·shape512(SB)
+#define SMEAR ·smear512(SB)
+#define PRODUCTS ·products512(SB)
+#define VBYTES 64
+
 #include "kernel_amd64.h"
+#include "kernel_light_amd64.h"
 
 // The sums over the lanes of eight registers, in the order of lanes.total: NEIGHBOURS
 // interleaves the sums of neighbours from two registers, ACROSS those of the next ones,

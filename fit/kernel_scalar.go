@@ -13,6 +13,9 @@ var scalarKernels = kernelSet{
 	name: "scalar", far: scalarFar, near: scalarNear, edge: scalarEdge, slope: scalarSlope, cross: scalarCross, powers: scalarPowers,
 	edgeSlope: scalarEdgeSlope, peak: scalarPeak, rootCross: scalarRootCross,
 	weigh: scalarWeigh, halve: scalarHalve, blocks: scalarBlocks, totals: scalarTotals,
+	absorb: scalarAbsorb, thin: scalarThin, compare: scalarCompare, bare: scalarBare,
+	tilt: scalarTilt, lightCross: scalarLightCross, lightPowers: scalarLightPowers,
+	times: scalarTimes, shape: scalarShape, smear: scalarSmear, products: scalarProducts,
 }
 
 func scalarFar(g, h, r, d []float64, f *kernelFar, l *kernelLine) {

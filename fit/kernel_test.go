@@ -91,8 +91,14 @@ func (c *kernelCase) differ(o *kernelCase) string {
 }
 
 func (c *kernelCase) all() [][]float64 {
-	v := [][]float64{c.w, c.r, c.g, c.h, c.k, c.d, c.halfW, c.halfD}
+	v := [][]float64{c.w, c.r, c.g, c.h, c.k, c.d, c.halfW, c.halfD, c.t, c.c, c.e, c.rr[:]}
 	v = append(v, c.total[:])
+	for i := range c.pass {
+		v = append(v, c.pass[i][:])
+	}
+	for i := range c.products {
+		v = append(v, c.products[i][:])
+	}
 	for i := range c.sum {
 		v = append(v, c.sum[i][:])
 	}

@@ -14,10 +14,9 @@ type level struct {
 	atoms     []float64 // Σ electrons, or mean density where linear
 	light     []float64 // Σ reference
 	smooth    []float64 // the reference smoothed: where noise must not steer weights
-	probe     []float64 // I/Isat of the reference, 0 for a weak probe or a bin left out
 	beam      []float64 // the light before the optics blurred it, in no unit: weights of the blur
 	count     []float64 // good pixels in the bin; 0 leaves it out
-	varAtoms  []float64 // variance of atoms from the model, frozen within a minimisation
+	plate     *plate    // the same for the kernels, with the variance of atoms
 	noise     Noise
 	sigma     float64 // of one pixel of a linear level
 	saturate  float64 // 1/(electrons per Isat and pixel), 0 for a weak probe
@@ -33,7 +32,7 @@ func fullLevel(pic *Picture, o *Optics) *level {
 	l := &level{
 		w: pic.Width, h: pic.Height, bin: 1, fullW: pic.Width, fullH: pic.Height,
 		atoms: pic.Atoms, light: pic.Light, noise: pic.Noise,
-		count: make([]float64, n), varAtoms: make([]float64, n),
+		count: make([]float64, n),
 	}
 	for i, g := range pic.Good {
 		if g {
@@ -42,6 +41,7 @@ func fullLevel(pic *Picture, o *Optics) *level {
 	}
 	if pic.Density != nil {
 		l.linear, l.atoms, l.sigma = true, pic.Density, pic.DensitySigma
+		l.cast()
 		return l
 	}
 	if !l.noise.DarkIsShared {
@@ -52,7 +52,7 @@ func fullLevel(pic *Picture, o *Optics) *level {
 	l.saturate = o.perElectron()
 	l.smooth = smoothed(l.light, l.count, l.w, l.h, 2)
 	l.strike()
-	l.setProbe()
+	l.cast()
 	return l
 }
 
@@ -65,7 +65,7 @@ func (l *level) halved() *level {
 	m := &level{
 		w: w, h: h, bin: 2 * l.bin, linear: l.linear, noise: l.noise, sigma: l.sigma, saturate: l.saturate,
 		fullW: l.fullW, fullH: l.fullH,
-		atoms: make([]float64, w*h), count: make([]float64, w*h), varAtoms: make([]float64, w*h),
+		atoms: make([]float64, w*h), count: make([]float64, w*h),
 	}
 	if !l.linear {
 		m.light, m.smooth = make([]float64, w*h), make([]float64, w*h)
@@ -75,7 +75,7 @@ func (l *level) halved() *level {
 			m.gather(l, j*w+i, [4]int{2*j*l.w + 2*i, 2*j*l.w + 2*i + 1, (2*j+1)*l.w + 2*i, (2*j+1)*l.w + 2*i + 1})
 		}
 	}
-	m.setProbe()
+	m.cast()
 	return m
 }
 
@@ -149,19 +149,6 @@ func thirds(v []float64, w, h int) {
 		for i, x := range row {
 			row[i] = 0.25*before[i] + 0.5*x + 0.25*next[i]
 			before[i] = x
-		}
-	}
-}
-
-// setProbe fills probe from the smooth reference.
-func (l *level) setProbe() {
-	if l.linear {
-		return
-	}
-	l.probe = make([]float64, len(l.smooth))
-	for o, v := range l.smooth {
-		if l.count[o] > 0 && v > 0 {
-			l.probe[o] = v * l.saturate / l.count[o]
 		}
 	}
 }

@@ -9,11 +9,12 @@ import (
 // problem is one picture at one level under one template: the sum of squares, its gradient
 // and normal matrix in all parameters, in one pass over the pixels with no Jacobian stored.
 //
-// Pixels outside the blur region carry only the thermal part and light. There every column
-// of the Jacobian is a monomial of degree up to two in the distance from the centre times
-// g = g2(τ), h = g1(τ) or 1, with the law's factor a on the density and b on the light; so a
-// row needs only sums of a², ab and b² times those, and the matrix follows from the sums
-// (row moments). Pixels inside are blurred and summed directly (region.go).
+// Pixels outside the room carry only the thermal part and light. There a column of the
+// Jacobian is m·g, or m·h times a monomial of degree up to two in the distance from the
+// centre, or −c times 1, X or Y, all with one factor: g = g2(τ), h = g1(τ), m = −∂t/∂d and
+// c = ∂(k t)/k∂ ln k of the transmission t (forward.go). So a row needs a few sums, and the
+// matrix follows from the sums over the rows. Pixels in the room are blurred and multiplied
+// out (roompass.go).
 type problem struct {
 	level  *level // outside the room, where bins may be coarse against the pixels but not the cloud
 	fine   *level // inside the room; its bins divide those of level
@@ -21,7 +22,6 @@ type problem struct {
 	law    law
 	blur   float64    // optical resolution, px rms
 	room   room       // where the cloud is blurred pixel by pixel
-	skip   []bool     // pixels of the level that a fit of the wings leaves out, or nil
 	pull   *pull      // a measured number that is held, or nil
 	number *numberTie // ties the thermal number to T and fugacity; nil: free
 	ties   *tie       // what steers the fit; nil: every parameter by itself
@@ -30,16 +30,10 @@ type problem struct {
 
 // buffers are one worker's rows and images, grown once and kept.
 type buffers struct {
-	x, wa, wab, wb, ra, rb, g, h []float64
-	region                       regionBuffers
-}
-
-func (b *buffers) rows(n int) {
-	if cap(b.x) < n {
-		for _, p := range []*[]float64{&b.x, &b.wa, &b.wab, &b.wb, &b.ra, &b.rb, &b.g, &b.h} {
-			*p = make([]float64, n)
-		}
-	}
+	forward forward
+	sums    passSums
+	totals  passTotals
+	region  regionBuffers
 }
 
 // geometry holds what the parameters mean for a pass.
@@ -51,7 +45,7 @@ type geometry struct {
 	v, share       [2]float64 // grown variances, and the share of them that is the cloud's
 	width          [2]float64 // roots of v
 	alpha          float64
-	norm, slope    float64 // 1/g2(α), g1(α)/g2(α)
+	unit, slope    float64 // of g in the depth: 1/(a g2(α)); g1(α)/g2(α)
 	light          [3]float64
 	xc, yc, iw, ih float64
 	r              float64 // whether the condensate is there
@@ -77,9 +71,25 @@ func (p *problem) geometry(q *params, grow float64) geometry {
 	c, s := g.cos, g.sin
 	g.axx, g.axy, g.ayy = c*c*a1+s*s*a2, c*s*(a1-a2), s*s*a1+c*c*a2
 	g2 := bose.G2(g.alpha)
-	g.norm, g.slope = 1/g2, bose.G1(math.Max(g.alpha, alphaFloor))/g2
+	g.unit, g.slope = 1/(p.scale()*g2), bose.G1(math.Max(g.alpha, alphaFloor))/g2
 	return g
 }
+
+// scale is σ0n over the depth: a, or 1 on a linear level.
+func (p *problem) scale() float64 {
+	if p.level.linear {
+		return 1
+	}
+	return p.law.a
+}
+
+// plane is the logarithm of the light's scale at x, y of the picture.
+func (geo *geometry) plane(x, y float64) float64 {
+	return geo.light[0] + geo.light[1]*(x-geo.xc)*geo.iw + geo.light[2]*(y-geo.yc)*geo.ih
+}
+
+// scale is that scale.
+func (geo *geometry) scale(x, y float64) float64 { return math.Exp(geo.plane(x, y)) }
 
 // excess returns the factor of the thermal part at x, y from the centre.
 func (geo *geometry) excess(e *excess, x, y float64) float64 {
@@ -116,19 +126,99 @@ func (p *problem) normal(q *params, h, g []float64) float64 {
 	if !(geo.v[0] > 0) || !(geo.v[1] > 0) || math.IsInf(geo.v[0]+geo.v[1], 1) || geo.alpha < 0 {
 		return math.Inf(1)
 	}
-	full := h != nil
-	var m moments
-	p.buf.rows(p.level.w)
 	in := p.room.bounds(p.level)
-	for j := range p.level.h {
-		a, b := in.gap(j, p.level.w)
-		p.row(&geo, j, 0, a, full, &m)
-		p.row(&geo, j, b, p.level.w, full, &m)
-	}
-	if full {
+	m := p.outside(&geo, in, h != nil)
+	if h != nil {
 		m.assemble(&geo, h, g)
 	}
-	return m.rr + p.regionNormal(q, &geo, p.inside(in), h, g)
+	return m.rr + p.regionNormal(q, p.inside(in), h, g)
+}
+
+// outside sums the pixels outside the box.
+func (p *problem) outside(geo *geometry, in box, full bool) (m moments) {
+	b, f := p.buf, &p.buf.forward
+	p.level.punch(in)
+	f.set(p, p.level, p.level.plate, geo)
+	for j := range p.level.h {
+		f.line(j)
+		x0, x1 := in.gap(j, p.level.w)
+		x0, x1 = groups(x0), x1&^(kernelLanes-1)
+		if x0 >= x1 {
+			x0, x1 = 0, 0
+		}
+		b.outside(j, 0, x0, full)
+		b.outside(j, x1, f.plate.stride, full)
+		b.fold(&m, full)
+	}
+	return m
+}
+
+// outside adds columns [a,b) of row j to the sums.
+func (b *buffers) outside(j, from, to int, full bool) {
+	f := &b.forward
+	x0, x1 := f.cloud()
+	x0, x1 = min(max(x0, from), to), min(max(x1, from), to)
+	if x0 >= x1 {
+		x0, x1 = to, to
+	}
+	b.bare(j, from, x0)
+	if x0 < x1 {
+		f.fill(x0, x1)
+		f.carry(j, x0, x1)
+		f.compare(&b.sums[passRR], j, x0, x1, f.t[x0:x1])
+		if full {
+			b.add(x0, x1)
+		}
+	}
+	b.bare(j, x1, to)
+}
+
+// bare adds columns that only carry light.
+func (b *buffers) bare(j, from, to int) {
+	f := &b.forward
+	switch p, o := f.plate, j*f.plate.stride; {
+	case from >= to:
+	case f.linear:
+		clear(f.d[from:to])
+		clear(f.g[from:to])
+		clear(f.h[from:to])
+		f.carry(j, from, to)
+		f.compare(&b.sums[passRR], j, from, to, f.t[from:to])
+		b.add(from, to)
+	default:
+		f.kernels.bare(&b.sums, p.atoms[o+from:o+to], p.light[o+from:o+to], p.smooth[o+from:o+to], p.variance[o+from:o+to],
+			f.lightFrom(from), f.bose.from(from))
+	}
+}
+
+// add runs the kernels of the sums over columns [x0,x1).
+func (b *buffers) add(x0, x1 int) {
+	f := &b.forward
+	k, line := f.kernels, f.bose.from(x0)
+	w, e, g, h, c := f.w[x0:x1], f.e[x0:x1], f.g[x0:x1], f.h[x0:x1], f.c[x0:x1]
+	k.tilt(&b.sums, w, e, g, h, c, line)
+	k.lightCross(&b.sums, w, g, h, c, line)
+	k.lightPowers(&b.sums, w, h, c, line)
+}
+
+// fold adds the sums of a row to the moments and clears them.
+func (b *buffers) fold(m *moments, full bool) {
+	s, y := &b.totals, b.forward.y
+	b.forward.kernels.totals(s[:], b.sums[:])
+	m.rr += s[passRR]
+	if !full {
+		return
+	}
+	y2 := y * y
+	m.rg += s[passRG]
+	m.gg += s[passGG]
+	fold1(&m.rl, s[passRL0:passRL1+1], y)
+	fold1(&m.gl, s[passGL0:passGL1+1], y)
+	fold2(&m.ll, s[passLL0:passLL2+1], y, y2)
+	fold2(&m.rh, s[passRH0:passRH2+1], y, y2)
+	fold2(&m.gh, s[passGH0:passGH2+1], y, y2)
+	fold3(&m.hl, s[passHL0:passHL3+1], y, y2)
+	fold4(&m.hh, s[passHH0:passHH4+1], y, y2)
 }
 
 // blurOn is the variance of the blur in px²: resolution and the width of the level's bins.
@@ -141,169 +231,6 @@ func (p *problem) blurOn(l *level) float64 {
 func (p *problem) inside(b box) box {
 	f := p.level.bin / p.fine.bin
 	return box{b.x0 * f, b.y0 * f, b.x1 * f, b.y1 * f}
-}
-
-// row adds the pixels [i0,i1) of row j.
-func (p *problem) row(geo *geometry, j, i0, i1 int, full bool, m *moments) {
-	n := p.fillRow(geo, j, i0, i1, full, m)
-	if n == 0 || !full {
-		return
-	}
-	y := p.level.at(j) - geo.y0
-	m.rows(p.buf, n, y)
-}
-
-// fillRow computes the pixels of a row into the buffers, leaving out bad ones, and returns how
-// many there are: X, g, h, and the products of the law's factors a, b and the residual ρ.
-func (p *problem) fillRow(geo *geometry, j, i0, i1 int, full bool, m *moments) int {
-	l, b := p.level, p.buf
-	y := l.at(j) - geo.y0
-	yy, xy := 0.5*geo.ayy*y*y+geo.alpha, geo.axy*y
-	rowLight := geo.light[0] + geo.light[2]*(l.at(j)-geo.yc)*geo.ih
-	n := 0
-	rr := 0.0
-	k := math.Exp(rowLight + geo.light[1]*(l.at(i0)-geo.xc)*geo.iw)
-	kStep := math.Exp(geo.light[1] * float64(l.bin) * geo.iw)
-	var walk walk
-	for i := i0; i < i1; i, k = i+1, k*kStep {
-		o := j*l.w + i
-		c := l.count[o]
-		if c == 0 || (p.skip != nil && p.skip[o]) {
-			continue
-		}
-		x := l.at(i) - geo.x0
-		tau := x*(0.5*geo.axx*x+xy) + yy
-		var g, h float64
-		if tau < farTau+geo.alpha {
-			g, h = boseFast(tau)
-			norm := geo.norm
-			if p.tmpl.excess != nil {
-				norm *= geo.excess(p.tmpl.excess, x, y)
-			}
-			g *= norm
-			h *= norm
-		}
-		if l.linear {
-			w := c / (l.sigma * l.sigma)
-			r := l.atoms[o] - geo.ampGrown*g - rowLight - geo.light[1]*(l.at(i)-geo.xc)*geo.iw
-			rr += r * r * w
-			b.wa[n], b.wab[n], b.wb[n] = w, w, w
-			b.ra[n], b.rb[n] = -w*r, -w*r
-		} else {
-			t, td, ts := walk.transmit(&p.law, geo.ampGrown*g, k*l.probe[o])
-			r, iv, lambda := l.slope(o, k*t)
-			rr += r * r * iv
-			da, db := -lambda*k*td, -lambda*k*(t+ts)
-			b.wa[n], b.wab[n], b.wb[n] = da*da*iv, da*db*iv, db*db*iv
-			b.ra[n], b.rb[n] = da*r*iv, db*r*iv
-		}
-		b.x[n], b.g[n], b.h[n] = x, g, h
-		if full {
-			n++
-		}
-	}
-	m.rr += rr
-	return n
-}
-
-// slope returns of bin o the residual r = A − κ L over its variance V, 1/V, and λ, so that the
-// sum of squares is Σ r²/V with ∂(r/√V)/∂κ = −λ/√V.
-//
-// That sum is the fit to both frames with the true light profiled out: V = v_A + κ² v_L +
-// (1−κ)² v_D with v_A frozen, and λ = L + r(κ v_L − (1−κ) v_D)/V is the estimate of the light
-// from both frames, which is not correlated with r. The noise of L alone would bias the scale.
-func (l *level) slope(o int, kappa float64) (r, iv, lambda float64) {
-	vl, vd := l.variances(o)
-	dark := 1 - kappa
-	iv = 1 / (l.varAtoms[o] + kappa*kappa*vl + dark*dark*vd)
-	r = l.atoms[o] - kappa*l.light[o]
-	return r, iv, l.light[o] + r*iv*(kappa*vl-dark*vd)
-}
-
-// rows adds the sums over n buffered pixels of a row at distance y from the centre.
-func (m *moments) rows(b *buffers, n int, y float64) {
-	var gg, gh0, gh1, gh2, hh0, hh1, hh2, hh3, hh4 float64
-	var gl0, gl1, hl0, hl1, hl2, hl3, ll0, ll1, ll2 float64
-	var rg, rh0, rh1, rh2, rl0, rl1 float64
-	xs, gs, hs := b.x[:n], b.g[:n], b.h[:n]
-	wa, wab, wb, ra, rb := b.wa[:n], b.wab[:n], b.wb[:n], b.ra[:n], b.rb[:n]
-	for i, x := range xs {
-		bb, e := wb[i], rb[i]
-		bx := bb * x
-		ll0 += bb
-		ll1 += bx
-		ll2 += bx * x
-		rl0 += e
-		rl1 += e * x
-		g := gs[i]
-		if g == 0 {
-			continue
-		}
-		h, a := hs[i], wa[i]
-		ag, ah, x2 := a*g, a*h, x*x
-		gg += ag * g
-		t := ag * h
-		gh0 += t
-		gh1 += t * x
-		gh2 += t * x2
-		t = ah * h
-		tx := t * x
-		hh0 += t
-		hh1 += tx
-		hh2 += t * x2
-		hh3 += tx * x2
-		hh4 += t * x2 * x2
-		ab := wab[i]
-		t = ab * g
-		gl0 += t
-		gl1 += t * x
-		t = ab * h
-		tx = t * x
-		hl0 += t
-		hl1 += tx
-		hl2 += t * x2
-		hl3 += tx * x2
-		r := ra[i]
-		rg += r * g
-		t = r * h
-		rh0 += t
-		rh1 += t * x
-		rh2 += t * x2
-	}
-	m.gg += gg
-	m.rg += rg
-	spread3(&m.gh, y, gh0, gh1, gh2)
-	spread3(&m.rh, y, rh0, rh1, rh2)
-	spread3(&m.ll, y, ll0, ll1, ll2)
-	m.gl[0][0] += gl0
-	m.gl[1][0] += gl1
-	m.gl[0][1] += gl0 * y
-	m.rl[0][0] += rl0
-	m.rl[1][0] += rl1
-	m.rl[0][1] += rl0 * y
-	hl := [4]float64{hl0, hl1, hl2, hl3}
-	hh := [5]float64{hh0, hh1, hh2, hh3, hh4}
-	for i, v := range hl {
-		for k := 0; i+k < 4; k++ {
-			m.hl[i][k] += v
-			v *= y
-		}
-	}
-	for i, v := range hh {
-		for k := 0; i+k < 5; k++ {
-			m.hh[i][k] += v
-			v *= y
-		}
-	}
-}
-
-func spread3(dst *[3][3]float64, y, s0, s1, s2 float64) {
-	dst[0][0] += s0
-	dst[0][1] += s0 * y
-	dst[0][2] += s0 * y * y
-	dst[1][0] += s1
-	dst[1][1] += s1 * y
-	dst[2][0] += s2
 }
 
 // The basis of the columns outside the region: g; h times 1, X, Y, X², XY, Y²; light times 1, X, Y.
@@ -352,12 +279,8 @@ func (m *moments) assemble(geo *geometry, h, g []float64) {
 // columns writes each parameter's derivative as a combination of the basis.
 func (geo *geometry) columns() [numParams][numBasis]float64 {
 	var c [numParams][numBasis]float64
-	if geo.amp != 0 {
-		c[pThermal][basisG] = geo.ampGrown / geo.amp
-	} else {
-		c[pThermal][basisG] = math.Sqrt(geo.share[0] * geo.share[1])
-	}
-	a, cs, sn := geo.ampGrown, geo.cos, geo.sin
+	c[pThermal][basisG] = geo.unit * math.Sqrt(geo.share[0]*geo.share[1])
+	a, cs, sn := geo.ampGrown*geo.unit, geo.cos, geo.sin
 	squares := [2][3]float64{{cs * cs, 2 * cs * sn, sn * sn}, {sn * sn, -2 * cs * sn, cs * cs}}
 	for i, p := range [2]int{pWidth1, pWidth2} {
 		c[p][basisG] = a * (1 - geo.share[i])
@@ -372,9 +295,9 @@ func (geo *geometry) columns() [numParams][numBasis]float64 {
 		c[pAngle][basisH+3+k] = turn * f
 	}
 	c[pAlpha][basisG], c[pAlpha][basisH] = a*geo.slope, -a
-	c[pLight][basisL] = 1
-	c[pLightX][basisL], c[pLightX][basisL+1] = (geo.x0-geo.xc)*geo.iw, geo.iw
-	c[pLightY][basisL], c[pLightY][basisL+2] = (geo.y0-geo.yc)*geo.ih, geo.ih
+	c[pLight][basisL] = -1
+	c[pLightX][basisL], c[pLightX][basisL+1] = (geo.xc-geo.x0)*geo.iw, -geo.iw
+	c[pLightY][basisL], c[pLightY][basisL+2] = (geo.yc-geo.y0)*geo.ih, -geo.ih
 	return c
 }
 

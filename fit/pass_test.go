@@ -61,6 +61,8 @@ func testProblem(t testing.TB, lab *Lab, linear bool, q params, r room) *problem
 			pic.Atoms[i] = k*p.level.smooth[i] + 30*rng.NormFloat64()
 		}
 	}
+	p.level.cast()
+	p.freeze(&q, kappa, kappa)
 	return p
 }
 
@@ -77,12 +79,14 @@ func TestNormalMatchesDifferences(t *testing.T) {
 		room   room
 		cond   float64
 		weak   bool
+		gauss  bool
 	}{
-		{"counts, thermal only, no room", false, room{}, 0, false},
-		{"counts, both, in a room", false, room{5, 4, 55, 50}, 1.1, false},
-		{"counts, weak probe", false, room{10, 10, 50, 50}, 1.1, true},
-		{"density, both, in a room", true, room{5, 4, 55, 50}, 1.1, false},
-		{"density, thermal only", true, room{}, 0, false},
+		{"counts, thermal only, no room", false, room{}, 0, false, false},
+		{"counts, both, in a room", false, room{5, 4, 55, 50}, 1.1, false, false},
+		{"counts, weak probe", false, room{10, 10, 50, 50}, 1.1, true, false},
+		{"counts, gaussian condensate", false, room{2, 3, 59, 50}, 1.1, false, true},
+		{"density, both, in a room", true, room{5, 4, 55, 50}, 1.1, false, false},
+		{"density, thermal only", true, room{}, 0, false, false},
 	} {
 		t.Run(c.name, func(t *testing.T) {
 			lab := testLab(t)
@@ -92,6 +96,9 @@ func TestNormalMatchesDifferences(t *testing.T) {
 			q := testParams
 			q[pCondensate] = c.cond
 			p := testProblem(t, lab, c.linear, q, c.room)
+			if p.tmpl.gaussian = c.gauss; c.gauss {
+				p.tmpl.condensate.square = [2]float64{25, 9}
+			}
 			checkNormal(t, p, q)
 		})
 	}
@@ -152,6 +159,62 @@ func checkNormal(t *testing.T, p *problem, q params) {
 			}
 		}
 	}
+}
+
+// The pass gives the same bits with every set of kernels, the same again with other work in
+// between, and asks for no memory; with and without a room, an excess, a gaussian condensate.
+func TestNormalBits(t *testing.T) {
+	for _, c := range []struct {
+		name     string
+		room     room
+		gaussian bool
+		excess   bool
+		linear   bool
+	}{
+		{name: "no room"},
+		{name: "room", room: room{5, 4, 44, 50}},
+		{name: "gaussian", room: room{5, 4, 44, 50}, gaussian: true},
+		{name: "excess", room: room{20, 10, 40, 50}, excess: true},
+		{name: "density", room: room{20, 10, 40, 50}, linear: true},
+	} {
+		t.Run(c.name, func(t *testing.T) {
+			p := testProblem(t, testLab(t), c.linear, testParams, c.room)
+			p.tmpl.gaussian = c.gaussian
+			if c.excess {
+				p.tmpl.excess = testExcess()
+			}
+			var want, h [numParams * numParams]float64
+			var wantG, g [numParams]float64
+			var f float64
+			for i, k := range allKernels() {
+				p.buf = new(buffers)
+				p.buf.forward.kernels, p.buf.region.forward.kernels = k, k
+				other := testParams
+				other[pX] -= 3
+				p.normal(&other, h[:], g[:])
+				h, g = [numParams * numParams]float64{}, [numParams]float64{}
+				got := p.normal(&testParams, h[:], g[:])
+				if i == 0 {
+					f, want, wantG = got, h, g
+				}
+				if got != f || h != want || g != wantG {
+					t.Errorf("%s: χ² %v, want %v, or its derivatives differ", k.name, got, f)
+				}
+				if n := testing.AllocsPerRun(3, func() { p.normal(&testParams, h[:], g[:]) }); n != 0 {
+					t.Errorf("%s: %v allocations", k.name, n)
+				}
+			}
+		})
+	}
+}
+
+// testExcess falls off from the middle.
+func testExcess() *excess {
+	e := &excess{values: make([]float64, excessW*excessH)}
+	for i := range e.values {
+		e.values[i] = 1.3 - 0.01*float64(i%excessW)
+	}
+	return e
 }
 
 func dot(a, b []float64) float64 {

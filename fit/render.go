@@ -9,54 +9,64 @@ import "math"
 func (p *problem) render(q *params, outside, inside []float64) {
 	geo := p.geometry(q, p.blurOn(p.level))
 	in := p.room.bounds(p.level)
+	f := &p.buf.forward
+	f.set(p, p.level, p.level.plate, &geo)
 	for j := range p.level.h {
 		a, b := in.gap(j, p.level.w)
-		p.renderRow(&geo, outside, j, 0, a)
-		p.renderRow(&geo, outside, j, b, p.level.w)
+		f.line(j)
+		f.render(outside[j*p.level.w:(j+1)*p.level.w], j, 0, a)
+		f.render(outside[j*p.level.w:(j+1)*p.level.w], j, b, p.level.w)
 	}
 	if in.empty() {
 		return
 	}
 	in = p.inside(in)
-	l := p.fine
-	pad, w := p.blurred(q, in, false)
+	r := &p.buf.region
+	r.begin(p, in, false)
+	r.paint(p, q, false)
 	for j := in.y0; j < in.y1; j++ {
-		for i := in.x0; i < in.x1; i++ {
-			t := p.buf.region.images[imageT][(j-in.y0+pad)*w+i-in.x0+pad]
-			if l.linear {
-				inside[j*l.w+i] = t + geo.plane(l.at(i), l.at(j))
-			} else {
-				inside[j*l.w+i] = t * geo.scale(l.at(i), l.at(j))
-			}
-		}
+		row := j - in.y0
+		r.transmission(row)
+		r.forward.line(row + r.plate.margin)
+		r.forward.scale(inside[j*p.fine.w+in.x0:j*p.fine.w+in.x1], r.plate.margin)
 	}
 }
 
-// renderRow fills the pixels [i0,i1) of row j, outside the room.
-func (p *problem) renderRow(geo *geometry, dst []float64, j, i0, i1 int) {
-	l := p.level
-	y := l.at(j)
-	dy := y - geo.y0
-	k, kStep := geo.scale(l.at(i0), y), math.Exp(geo.light[1]*float64(l.bin)*geo.iw)
-	var walk walk
-	for i := i0; i < i1; i, k = i+1, k*kStep {
-		o := j*l.w + i
-		dx := l.at(i) - geo.x0
-		tau := dx*(0.5*geo.axx*dx+geo.axy*dy) + 0.5*geo.ayy*dy*dy + geo.alpha
-		d := 0.0
-		if tau < farTau+geo.alpha {
-			g, _ := boseFast(tau)
-			d = geo.ampGrown * g * geo.norm
-			if p.tmpl.excess != nil {
-				d *= geo.excess(p.tmpl.excess, dx, dy)
-			}
+// render fills columns [a,b) of dst with κ of row j.
+func (f *forward) render(dst []float64, j, a, b int) {
+	if a >= b {
+		return
+	}
+	from, to := a&^(kernelLanes-1), groups(b)
+	x0, x1 := f.cloud()
+	x0, x1 = min(max(x0, from), to), min(max(x1, from), to)
+	still := 1.0
+	if f.linear {
+		still = 0
+	}
+	for i := range f.t[from:to] {
+		f.t[from+i] = still
+	}
+	if x0 < x1 {
+		f.fill(x0, x1)
+		f.carry(j, x0, x1)
+	}
+	f.scale(dst[a:b], a)
+}
+
+// scale fills dst with κ from the transmission from column a on.
+func (f *forward) scale(dst []float64, a int) {
+	plane := f.plane + float64(a)*f.tilt
+	if f.linear {
+		for i := range dst {
+			dst[i] = f.t[a+i] + plane + float64(i)*f.tilt
 		}
-		if l.linear {
-			dst[o] = d + geo.plane(l.at(i), y)
-			continue
-		}
-		t, _, _ := walk.transmit(&p.law, d, k*l.probe[o])
-		dst[o] = t * k
+		return
+	}
+	k := math.Exp(plane)
+	for i, t := range f.t[a : a+len(dst)] {
+		dst[i] = t * k
+		k *= f.growth
 	}
 }
 
@@ -77,12 +87,20 @@ func (p *problem) freeze(q *params, outside, inside []float64) {
 	for j := in.y0; j < in.y1; j++ {
 		p.fine.freezeRow(inside, j, in.x0, in.x1)
 	}
+	p.buf.region.plate.owner = nil
 }
 
 func (l *level) freezeRow(kappa []float64, j, i0, i1 int) {
-	for o := j*l.w + i0; o < j*l.w+i1; o++ {
-		l.varAtoms[o] = math.Max(0, kappa[o]*l.smooth[o]) + l.readVariance(o)
+	p, read := l.plate, l.readNoise()
+	row := p.variance[j*p.stride:]
+	for i := i0; i < i1; i++ {
+		row[i] = math.Max(0, kappa[j*l.w+i]*p.smooth[j*p.stride+i]) + read
 	}
+}
+
+// readNoise is the variance of the atoms frame in a full bin beside its shot noise.
+func (l *level) readNoise() float64 {
+	return float64(l.bin*l.bin) * (l.noise.Read*l.noise.Read + 1e-9)
 }
 
 // freezeData sets the variance from the counts themselves, for a first guess only.
@@ -90,8 +108,12 @@ func (l *level) freezeData() {
 	if l.linear {
 		return
 	}
-	for o, a := range l.atoms {
-		l.varAtoms[o] = math.Max(a, 0.05*l.smooth[o]) + l.readVariance(o)
+	p, read := l.plate, l.readNoise()
+	for j := range l.h {
+		for i := range l.w {
+			o, to := j*l.w+i, j*p.stride+i
+			p.variance[to] = math.Max(l.atoms[o]*l.full(o), 0.05*p.smooth[to]) + read
+		}
 	}
 }
 
@@ -106,8 +128,17 @@ func (p *problem) residuals(kappa, dst []float64) {
 		case l.linear:
 			dst[o] = (l.atoms[o] - k) * math.Sqrt(l.count[o]) / l.sigma
 		default:
-			r, iv, _ := l.slope(o, k)
-			dst[o] = r * math.Sqrt(iv)
+			dst[o] = l.residual(o, k)
 		}
 	}
+}
+
+// residual is that of bin o, (A − κ L)/√V, in standard deviations.
+//
+// Its square is the fit to both frames with the true light profiled out: V = v_A + κ² v_L +
+// (1−κ)² v_D with v_A frozen.
+func (l *level) residual(o int, kappa float64) float64 {
+	vl, vd := l.variances(o)
+	va := l.plate.variance[o/l.w*l.plate.stride+o%l.w] / l.full(o)
+	return (l.atoms[o] - kappa*l.light[o]) / math.Sqrt(va+kappa*kappa*vl+(1-kappa)*(1-kappa)*vd)
 }

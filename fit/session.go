@@ -50,6 +50,7 @@ func newSession(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt
 	l := fullLevel(pic, &lab.Optics)
 	if l.linear && l.sigma == 0 {
 		l.sigma = densitySigma(l)
+		l.cast()
 	}
 	s.levels = append(s.levels, l)
 	for max(l.w, l.h) > guessSide && min(l.w, l.h) >= 2*leastSide {
