@@ -9,6 +9,7 @@ import (
 	"github.com/alecthomas/kong"
 
 	"fallshadow/cmd/fallshadow/internal/night"
+	"fallshadow/cmd/fallshadow/internal/picture"
 	"fallshadow/cmd/fallshadow/internal/report"
 	"fallshadow/cmd/fallshadow/internal/settings"
 )
@@ -21,6 +22,7 @@ type batchCmd struct {
 	Again     bool   `help:"Fit every shot, also those whose results are current."`
 	Workers   int    `placeholder:"N" help:"Shots to fit at a time; one a processor if left out. The results do not depend on it."`
 	OwnRegion bool   `help:"Leave out the regions of interest that were drawn by hand."`
+	Pictures  bool   `help:"Draw a picture of every shot, PNG, into the folder pictures beside the table."`
 
 	Columns columnsFlag `help:"Print what the columns and the flags of the table mean, and stop."`
 }
@@ -49,9 +51,18 @@ func (c *batchCmd) Run(ctx context.Context, t terminal) error {
 	if names := lab.Unstated(); len(names) > 0 {
 		fmt.Fprintf(t.err, "no uncertainty is stated for %s: cells ending in _cal that need one stay empty\n", strings.Join(names, ", "))
 	}
-	out, err := night.Batch(ctx, night.Options{
+	options := night.Options{
 		Dir: c.Night, Out: c.Out, Settings: lab, Workers: c.Workers, Again: c.Again, OwnRegion: c.OwnRegion,
-	}, newProgress(t))
+	}
+	if c.Pictures {
+		if options.Out == "" {
+			if options.Out, err = night.Results(c.Night); err != nil {
+				return err
+			}
+		}
+		options.Pictures = picture.Folder{Dir: filepath.Join(options.Out, "pictures")}
+	}
+	out, err := night.Batch(ctx, options, newProgress(t))
 	if out == nil {
 		return err
 	}

@@ -27,6 +27,17 @@ type Options struct {
 	Again    bool // fit current rows too
 	// OwnRegion leaves out the regions that were drawn by hand.
 	OwnRegion bool
+	// Pictures, where set, are drawn of every shot that is fitted; a shot that lacks its
+	// picture is fitted too.
+	Pictures Pictures
+}
+
+// Pictures are of the shots of a night; they may be used by many goroutines.
+type Pictures interface {
+	// Has reports whether the picture of a row is there.
+	Has(r *ledger.Row) bool
+	// Draw makes it, from facts that hold maps.
+	Draw(r *ledger.Row, f *report.Facts) error
 }
 
 // Outcome is what a run left.
@@ -70,6 +81,7 @@ type batch struct {
 	reference ledger.Digest
 	regions   []ledger.Region
 	benches   map[image.Rectangle]func() measure
+	undrawn   onceError // of the pictures
 }
 
 // Batch fits the shots of a night that have no current row and writes the table. It
@@ -78,7 +90,11 @@ type batch struct {
 // table, rows that are not current are flagged, and Batch returns the cause of ctx with
 // the outcome so far.
 func Batch(ctx context.Context, o Options, p Progress) (*Outcome, error) {
-	return run(ctx, o, p, newBench)
+	prepare := newBench
+	if o.Pictures != nil {
+		prepare = newBenchWithMaps
+	}
+	return run(ctx, o, p, prepare)
 }
 
 func run(ctx context.Context, o Options, p Progress, prepare prepare) (_ *Outcome, err error) {

@@ -49,6 +49,16 @@ func newBench(ctx context.Context, s *settings.Settings, region image.Rectangle,
 	return b.worker, nil
 }
 
+// newBenchWithMaps is newBench whose results hold maps for the eye.
+func newBenchWithMaps(ctx context.Context, s *settings.Settings, region image.Rectangle, f *frames) (func() measure, error) {
+	b, err := setUp(ctx, s, region, f)
+	if err != nil {
+		return nil, err
+	}
+	b.options.Maps = true
+	return b.worker, nil
+}
+
 func setUp(ctx context.Context, s *settings.Settings, region image.Rectangle, f *frames) (*bench, error) {
 	camera := s.LightCamera()
 	if !region.Empty() {

@@ -2,6 +2,7 @@ package night
 
 import (
 	"context"
+	"errors"
 	"fmt"
 	"image"
 	"strings"
@@ -45,7 +46,7 @@ func (b *batch) work(ctx context.Context) (*Outcome, error) {
 	if err := report.SaveCSV(b.Out, out.Rows, b.Settings.Shots.Scan); err != nil {
 		return nil, err
 	}
-	return out, stopped
+	return out, errors.Join(stopped, b.undrawn.get())
 }
 
 // plan brings the rows in line with the folder and returns the readable shots, as places
@@ -63,7 +64,7 @@ func (b *batch) plan(ctx context.Context) (todo []int, err error) {
 		return nil, err
 	}
 	for at, i := range b.readable {
-		if r := rows[b.shots[i].Name]; b.Again || r == nil || !b.current(i, r) {
+		if r := rows[b.shots[i].Name]; b.Again || r == nil || !b.current(i, r) || b.Pictures != nil && r.Reason == "" && !b.Pictures.Has(r) {
 			todo = append(todo, at)
 			if err := b.prepareFor(ctx, i); err != nil {
 				return nil, err
@@ -203,6 +204,9 @@ func (b *batch) row(ctx context.Context, at int, measure measure) (_ *ledger.Row
 	}
 	r := b.blank(b.readable[at])
 	report.Fill(r, facts)
+	if b.Pictures != nil {
+		b.undrawn.note(b.Pictures.Draw(r, facts))
+	}
 	return r, nil
 }
 

@@ -30,7 +30,7 @@ type detail struct {
 	Reason  string             `json:"reason,omitempty"`
 	Flight  string             `json:"flight,omitempty"`
 	Scan    []named            `json:"scan,omitempty"`
-	Cards   []card             `json:"cards,omitempty"`
+	Cards   []report.Card      `json:"cards,omitempty"`
 	Numbers map[string]float64 `json:"numbers"` // cells of the table, and scan variables
 	Words   map[string]string  `json:"words,omitempty"`
 	Same    string             `json:"same,omitempty"` // the first shot with these pixels
@@ -51,13 +51,13 @@ func newBrief(r *ledger.Row) brief {
 func newDetail(r *ledger.Row, scan []string) detail {
 	d := detail{
 		brief: newBrief(r), Files: r.Files, Reason: r.Reason, Numbers: map[string]float64{}, Words: r.Words, Same: r.Duplicate,
-		Cards: cards(r),
+		Cards: report.Cards(r),
 	}
 	for name, v := range r.Numbers {
 		d.Numbers[name] = v
 	}
 	if v := r.Number("flight_ms"); !math.IsNaN(v) {
-		d.Flight = plain(v, 4) + " ms"
+		d.Flight = report.Plain(v, 4) + " ms"
 	}
 	for _, name := range scan {
 		text, ok := imageio.Metadata(r.Meta).Get(name)

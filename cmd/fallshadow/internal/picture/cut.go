@@ -7,7 +7,8 @@ import (
 )
 
 // Cut is the optical density along a line through the centre of the cloud, averaged over
-// Strip pixels across. Distances are from the centre; NaN where no pixel counts.
+// Strip pixels across; Total goes through the camera's blur as the data did. Distances
+// are from the centre; NaN where no pixel counts.
 type Cut struct {
 	Angle                      float64 // from +x towards +y, rad
 	Strip                      int
@@ -55,7 +56,7 @@ func (c *Cut) add(m *fit.Maps, s, um, x, y, sin, cos float64) {
 		if d := float64(m.Density[o]); d-d == 0 {
 			data += d
 			thermal += float64(m.Thermal[o])
-			total += float64(m.Total[o])
+			total += float64(m.Seen[o])
 			n++
 		}
 	}

@@ -25,6 +25,7 @@ func cloud() *report.Facts {
 		c := condensate * math.Pow(math.Max(0, 1-u*u/225-v*v/729), 1.5)
 		m.Thermal = append(m.Thermal, float32(t))
 		m.Total = append(m.Total, float32(t+c))
+		m.Seen = append(m.Seen, float32(t+c))
 		m.Density = append(m.Density, float32(t+c+0.01*math.Sin(float64(i))))
 		m.Residual = append(m.Residual, float32(math.Sin(float64(i))))
 	}

@@ -55,10 +55,10 @@ func (w *Watcher) scanOnce(ctx context.Context) {
 		return
 	}
 	w.notes.set("folder", "")
-	w.noteStrays(scanned.Strays)
 	w.desk.setDarks(scanned.Darks)
 	last := w.roll.last()
 	jobs, gone := w.roll.update(scanned.Shots, time.Now())
+	w.noteStrays(scanned)
 	if gone {
 		if err := w.store.Reconcile(context.WithoutCancel(ctx), w.roll.present()); err != nil {
 			w.notes.set("ledger", err.Error())
@@ -71,12 +71,12 @@ func (w *Watcher) scanOnce(ctx context.Context) {
 	w.noteWaiting()
 }
 
-// noteStrays says that there are files that are no shots; a layout that does not fit the
-// files would otherwise look like a night without shots.
-func (w *Watcher) noteStrays(strays []imageio.Stray) {
+// noteStrays says that there are files but no shots: a layout that does not fit the files
+// would otherwise look like a night that has not begun.
+func (w *Watcher) noteStrays(scanned imageio.Night) {
 	text := ""
-	if n := len(strays); n > 0 && len(w.roll.present()) == 0 {
-		text = fmt.Sprintf("no shots yet; %d files fit none, such as %s: %s", n, strays[0].Path, strays[0].Reason)
+	if n := len(scanned.Strays); n > 0 && len(scanned.Shots) == 0 {
+		text = fmt.Sprintf("no shots yet; files that fit none: %d, such as %s: %s", n, scanned.Strays[0].Path, scanned.Strays[0].Reason)
 	}
 	w.notes.set("strays", text)
 }
