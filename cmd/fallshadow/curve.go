@@ -76,11 +76,12 @@ func (c *figureArgs) save(t terminal, f *figure.Figure, usual string) error {
 // curveCmd reads a fitted night as one experiment.
 type curveCmd struct {
 	nightArgs
-	X     string         `default:"t_reduced" help:"What to draw along: a column, a scan variable, or number, that of the shot."`
-	Y     string         `default:"fraction" help:"What to draw against it."`
-	XUnit string         `placeholder:"UNIT" help:"Unit of a scan variable on the axis."`
-	Law   []string       `placeholder:"LAW" enum:"ideal,finite-size,interacting,semi-ideal,hartree-fock" help:"Laws to draw, of ${enum}."`
-	Group study.Grouping `placeholder:"NAME[:WIDTH]" help:"Draw and list means of shots with equal NAME, or of bins of it."`
+	X      string         `default:"t_reduced" help:"What to draw along: a column, a scan variable, or number, that of the shot."`
+	Y      string         `default:"fraction" help:"What to draw against it."`
+	XUnit  string         `placeholder:"UNIT" help:"Unit of a scan variable on the axis."`
+	Law    []string       `placeholder:"LAW" enum:"ideal,finite-size,interacting,semi-ideal,hartree-fock" help:"Laws to draw, of ${enum}."`
+	Group  study.Grouping `placeholder:"NAME[:WIDTH]" help:"Draw and list means of shots with equal NAME, or of bins of it."`
+	Report string         `placeholder:"FILE" help:"Write the night as one HTML page that needs no other file: curve, trends, flags, pictures of flagged shots, settings."`
 	figureArgs
 }
 
@@ -116,7 +117,23 @@ func (c *curveCmd) Run(ctx context.Context, t terminal) error {
 	if err := c.save(t, d.Figure, filepath.Join(n.Dir, "curve")); err != nil {
 		return err
 	}
-	return c.tables(t, a, filepath.Join(n.Dir, "curve"))
+	if err := c.tables(t, a, filepath.Join(n.Dir, "curve")); err != nil {
+		return err
+	}
+	return c.report(ctx, t, a, d)
+}
+
+// report writes the page where one is asked for.
+func (c *curveCmd) report(ctx context.Context, t terminal, a *study.Analysis, d *study.Drawn) error {
+	if c.Report == "" {
+		return nil
+	}
+	err := report.Replace(c.Report, func(w io.Writer) error { return a.WriteReport(ctx, w, d) })
+	if err != nil {
+		return fmt.Errorf("write the report %s: %w", c.Report, err)
+	}
+	fmt.Fprintln(t.out, c.Report)
+	return nil
 }
 
 // tables writes the shots and the numbers for other programs.

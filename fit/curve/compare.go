@@ -13,8 +13,8 @@ type Comparison struct {
 	Quality
 	// Deviation is the plain mean of f − law, each point at its own measured t and N.
 	Deviation Estimate
-	// Amplitude is λ in f = ideal + λ (law − ideal): 0 says ideal, 1 says this law; NaN of
-	// the ideal law.
+	// Amplitude is λ in f = ideal + λ (law − ideal): 0 says ideal, 1 says this law. Only
+	// the numeric laws have it, NaN are the others: closed forms end too early.
 	Amplitude Estimate
 }
 
@@ -32,7 +32,7 @@ func (n *Night) Compare(ctx context.Context, th *Theory) ([]Comparison, error) {
 			h[0] = v.Fraction() - th.at(l, v, g, 1)
 		}})
 		c.Quality, c.Deviation = p.quality(nil), p.mean()
-		if l.Name != Ideal {
+		if l.numeric {
 			var err error
 			if c.Amplitude, err = n.amplitude(ctx, th, l, points); err != nil {
 				return nil, err

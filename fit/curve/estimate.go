@@ -88,7 +88,7 @@ func (p *problem) fit(ctx context.Context, start []float64, ignore ...string) ([
 	if q.Dof < 0 {
 		return nil, q, fmt.Errorf("%d points cannot tell %d parameters", len(p.points), len(start))
 	}
-	found, err := lm.MinimizeDense(ctx, p, start, &lm.Settings{XTol: 1e-6, FTol: 1e-8})
+	found, err := lm.MinimizeDense(ctx, p, start, &lm.Settings{XTol: 1e-5, FTol: 1e-7})
 	if err != nil {
 		return nil, q, err
 	}

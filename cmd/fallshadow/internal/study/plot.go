@@ -187,9 +187,13 @@ func (p *plotting) grouping() ([]curve.Group, error) {
 
 // within drops from groups what cannot be drawn.
 func (p *plotting) within(groups []curve.Group) []curve.Group {
+	drawn := make([]bool, len(p.Chosen.Rows))
+	for _, i := range p.places {
+		drawn[i] = true
+	}
 	var list []curve.Group
 	for _, g := range groups {
-		g.Places = slices.DeleteFunc(slices.Clone(g.Places), func(i int) bool { return !slices.Contains(p.places, i) })
+		g.Places = slices.DeleteFunc(slices.Clone(g.Places), func(i int) bool { return !drawn[i] })
 		if len(g.Places) > 0 {
 			list = append(list, g)
 		}

@@ -116,12 +116,15 @@ type series struct{ v, err, cal, low, high []float64 }
 
 func (n *Night) series(c *Chosen, q *Quantity) series {
 	var s series
+	columns := []struct {
+		name string
+		into *[]float64
+	}{{q.Name + "_err", &s.err}, {q.Name + "_cal", &s.cal}, {q.Name + "_low", &s.low}, {q.Name + "_high", &s.high}}
 	for i, r := range c.Rows {
 		s.v = append(s.v, q.value(n, r, c.Numbers[i]))
-		s.err = append(s.err, r.Number(q.Name+"_err"))
-		s.cal = append(s.cal, r.Number(q.Name+"_cal"))
-		s.low = append(s.low, r.Number(q.Name+"_low"))
-		s.high = append(s.high, r.Number(q.Name+"_high"))
+		for _, k := range columns {
+			*k.into = append(*k.into, r.Number(k.name))
+		}
 	}
 	return s
 }

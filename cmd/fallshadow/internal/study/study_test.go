@@ -71,16 +71,16 @@ func made(t testing.TB, count int) *Night {
 		t.Fatal(err)
 	}
 	n := &Night{Name: "made", Dir: t.TempDir(), Settings: s, lab: l}
-	r := rand.New(rand.NewPCG(4, 2))
+	r, digest := rand.New(rand.NewPCG(4, 2)), s.Digest()
 	for i := range count {
-		n.Rows = append(n.Rows, shot(t, &l, s, i, 1.2-0.8*float64(i)/float64(count-1), r))
+		n.Rows = append(n.Rows, shot(t, &l, digest, i, 1.2-0.8*float64(i)/float64(count-1), r))
 	}
 	return n
 }
 
 // shot is one of them: errors of 0.4, 0.25, 1 and 0.2 %, thermal number and T correlated
 // by 0.6.
-func shot(t testing.TB, l *fit.Lab, s *settings.Settings, i int, reduced float64, r *rand.Rand) ledger.Row {
+func shot(t testing.TB, l *fit.Lab, digest ledger.Digest, i int, reduced float64, r *rand.Rand) ledger.Row {
 	t.Helper()
 	gas := Gas(l)
 	atoms := 1e5 * (1 + 0.1*r.NormFloat64())
@@ -123,7 +123,7 @@ func shot(t testing.TB, l *fit.Lab, s *settings.Settings, i int, reduced float64
 	}
 	result.Numbers = numbers.Compute(m, cov, shifts, n)
 	row := ledger.Row{Shot: fmt.Sprintf("made_%05d", i+1), Content: ledger.Digest{byte(i), byte(i >> 8), 1},
-		Currency: ledger.Currency{Settings: s.Digest(), Analysis: night.Analysis},
+		Currency: ledger.Currency{Settings: digest, Analysis: night.Analysis},
 		Meta:     map[string]string{"EVAP": strconv.Itoa(2500 - 10*(i/2))}}
 	report.Fill(&row, &report.Facts{Flight: 0.025, Fit: result})
 	return row

@@ -75,9 +75,12 @@ func (a *Analysis) writeLaws(w io.Writer) {
 		fmt.Fprintf(w, "%s: %s\n", c.Law.Title, c.Law.Note)
 	}
 	if a.plainForm() {
-		fmt.Fprintln(w, "caution: the fit gave the thermal part its ideal form. Where a condensate keeps thermal atoms out of the middle, that form reads T some 5 to 10 % low, and share and Tc lean on it; thermal = \"semi-ideal\" in [fit] of the settings fits such clouds")
+		fmt.Fprintln(w, "caution: "+plainFormCaution)
 	}
 }
+
+// plainFormCaution goes with plainForm; the figures are those of simulated semi-ideal nights.
+const plainFormCaution = "the fit gave the thermal part its ideal form. Where a condensate keeps thermal atoms out of the middle, that form reads T some 5 to 10 % low, and share and Tc lean on it; thermal = \"semi-ideal\" in [fit] of the settings fits such clouds"
 
 // plainForm says that an interacting law is the best one while thermal parts were fitted
 // without the field of the condensate.
