@@ -53,6 +53,9 @@ func (s Stack) draw(c vg.Canvas, width, height vg.Length) {
 		top := height - part*vg.Length(i)
 		h.frame.Min = vg.Point{X: left, Y: top - part}
 		h.frame.Max = vg.Point{X: width - 4 - h.overhang(), Y: top - 4}
+		if i > 0 {
+			h.frame.Max.Y -= 4 // the marks at the ends of two axes stand clear of one another
+		}
 		if h.yPower != 0 {
 			h.frame.Max.Y -= tickSize * 1.2
 		}

@@ -25,7 +25,7 @@ func (a *Axis) ticks() (list []tick, power int) {
 func linearTicks(low, high float64) ([]tick, int) {
 	step, parts := roundStep((high - low) / 5)
 	power := 0
-	if size := math.Max(math.Abs(low), math.Abs(high)); size >= 1e4 || size < 1e-2 {
+	if size := math.Max(math.Abs(low), math.Abs(high)); size >= 1e5 || size < 1e-2 {
 		power = int(math.Floor(math.Log10(size) + 1e-9))
 	}
 	unit := math.Pow10(power)
