@@ -3,6 +3,8 @@ package fit
 import (
 	"math"
 	"sort"
+
+	"gonum.org/v1/gonum/stat"
 )
 
 // level is a picture at one binning: sums of bin×bin pixels, and what the noise of those
@@ -50,7 +52,7 @@ func fullLevel(pic *Picture, o *Optics) *level {
 		l.noise.Dark = 0
 	}
 	l.saturate = o.perElectron()
-	l.smooth = smoothed(l.light, l.count, l.w, l.h, 2)
+	l.smooth = smoothed(l.light, l.count, l.w, l.h, smoothing(l.light))
 	l.strike()
 	l.cast()
 	return l
@@ -176,6 +178,16 @@ func (m *level) gather(l *level, o int, from [4]int) {
 	} else if l.linear {
 		m.atoms[o] /= m.count[o]
 	}
+}
+
+// smoothing is the half-width of the box that takes the noise out of the light: two pixels where
+// counts are few, one where fringes of some pixels are worth more than the noise.
+func smoothing(light []float64) int {
+	const many = 200
+	if stat.Mean(light, nil) > many {
+		return 1
+	}
+	return 2
 }
 
 // smoothed returns the box mean of half-width r over good pixels, scaled to each pixel's
