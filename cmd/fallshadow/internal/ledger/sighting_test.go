@@ -56,6 +56,36 @@ func TestRowAlone(t *testing.T) {
 	}
 }
 
+// One after another the rows are those that Rows returns, and a stop is one.
+func TestEach(t *testing.T) {
+	ctx, l := context.Background(), open0(t, t.TempDir())
+	put(t, l, row("shot_10", 1), row("shot_9", 1), row("shot_2", 2), row("gone", 3))
+	reconcile(t, l, Present{Shot: "shot_10", Content: digest(1)}, Present{Shot: "shot_9", Content: digest(1)}, Present{Shot: "shot_2", Content: digest(2)})
+	if err := l.Judge(ctx, digest(1), "probe off"); err != nil {
+		t.Fatal(err)
+	}
+	var got []Row
+	for r, err := range l.Each(ctx) {
+		if err != nil {
+			t.Fatal(err)
+		}
+		got = append(got, *r)
+	}
+	if diff := cmp.Diff(read(t, l.Reader), got); diff != "" {
+		t.Error(diff)
+	}
+	for range l.Each(ctx) {
+		break
+	}
+	stopped, stop := context.WithCancel(ctx)
+	stop()
+	for r, err := range l.Each(stopped) {
+		if r != nil || err == nil {
+			t.Errorf("after a stop: %v, %v", r, err)
+		}
+	}
+}
+
 // A row whose shot has left the folder is found by its pixels; one that is there is not.
 func TestGone(t *testing.T) {
 	ctx, l := context.Background(), open0(t, t.TempDir())

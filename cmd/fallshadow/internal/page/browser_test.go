@@ -26,7 +26,12 @@ import (
 const demoNight = "../../../../testdata/night"
 
 // browser starts a Chromium of its own; a tab is made of what it returns.
-func browser(t *testing.T) context.Context {
+func browser(t *testing.T) context.Context { return tabFor(t, 2*time.Minute) }
+
+// longTab is a tab for a long test.
+func longTab(t *testing.T) context.Context { return tabFor(t, time.Hour) }
+
+func tabFor(t *testing.T, limit time.Duration) context.Context {
 	t.Helper()
 	options := append(slices.Clone(chromedp.DefaultExecAllocatorOptions[:]),
 		chromedp.NoSandbox, chromedp.DisableGPU, chromedp.NoFirstRun, chromedp.UserDataDir(t.TempDir()),
@@ -37,7 +42,7 @@ func browser(t *testing.T) context.Context {
 	t.Cleanup(cancel)
 	tab, cancel := chromedp.NewContext(all)
 	t.Cleanup(cancel)
-	tab, cancel = context.WithTimeout(tab, 2*time.Minute)
+	tab, cancel = context.WithTimeout(tab, limit)
 	t.Cleanup(cancel)
 	return tab
 }

@@ -9,6 +9,7 @@ import (
 	"fmt"
 	"image"
 	"io/fs"
+	"iter"
 	"net"
 	"net/http"
 	"time"
@@ -20,7 +21,8 @@ import (
 
 // Night is the night that is shown. Its methods may be called from any goroutine.
 type Night interface {
-	Rows(ctx context.Context) ([]ledger.Row, error)
+	// Each yields all rows in their order; a row holds until the next.
+	Each(ctx context.Context) iter.Seq2[*ledger.Row, error]
 	Row(ctx context.Context, shot string) (*ledger.Row, error)
 	// Measure fits a shot once more, for its picture.
 	Measure(ctx context.Context, shot string) (*report.Facts, *imageio.Raw, error)

@@ -8,6 +8,7 @@ import (
 	"fmt"
 	"image"
 	"io"
+	"iter"
 	"net"
 	"net/http"
 	"net/http/httptest"
@@ -32,7 +33,15 @@ type still struct {
 	undone bool
 }
 
-func (s *still) Rows(context.Context) ([]ledger.Row, error) { return s.rows, nil }
+func (s *still) Each(context.Context) iter.Seq2[*ledger.Row, error] {
+	return func(yield func(*ledger.Row, error) bool) {
+		for i := range s.rows {
+			if !yield(&s.rows[i], nil) {
+				return
+			}
+		}
+	}
+}
 func (s *still) Row(_ context.Context, shot string) (*ledger.Row, error) {
 	if i := slices.IndexFunc(s.rows, func(r ledger.Row) bool { return r.Shot == shot }); i >= 0 {
 		return &s.rows[i], nil

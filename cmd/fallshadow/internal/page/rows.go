@@ -102,13 +102,12 @@ type column struct {
 // serveNight says what there is, without the numbers of the shots.
 func (p *Page) serveNight(r *http.Request) (any, error) {
 	last := p.stream.last() // before the rows are read, so that nothing falls in between
-	rows, err := p.night.Rows(r.Context())
-	if err != nil {
-		return nil, err
-	}
-	list := make([]brief, len(rows))
-	for i := range rows {
-		list[i] = newBrief(&rows[i])
+	list := []brief{}
+	for row, err := range p.night.Each(r.Context()) {
+		if err != nil {
+			return nil, err
+		}
+		list = append(list, newBrief(row))
 	}
 	now, next := p.night.Region()
 	return map[string]any{
@@ -164,18 +163,16 @@ func (p *Page) serveColumn(r *http.Request) (any, error) {
 	if !isScan && !slices.ContainsFunc(columns(), func(c column) bool { return c.Name == name }) {
 		return nil, &refusal{http.StatusNotFound, "there is no such column"}
 	}
-	rows, err := p.night.Rows(r.Context())
-	if err != nil {
-		return nil, err
-	}
-	shots, values, errs := make([]string, len(rows)), make([]*float64, len(rows)), make([]*float64, len(rows))
-	for i := range rows {
-		shots[i] = rows[i].Shot
-		v := rows[i].Number(name)
-		if isScan {
-			v = scanNumber(&rows[i], name)
+	shots, values, errs := []string{}, []*float64{}, []*float64{}
+	for row, err := range p.night.Each(r.Context()) {
+		if err != nil {
+			return nil, err
 		}
-		values[i], errs[i] = finite(v), finite(rows[i].Number(name+"_err"))
+		v := row.Number(name)
+		if isScan {
+			v = scanNumber(row, name)
+		}
+		shots, values, errs = append(shots, row.Shot), append(values, finite(v)), append(errs, finite(row.Number(name+"_err")))
 	}
 	return map[string]any{"shots": shots, "values": values, "errors": errs}, nil
 }

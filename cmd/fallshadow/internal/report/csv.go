@@ -4,6 +4,7 @@ import (
 	"encoding/csv"
 	"fmt"
 	"io"
+	"iter"
 	"os"
 	"path/filepath"
 	"slices"
@@ -31,22 +32,36 @@ func CheckScan(scan []string) error {
 // WriteCSV writes the table of rows with the scan variables behind the columns: UTF-8,
 // comma, one header line, an empty cell where there is nothing.
 func WriteCSV(w io.Writer, rows []ledger.Row, scan []string) error {
-	return writeTable(csv.NewWriter(w), rows, scan)
+	return writeTable(csv.NewWriter(w), all(rows), scan)
 }
 
-func writeTable(out *csv.Writer, rows []ledger.Row, scan []string) error {
+// all yields rows without an error.
+func all(rows []ledger.Row) iter.Seq2[*ledger.Row, error] {
+	return func(yield func(*ledger.Row, error) bool) {
+		for i := range rows {
+			if !yield(&rows[i], nil) {
+				return
+			}
+		}
+	}
+}
+
+func writeTable(out *csv.Writer, rows iter.Seq2[*ledger.Row, error], scan []string) error {
 	line := make([]string, 0, len(Columns)+len(scan))
 	for _, c := range Columns {
 		line = append(line, c.Name)
 	}
 	out.Write(append(line, scan...))
-	for i := range rows {
+	for r, err := range rows {
+		if err != nil {
+			return err
+		}
 		line = line[:0]
 		for _, c := range Columns {
-			line = append(line, c.Cell(&rows[i]))
+			line = append(line, c.Cell(r))
 		}
 		for _, name := range scan {
-			text, _ := imageio.Metadata(rows[i].Meta).Get(name)
+			text, _ := imageio.Metadata(r.Meta).Get(name)
 			line = append(line, text)
 		}
 		out.Write(line)
@@ -57,7 +72,13 @@ func writeTable(out *csv.Writer, rows []ledger.Row, scan []string) error {
 
 // SaveCSV writes results.csv in the folder dir, whole or not at all.
 func SaveCSV(dir string, rows []ledger.Row, scan []string) error {
-	err := Replace(filepath.Join(dir, CSVName), func(w io.Writer) error { return WriteCSV(w, rows, scan) })
+	return SaveEach(dir, all(rows), scan)
+}
+
+// SaveEach is SaveCSV of rows that come one after another; an error among them leaves the
+// file as it was.
+func SaveEach(dir string, rows iter.Seq2[*ledger.Row, error], scan []string) error {
+	err := Replace(filepath.Join(dir, CSVName), func(w io.Writer) error { return writeTable(csv.NewWriter(w), rows, scan) })
 	if err != nil {
 		return fmt.Errorf("write the table: %w", err)
 	}

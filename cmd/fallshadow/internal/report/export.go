@@ -43,7 +43,7 @@ func ExportFor(file string) (Export, error) {
 func exportCSV(w io.Writer, rows []ledger.Row, scan []string) error {
 	out := csv.NewWriter(w)
 	out.UseCRLF = true
-	return writeTable(out, rows, scan)
+	return writeTable(out, all(rows), scan)
 }
 
 func exportJSON(w io.Writer, rows []ledger.Row, scan []string) error {

@@ -3,6 +3,7 @@ package watch
 import (
 	"context"
 	"fmt"
+	"iter"
 	"time"
 
 	"fallshadow/cmd/fallshadow/internal/ledger"
@@ -40,11 +41,7 @@ func (w *Watcher) writeTables(ctx context.Context) {
 }
 
 func (w *Watcher) writeTable(ctx context.Context) error {
-	rows, err := w.Rows(ctx)
-	if err != nil {
-		return err
-	}
-	return report.SaveCSV(w.Out, rows, w.settings().Shots.Scan)
+	return report.SaveEach(w.Out, w.Each(ctx), w.settings().Shots.Scan)
 }
 
 // isReady reports whether there is a ledger.
@@ -57,18 +54,25 @@ func (w *Watcher) isReady() bool {
 	}
 }
 
-// Rows returns the rows of the shots in the folder, in natural order, stale ones marked;
-// none before the folder is there.
-func (w *Watcher) Rows(ctx context.Context) ([]ledger.Row, error) {
-	if !w.isReady() {
-		return nil, nil
+// Each yields the rows of the shots in the folder, in natural order, stale ones marked;
+// none before the folder is there. An error ends it.
+func (w *Watcher) Each(ctx context.Context) iter.Seq2[*ledger.Row, error] {
+	return func(yield func(*ledger.Row, error) bool) {
+		if !w.isReady() {
+			return
+		}
+		one := make([]ledger.Row, 1)
+		for r, err := range w.store.Each(ctx) {
+			if err == nil {
+				one[0] = *r
+				w.markStale(one)
+				r = &one[0]
+			}
+			if !yield(r, err) {
+				return
+			}
+		}
 	}
-	rows, err := w.store.Rows(ctx)
-	if err != nil {
-		return nil, err
-	}
-	w.markStale(rows)
-	return rows, nil
 }
 
 // Row returns one of them, nil where there is none.

@@ -140,9 +140,12 @@ func names(rows []ledger.Row) (list []string) {
 
 func rowsOf(t *testing.T, w *Watcher) []ledger.Row {
 	t.Helper()
-	rows, err := w.Rows(context.Background())
-	if err != nil {
-		t.Fatal(err)
+	var rows []ledger.Row
+	for r, err := range w.Each(context.Background()) {
+		if err != nil {
+			t.Fatal(err)
+		}
+		rows = append(rows, *r)
 	}
 	return rows
 }
