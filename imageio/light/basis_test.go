@@ -204,6 +204,28 @@ func TestNearest(t *testing.T) {
 	}
 }
 
+// Frames that Expose refuses lend no light, whoever reads them; frames handed over need not be
+// loaded.
+func TestLend(t *testing.T) {
+	s, raws := cloudy()
+	swapped := *raws[1]
+	swapped.Frames[imageio.Atoms], swapped.Frames[imageio.Light] = swapped.Frames[imageio.Light], swapped.Frames[imageio.Atoms]
+	n := prepare(t, s.camera(), raws)
+	raws[1] = &swapped
+	load := func(_ context.Context, shot int) (*imageio.Raw, error) {
+		if shot == 2 {
+			t.Error("the shot handed over was loaded")
+		}
+		return raws[shot], nil
+	}
+	refs := NewReferences(n, 3, len(raws), load)
+	refs.Offer(2, raws[2])
+	got, err := refs.Set(context.Background(), 0)
+	if err != nil || !slices.Equal(got, []int{0, 2}) {
+		t.Errorf("shots %v lend light, %v; want 0 and 2", got, err)
+	}
+}
+
 // TestExtend lets shots come one after another: the latest takes the light of those before.
 func TestExtend(t *testing.T) {
 	s := newScene(48, 48, 56)

@@ -57,8 +57,13 @@ func blockMeans(pix []float64, width, side int) []float64 {
 	w, h := width/side, len(pix)/width/side
 	out := make([]float64, w*h)
 	for y := range h * side {
-		for x, v := range pix[y*width : y*width+w*side] {
-			out[y/side*w+x/side] += v
+		row := pix[y*width:]
+		for b := range w {
+			sum := 0.0
+			for _, v := range row[b*side : (b+1)*side] {
+				sum += v
+			}
+			out[y/side*w+b] += sum
 		}
 	}
 	for i := range out {

@@ -49,10 +49,33 @@ func (n *Night) Expose(raw *imageio.Raw) (*imageio.Exposure, error) {
 	return e, nil
 }
 
-// clean marks and fills what is wrong in the two frames; afterwards both share a mask.
-func (n *Night) clean(l, a *litFrame) {
+// lend returns the light frame of a shot as Expose cleans it, and fails as Expose does; sound
+// says that it did not.
+func (n *Night) lend(raw *imageio.Raw, sound bool) (*litFrame, error) {
+	if sound {
+		l, err := n.lit(raw)
+		if err == nil {
+			n.cleanLight(l)
+		}
+		return l, err
+	}
+	a, l, err := n.litPair(raw)
+	if err != nil {
+		return nil, err
+	}
+	n.clean(l, a)
+	_, _, err = n.compare(a, l)
+	return l, err
+}
+
+func (n *Night) cleanLight(l *litFrame) {
 	outliers(l.pix, nil, n.win.width, n.readVar(), true, l.bad)
 	fill(l.pix, n.win.width, l.bad)
+}
+
+// clean marks and fills what is wrong in the two frames; afterwards both share a mask.
+func (n *Night) clean(l, a *litFrame) {
+	n.cleanLight(l)
 	for i, b := range l.bad {
 		a.bad[i] = a.bad[i] || b
 	}

@@ -68,11 +68,15 @@ func (n *Night) counts(raw *imageio.Raw, role imageio.Role) (*litFrame, error) {
 // subtract turns counts into electrons above a dark.
 func (n *Night) subtract(l *litFrame, d dark) {
 	l.dark = d
-	for i := range l.pix {
-		l.pix[i] = (l.pix[i] - d.counts(i)) * n.Camera.ElectronsPerCount
-		if d.bad != nil && d.bad[i] || !finite(l.pix[i]) {
-			l.bad[i] = true
-		}
+	perCount := n.Camera.ElectronsPerCount
+	pattern, bad := d.pattern[:len(l.pix)], l.bad[:len(l.pix)]
+	for i, v := range l.pix {
+		v = (v - (pattern[i] + d.level)) * perCount
+		l.pix[i] = v
+		bad[i] = bad[i] || !finite(v)
+	}
+	for i, b := range d.bad {
+		bad[i] = bad[i] || b
 	}
 	fill(l.pix, n.win.width, l.bad)
 }

@@ -22,20 +22,21 @@ const (
 func outliers(pix, base []float64, width int, readVar float64, holes bool, bad []bool) {
 	var found []int
 	height := len(pix) / width
-	for y := range height {
-		for x := range width {
-			i := y*width + x
-			if bad[i] {
-				continue
-			}
-			inner := x > 0 && x < width-1 && y > 0 && y < height-1
-			if inner && !suspect(pix[i], pix[i-1], pix[i+1], pix[i-width], pix[i+width], readVar, holes) {
-				continue
-			}
-			if standsOut(pix, base, width, x, y, readVar, holes, bad) {
-				found = append(found, i)
-			}
+	judge := func(x, y int) {
+		if i := y*width + x; !bad[i] && standsOut(pix, base, width, x, y, readVar, holes, bad) {
+			found = append(found, i)
 		}
+	}
+	for y := range height {
+		judge(0, y)
+		if y == 0 || y == height-1 {
+			for x := 1; x < width-1; x++ {
+				judge(x, y)
+			}
+		} else {
+			suspects(pix[(y-1)*width:(y+2)*width], width, readVar, holes, func(x int) { judge(x, y) })
+		}
+		judge(width-1, y)
 	}
 	for _, i := range found {
 		bad[i] = true
@@ -76,34 +77,25 @@ func allowance(v, readVar float64) float64 {
 	return spikeSigmas*math.Sqrt(v+readVar+2) + spikeShare*v
 }
 
-// suspect is a cheap test that nearly every pixel fails: an outlier differs by more than
-// the noise part of the allowance from the lowest of its four next neighbours, or, a
-// hole, from the highest.
-func suspect(v, a, b, c, d, readVar float64, holes bool) bool {
-	low, high := ordered(a, b)
-	low2, high2 := ordered(c, d)
-	if low2 < low {
-		low = low2
+// suspects visits the pixels inside the middle one of three rows that a cheap test does not
+// let pass, as it does nearly all: an outlier differs by more than the noise part of the
+// allowance from the lowest of its four next neighbours, or, a hole, from the highest.
+func suspects(rows []float64, width int, readVar float64, holes bool, visit func(x int)) {
+	above, row, below := rows[:width], rows[width:2*width], rows[2*width:3*width]
+	left := row[0]
+	for x := 1; x < len(row)-1; x++ {
+		v, right, up, down := row[x], row[x+1], above[x], below[x]
+		low := min(left, right, up, down)
+		if beyond(v-low, low, readVar) || holes && beyond(max(left, right, up, down)-v, v, readVar) {
+			visit(x)
+		}
+		left = v
 	}
-	if high2 > high {
-		high = high2
-	}
-	return beyond(v-low, low, readVar) || holes && beyond(high-v, v, readVar)
-}
-
-func ordered(a, b float64) (low, high float64) {
-	if a < b {
-		return a, b
-	}
-	return b, a
 }
 
 // beyond compares a difference upwards with the noise part of the allowance at a level.
 func beyond(d, level, readVar float64) bool {
-	if level < 0 {
-		level = 0
-	}
-	return d > 0 && d*d > spikeSigmas*spikeSigmas*(level+readVar)
+	return d > 0 && d*d > spikeSigmas*spikeSigmas*(max(level, 0)+readVar)
 }
 
 // fill writes into each bad pixel the median of the good ones round it, taken from the
@@ -132,13 +124,50 @@ func fill(pix []float64, width int, bad []bool) {
 	}
 }
 
-// median sorts its argument and returns its middle, 0 for nothing.
+// median orders its argument as far as it must and returns its middle, 0 for nothing.
 func median(v []float64) float64 {
 	if len(v) == 0 {
 		return 0
 	}
-	slices.Sort(v)
-	return (v[(len(v)-1)/2] + v[len(v)/2]) / 2
+	high := nth(v, len(v)/2)
+	if len(v)%2 == 1 {
+		return high
+	}
+	return (slices.Max(v[:len(v)/2]) + high) / 2
+}
+
+// nth returns the value of rank k, from 0, and leaves no higher one before it and no lower
+// one after it.
+func nth(v []float64, k int) float64 {
+	lo, hi := 0, len(v)-1
+	for hi-lo > 12 {
+		a, b, c := v[lo], v[(lo+hi)/2], v[hi]
+		pivot := max(min(a, b), min(max(a, b), c))
+		i, j := lo, hi
+		for i <= j {
+			for v[i] < pivot {
+				i++
+			}
+			for v[j] > pivot {
+				j--
+			}
+			if i <= j {
+				v[i], v[j] = v[j], v[i]
+				i++
+				j--
+			}
+		}
+		switch {
+		case k <= j:
+			hi = j
+		case k >= i:
+			lo = i
+		default:
+			return v[k]
+		}
+	}
+	slices.Sort(v[lo : hi+1])
+	return v[k]
 }
 
 // smooth returns the mean over three by three pixels, never below floor.
@@ -147,21 +176,20 @@ func smooth(pix []float64, width int, floor float64) []float64 {
 	out := make([]float64, len(pix))
 	column := make([]float64, width)
 	for y := range height {
-		clear(column)
 		top, end := max(y-1, 0), min(y+1, height-1)
-		for v := top; v <= end; v++ {
+		copy(column, pix[top*width:])
+		for v := top + 1; v <= end; v++ {
 			for x, p := range pix[v*width : (v+1)*width] {
 				column[x] += p
 			}
 		}
-		for x := range width {
-			left, right := max(x-1, 0), min(x+1, width-1)
-			sum := 0.0
-			for _, p := range column[left : right+1] {
-				sum += p
-			}
-			out[y*width+x] = max(sum/float64((end-top+1)*(right-left+1)), floor)
+		rows := float64(end - top + 1)
+		row, last := out[y*width:(y+1)*width], width-1
+		row[0] = max((column[0]+column[1])/(2*rows), floor)
+		for x := 1; x < last; x++ {
+			row[x] = max((column[x-1]+column[x]+column[x+1])/(3*rows), floor)
 		}
+		row[last] = max((column[last-1]+column[last])/(2*rows), floor)
 	}
 	return out
 }

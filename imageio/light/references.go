@@ -39,8 +39,8 @@ type References struct {
 
 // NewReferences prepares the references of a night of so many shots in natural order, k
 // light frames to a shot. load reads a shot by its place in that order, again and again
-// where memory is short; it must give the same frames each time, and an error or no
-// light frame for shots that cannot be used.
+// where memory is short; it must give the same frames each time. Shots that Expose refuses
+// lend no light.
 func NewReferences(n *Night, k, shots int, load func(ctx context.Context, shot int) (*imageio.Raw, error)) *References {
 	return &References{
 		night: n, k: k, shots: shots, load: load,
@@ -115,7 +115,14 @@ func (r *References) forget(shot int) {
 	}
 }
 
-// read fills a light frame in.
+// Offer hands over the frames of a shot that Expose took, so that they need not be loaded and
+// judged again to lend their light.
+func (r *References) Offer(shot int, raw *imageio.Raw) {
+	f := r.entry(shot)
+	f.ready.Do(func() { f.err = r.fill(f, raw, true) })
+}
+
+// read loads a light frame.
 func (r *References) read(ctx context.Context, f *lightFrame) error {
 	raw, err := r.load(ctx, f.shot)
 	if err != nil {
@@ -124,13 +131,17 @@ func (r *References) read(ctx context.Context, f *lightFrame) error {
 	if raw == nil {
 		return refuse(NoLight, "")
 	}
+	return r.fill(f, raw, false)
+}
+
+// fill fills a light frame in from the frames of its shot. Frames that Expose would refuse lend
+// no light: exchanged ones have the shadow of a cloud in it.
+func (r *References) fill(f *lightFrame, raw *imageio.Raw, sound bool) error {
 	n := r.night
-	l, err := n.lit(raw)
+	l, err := n.lend(raw, sound)
 	if err != nil {
 		return err
 	}
-	outliers(l.pix, nil, n.win.width, n.readVar(), true, l.bad)
-	fill(l.pix, n.win.width, l.bad)
 	if l.saturated*1000 > len(l.pix) {
 		return refuse(Saturated, "light: %d pixels", l.saturated)
 	}

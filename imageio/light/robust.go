@@ -5,7 +5,7 @@ import "math"
 // madToSigma is the standard deviation of a normal law over its median absolute deviation.
 const madToSigma = 1.4826
 
-// middle returns the median of at most 4096 evenly spread values and 1.4826 times their
+// middle returns the median of at most 4096 evenly spread finite values and 1.4826 times their
 // median absolute deviation.
 func middle(v []float64) (centre, spread float64) {
 	step := max(len(v)/4096, 1)
@@ -14,7 +14,9 @@ func middle(v []float64) (centre, spread float64) {
 	}
 	some := make([]float64, 0, len(v)/step+1)
 	for i := 0; i < len(v); i += step {
-		some = append(some, v[i])
+		if finite(v[i]) {
+			some = append(some, v[i])
+		}
 	}
 	centre = median(some)
 	for i, x := range some {

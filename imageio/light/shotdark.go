@@ -17,8 +17,6 @@ type dark struct {
 	odd      bool    // the night has a master that this dark does not look like
 }
 
-func (d dark) counts(i int) float64 { return d.pattern[i] + d.level }
-
 // darkFrame is the frame taken as the dark of another, nil where there is none. The light
 // frame of a four-frame shot has its own.
 func darkFrame(raw *imageio.Raw, role imageio.Role) *imageio.Frame {
@@ -86,15 +84,19 @@ func (n *Night) agrees(residual []float64, level float64) bool {
 	_, spread := middle(residual)
 	limit := 6*spread + 1
 	sum := 0.0
-	for b := range w * h {
-		mean := 0.0
-		for p := range side * side {
-			v := residual[(b/w*side+p/side)*n.win.width+b%w*side+p%side] - level
-			if math.Abs(v) <= limit {
-				mean += v / (side * side)
+	means := make([]float64, w)
+	for y := range h * side {
+		for x, v := range residual[y*n.win.width : y*n.win.width+w*side] {
+			if v -= level; math.Abs(v) <= limit {
+				means[x/side] += v / (side * side)
 			}
 		}
-		sum += mean * mean
+		if y%side == side-1 {
+			for b, m := range means {
+				sum += m * m
+				means[b] = 0
+			}
+		}
 	}
 	perCount := n.Camera.ElectronsPerCount
 	expected := (n.DarkNoise*n.DarkNoise + n.DarkVariance) / (perCount * perCount) / (side * side) * float64(w*h)

@@ -5,7 +5,6 @@ import (
 	"fmt"
 	"image"
 	"iter"
-	"sync"
 
 	"fallshadow/cmd/fallshadow/internal/ledger"
 	"fallshadow/cmd/fallshadow/internal/report"
@@ -38,7 +37,6 @@ type bench struct {
 	references *light.References // nil: every shot has its own light
 	lab        fit.Lab
 	options    fit.Options
-	exposed    sync.Map // places of shots that need not be exposed again to lend their light
 }
 
 func newBench(ctx context.Context, s *settings.Settings, region image.Rectangle, f *frames) (func() measure, error) {
@@ -73,7 +71,7 @@ func setUp(ctx context.Context, s *settings.Settings, region image.Rectangle, f 
 		return nil, err
 	}
 	if s.Fit.Reference != "own" && s.Shots.Layout != "density" {
-		b.references = light.NewReferences(shared, s.Fit.BasisSize, f.n, b.lender(f))
+		b.references = light.NewReferences(shared, s.Fit.BasisSize, f.n, f.load)
 	}
 	return b, nil
 }
@@ -109,9 +107,9 @@ func (b *bench) fit(ctx context.Context, at int, raw *imageio.Raw, flight float6
 	if err != nil {
 		return nil, nil, err
 	}
-	b.exposed.Store(at, true)
 	options := b.options
 	if b.references != nil {
+		b.references.Offer(at, raw)
 		if exposure, options.Near, err = b.relight(ctx, at, exposure, flight, workspace); err != nil {
 			return nil, nil, err
 		}
@@ -121,18 +119,6 @@ func (b *bench) fit(ctx context.Context, at int, raw *imageio.Raw, flight float6
 		return nil, nil, fmt.Errorf("fit: %w", err)
 	}
 	return exposure, result, nil
-}
-
-// lender returns what reads a shot whose light may serve others. A shot that cannot be
-// exposed lends none: frames that were exchanged have the shadow of a cloud in the light.
-func (b *bench) lender(f *frames) func(context.Context, int) (*imageio.Raw, error) {
-	return func(ctx context.Context, at int) (*imageio.Raw, error) {
-		raw, err := f.load(ctx, at)
-		if _, sound := b.exposed.Load(at); err == nil && !sound {
-			_, err = b.night.Expose(raw)
-		}
-		return raw, err
-	}
 }
 
 // relight returns the exposure with the best light that the night has for it, and the place
