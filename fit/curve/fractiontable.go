@@ -11,8 +11,8 @@ import (
 // fractionTable holds a numeric law N0/N(t, η): curves over t at three values of η, between
 // which a parabola in ln η goes. A night spans little of η, which goes with N^(1/15).
 type fractionTable struct {
-	logEta [3]float64
-	curves [3]interp.FritschButland
+	logEta        [3]float64
+	value, slopes [3][]float64 // at the nodes
 }
 
 // equilibrium is a gas at T in K and μ in J.
@@ -25,23 +25,46 @@ func tabulate(g *scales, low, high float64, state equilibrium) *fractionTable {
 	low, high = low/margin, high*margin
 	var f fractionTable
 	for i, n := range [3]float64{low, math.Sqrt(low * high), high} {
-		f.logEta[i] = math.Log(g.eta(n))
-		f.curves[i].Fit(nodes, fractions(g, n, state))
+		f.logEta[i] = g.logEtaOf(n)
+		f.value[i] = fractions(g, n, state)
+		var c interp.FritschButland
+		c.Fit(nodes, f.value[i])
+		for _, t := range nodes {
+			f.slopes[i] = append(f.slopes[i], c.PredictDerivative(t))
+		}
 	}
 	return &f
 }
 
 // nodes are the values of t of the tables: closer near the transition.
-var nodes = func() []float64 {
-	t := []float64{0}
-	for x := 0.02; x < 0.899; x += 0.02 {
-		t = append(t, x)
+var nodes = func() (t []float64) {
+	for i := range coarse {
+		t = append(t, knee*float64(i)/coarse)
 	}
-	for i := range 41 {
-		t = append(t, 0.9+0.0025*float64(i))
+	for i := range fine + 1 {
+		t = append(t, knee+(1-knee)*float64(i)/fine)
 	}
 	return t
 }()
+
+// The nodes are even in two parts, up to knee and from there to 1.
+const (
+	knee  = 0.9
+	coarse = 45
+	fine   = 40
+)
+
+// below returns the place of the last node at or below t, 0 ≤ t < 1, but the last of all.
+func below(t float64) int {
+	i := coarse + int((t-knee)/(1-knee)*fine)
+	if t < knee {
+		i = int(t / knee * coarse)
+	}
+	for t < nodes[i] { // rounding
+		i--
+	}
+	return min(i, len(nodes)-2)
+}
 
 // fractions returns N0/N at the nodes for n atoms; 0 where no condensed state holds them.
 func fractions(g *scales, n float64, state equilibrium) []float64 {
@@ -123,22 +146,30 @@ func bracketed(n, low, high, fl, fh float64, m model.Mixture, excess func(float6
 }
 
 // at returns the fraction, 0 for t ≥ 1 and between 0 and 1 elsewhere.
-func (f *fractionTable) at(t, eta float64) float64 {
+func (f *fractionTable) at(t, logEta float64) float64 {
 	switch {
-	case math.IsNaN(t) || math.IsNaN(eta):
+	case math.IsNaN(t) || math.IsNaN(logEta):
 		return math.NaN()
 	case t >= 1:
 		return 0
 	}
-	x, sum := math.Log(eta), 0.0
-	for i := range 3 {
+	t = math.Max(t, 0)
+	i := below(t)
+	step := nodes[i+1] - nodes[i]
+	u := (t - nodes[i]) / step
+	// Hermite's cubics of the values and slopes at both ends.
+	h10, h11 := u*(1-u)*(1-u)*step, u*u*(u-1)*step
+	h01 := u * u * (3 - 2*u)
+	sum := 0.0
+	for k := range 3 {
 		weight := 1.0
 		for j := range 3 {
-			if j != i {
-				weight *= (x - f.logEta[j]) / (f.logEta[i] - f.logEta[j])
+			if j != k {
+				weight *= (logEta - f.logEta[j]) / (f.logEta[k] - f.logEta[j])
 			}
 		}
-		sum += weight * f.curves[i].Predict(math.Max(t, 0))
+		v, d := f.value[k], f.slopes[k]
+		sum += weight * (v[i] + h01*(v[i+1]-v[i]) + h10*d[i] + h11*d[i+1])
 	}
 	return math.Min(1, math.Max(0, sum))
 }

@@ -45,8 +45,10 @@ func (g Gas) scales() *scales {
 // reduced returns t = T/Tc⁰ of n atoms at T in K.
 func (s *scales) reduced(T, n float64) float64 { return T / (s.tc * math.Cbrt(n)) }
 
-// eta returns μ(T=0)/kTc⁰ of n atoms, which goes with n^(1/15).
-func (s *scales) eta(n float64) float64 { return math.Exp(s.logEta + math.Log(n)/15) }
+// logEtaOf returns the logarithm of η = μ(T=0)/kTc⁰ of n atoms, which goes with n^(1/15).
+func (s *scales) logEtaOf(n float64) float64 { return s.logEta + math.Log(n)/15 }
+
+func (s *scales) eta(n float64) float64 { return math.Exp(s.logEtaOf(n)) }
 
 // mu returns the Thomas-Fermi chemical potential in J of n0 atoms, NaN where there is none.
 func (s *scales) mu(n0 float64) float64 { return s.mu1 * math.Pow(n0, 0.4) }

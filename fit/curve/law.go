@@ -38,10 +38,10 @@ var Laws = []Law{
 		fraction: func(_ *Theory, t, n float64, g *scales) float64 { return model.InteractingFraction(t, g.eta(n)) }},
 	{Name: SemiIdeal, Title: "semi-ideal", repulsive: true, numeric: true,
 		Note:     "Thomas-Fermi condensate, ideal thermal atoms outside of its mean field; Tc is that of the ideal gas; Naraschewski, Stamper-Kurn (1998)",
-		fraction: func(th *Theory, t, n float64, g *scales) float64 { return th.semiIdeal.at(t, g.eta(n)) }},
+		fraction: func(th *Theory, t, n float64, g *scales) float64 { return th.semiIdeal.at(t, g.logEtaOf(n)) }},
 	{Name: HartreeFock, Title: "Hartree-Fock", repulsive: true, numeric: true,
 		Note:     "local density, with the mean field of the thermal atoms, which lowers Tc; the small jump at the end is an artefact of the theory; Minguzzi, Conti, Tosi, J. Phys.: Condens. Matter 9, L33 (1997)",
-		fraction: func(th *Theory, t, n float64, g *scales) float64 { return th.hartreeFock.at(t, g.eta(n)) }},
+		fraction: func(th *Theory, t, n float64, g *scales) float64 { return th.hartreeFock.at(t, g.logEtaOf(n)) }},
 }
 
 // Theory evaluates the laws for one gas. The numeric ones depend on t and η = μ(T=0)/kTc⁰
@@ -90,7 +90,7 @@ func (th *Theory) Entropy(t, n float64) float64 {
 		return math.NaN()
 	}
 	temperature := t * model.CriticalTemperature(n, th.gas.Trap)
-	f := th.semiIdeal.at(t, th.gas.eta(n))
+	f := th.semiIdeal.at(t, th.gas.logEtaOf(n))
 	if f <= 0 {
 		return model.IdealEntropy(t)
 	}

@@ -5,7 +5,8 @@ import "math"
 // relation is what the true numbers of a cloud obey: it fills h with values that vanish
 // there. θ are its parameters.
 type relation struct {
-	size int // values, 1 or 2
+	size int  // values, 1 or 2
+	mu   bool // they hang on μ too
 	// eval is asked for numbers v that the point p may truly have.
 	eval func(p *Point, v *Vector, g *scales, theta, h []float64)
 }
@@ -74,7 +75,7 @@ func (r *relation) linear(p *Point, g *scales, theta []float64, at *Vector) (v [
 	v = h
 	for a := range numMeasured {
 		step := math.Sqrt(p.Cov[a][a]) / 50
-		if step == 0 {
+		if step == 0 || a == Mu && !r.mu {
 			continue
 		}
 		step = math.Min(step, at[a]/20)

@@ -13,7 +13,7 @@ import (
 func TestNearestOfLine(t *testing.T) {
 	p := &Point{Vector: Vector{2, 5, 1, 1}}
 	p.Cov[0][0], p.Cov[1][1], p.Cov[0][1], p.Cov[1][0] = 0.04, 0.09, 0.03, 0.03
-	r := relation{1, func(_ *Point, v *Vector, _ *scales, theta, h []float64) { h[0] = v[1] - theta[0]*v[0] }}
+	r := relation{1, false, func(_ *Point, v *Vector, _ *scales, theta, h []float64) { h[0] = v[1] - theta[0]*v[0] }}
 	n := r.nearest(p, &scales{}, []float64{2}, &p.Vector)
 	within(t, "distance", n.r[0], (5-2*2)/math.Sqrt(0.09-4*0.03+4*0.04), 1e-9)
 	within(t, "nearest point", n.latent[1]-2*n.latent[0], 0, 1e-9)
@@ -25,7 +25,7 @@ func TestNearestOfLine(t *testing.T) {
 func TestNearestOfCurve(t *testing.T) {
 	p := &Point{Vector: Vector{1, 0.93, 0.55, 1}}
 	p.Cov[1][1], p.Cov[2][2], p.Cov[1][2], p.Cov[2][1] = 1e-5, 0.02, -1e-4, -1e-4
-	r := relation{1, func(_ *Point, v *Vector, _ *scales, _, h []float64) { h[0] = v[1] - (1 - v[2]*v[2]*v[2]) }}
+	r := relation{1, false, func(_ *Point, v *Vector, _ *scales, _, h []float64) { h[0] = v[1] - (1 - v[2]*v[2]*v[2]) }}
 	n := r.nearest(p, &scales{}, nil, &p.Vector)
 	det := p.Cov[1][1]*p.Cov[2][2] - p.Cov[1][2]*p.Cov[1][2]
 	least := math.Inf(1)
@@ -40,7 +40,7 @@ func TestNearestOfCurve(t *testing.T) {
 func TestNearestOfTwo(t *testing.T) {
 	p := &Point{Vector: Vector{3, 4, 1, 1}}
 	p.Cov[0][0], p.Cov[1][1], p.Cov[0][1], p.Cov[1][0] = 1, 4, 0.5, 0.5
-	r := relation{2, func(_ *Point, v *Vector, _ *scales, _, h []float64) { h[0], h[1] = v[0], v[1] }}
+	r := relation{2, false, func(_ *Point, v *Vector, _ *scales, _, h []float64) { h[0], h[1] = v[0], v[1] }}
 	n := r.nearest(p, &scales{}, nil, &p.Vector)
 	want := (9*4 - 2*3*4*0.5 + 16*1) / (1*4 - 0.25)
 	within(t, "chi2", n.r[0]*n.r[0]+n.r[1]*n.r[1], want, 1e-9)
