@@ -49,7 +49,7 @@ var nodes = func() (t []float64) {
 
 // The nodes are even in two parts, up to knee and from there to 1.
 const (
-	knee  = 0.9
+	knee   = 0.9
 	coarse = 45
 	fine   = 40
 )
