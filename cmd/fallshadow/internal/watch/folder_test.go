@@ -3,6 +3,7 @@ package watch
 import (
 	"bytes"
 	"context"
+	"fmt"
 	"image"
 	"os"
 	"path/filepath"
@@ -295,4 +296,21 @@ func TestOneWriter(t *testing.T) {
 	if err := second.Run(context.Background()); err == nil || !strings.Contains(err.Error(), "is writing the ledger") {
 		t.Errorf("the second watch: %v", err)
 	}
+}
+
+// Shots that are there in number are fitted from the newest to the oldest, and it is said
+// that they wait; none is left out.
+func TestNewestFirst(t *testing.T) {
+	dir := nightWith(t, "1", "2", "3", "4", "5", "6", "7", "8", "9")
+	h := newHall()
+	run(t, Options{Dir: dir, Workers: 1}, h)
+	h.until(t, "all nine", h.seen(9))
+	var want []string
+	for i := 9; i >= 1; i-- {
+		want = append(want, fmt.Sprintf("ramp_%04d", i))
+	}
+	if !slices.Equal(h.order, want) {
+		t.Errorf("fitted in the order %v", h.order)
+	}
+	h.until(t, "word that they waited, and that it is over", func() bool { return said(h, "the newest go first")() && len(h.notes) == 0 })
 }

@@ -68,6 +68,7 @@ func (w *Watcher) scanOnce(ctx context.Context) {
 	}
 	w.beginRegion(ctx, jobs, last)
 	w.queue.push(jobs...)
+	w.noteBacklog()
 	w.noteWaiting()
 }
 
@@ -79,6 +80,18 @@ func (w *Watcher) noteStrays(scanned imageio.Night) {
 		text = fmt.Sprintf("no shots yet; files that fit none: %d, such as %s: %s", n, scanned.Strays[0].Path, scanned.Strays[0].Reason)
 	}
 	w.notes.set("strays", text)
+}
+
+// crowded is how many shots wait before that is said.
+const crowded = 4
+
+// noteBacklog says that shots come faster than they are fitted.
+func (w *Watcher) noteBacklog() {
+	text := ""
+	if w.queue.waiting() >= crowded {
+		text = "there are more shots than can be fitted at once: the newest go first, the others follow"
+	}
+	w.notes.set("backlog", text)
 }
 
 // noteWaiting says which shot is waited for, once that has lasted.

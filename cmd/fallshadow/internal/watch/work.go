@@ -102,6 +102,7 @@ func (w *Watcher) conclude(ctx context.Context, j *job, m measured) error {
 		return err
 	}
 	w.roll.finish(j, k)
+	w.noteBacklog()
 	if m.err == nil {
 		w.notes.set("bench", "")
 	}

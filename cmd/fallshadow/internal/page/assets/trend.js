@@ -82,7 +82,7 @@ export class Trend {
     this.plot?.destroy();
     $("trend-all").hidden = true;
     const axis = { stroke: css("--muted"), grid: { stroke: css("--line"), width: 1 }, ticks: { show: false }, font: "12px system-ui" };
-    const dots = (fill) => ({ paths: () => null, points: { show: true, size: 7, width: 1.5, stroke: css(fill ? "--data" : "--muted"), fill: fill ? css("--data") : "transparent" } });
+    const dots = (fill) => ({ paths: () => null, points: { show: true, size: this.shots.rows.length > 300 ? 4 : 7, width: 1.5, stroke: css(fill ? "--data" : "--muted"), fill: fill ? css("--data") : "transparent" } });
     this.plot = new uPlot({
       width, height, padding: [8, 14, 0, 0],
       scales: { x: { time: false, range: (u, a, b) => roomy(a, b, .02) }, y: { range: (u, a, b) => this.span(a, b) } },
