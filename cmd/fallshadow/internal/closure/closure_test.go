@@ -12,12 +12,12 @@ import (
 )
 
 // form is how many shots a night has: those of FALLSHADOW_CLOSURE, all of them fitted, or in
-// the short form 40, so that the light of a night is there, and each fifth fitted.
+// the short form 30, so that the light of a night is there, and each fifth fitted.
 func form(t *testing.T) (shots, every int) {
 	t.Helper()
 	text := os.Getenv("FALLSHADOW_CLOSURE")
 	if text == "" {
-		return 40, 5
+		return 30, 5
 	}
 	n, err := strconv.Atoi(text)
 	if err != nil || n < 1 {

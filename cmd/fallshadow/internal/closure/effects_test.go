@@ -29,23 +29,29 @@ func TestClosureSemiIdeal(t *testing.T) {
 	t.Logf("(value - truth)/bound\n%s\n%s", head, strings.Join(table, "\n"))
 }
 
-// effects are what is wrong in a night or in what is believed of it.
+// effects are what is wrong in a night or in what is believed of it; where the name begins with
+// "right" nothing is.
 var effects = []simulated{
-	{preset: "rubidium", name: "nothing"},
-	{preset: "rubidium", name: "resolution taken as 0, 3 µm in truth", mistake: func(s *settings.Settings) { s.Camera.ResolutionUm.Value = 0 }},
+	{preset: "rubidium", name: "right settings"},
+	{preset: "rubidium", name: "resolution 0 instead of 3 um", mistake: func(s *settings.Settings) { s.Camera.ResolutionUm.Value = 0 }},
 	{preset: "rubidium", name: "alpha a tenth too large", mistake: sized(alphaOf, 1.1)},
 	{preset: "rubidium", name: "flight 2 % too long", stretch: 1.02},
 	{preset: "rubidium", name: "counts per Isat a tenth too large", mistake: sized(perIsatOf, 1.1)},
-	{preset: "fringed", name: "six fringes of 6 %, basis of light frames"},
+	{preset: "fringed", name: "right: six fringes of 6 %, basis"},
 	{preset: "fringed", name: "six fringes of 6 %, own light frame", mistake: func(s *settings.Settings) { s.Fit.Reference = "own" }},
-	{preset: "mean-field", name: "semi-ideal gas, semi-ideal form", mistake: func(s *settings.Settings) { s.Fit.Thermal = "semi-ideal" }},
+	{preset: "mean-field", name: "right: semi-ideal gas and form", mistake: func(s *settings.Settings) { s.Fit.Thermal = "semi-ideal" }},
 	{preset: "mean-field", name: "semi-ideal gas, ideal form"},
 }
 
 // TestClosureEffects prints what each does to the numbers: mean and scatter of
-// (value - truth)/truth over shots with a condensate.
+// (value - truth)/truth over shots with a condensate whose bounds are below 5 % of the truth.
+// What is right must do nothing and what is wrong must do something, beyond four standard
+// errors of the mean and a thousandth.
 func TestClosureEffects(t *testing.T) {
 	n, every := form(t)
+	if every > 1 {
+		t.Skip("FALLSHADOW_CLOSURE is not set: nine nights are too long for every day")
+	}
 	var table []string
 	for _, e := range effects {
 		e.shots, e.every = n, every
@@ -57,20 +63,40 @@ func TestClosureEffects(t *testing.T) {
 			}
 		}
 		table = append(table, effectLine(e.name, below))
+		if right := strings.HasPrefix(e.name, "right"); right == offset(below) {
+			t.Errorf("%s: biased is %v", e.name, !right)
+		}
 		if e.name == "semi-ideal gas, ideal form" {
 			for _, b := range banded(below) {
 				table = append(table, effectLine("  T/Tc0 "+b.name, b.shots))
 			}
 		}
 	}
-	t.Logf("(value - truth)/truth in %%, mean ± scatter\n%-44s N               T               N0              mu\n%s", "", strings.Join(table, "\n"))
+	t.Logf("(value - truth)/truth in %%, mean ± scatter\n%-36s N               T               N0              mu\n%s", "", strings.Join(table, "\n"))
+}
+
+// told is a quantity over the shots that the picture tells well.
+func told(q quantity) quantity {
+	q.poorly = 0.05
+	return q
+}
+
+// offset says whether the mean of any number is off the truth.
+func offset(shots []shot) bool {
+	for _, q := range quantities {
+		r := scoreOf(told(q), shots).relative
+		if r.n > 4 && !(math.Abs(r.mean()) <= 1e-3+4*r.scatter()/math.Sqrt(r.n)) {
+			return true
+		}
+	}
+	return false
 }
 
 func effectLine(name string, shots []shot) string {
-	line := fmt.Sprintf("%-44s", name)
+	line := fmt.Sprintf("%-36s", name)
 	for _, q := range quantities {
-		r := scoreOf(q, shots).relative
-		line += fmt.Sprintf(" %+6.2f ± %-6.2f", 100*r.mean(), 100*math.Sqrt(math.Max(0, r.square/r.n-r.mean()*r.mean())))
+		r := scoreOf(told(q), shots).relative
+		line += fmt.Sprintf(" %+6.2f ± %-6.2f", 100*r.mean(), 100*r.scatter())
 	}
 	return line
 }

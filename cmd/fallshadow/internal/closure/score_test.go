@@ -42,6 +42,9 @@ func (s *spread) add(z float64) {
 func (s spread) mean() float64 { return s.sum / s.n }
 func (s spread) rms() float64  { return math.Sqrt(s.square / s.n) }
 
+// scatter is the standard deviation about the mean.
+func (s spread) scatter() float64 { return math.Sqrt(math.Max(0, s.square/s.n-s.mean()*s.mean())) }
+
 // score is how one quantity of a night came out.
 type score struct {
 	bounds   spread // (value - truth)/bound

@@ -35,10 +35,12 @@ func condensed(s *shot) bool {
 // TestClosureAtTc: at the transition, where a thermal cloud is as peaked as it can be, next to
 // no shot is given a condensate, whatever is wrong with light and settings.
 func TestClosureAtTc(t *testing.T) {
-	n, _ := form(t)
-	full := n >= enough
+	n, every := form(t)
+	full := every == 1
 	if full {
 		n *= 5
+	} else {
+		n = 16
 	}
 	atTc := at(110000, 1, 1)
 	fringes := func(s *simulate.Scenario) {
@@ -62,7 +64,7 @@ func TestClosureAtTc(t *testing.T) {
 		{"counts per Isat off by a tenth", atTc, []func(*settings.Settings){sized(perIsatOf, 1.1), sized(perIsatOf, 0.9)}},
 	} {
 		if !full && c.mistakes[0] != nil {
-			continue // 40 shots cannot tell
+			continue // so few shots cannot tell
 		}
 		found, failed := 0, 0
 		for _, mistake := range c.mistakes {
@@ -86,7 +88,10 @@ func TestClosureAtTc(t *testing.T) {
 // TestClosureDetection: a condensate of 5 % of the atoms in a cloud of peak σ0 n = 0.6, which
 // α = 2 makes an optical density of 0.3, is found; the fraction is told at which half are.
 func TestClosureDetection(t *testing.T) {
-	n, _ := form(t)
+	n, every := form(t)
+	if every > 1 {
+		n = 16 // the short form
+	}
 	const atoms = 9800
 	reduced := math.Cbrt(1 - 0.05)
 	shots := simulated{preset: "threshold", shots: n, draw: at(atoms, reduced, reduced), plain: true}.run(t)
@@ -104,11 +109,15 @@ func TestClosureDetection(t *testing.T) {
 	if !(float64(found) > 0.95*float64(n)) {
 		t.Errorf("found in %d of %d shots, want more than 95 %%", found, n)
 	}
-	for _, atoms := range []float64{atoms, 110000} {
-		half := halfFound(simulated{preset: "threshold", shots: n, draw: at(atoms, 1, 0.97), plain: true}.run(t))
-		t.Logf("%.0f atoms: half of the condensates are found at a fraction of %.4f", atoms, half)
-		if !(half > 0 && half < 0.05) {
-			t.Errorf("%.0f atoms: half of the condensates are found at a fraction of %.4f, want below 0.05", atoms, half)
+	for _, c := range []struct{ atoms, to float64 }{{atoms, 0.99}, {110000, 0.998}} {
+		if every > 1 {
+			continue // so few shots cannot tell
+		}
+		shots := simulated{preset: "threshold", shots: n, draw: at(c.atoms, 1, c.to), plain: true}.run(t)
+		half, last := halfFound(shots), shots[n-1].truth
+		t.Logf("%.0f atoms: half of the condensates are found at a fraction of %.4f", c.atoms, half)
+		if top := last.N0 / last.N; !(half > 0 && half < 0.5*top) {
+			t.Errorf("%.0f atoms: half of the condensates are found at a fraction of %.4f, want below %.4f", c.atoms, half, 0.5*top)
 		}
 	}
 }
