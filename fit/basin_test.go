@@ -7,7 +7,6 @@ import (
 	"math/rand/v2"
 	"os"
 	"strconv"
-	"sync"
 	"testing"
 
 	"fallshadow/model"
@@ -32,16 +31,17 @@ func basins(t *testing.T) int {
 func TestWrongBasin(t *testing.T) {
 	n := basins(t)
 	found := make([]basin, n)
-	var wg sync.WaitGroup
-	for start := range 2 {
-		wg.Go(func() {
-			ws := NewWorkspace()
-			for i := start; i < n; i += 2 {
-				found[i] = searched(t, uint64(i), ws)
-			}
-		})
-	}
-	wg.Wait()
+	t.Run("shots", func(t *testing.T) {
+		for start := range 2 {
+			t.Run(strconv.Itoa(start), func(t *testing.T) {
+				t.Parallel()
+				ws := NewWorkspace()
+				for i := start; i < n; i += 2 {
+					found[i] = searched(t, uint64(i), ws)
+				}
+			})
+		}
+	})
 	wrong, cut := 0, 0
 	for i, b := range found {
 		if b.edge {
