@@ -85,13 +85,3 @@ func (n *Night) pick(want func(*Point) bool) []*Point {
 
 // condensed returns the points with both parts.
 func (n *Night) condensed() []*Point { return n.pick((*Point).Condensed) }
-
-// span returns the least and the largest atom number of the points.
-func (n *Night) span() (low, high float64) {
-	low, high = math.Inf(1), 0
-	for i := range n.Points {
-		atoms := n.Points[i].Atoms()
-		low, high = math.Min(low, atoms), math.Max(high, atoms)
-	}
-	return low, high
-}

@@ -35,7 +35,7 @@ func (n *Night) Analyse(ctx context.Context, c *Chosen) (*Analysis, error) {
 		low, high = math.Min(low, atoms), math.Max(high, atoms)
 	}
 	if !(low > 0) {
-		return nil, errors.New("a shot has no atoms: leave it out with --where atoms=1:")
+		return nil, errors.New("a shot has no atoms: --where atoms=1: leaves it out")
 	}
 	a.Theory = curve.NewTheory(a.Curve.Gas, low, high)
 	var err error

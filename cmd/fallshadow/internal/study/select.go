@@ -21,7 +21,7 @@ type Range struct {
 // ParseRange reads NAME=LOW:HIGH, where either end may be left out.
 func ParseRange(text string) (Range, error) {
 	fail := func(what string) (Range, error) {
-		return Range{}, fmt.Errorf("%q: %s; write NAME=LOW:HIGH, such as T_nK=50:200 or number=3:", text, what)
+		return Range{}, fmt.Errorf("%q: %s; write NAME=LOW:HIGH, such as number=3: or T_nK=50:200", text, what)
 	}
 	name, ends, found := strings.Cut(text, "=")
 	low, high, two := strings.Cut(ends, ":")
