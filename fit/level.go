@@ -2,9 +2,6 @@ package fit
 
 import (
 	"math"
-	"sort"
-
-	"gonum.org/v1/gonum/stat"
 )
 
 // level is a picture at one binning: sums of bin×bin pixels, and what the noise of those
@@ -24,19 +21,21 @@ type level struct {
 	saturate  float64 // 1/(electrons per Isat and pixel), 0 for a weak probe
 	fullW     int
 	fullH     int
+	own       *levelMemory
 }
 
 func (l *level) at(i int) float64 { return float64(l.bin*i) + 0.5*float64(l.bin-1) }
 
-// fullLevel views the picture without copying its counts.
-func fullLevel(pic *Picture, o *Optics) *level {
+// view makes l the full picture without copying its counts.
+func (l *level) view(pic *Picture, o *Optics) {
 	n := pic.Width * pic.Height
-	l := &level{
-		w: pic.Width, h: pic.Height, bin: 1, fullW: pic.Width, fullH: pic.Height,
-		atoms: pic.Atoms, light: pic.Light, noise: pic.Noise,
-		count: make([]float64, n),
-	}
+	l.begin(pic.Width, pic.Height, 1)
+	l.fullW, l.fullH, l.noise = l.w, l.h, pic.Noise
+	l.atoms, l.light = pic.Atoms, pic.Light
+	l.own.count = growTo(l.own.count, n)
+	l.count = l.own.count
 	for i, g := range pic.Good {
+		l.count[i] = 0
 		if g {
 			l.count[i] = 1
 		}
@@ -44,7 +43,7 @@ func fullLevel(pic *Picture, o *Optics) *level {
 	if pic.Density != nil {
 		l.linear, l.atoms, l.sigma = true, pic.Density, pic.DensitySigma
 		l.cast()
-		return l
+		return
 	}
 	if !l.noise.DarkIsShared {
 		l.noise.Read = math.Sqrt(l.noise.Read*l.noise.Read + l.noise.Dark)
@@ -52,106 +51,64 @@ func fullLevel(pic *Picture, o *Optics) *level {
 		l.noise.Dark = 0
 	}
 	l.saturate = o.perElectron()
-	l.smooth = smoothed(l.light, l.count, l.w, l.h, smoothing(l.light))
+	l.own.smooth = growTo(l.own.smooth, n)
+	l.smooth = l.own.smooth
+	l.smoothLight(smoothing(l.light))
 	l.strike()
 	l.cast()
-	return l
+}
+
+// levelMemory are the arrays of a level, kept from picture to picture.
+type levelMemory struct {
+	atoms, light, smooth, count, beam []float64
+	plate                             plate
+	sheets                            [2]sheet
+}
+
+// begin empties l but for its memory.
+func (l *level) begin(w, h, bin int) {
+	*l = level{w: w, h: h, bin: bin, own: l.own}
+	if l.own == nil {
+		l.own = new(levelMemory)
+	}
+	l.plate = &l.own.plate
 }
 
 // perElectron is I/Isat of the light that atoms can absorb for one electron of a pixel.
 func (o *Optics) perElectron() float64 { return (1 - o.Stray) / o.Saturation }
 
-// halved bins a level by two.
-func (l *level) halved() *level {
-	w, h := l.w/2, l.h/2
-	m := &level{
-		w: w, h: h, bin: 2 * l.bin, linear: l.linear, noise: l.noise, sigma: l.sigma, saturate: l.saturate,
-		fullW: l.fullW, fullH: l.fullH,
-		atoms: make([]float64, w*h), count: make([]float64, w*h),
-	}
+// halve makes m the level l binned by two.
+func (m *level) halve(l *level) {
+	m.begin(l.w/2, l.h/2, 2*l.bin)
+	m.linear, m.noise, m.sigma, m.saturate, m.fullW, m.fullH = l.linear, l.noise, l.sigma, l.saturate, l.fullW, l.fullH
+	o, n := m.own, m.w*m.h
+	o.atoms, o.count = growTo(o.atoms, n), growTo(o.count, n)
+	m.atoms, m.count = o.atoms, o.count
 	if !l.linear {
-		m.light, m.smooth = make([]float64, w*h), make([]float64, w*h)
+		o.light, o.smooth = growTo(o.light, n), growTo(o.smooth, n)
+		m.light, m.smooth = o.light, o.smooth
 	}
-	for j := range h {
-		for i := range w {
-			m.gather(l, j*w+i, [4]int{2*j*l.w + 2*i, 2*j*l.w + 2*i + 1, (2*j+1)*l.w + 2*i, (2*j+1)*l.w + 2*i + 1})
-		}
+	for j := range m.h {
+		m.gatherRow(l, j)
 	}
 	m.cast()
-	return m
 }
 
-// strike leaves out single pixels that stand alone: more than struck standard deviations from the
-// median of their neighbours, none of which is half as far from it. A cloud of any size that
-// a fit can measure covers neighbours, too.
-func (l *level) strike() {
-	for j := 1; j+1 < l.h; j++ {
-		for i := 1; i+1 < l.w; i++ {
-			if o := j*l.w + i; l.count[o] > 0 && l.alone(o) {
-				l.count[o] = 0
-			}
+// gatherRow adds up the bins of row j, four of the finer level each.
+func (m *level) gatherRow(l *level, j int) {
+	whole := float64(l.bin * l.bin)
+	o, a, b := j*m.w, 2*j*l.w, (2*j+1)*l.w
+	ca, cb := l.count[a:a+2*m.w], l.count[b:b+2*m.w]
+	for i := range m.w {
+		k := 2 * i
+		if l.linear || ca[k] != whole || ca[k+1] != whole || cb[k] != whole || cb[k+1] != whole {
+			m.gather(l, o+i, [4]int{a + k, a + k + 1, b + k, b + k + 1})
+			continue
 		}
-	}
-}
-
-const struck = 8
-
-func (l *level) alone(o int) bool {
-	sigma := math.Sqrt(math.Max(l.smooth[o], 0)*(1+l.noise.LightShot) + l.readVariance(o) + l.noise.LightRead)
-	r := func(o int) float64 { return l.atoms[o] - l.light[o] }
-	v := r(o)
-	// Most pixels are like those beside them: no median for them.
-	if math.Abs(v-r(o-1)) < struck*sigma || math.Abs(v-r(o+1)) < struck*sigma {
-		return false
-	}
-	near := [8]float64{r(o - l.w - 1), r(o - l.w), r(o - l.w + 1), r(o - 1), r(o + 1), r(o + l.w - 1), r(o + l.w), r(o + l.w + 1)}
-	sort.Float64s(near[:])
-	median := 0.5 * (near[3] + near[4])
-	far := math.Max(near[7]-median, median-near[0])
-	return math.Abs(v-median) > struck*sigma && far < 0.5*math.Abs(v-median)
-}
-
-// setBeam estimates the light before the optics blurred it by a variance of v px²: the reference
-// smoothed a little against its noise, sharpened by −v/2 of its curvature, and never below a
-// fifth of its surroundings.
-func (l *level) setBeam(v float64) {
-	v /= float64(l.bin * l.bin)
-	mean := make([]float64, len(l.light))
-	for o, c := range l.count {
-		if mean[o] = l.smooth[o]; c > 0 {
-			mean[o] = l.light[o] / c
-		}
-	}
-	thirds(mean, l.w, l.h)
-	l.beam = make([]float64, len(mean))
-	for j := range l.h {
-		up, down := max(j-1, 0)*l.w, min(j+1, l.h-1)*l.w
-		for i := range l.w {
-			o := j*l.w + i
-			curve := mean[up+i] + mean[down+i] + mean[j*l.w+max(i-1, 0)] + mean[j*l.w+min(i+1, l.w-1)] - 4*mean[o]
-			least := math.Max(0.2*l.smooth[o]/math.Max(l.count[o], 1), 1e-6)
-			l.beam[o] = math.Max(mean[o]-0.5*v*curve, least)
-		}
-	}
-}
-
-// thirds replaces every value by (1, 2, 1)/4 of its neighbours along rows and columns.
-func thirds(v []float64, w, h int) {
-	for j := range h {
-		row := v[j*w : (j+1)*w]
-		before := row[0]
-		for i, x := range row {
-			row[i] = 0.25*before + 0.5*x + 0.25*row[min(i+1, w-1)]
-			before = x
-		}
-	}
-	before := append([]float64(nil), v[:w]...)
-	for j := range h {
-		row, next := v[j*w:(j+1)*w], v[min(j+1, h-1)*w:]
-		for i, x := range row {
-			row[i] = 0.25*before[i] + 0.5*x + 0.25*next[i]
-			before[i] = x
-		}
+		m.count[o+i] = 4 * whole
+		m.atoms[o+i] = l.atoms[a+k] + l.atoms[a+k+1] + l.atoms[b+k] + l.atoms[b+k+1]
+		m.light[o+i] = l.light[a+k] + l.light[a+k+1] + l.light[b+k] + l.light[b+k+1]
+		m.smooth[o+i] = l.smooth[a+k] + l.smooth[a+k+1] + l.smooth[b+k] + l.smooth[b+k+1]
 	}
 }
 
@@ -159,6 +116,10 @@ func thirds(v []float64, w, h int) {
 // others stand for the bin's place; a bin with less than half of its pixels is left out,
 // since its centre would be wrong.
 func (m *level) gather(l *level, o int, from [4]int) {
+	m.count[o], m.atoms[o] = 0, 0
+	if !l.linear {
+		m.light[o], m.smooth[o] = 0, 0
+	}
 	for _, i := range from {
 		c := l.count[i]
 		if c == 0 {
@@ -177,66 +138,6 @@ func (m *level) gather(l *level, o int, from [4]int) {
 		m.count[o] = 0
 	} else if l.linear {
 		m.atoms[o] /= m.count[o]
-	}
-}
-
-// smoothing is the half-width of the box that takes the noise out of the light: two pixels where
-// counts are few, one where fringes of some pixels are worth more than the noise.
-func smoothing(light []float64) int {
-	const many = 200
-	if stat.Mean(light, nil) > many {
-		return 1
-	}
-	return 2
-}
-
-// smoothed returns the box mean of half-width r over good pixels, scaled to each pixel's
-// own count; a pixel with no good neighbour keeps its value.
-func smoothed(v, count []float64, w, h, r int) []float64 {
-	sum, num := make([]float64, w*h), make([]float64, w*h)
-	for j := range h {
-		row := j * w
-		s, n := 0.0, 0.0
-		for i := -r; i < w; i++ {
-			if k := i + r; k < w && count[row+k] > 0 {
-				s += v[row+k]
-				n += count[row+k]
-			}
-			if k := i - r - 1; k >= 0 && count[row+k] > 0 {
-				s -= v[row+k]
-				n -= count[row+k]
-			}
-			if i >= 0 {
-				sum[row+i], num[row+i] = s, n
-			}
-		}
-	}
-	out := make([]float64, w*h)
-	cs, cn := make([]float64, w), make([]float64, w)
-	for j := -r; j < h; j++ {
-		addRow(cs, cn, sum, num, w, h, j+r, 1)
-		addRow(cs, cn, sum, num, w, h, j-r-1, -1)
-		if j < 0 {
-			continue
-		}
-		for i := range w {
-			o := j*w + i
-			out[o] = v[o]
-			if cn[i] > 0.5 {
-				out[o] = cs[i] / cn[i] * math.Max(count[o], 1)
-			}
-		}
-	}
-	return out
-}
-
-func addRow(cs, cn, sum, num []float64, w, h, j int, sign float64) {
-	if j < 0 || j >= h {
-		return
-	}
-	for i := range w {
-		cs[i] += sign * sum[j*w+i]
-		cn[i] += sign * num[j*w+i]
 	}
 }
 

@@ -51,8 +51,14 @@ func Locate(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt Opt
 		return place, nil
 	}
 	geo := p.geometry(&st.p, 0)
-	for o := range place.Transmission {
-		place.Transmission[o] /= geo.scale(float64(o%pic.Width), float64(o/pic.Width))
+	step := math.Exp(-geo.light[1] * geo.iw)
+	for j := range pic.Height {
+		k := math.Exp(-geo.plane(0, float64(j)))
+		row := place.Transmission[j*pic.Width : (j+1)*pic.Width]
+		for i := range row {
+			row[i] *= k
+			k *= step
+		}
 	}
 	return place, nil
 }

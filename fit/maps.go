@@ -26,17 +26,15 @@ func (s *session) maps(st *state) *Maps {
 	p.render(&st.p, s.ws.kappa, s.ws.kappa)
 	p.residuals(s.ws.kappa, s.ws.resid)
 	geo := p.geometry(&st.p, p.blurOn(p.level))
-	total := s.densityOf(st)
-	alone := *st
-	alone.p[pCondensate] = 0
-	thermal := s.densityOf(&alone)
-	for o := range n {
-		x, y := float64(o%l.w), float64(o/l.w)
-		m.Thermal[o], m.Total[o] = float32(thermal(x, y)), float32(total(x, y))
-		m.Residual[o] = float32(s.ws.resid[o])
-		density, seen := s.seen(&geo, o, x, y)
-		m.Density[o], m.Seen[o] = float32(density), float32(seen)
-	}
+	p.density(&st.p, func(j int, thermal, both []float64) {
+		for i := range both {
+			o := j*l.w + i
+			m.Thermal[o], m.Total[o] = float32(thermal[i]), float32(both[i])
+			m.Residual[o] = float32(s.ws.resid[o])
+			density, seen := s.seen(&geo, o, float64(i), float64(j))
+			m.Density[o], m.Seen[o] = float32(density), float32(seen)
+		}
+	})
 	return m
 }
 

@@ -19,7 +19,8 @@ func benchProblem(k *kernelSet, inRoom bool) (*problem, params) {
 	optics := Optics{Pixel: 1, Alpha: 2, Saturation: 9000}
 	p := &problem{tmpl: &tmpl, law: newLaw(&optics), buf: new(buffers)}
 	p.buf.forward.kernels, p.buf.region.forward.kernels = k, k
-	p.level = fullLevel(pic, &optics)
+	p.level = new(level)
+	p.level.view(pic, &optics)
 	p.fine = p.level
 	q := params{pThermal: 0.8, pX: 250, pY: 262, pLight: 0.02}
 	if inRoom {

@@ -49,7 +49,8 @@ func testProblem(t testing.TB, lab *Lab, linear bool, q params, r room) *problem
 	}
 	p := &problem{tmpl: &tmpl, law: newLaw(&lab.Optics), room: r, buf: new(buffers)}
 	p.blur = lab.Optics.Blur / lab.Optics.Pixel
-	p.level = fullLevel(pic, &lab.Optics)
+	p.level = new(level)
+	p.level.view(pic, &lab.Optics)
 	p.fine = p.level
 	p.level.freezeData()
 	kappa := make([]float64, w*h)

@@ -32,20 +32,28 @@ func (p *plate) size(w, h int) {
 
 // cast fills the plate of a level from its bins.
 func (l *level) cast() {
-	if l.plate == nil {
-		l.plate = new(plate)
-	}
 	p := l.plate
 	p.size(l.w, l.h)
 	p.x, p.y, p.bin, p.hole = l.at(0), l.at(0), float64(l.bin), box{}
+	for i := range p.variance { // nothing is left of the picture before
+		p.variance[i] = 1
+	}
 	for j := range l.h {
 		l.castRow(j, 0, l.w)
-		if l.linear {
-			continue
+		if !l.linear {
+			l.castLight(j)
 		}
-		row := p.smooth[j*p.stride:]
-		for i, v := range l.smooth[j*l.w : (j+1)*l.w] {
-			row[i] = math.Max(v, 0) * l.full(j*l.w+i)
+	}
+}
+
+func (l *level) castLight(j int) {
+	row := l.plate.smooth[j*l.plate.stride:]
+	whole := float64(l.bin * l.bin)
+	smooth := l.smooth[j*l.w : (j+1)*l.w]
+	for i, c := range l.count[j*l.w : (j+1)*l.w] {
+		row[i] = max(smooth[i], 0)
+		if c != whole {
+			row[i] *= l.full(j*l.w + i)
 		}
 	}
 }
@@ -77,10 +85,16 @@ func (l *level) counts(o int) (atoms, light float64) {
 
 // castRow fills in the counts of columns [a,b) of row j.
 func (l *level) castRow(j, a, b int) {
-	p := l.plate
-	for i := a; i < b; i++ {
-		to := j*p.stride + i
-		p.atoms[to], p.light[to] = l.counts(j*l.w + i)
+	p, whole := l.plate, float64(l.bin*l.bin)
+	o, to := j*l.w, j*p.stride
+	if !l.linear {
+		copy(p.atoms[to+a:to+b], l.atoms[o+a:o+b])
+		copy(p.light[to+a:to+b], l.light[o+a:o+b])
+	}
+	for i, c := range l.count[o+a : o+b] {
+		if c != whole || l.linear {
+			p.atoms[to+a+i], p.light[to+a+i] = l.counts(o + a + i)
+		}
 	}
 }
 
@@ -109,7 +123,7 @@ func (l *level) without(skip []bool) *level {
 			m.count[o] = 0
 		}
 	}
-	m.plate = nil
+	m.own, m.plate = nil, new(plate)
 	m.cast()
 	copy(m.plate.variance, l.plate.variance)
 	return &m

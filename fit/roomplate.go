@@ -12,6 +12,7 @@ type roomPlate struct {
 	taps    []float64
 	beam    []float64 // I over the plate, nil on a linear level
 	inverse []float64 // 1/blur(I) inside the margin, inner columns a row
+	rows    []float64 // of I smeared along them
 }
 
 // make fills the plate from a box of the level. Beyond the picture the light is that of the
@@ -65,7 +66,8 @@ func (r *roomPlate) weigh(p *problem, x0, y0 int, kernels *kernelSet) {
 			r.beam[j*r.stride+i] = l.beam[row+min(max(x0+i, 0), l.w-1)]
 		}
 	}
-	rows := make([]float64, r.inner*r.h)
+	r.rows = growTo(r.rows, r.inner*r.h)
+	rows := r.rows
 	for j := range r.h {
 		kernels.smear(rows[j*r.inner:(j+1)*r.inner], r.beam, j*r.stride+r.margin, 1, r.taps)
 	}

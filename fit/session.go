@@ -47,7 +47,8 @@ func newSession(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt
 		return nil, err
 	}
 	s.blur = lab.Optics.Blur / lab.Optics.Pixel
-	l := fullLevel(pic, &lab.Optics)
+	l := ws.level(0)
+	l.view(pic, &lab.Optics)
 	if l.linear && l.sigma == 0 {
 		l.sigma = densitySigma(l)
 		l.cast()
@@ -57,7 +58,9 @@ func newSession(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt
 		if max(l.w, l.h) > workSide {
 			s.work = len(s.levels)
 		}
-		l = l.halved()
+		next := ws.level(len(s.levels))
+		next.halve(l)
+		l = next
 		s.levels = append(s.levels, l)
 	}
 	ws.size(pic.Width * pic.Height)

@@ -119,11 +119,3 @@ func (p *problem) density(q *params, visit func(j int, thermal, both []float64))
 		visit(j, thermal, f.d[:n])
 	}
 }
-
-// densityOf returns the model's σ0 n, the condensate without blur, as a function of the pixel.
-func (s *session) densityOf(st *state) func(x, y float64) float64 {
-	l := s.levels[0]
-	all := make([]float64, l.w*l.h)
-	s.problem(0, &st.p, st.kind).density(&st.p, func(j int, _, both []float64) { copy(all[j*l.w:], both) })
-	return func(x, y float64) float64 { return all[int(y)*l.w+int(x)] }
-}

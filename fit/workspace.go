@@ -11,6 +11,8 @@ type Workspace struct {
 	g     [numParams]float64
 	kappa []float64
 	resid []float64
+
+	levels []*level
 }
 
 // NewWorkspace returns an empty workspace.
@@ -21,4 +23,12 @@ func (w *Workspace) size(n int) {
 		w.kappa, w.resid = make([]float64, n), make([]float64, n)
 	}
 	w.kappa, w.resid = w.kappa[:n], w.resid[:n]
+}
+
+// level returns the memory of a level, the full picture's first.
+func (w *Workspace) level(i int) *level {
+	for len(w.levels) <= i {
+		w.levels = append(w.levels, new(level))
+	}
+	return w.levels[i]
 }
