@@ -1,5 +1,7 @@
 package fit
 
+//lint:file-ignore U1000 the assembly reads the constants and their table
+
 import (
 	"math"
 

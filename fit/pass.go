@@ -48,7 +48,6 @@ type geometry struct {
 	unit, slope    float64 // of g in the depth: 1/(a g2(α)); g1(α)/g2(α)
 	light          [3]float64
 	xc, yc, iw, ih float64
-	r              float64 // whether the condensate is there
 }
 
 func (p *problem) geometry(q *params, grow float64) geometry {

@@ -129,6 +129,5 @@ func (l *level) without(skip []bool) *level {
 	return &m
 }
 
-// at are the position of column i and of row j in the picture.
-func (p *plate) column(i int) float64 { return p.x + float64(i)*p.bin }
-func (p *plate) row(j int) float64    { return p.y + float64(j)*p.bin }
+// row is the position of row j in the picture.
+func (p *plate) row(j int) float64 { return p.y + float64(j)*p.bin }

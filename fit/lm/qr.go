@@ -11,7 +11,7 @@ import (
 type denseForm struct {
 	p          Residuals
 	m, n       int
-	x, tried   []float64 // points
+	tried      []float64 // the point tried
 	rho        []float64 // residuals at the point tried
 	j          *mat.Dense
 	work, r    []float64

@@ -44,7 +44,7 @@ func lock(dir string) (*os.File, error) {
 		pid, _ := strconv.Atoi(string(bytes.TrimSpace(text)))
 		return nil, &BusyError{Dir: dir, PID: pid}
 	}
-	if err := f.Truncate(0); err == nil {
+	if err = f.Truncate(0); err == nil {
 		_, err = f.WriteAt([]byte(strconv.Itoa(os.Getpid())+"\n"), 0)
 	}
 	if err != nil {

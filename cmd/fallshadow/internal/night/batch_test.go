@@ -281,8 +281,7 @@ func TestTroubleStaysWithItsShot(t *testing.T) {
 		case "2000":
 			return errors.New("no\nminimum")
 		case "3000":
-			var m map[string]int
-			m["x"] = 1
+			panic("assignment to entry in nil map")
 		}
 		return nil
 	}}
