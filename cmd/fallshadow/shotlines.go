@@ -3,8 +3,10 @@ package main
 import (
 	"fmt"
 	"io"
+	"maps"
 	"strings"
 	"sync"
+	"time"
 	"unicode/utf8"
 
 	"fallshadow/cmd/fallshadow/internal/ledger"
@@ -22,11 +24,15 @@ type shotLines struct {
 	mu     sync.Mutex
 	head   bool
 	widths []int
-	said   map[string]bool
+	now    func() time.Time
+	said   map[string]time.Time // notes, and when they last were there
 }
 
+// again is after how long a note that comes back is printed once more.
+const again = 5 * time.Minute
+
 func newShotLines(t terminal, json bool) *shotLines {
-	return &shotLines{out: t.out, err: t.err, json: json, color: isScreen(t.out), said: map[string]bool{}}
+	return &shotLines{out: t.out, err: t.err, json: json, color: isScreen(t.out), now: time.Now, said: map[string]time.Time{}}
 }
 
 // Row prints a row as one line, aligned with those before as far as they are alike.
@@ -105,16 +111,16 @@ func (l *shotLines) Picture(string, *report.Facts, *imageio.Raw) {}
 // Changed is for who shows all rows.
 func (l *shotLines) Changed() {}
 
-// Notes prints what was not said before.
+// Notes prints what was not said of late.
 func (l *shotLines) Notes(notes []string) {
 	l.mu.Lock()
 	defer l.mu.Unlock()
-	now := map[string]bool{}
+	now := l.now()
 	for _, n := range notes {
-		if !l.said[n] {
+		if last, said := l.said[n]; !said || now.Sub(last) > again {
 			fmt.Fprintln(l.err, report.Printable(n))
 		}
-		now[n] = true
+		l.said[n] = now
 	}
-	l.said = now
+	maps.DeleteFunc(l.said, func(_ string, last time.Time) bool { return now.Sub(last) > again })
 }

@@ -4,6 +4,7 @@ import (
 	"bytes"
 	"strings"
 	"testing"
+	"time"
 
 	"fallshadow/cmd/fallshadow/internal/ledger"
 )
@@ -37,10 +38,14 @@ func TestShotLines(t *testing.T) {
 	if !strings.Contains(out.String(), "\x1b[33mdense cut\x1b[0m") {
 		t.Error("no colour on a screen")
 	}
-	l.Notes([]string{"waiting", "again"})
-	l.Notes([]string{"again"})
-	l.Notes([]string{"waiting"})
-	if got := errs.String(); got != "waiting\nagain\nwaiting\n" {
+	clock := time.Now()
+	l.now = func() time.Time { return clock }
+	l.Notes([]string{"waiting", "crowded"})
+	l.Notes([]string{"crowded"})
+	l.Notes([]string{"waiting", "crowded"})
+	clock = clock.Add(again + time.Second)
+	l.Notes([]string{"crowded"})
+	if got := errs.String(); got != "waiting\ncrowded\ncrowded\n" {
 		t.Errorf("said %q", got)
 	}
 }

@@ -3,7 +3,6 @@
 package page_test
 
 import (
-	"bufio"
 	"bytes"
 	"encoding/binary"
 	"fmt"
@@ -13,6 +12,7 @@ import (
 	"slices"
 	"strconv"
 	"strings"
+	"sync"
 	"testing"
 	"time"
 
@@ -32,26 +32,26 @@ func TestBrowserLongNight(t *testing.T) {
 	}
 	dir := newNight(t)
 	cmd := exec.Command(program, "watch", dir, "--out", filepath.Join(t.TempDir(), "r"), "--page", "127.0.0.1:0")
-	said, err := cmd.StderrPipe()
-	if err != nil {
-		t.Fatal(err)
-	}
+	var said lastWords
+	cmd.Stderr = &said
 	if err := cmd.Start(); err != nil {
 		t.Fatal(err)
 	}
+	ended := make(chan error, 1)
+	go func() { ended <- cmd.Wait() }()
 	defer func() {
 		cmd.Process.Kill()
-		cmd.Wait()
-	}()
-	url := ""
-	for lines := bufio.NewScanner(said); url == "" && lines.Scan(); {
-		url, _ = strings.CutPrefix(lines.Text(), "page: ")
-	}
-	go func() { // what it says later
-		for lines := bufio.NewScanner(said); lines.Scan(); {
-			t.Log(lines.Text())
+		if err := <-ended; t.Failed() {
+			t.Logf("it ended with %v and said %q", err, said.String())
 		}
 	}()
+	url := ""
+	for url == "" {
+		time.Sleep(10 * time.Millisecond)
+		if _, rest, ok := strings.Cut(said.String(), "page: "); ok && strings.Contains(rest, "\n") {
+			url = strings.TrimSpace(rest)
+		}
+	}
 	tab := longTab(t)
 	do(t, tab, chromedp.EmulateViewport(1440, 900), chromedp.Navigate(url))
 	var base [][]byte
@@ -95,6 +95,24 @@ func TestBrowserLongNight(t *testing.T) {
 			t.Errorf("the page holds %.0f MB", heap[i])
 		}
 	}
+}
+
+// lastWords is what a program said.
+type lastWords struct {
+	mu sync.Mutex
+	b  bytes.Buffer
+}
+
+func (l *lastWords) Write(p []byte) (int, error) {
+	l.mu.Lock()
+	defer l.mu.Unlock()
+	return l.b.Write(p)
+}
+
+func (l *lastWords) String() string {
+	l.mu.Lock()
+	defer l.mu.Unlock()
+	return l.b.String()
 }
 
 // usual is the median of the memory over a few seconds, in which the collector of garbage
