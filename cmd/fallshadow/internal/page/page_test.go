@@ -270,7 +270,7 @@ func TestDetail(t *testing.T) {
 	d := newDetail(&s.rows[0], s.Scan())
 	want := []report.Card{
 		{Name: "atoms", Label: "N", Value: "123\u2009500", Err: "± 800", Cal: "± 2900"},
-		{Name: "fraction", Label: "N₀/N", Value: "< 0.0123"},
+		{Name: "fraction", Label: "N₀/N", Value: "< 0.012"},
 	}
 	if diff := cmp.Diff(want, d.Cards); diff != "" {
 		t.Error(diff)

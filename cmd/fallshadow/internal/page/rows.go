@@ -103,20 +103,26 @@ type column struct {
 func (p *Page) serveNight(r *http.Request) (any, error) {
 	last := p.stream.last() // before the rows are read, so that nothing falls in between
 	list := []brief{}
+	var final *ledger.Row
 	for row, err := range p.night.Each(r.Context()) {
 		if err != nil {
 			return nil, err
 		}
 		list = append(list, newBrief(row))
+		final = row
 	}
 	now, next := p.night.Region()
-	return map[string]any{
+	answer := map[string]any{
 		"night": p.name, "event": last,
 		"rows": list, "columns": columns(), "scan": p.night.Scan(), "flags": flagSentences(),
 		"settings": p.night.SettingsText(), "notes": p.night.Notes(),
 		"region": corners(now), "drawn": corners(next),
 		"scales": map[string][]string{"density": hexes(picture.DensityColors), "residual": hexes(picture.ResidualColors)},
-	}, nil
+	}
+	if final != nil {
+		answer["last"] = newDetail(final, p.night.Scan())
+	}
+	return answer, nil
 }
 
 func columns() []column {

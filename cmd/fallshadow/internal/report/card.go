@@ -44,9 +44,9 @@ func newCard(r *ledger.Row, name string) Card {
 	low, high := r.Number(name+"_low"), r.Number(name+"_high")
 	switch {
 	case math.IsNaN(low) && !math.IsNaN(high):
-		return Card{Value: "< " + Plain(high, 3)}
+		return Card{Value: "< " + Plain(high, 2)}
 	case math.IsNaN(high) && !math.IsNaN(low):
-		return Card{Value: "> " + Plain(low, 3)}
+		return Card{Value: "> " + Plain(low, 2)}
 	case math.IsNaN(v):
 		return Card{}
 	case high >= v && v >= low && high > low:
@@ -133,7 +133,7 @@ func Plain(v float64, digits int) string {
 	}
 	n := int(math.Floor(math.Log10(size)))
 	if n >= 6 || n < -3 {
-		return strconv.FormatFloat(v/math.Pow10(n), 'g', digits, 64) + " ×10" + superscript(n)
+		return strconv.FormatFloat(v/math.Pow10(n), 'g', digits, 64) + "×10" + superscript(n)
 	}
 	if n >= digits {
 		return spaced(v, digits-1-n)

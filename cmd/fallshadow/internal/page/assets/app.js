@@ -43,21 +43,24 @@ async function load() {
     $("shot").textContent = "no shots yet";
     pictures.clear();
   } else {
-    show(shot);
+    show(shot, night.last?.shot === shot ? night.last : undefined, true);
   }
   await trend.load();
   return night.event;
 }
 
-// show shows a shot: its numbers, and its picture as soon as there is one.
-async function show(shot, row) {
+// show shows a shot: its numbers, and its picture as soon as there is one. Where the row is
+// at hand it is given; look says that the picture is there too.
+async function show(shot, row, look = row === undefined) {
   wanted = shot;
   shots.select(shot);
   pictures.wait();
   trend.plot?.redraw(false);
   try {
+    const view = look ? get("/api/view", { shot }) : null;
+    view?.catch(() => {}); // the row says why
     showRow(row ?? await get("/api/row", { shot }), shot);
-    if (row === undefined) await showView(shot);
+    if (view) showView(shot, await view);
     else if (row.failed) showNothing();
   } catch (error) {
     if (wanted !== shot) return;
@@ -80,8 +83,7 @@ function showRow(row, shot) {
   showStatus();
 }
 
-async function showView(shot) {
-  const view = await get("/api/view", { shot });
+function showView(shot, view) {
   if (wanted !== shot) return;
   pictures.show(shot, view, version);
   showCuts();
@@ -111,7 +113,7 @@ const live = new Live({
   },
   picture(shot) {
     version++;
-    if (wanted === shot) showView(shot).catch((error) => say(error.message));
+    if (wanted === shot) get("/api/view", { shot }).then((view) => showView(shot, view)).catch((error) => say(error.message));
   },
   changed: () => load().catch(() => {}),
   begin: () => load().catch(() => {}),

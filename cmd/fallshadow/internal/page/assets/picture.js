@@ -57,7 +57,9 @@ export class Pictures {
     for (const part of parts) $("tab-" + part).setAttribute("aria-pressed", this.part === part);
     const v = this.view;
     if (!v) return;
-    if (this.part === "frame" || !v.width) this.drawFrame(v);
+    const frame = this.part === "frame" || !v.width;
+    $("scale").hidden = $("outlines").hidden = frame;
+    if (frame) this.drawFrame(v);
     else this.drawDensity(v);
     this.drawResidual();
   }
@@ -88,8 +90,8 @@ export class Pictures {
     stage.setAttribute("viewBox", box.join(" "));
     stage.replaceChildren(...drawn);
     $("density-low").textContent = "OD 0";
-    $("density-middle").textContent = this.root ? v.top / 4 : v.top / 2;
-    $("density-high").textContent = v.top;
+    $("density-middle").textContent = Number((this.root ? v.top / 4 : v.top / 2).toPrecision(3));
+    $("density-high").textContent = Number(v.top.toPrecision(3));
   }
 
   drawFrame(v) {
