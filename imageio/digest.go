@@ -12,49 +12,77 @@ import (
 // whole counts from 0 to 65535, else as float32, little-endian. So the digest belongs to
 // the pixels, whatever file format brought them.
 func Digest(frames ...*Frame) [32]byte {
+	// Nearly all frames are whole counts: they are looked at while they are hashed.
+	if sum, ok := digest(frames, func(*Frame) bool { return true }); ok {
+		return sum
+	}
+	sum, _ := digest(frames, func(f *Frame) bool { return put16(nil, f.Pix) })
+	return sum
+}
+
+// digest is Digest with the frames of 16-bit numbers told; ok is false where one is not.
+func digest(frames []*Frame, short func(*Frame) bool) (sum [32]byte, ok bool) {
 	h := sha256.New()
-	buf := make([]byte, 0, 1<<15)
+	buf := make([]byte, 1<<15)
 	for _, f := range frames {
 		if f == nil {
 			h.Write([]byte{'-'})
 			continue
 		}
 		kind := byte('f')
-		if whole16(f.Pix) {
+		if short(f) {
 			kind = 'u'
 		}
 		head := binary.LittleEndian.AppendUint64([]byte{kind}, uint64(f.Width))
 		h.Write(binary.LittleEndian.AppendUint64(head, uint64(f.Height)))
-		hashPixels(h, buf, f.Pix, kind == 'u')
+		if !hashPixels(h, buf, f.Pix, kind == 'u') {
+			return sum, false
+		}
 	}
-	return [32]byte(h.Sum(nil))
+	return [32]byte(h.Sum(nil)), true
 }
 
-func hashPixels(h hash.Hash, buf []byte, pix []float32, short bool) {
+func hashPixels(h hash.Hash, buf []byte, pix []float32, short bool) bool {
 	for len(pix) > 0 {
-		n := min(cap(buf)/4, len(pix))
+		n := min(len(buf)/4, len(pix))
+		some := buf[:4*n]
 		if short {
-			buf = buf[:2*n]
-			for i, v := range pix[:n] {
-				binary.LittleEndian.PutUint16(buf[2*i:], uint16(v))
+			if some = buf[:2*n]; !put16(some, pix[:n]) {
+				return false
 			}
 		} else {
-			buf = buf[:4*n]
 			for i, v := range pix[:n] {
-				binary.LittleEndian.PutUint32(buf[4*i:], math.Float32bits(v))
+				binary.LittleEndian.PutUint32(some[4*i:], math.Float32bits(v))
 			}
 		}
-		h.Write(buf)
+		h.Write(some)
 		pix = pix[n:]
 	}
+	return true
 }
 
-// whole16 reports whether every pixel is a whole number from 0 to 65535: only such a
-// number survives the way there and back. Negative zero counts as zero.
-func whole16(pix []float32) bool {
-	for _, v := range pix {
-		if float32(uint16(int32(v))) != v {
+// put16 writes pixels as 16-bit numbers, four at a time, where dst is not nil, and reports
+// whether all of them are whole numbers from 0 to 65535: only such a number survives the way
+// there and back. Negative zero counts as zero.
+func put16(dst []byte, pix []float32) bool {
+	for len(pix) >= 4 {
+		p := (*[4]float32)(pix)
+		a, b, c, d := uint16(int32(p[0])), uint16(int32(p[1])), uint16(int32(p[2])), uint16(int32(p[3]))
+		if float32(a) != p[0] || float32(b) != p[1] || float32(c) != p[2] || float32(d) != p[3] {
 			return false
+		}
+		if pix = pix[4:]; dst != nil {
+			binary.LittleEndian.PutUint64(dst, uint64(a)|uint64(b)<<16|uint64(c)<<32|uint64(d)<<48)
+			dst = dst[8:]
+		}
+	}
+	for i, v := range pix {
+		w := uint16(int32(v))
+		if float32(w) != v {
+			return false
+		}
+		if dst != nil {
+			binary.LittleEndian.PutUint16(dst[2*i:], w)
 		}
 	}
 	return true

@@ -4,9 +4,11 @@ import (
 	"bytes"
 	"compress/gzip"
 	"context"
+	"crypto/sha256"
 	"errors"
 	"math"
 	"runtime"
+	"slices"
 	"testing"
 
 	"fallshadow/imageio/fault"
@@ -224,12 +226,24 @@ func TestDigest(t *testing.T) {
 		}
 	}
 	for _, v := range []float32{-1, 65536, 0.5, 1e30, float32(math.NaN()), float32(math.Inf(1)), 1 << 32} {
-		if whole16([]float32{v}) {
+		if put16(nil, []float32{v}) || put16(nil, []float32{0, 1, v, 3, 4}) {
 			t.Errorf("%v passes for 16 bits", v)
 		}
 	}
-	if !whole16([]float32{0, 1, 65535}) {
+	if !put16(nil, []float32{0, 1, 65535, 4, 5}) {
 		t.Error("counts do not pass for 16 bits")
+	}
+}
+
+// The digest of whole counts before and after a frame that holds none, byte by byte.
+func TestDigestBytes(t *testing.T) {
+	counts := &Frame{Width: 3, Height: 2, Pix: []float32{0, 1, 255, 256, 65535, 7}}
+	other := &Frame{Width: 1, Height: 1, Pix: []float32{0.5}}
+	size := func(w, h byte) []byte { return []byte{w, 0, 0, 0, 0, 0, 0, 0, h, 0, 0, 0, 0, 0, 0, 0} }
+	whole := slices.Concat([]byte{'u'}, size(3, 2), []byte{0, 0, 1, 0, 255, 0, 0, 1, 255, 255, 7, 0})
+	half := slices.Concat([]byte{'f'}, size(1, 1), []byte{0, 0, 0, 0x3f})
+	if got := Digest(counts, nil, other, counts); got != sha256.Sum256(slices.Concat(whole, []byte{'-'}, half, whole)) {
+		t.Errorf("digest %x", got)
 	}
 }
 
