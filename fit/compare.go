@@ -35,15 +35,6 @@ func nanLow(x float64) float64 {
 	return x
 }
 
-// reach returns r ᵀS⁻¹r of an ellipse as a function of position.
-func (e ellipse) reach(x0, y0 float64) func(x, y float64) float64 {
-	inv := e.shape().Inverse()
-	return func(x, y float64) float64 {
-		dx, dy := x-x0, y-y0
-		return dx*(inv.XX*dx+2*inv.XY*dy) + inv.YY*dy*dy
-	}
-}
-
 // chiInside is χ² a pixel inside the condensate.
 func (s *session) chiInside(l *level, st *state) float64 {
 	in := s.tmpl.condensateOf(&st.p).reach(st.p[pX], st.p[pY])
@@ -52,10 +43,13 @@ func (s *session) chiInside(l *level, st *state) float64 {
 		most = 4
 	}
 	sum, n := 0.0, 0
-	for o, v := range s.ws.resid {
-		if !math.IsNaN(v) && in(float64(o%l.w), float64(o/l.w)) < most {
-			sum += v * v
-			n++
+	for j := range l.h {
+		a, b := in.row(float64(j), most, l.w)
+		for _, v := range s.ws.resid[j*l.w+a : j*l.w+b] {
+			if !math.IsNaN(v) {
+				sum += v * v
+				n++
+			}
 		}
 	}
 	if n == 0 {
@@ -68,17 +62,15 @@ func (s *session) chiInside(l *level, st *state) float64 {
 // blocks whose centre lies within 2.5 widths or 1.2 radii of the cloud; 1 for white noise.
 func (s *session) chiBlocks(l *level, st *state) float64 {
 	const side = 8
-	thermal := s.tmpl.thermalOf(&st.p).reach(st.p[pX], st.p[pY])
-	cond := s.tmpl.condensateOf(&st.p).reach(st.p[pX], st.p[pY])
 	most := 1.44
 	if s.tmpl.gaussian {
 		most = 6
 	}
+	under := s.cover(st, 6.25, most)
 	sum, n := 0.0, 0
 	for j := 0; j+side <= l.h; j += side {
 		for i := 0; i+side <= l.w; i += side {
-			x, y := float64(i)+3.5, float64(j)+3.5
-			if !(st.kind.thermal && thermal(x, y) < 6.25) && !(st.kind.condensate && cond(x, y) < most) {
+			if !under.holds(float64(i)+3.5, float64(j)+3.5) {
 				continue
 			}
 			if v, ok := s.block(l, i, j, side); ok {
@@ -218,7 +210,7 @@ func (s *session) compareWings(st *state, c *Checks) error {
 	}
 	skip := make([]bool, l.w*l.h)
 	for o := range skip {
-		skip[o] = in(l.at(o%l.w), l.at(o/l.w)) < most
+		skip[o] = in.at(l.at(o%l.w), l.at(o/l.w)) < most
 	}
 	k := st.kind
 	k.condensate, k.alpha, k.fixCentre = false, false, true

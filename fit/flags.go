@@ -135,9 +135,10 @@ func (s *session) isCut(r *Result) bool {
 	}
 	in := e.reach(r.X, r.Y)
 	bad, all := 0, 0
-	for o, c := range l.count {
-		if in(float64(o%l.w), float64(o/l.w)) < 0.25 {
-			all++
+	for j := range l.h {
+		a, b := in.row(float64(j), 0.25, l.w)
+		all += b - a
+		for _, c := range l.count[j*l.w+a : j*l.w+b] {
 			if c == 0 {
 				bad++
 			}

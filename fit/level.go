@@ -14,6 +14,7 @@ type level struct {
 	light     []float64 // Σ reference
 	smooth    []float64 // the reference smoothed: where noise must not steer weights
 	beam      []float64 // the light before the optics blurred it, in no unit: weights of the blur
+	lit       box       // where beam is known
 	count     []float64 // good pixels in the bin; 0 leaves it out
 	plate     *plate    // the same for the kernels, with the variance of atoms
 	noise     Noise

@@ -64,8 +64,6 @@ func Locate(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt Opt
 }
 
 func (s *session) fillMask(st *state, mask []bool) {
-	thermal := s.tmpl.thermalOf(&st.p).reach(st.p[pX], st.p[pY])
-	cond := s.tmpl.condensateOf(&st.p).reach(st.p[pX], st.p[pY])
 	most := 1.44
 	if s.tmpl.gaussian {
 		most = 10
@@ -77,8 +75,12 @@ func (s *session) fillMask(st *state, mask []bool) {
 	if area := math.Pi * math.Sqrt(e.square[0]*e.square[1]); reach*area > 0.8*float64(len(mask)) {
 		reach = 0.8 * float64(len(mask)) / area
 	}
-	for o := range mask {
-		x, y := float64(o%s.pic.Width), float64(o/s.pic.Width)
-		mask[o] = st.kind.thermal && thermal(x, y) < reach || st.kind.condensate && cond(x, y) < most
+	under, w := s.cover(st, reach, most), s.pic.Width
+	for j := range s.pic.Height {
+		under.row(float64(j), w, func(a, b int) {
+			for o := j*w + a; o < j*w+b; o++ {
+				mask[o] = true
+			}
+		})
 	}
 }

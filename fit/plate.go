@@ -58,6 +58,14 @@ func (l *level) castLight(j int) {
 	}
 }
 
+// share is the part of the pixels of bin o that is good, 1 for none.
+func (l *level) share(o int) float64 {
+	if c := l.count[o]; c > 0 {
+		return c / float64(l.bin*l.bin)
+	}
+	return 1
+}
+
 // full is how many times the pixels of bin o would be good if none were bad.
 func (l *level) full(o int) float64 {
 	n := float64(l.bin * l.bin)

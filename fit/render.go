@@ -92,9 +92,9 @@ func (p *problem) freeze(q *params, outside, inside []float64) {
 
 func (l *level) freezeRow(kappa []float64, j, i0, i1 int) {
 	p, read := l.plate, l.readNoise()
-	row := p.variance[j*p.stride:]
-	for i := i0; i < i1; i++ {
-		row[i] = math.Max(0, kappa[j*l.w+i]*p.smooth[j*p.stride+i]) + read
+	dst, smooth := p.variance[j*p.stride+i0:j*p.stride+i1], p.smooth[j*p.stride+i0:]
+	for i, k := range kappa[j*l.w+i0 : j*l.w+i1] {
+		dst[i] = max(0, k*smooth[i]) + read
 	}
 }
 
@@ -121,24 +121,34 @@ func (l *level) freezeData() {
 // not count, from the κ in kappa.
 func (p *problem) residuals(kappa, dst []float64) {
 	l := p.level
-	for o, k := range kappa[:l.w*l.h] {
-		switch {
-		case l.count[o] == 0:
-			dst[o] = math.NaN()
-		case l.linear:
-			dst[o] = (l.atoms[o] - k) * math.Sqrt(l.count[o]) / l.sigma
-		default:
-			dst[o] = l.residual(o, k)
+	for j := range l.h {
+		from, to := j*l.w, (j+1)*l.w
+		if l.linear {
+			for o := from; o < to; o++ {
+				dst[o] = (l.atoms[o] - kappa[o]) * math.Sqrt(l.count[o]) / l.sigma
+			}
+		} else {
+			l.residualRow(kappa[from:to], dst[from:to], j)
+		}
+		for i, c := range l.count[from:to] {
+			if c == 0 {
+				dst[from+i] = math.NaN()
+			}
 		}
 	}
 }
 
-// residual is that of bin o, (A − κ L)/√V, in standard deviations.
-//
-// Its square is the fit to both frames with the true light profiled out: V = v_A + κ² v_L +
-// (1−κ)² v_D with v_A frozen.
-func (l *level) residual(o int, kappa float64) float64 {
-	vl, vd := l.variances(o)
-	va := l.plate.variance[o/l.w*l.plate.stride+o%l.w] / l.full(o)
-	return (l.atoms[o] - kappa*l.light[o]) / math.Sqrt(va+kappa*kappa*vl+(1-kappa)*(1-kappa)*vd)
+// residualRow fills in row j: (A − κ L)/√V in standard deviations. Its square is the fit to both
+// frames with the true light profiled out: V = v_A + κ² v_L + (1−κ)² v_D with v_A frozen.
+func (l *level) residualRow(kappa, dst []float64, j int) {
+	p := l.plate
+	pixels := float64(l.bin * l.bin)
+	shot, read, dark := l.noise.LightShot, pixels*l.noise.LightRead, pixels*l.noise.Dark
+	from := j * p.stride
+	variance, smooth := p.variance[from:from+l.w], p.smooth[from:from+l.w]
+	for i, k := range kappa {
+		o := j*l.w + i
+		v := variance[i] + k*k*(shot*smooth[i]+read) + (1-k)*(1-k)*dark
+		dst[i] = (l.atoms[o] - k*l.light[o]) / math.Sqrt(v*l.share(o))
+	}
 }

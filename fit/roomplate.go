@@ -56,14 +56,12 @@ func (r *roomPlate) fillRow(l *level, in box, j, row, x0 int) {
 // weigh fills in the light that weighs the blur.
 func (r *roomPlate) weigh(p *problem, x0, y0 int, kernels *kernelSet) {
 	l := p.fine
-	if l.beam == nil {
-		l.setBeam(p.blur * p.blur)
-	}
+	l.setBeam(p.blur*p.blur, box{x0, y0, x0 + r.w, y0 + r.h})
 	r.beam = growTo(r.beam, r.stride*r.h)
 	for j := range r.h {
 		row := min(max(y0+j, 0), l.h-1) * l.w
 		for i := range r.stride {
-			r.beam[j*r.stride+i] = l.beam[row+min(max(x0+i, 0), l.w-1)]
+			r.beam[j*r.stride+i] = l.beam[row+min(max(x0+min(i, r.w-1), 0), l.w-1)]
 		}
 	}
 	r.rows = growTo(r.rows, r.inner*r.h)

@@ -43,6 +43,7 @@ func (s *session) answer(st *state, lab *Lab, flight float64) (numbers.Measured,
 	p := s.problem(s.work, &st.p, st.kind)
 	level := *p.level
 	level.saturate = lab.Optics.perElectron()
+	level.own, level.lit = &s.ws.moved, box{} // another blur has another beam
 	p.level, p.fine, p.tmpl, p.law, p.blur = &level, &level, &tmpl, newLaw(&lab.Optics), lab.Optics.Blur/lab.Optics.Pixel
 	q := st.p
 	// The same cloud in pixels: only what the shapes do not share with the template is left

@@ -13,13 +13,14 @@ func (s *session) sum(st *state, r *Result) {
 	var all tally
 	p.density(&st.p, func(j int, _, model []float64) {
 		f := &p.buf.forward
-		k := math.Exp(f.plane)
-		for i, d := range model {
-			if o := j*l.w + i; window(float64(i), float64(j)) {
-				all.add(s.pixelDensity(p, o, k, f.plane+float64(i)*f.tilt, d), d, l.atoms[o])
+		window.row(float64(j), l.w, func(a, b int) {
+			k := math.Exp(f.plane + float64(a)*f.tilt)
+			for i, d := range model[a:b] {
+				o := j*l.w + a + i
+				all.add(s.pixelDensity(p, o, k, f.plane+float64(a+i)*f.tilt, d), d, l.atoms[o])
+				k *= f.growth
 			}
-			k *= f.growth
-		}
+		})
 	})
 	scale := s.tmpl.pixel * s.tmpl.pixel / s.lab.Species.Sigma0()
 	r.Sum = all.total * scale
@@ -66,36 +67,34 @@ func (s *session) pixelDensity(p *problem, o int, k, plane, d float64) seenDensi
 	if l.linear {
 		return seenDensity{l.atoms[o] - plane, l.sigma * l.sigma, 1, true}
 	}
-	sat := k * l.smooth[o] * l.saturate
+	smooth := k * max(l.smooth[o], 0)
+	sat := smooth * l.saturate
 	t := s.ws.kappa[o] / k
 	vl, vd := l.variances(o)
-	a := math.Max(k*t*l.smooth[o], 1)
-	light := k * math.Max(l.smooth[o], 1)
-	da, dl := p.law.a/a+sat/light, p.law.a/light+sat/light
-	va := a + l.readVariance(o)
-	r := seenDensity{d, da*da*va + dl*dl*k*k*vl + (p.law.a/a-p.law.a/light)*(p.law.a/a-p.law.a/light)*vd, 0, true}
-	if l.atoms[o] < 3*math.Sqrt(l.readVariance(o)) || l.light[o] <= 0 {
+	read := l.readVariance(o)
+	a, light := max(t*smooth, 1), max(smooth, k)
+	ia, il := p.law.a/a, p.law.a/light // of the logarithm's derivatives
+	da, dl := ia+sat/light, il+sat/light
+	va := a + read
+	r := seenDensity{d, da*da*va + dl*dl*k*k*vl + (ia-il)*(ia-il)*vd, 0, true}
+	if x := l.atoms[o]; x < 0 || x*x < 9*read || l.light[o] <= 0 {
 		return r
 	}
 	v := p.law.od(l.atoms[o]/(k*l.light[o]), k*l.light[o]*l.saturate)
 	if finite(v) {
-		r.value = v - p.law.a*(va/(2*a*a)-k*k*vl/(2*light*light))
+		r.value = v - 0.5*(ia*ia*va-il*il*k*k*vl)/p.law.a
 		r.pull = p.law.a + sat*(1-t)
 	}
 	return r
 }
 
-// window says whether a place belongs to the cloud: 4.5 widths or 1.4 radii.
-func (s *session) window(st *state) func(x, y float64) bool {
-	thermal := s.tmpl.thermalOf(&st.p).reach(st.p[pX], st.p[pY])
-	cond := s.tmpl.condensateOf(&st.p).reach(st.p[pX], st.p[pY])
+// window is where the cloud is summed: 4.5 widths or √2 radii.
+func (s *session) window(st *state) cover {
 	most := 2.0
 	if s.tmpl.gaussian {
 		most = 20
 	}
-	return func(x, y float64) bool {
-		return st.kind.thermal && thermal(x, y) < 20.25 || st.kind.condensate && cond(x, y) < most
-	}
+	return s.cover(st, 20.25, most)
 }
 
 // density visits the rows of the level with σ0 n of the thermal part and of both, the condensate

@@ -13,6 +13,7 @@ type Workspace struct {
 	resid []float64
 
 	levels []*level
+	moved  levelMemory // of a level in a moved laboratory
 }
 
 // NewWorkspace returns an empty workspace.
