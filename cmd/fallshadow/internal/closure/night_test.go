@@ -148,7 +148,7 @@ func (n simulated) fitted(ctx context.Context) ([]shot, error) {
 		s.fit, s.failure = result, err
 		if err != nil {
 			s.fit = &fit.Result{Numbers: numbers.Nothing()}
-			exposure = &imageio.Exposure{Noise: imageio.Noise{LightShot: 1}} // for the bound
+			exposure, err = &imageio.Exposure{Noise: imageio.Noise{LightShot: 1}}, nil // for the bound
 		}
 		s.noise, s.reference = exposure.Noise, exposure.Reference
 		if !n.plain {
