@@ -7,7 +7,6 @@ import (
 	"net"
 	"os"
 	"path/filepath"
-	"syscall"
 	"time"
 
 	"github.com/mattn/go-isatty"
@@ -80,11 +79,10 @@ func (c *watchCmd) listen(screen *page.Page) (net.Listener, string, error) {
 	if c.Page != "" {
 		return screen.Listen(c.Page, c.Token)
 	}
-	l, url, err := screen.Listen(ownAddress, "")
-	if errors.Is(err, syscall.EADDRINUSE) {
-		return screen.Listen("127.0.0.1:0", "")
+	if l, url, err := screen.Listen(ownAddress, ""); err == nil {
+		return l, url, nil
 	}
-	return l, url, err
+	return screen.Listen("127.0.0.1:0", "")
 }
 
 // nameOf is what a night is called.
