@@ -131,7 +131,8 @@ func (l *level) without(skip []bool) *level {
 			m.count[o] = 0
 		}
 	}
-	m.own, m.plate = nil, new(plate)
+	m.own, m.lit = new(levelMemory), box{}
+	m.plate = &m.own.plate
 	m.cast()
 	copy(m.plate.variance, l.plate.variance)
 	return &m
