@@ -144,14 +144,9 @@ const settled = 0.3
 func (s *session) refine(st *state) (*state, error) {
 	for range 5 {
 		s.freezeFull(st)
-		next, err := s.runWidth(func(k kind, start params) (*state, error) {
-			return s.runFull(k, start, 3e-3)
-		}, st.kind, st.p)
+		next, err := s.settle(st)
 		if err != nil {
 			return nil, err
-		}
-		if !next.used() {
-			return nil, stateError("the fit of the full picture found no minimum", next)
 		}
 		moved := next.moved(st)
 		st = next
@@ -160,6 +155,25 @@ func (s *session) refine(st *state) (*state, error) {
 		}
 	}
 	return st, nil
+}
+
+// settle minimises on the full picture under the variances as they stand. A condensate of about a
+// pixel is all kinks to a search that then never ends: where a second one from there does not move
+// it either, it has arrived.
+func (s *session) settle(st *state) (*state, error) {
+	for range 3 {
+		next, err := s.runWidth(func(k kind, start params) (*state, error) {
+			return s.runFull(k, start, 3e-3)
+		}, st.kind, st.p)
+		if err != nil || next.used() {
+			return next, err
+		}
+		if next.cov != nil && next.moved(st) < settled {
+			return next, nil
+		}
+		st = next
+	}
+	return nil, stateError("the fit of the full picture found no minimum", st)
 }
 
 // moved is the largest step from o in standard deviations.
