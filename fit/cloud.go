@@ -34,6 +34,7 @@ func Cloud(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt Opti
 		return nil, err
 	}
 	r.Iterations = s.iterations
+	r.Touches = r.Model != ModelNone && s.touches(r)
 	r.Flags = append(r.Flags, s.warnings(r)...)
 	return r, nil
 }

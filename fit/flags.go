@@ -112,27 +112,14 @@ func off(ratio, err, tol float64) bool {
 	return d > tol && d > 5*err
 }
 
-// isCut says that two widths or the radius of the cloud reach over the border, or that many
-// pixels inside one width or radius are bad.
+// isCut says that the cloud reaches over the border, or that many pixels inside one width or
+// radius are bad.
 func (s *session) isCut(r *Result) bool {
-	px := s.tmpl.pixel
-	size := func(i int) float64 {
-		v := 0.0
-		if !math.IsNaN(r.Width[i]) {
-			v = 2 * r.Width[i] / px
-		}
-		if !math.IsNaN(r.Radius[i]) {
-			v = math.Max(v, r.Radius[i]/px)
-		}
-		return v
-	}
-	e := ellipse{[2]float64{size(0) * size(0), size(1) * size(1)}, r.Angle}
-	sh := e.shape()
-	dx, dy := math.Sqrt(sh.XX), math.Sqrt(sh.YY)
-	l := s.levels[0]
-	if r.X-dx < 0 || r.Y-dy < 0 || r.X+dx > float64(l.w-1) || r.Y+dy > float64(l.h-1) {
+	if r.Touches {
 		return true
 	}
+	e := s.extent(r)
+	l := s.levels[0]
 	in := e.reach(r.X, r.Y)
 	bad, all := 0, 0
 	for j := range l.h {
@@ -145,4 +132,21 @@ func (s *session) isCut(r *Result) bool {
 		}
 	}
 	return bad*10 > all
+}
+
+// extent is the ellipse of two widths or one radius, the larger, along each axis.
+func (s *session) extent(r *Result) ellipse {
+	e := ellipse{angle: r.Angle}
+	for i := range e.square {
+		v := math.Max(2*zeroNaN(r.Width[i]), zeroNaN(r.Radius[i])) / s.tmpl.pixel
+		e.square[i] = v * v
+	}
+	return e
+}
+
+// touches says that two widths or the radius of the cloud reach over the border.
+func (s *session) touches(r *Result) bool {
+	d := s.extent(r).half(1)
+	l := s.levels[0]
+	return r.X-d[0] < 0 || r.Y-d[1] < 0 || r.X+d[0] > float64(l.w-1) || r.Y+d[1] > float64(l.h-1)
 }

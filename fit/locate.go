@@ -2,6 +2,7 @@ package fit
 
 import (
 	"context"
+	"image"
 	"math"
 )
 
@@ -14,6 +15,10 @@ type Place struct {
 	// Rough says that what was found does not fit: fringes or worse stand in the picture. The mask
 	// is then a first guess, and another look with a better reference is worth its time.
 	Rough bool
+
+	// Window is the part of the picture that tells the cloud as well as all of it does: the whole
+	// but for a small cloud in a large picture.
+	Window image.Rectangle
 
 	found *candidates // where the next fit of the same picture may begin
 }
@@ -32,7 +37,7 @@ func Locate(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt Opt
 	if err != nil {
 		return nil, err
 	}
-	place := &Place{Mask: make([]bool, pic.Width*pic.Height), found: c}
+	place := &Place{Mask: make([]bool, pic.Width*pic.Height), Window: image.Rect(0, 0, pic.Width, pic.Height), found: c}
 	l := s.levels[s.work]
 	place.Rough = c.best().chi2 > roughChi2*float64(l.w*l.h)
 	st, model := s.choose(c)
@@ -43,6 +48,9 @@ func Locate(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt Opt
 		return nil, stateError("the search for the cloud found no minimum", st)
 	}
 	s.fillMask(st, place.Mask)
+	if !place.Rough {
+		place.Window = s.telling(st)
+	}
 	p := s.problem(0, &st.p, st.kind)
 	place.Transmission = make([]float64, len(place.Mask))
 	p.render(&st.p, place.Transmission, place.Transmission)

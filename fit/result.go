@@ -21,6 +21,7 @@ type Result struct {
 	Sum        float64 // atoms by the plain sum of the density
 	SumErr     float64
 	Iterations int
+	Touches    bool // two widths or the radius of the cloud reach over the border of the picture
 
 	Maps   *Maps // nil unless asked for
 	Checks Checks

@@ -34,6 +34,10 @@ const (
 	leastSide = 12
 )
 
+// workBin is the largest bin of the level of choices, px: a condensate is a few of them wide
+// in frames of any size.
+const workBin = 4
+
 func newSession(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt Options, ws *Workspace) (*session, error) {
 	if err := pic.check(); err != nil {
 		return nil, err
@@ -55,7 +59,7 @@ func newSession(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt
 	}
 	s.levels = append(s.levels, l)
 	for max(l.w, l.h) > guessSide && min(l.w, l.h) >= 2*leastSide {
-		if max(l.w, l.h) > workSide {
+		if max(l.w, l.h) > workSide && l.bin < workBin {
 			s.work = len(s.levels)
 		}
 		next := ws.level(len(s.levels))
