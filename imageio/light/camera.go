@@ -34,6 +34,13 @@ func (c Camera) ToSaved(x, y float64) (float64, float64) {
 	return float64(c.Region.Min.X) + b*x + half, float64(c.Region.Min.Y) + b*y + half
 }
 
+// Saved returns the rectangle of the saved frame that a rectangle of pixels of an exposure made
+// with this camera covers.
+func (c Camera) Saved(r image.Rectangle) image.Rectangle {
+	b := c.bin()
+	return image.Rectangle{Min: r.Min.Mul(b), Max: r.Max.Mul(b)}.Add(c.Region.Min)
+}
+
 func (c Camera) bin() int { return max(c.Bin, 1) }
 
 // check refuses a camera that cannot be.

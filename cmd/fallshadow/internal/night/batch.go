@@ -11,6 +11,7 @@ import (
 	"path/filepath"
 	"runtime"
 	"slices"
+	"sync"
 
 	"fallshadow/cmd/fallshadow/internal/ledger"
 	"fallshadow/cmd/fallshadow/internal/report"
@@ -80,8 +81,9 @@ type batch struct {
 	darks     []ledger.Digest
 	reference ledger.Digest
 	regions   []ledger.Region
-	benches   map[image.Rectangle]func() measure
-	undrawn   onceError // of the pictures
+	preparing sync.Mutex
+	benches   map[image.Rectangle]func() measure // by what regionOf says, and Everything
+	undrawn   onceError                          // of the pictures
 }
 
 // Batch fits the shots of a night that have no current row and writes the table. It

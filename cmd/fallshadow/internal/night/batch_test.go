@@ -85,6 +85,7 @@ type fake struct {
 	shots    []string // fitted, by their atoms frame, in the order of their end
 	prepared []image.Rectangle
 	before   func(ctx context.Context, shot string) error
+	touches  func(shot string, region image.Rectangle) bool // the border of a region
 }
 
 // prepare sums up the lights it was shown; that sum goes into every result, as the
@@ -109,6 +110,7 @@ func (f *fake) prepare(_ context.Context, _ *settings.Settings, region image.Rec
 			f.shots = append(f.shots, shot)
 			f.Unlock()
 			r := &fit.Result{Model: fit.ModelThermal, Numbers: numbers.Nothing(), X: float64(region.Dx())}
+			r.Touches = f.touches != nil && f.touches(shot, region)
 			r.Numbers.Atoms.V = float64(raw.Frames[imageio.Atoms].Pix[0]) + lights
 			return &report.Facts{Flight: 0.015, X: r.X, Fit: r}, nil
 		}

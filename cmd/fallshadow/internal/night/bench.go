@@ -37,6 +37,7 @@ type bench struct {
 	references *light.References // nil: every shot has its own light
 	lab        fit.Lab
 	options    fit.Options
+	finds      bool // the part of the frame that is fitted
 }
 
 func newBench(ctx context.Context, s *settings.Settings, region image.Rectangle, f *frames) (func() measure, error) {
@@ -62,11 +63,15 @@ func setUp(ctx context.Context, s *settings.Settings, region image.Rectangle, f 
 	if !region.Empty() {
 		camera.Region = region
 	}
+	finds := camera.Region.Empty() || region == Everything
+	if finds {
+		camera.Region = image.Rectangle{}
+	}
 	shared, err := light.Prepare(ctx, camera, f.all)
 	if err != nil {
 		return nil, err
 	}
-	b := &bench{settings: s.WithCamera(shared.Camera), night: shared, options: s.Options()}
+	b := &bench{settings: s.WithCamera(shared.Camera), night: shared, options: s.Options(), finds: finds}
 	if b.lab, err = b.settings.Lab(); err != nil {
 		return nil, err
 	}
@@ -88,37 +93,64 @@ func (b *bench) measure(ctx context.Context, at int, raw *imageio.Raw, workspace
 	if err != nil {
 		return nil, err
 	}
-	exposure, result, err := b.fit(ctx, at, raw, flight, workspace)
+	exposure, found, err := b.fit(ctx, at, raw, flight, workspace)
 	if err != nil {
 		return nil, err
 	}
 	f := &report.Facts{
 		Flight: flight, Reference: exposure.Reference, Notes: exposure.Notes,
-		Region: b.night.Camera.Region, Pixel: b.lab.Optics.Pixel, Fit: result,
+		Region: b.night.Camera.Saved(found.part), Pixel: b.lab.Optics.Pixel, Fit: found.Result,
 	}
-	f.X, f.Y = b.night.Camera.ToSaved(result.X, result.Y)
+	f.X, f.Y = b.night.Camera.ToSaved(found.X+float64(found.part.Min.X), found.Y+float64(found.part.Min.Y))
 	return f, nil
 }
 
+// fitted is the result of a fit and the part of the exposure, in its pixels, that was fitted.
+type fitted struct {
+	*fit.Result
+	part image.Rectangle
+}
+
 // fit exposes a shot and fits it after a flight (s). Where the night lends a better light than
-// the shot's own, the cloud is located first, which says where the lights may be compared.
-func (b *bench) fit(ctx context.Context, at int, raw *imageio.Raw, flight float64, workspace *fit.Workspace) (*imageio.Exposure, *fit.Result, error) {
+// the shot's own, or the picture is large, the cloud is located first, which says where the lights
+// may be compared and what part tells the cloud.
+func (b *bench) fit(ctx context.Context, at int, raw *imageio.Raw, flight float64, workspace *fit.Workspace) (*imageio.Exposure, *fitted, error) {
 	exposure, err := b.night.Expose(raw)
 	if err != nil {
 		return nil, nil, err
 	}
-	options := b.options
+	var place *fit.Place
 	if b.references != nil {
 		b.references.Offer(at, raw)
-		if exposure, options.Near, err = b.relight(ctx, at, exposure, flight, workspace); err != nil {
+		if exposure, place, err = b.relight(ctx, at, exposure, flight, workspace); err != nil {
 			return nil, nil, err
 		}
+	} else if b.finds && exposure.Width*exposure.Height > fit.Large {
+		if place, err = fit.Locate(ctx, b.picture(exposure), &b.lab, flight, b.options, workspace); err != nil {
+			return nil, nil, fmt.Errorf("locate the cloud: %w", err)
+		}
 	}
-	result, err := fit.Cloud(ctx, b.picture(exposure), &b.lab, flight, options, workspace)
+	found, err := b.fitPart(ctx, b.picture(exposure), place, flight, workspace)
 	if err != nil {
 		return nil, nil, fmt.Errorf("fit: %w", err)
 	}
-	return exposure, result, nil
+	return exposure, found, nil
+}
+
+// fitPart fits the part of a picture that tells the cloud, and all of it where the region is not
+// the program's to choose or the cloud turns out to reach over the border of the part.
+func (b *bench) fitPart(ctx context.Context, pic *fit.Picture, place *fit.Place, flight float64, workspace *fit.Workspace) (*fitted, error) {
+	options, whole := b.options, image.Rect(0, 0, pic.Width, pic.Height)
+	if place != nil && b.finds && place.Window != whole {
+		options.Near = place.In(pic)
+		r, err := fit.Cloud(ctx, pic.Crop(place.Window), &b.lab, flight, options, workspace)
+		if err != nil || !r.Touches {
+			return &fitted{r, place.Window}, err
+		}
+	}
+	options.Near = place
+	r, err := fit.Cloud(ctx, pic, &b.lab, flight, options, workspace)
+	return &fitted{r, whole}, err
 }
 
 // relight returns the exposure with the best light that the night has for it, and the place

@@ -44,5 +44,9 @@ func inTurn(n int, load func(at int) *imageio.Raw) iter.Seq[*imageio.Raw] {
 // Fit measures one shot after a flight (s), whatever its metadata say; it also returns the
 // exposure that was fitted, with the reference and the noise in use.
 func (m *InMemory) Fit(ctx context.Context, at int, flight float64, workspace *fit.Workspace) (*imageio.Exposure, *fit.Result, error) {
-	return m.bench.fit(ctx, at, m.load(at), flight, workspace)
+	exposure, found, err := m.bench.fit(ctx, at, m.load(at), flight, workspace)
+	if err != nil {
+		return nil, nil, err
+	}
+	return exposure, found.Result, nil
 }

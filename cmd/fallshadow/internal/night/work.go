@@ -66,8 +66,8 @@ func (b *batch) plan(ctx context.Context) (todo []int, err error) {
 	for at, i := range b.readable {
 		if r := rows[b.shots[i].Name]; b.Again || r == nil || !b.current(i, r) || b.Pictures != nil && r.Reason == "" && !b.Pictures.Has(r) {
 			todo = append(todo, at)
-			if err := b.prepareFor(ctx, i); err != nil {
-				return nil, err
+			if _, err := b.bench(ctx, b.regionOf(i)); err != nil {
+				return nil, fmt.Errorf("prepare the region drawn for %s: %w", b.region(b.shots[i].Name).First, err)
 			}
 		}
 	}
@@ -86,11 +86,12 @@ func (b *batch) rowsByShot(ctx context.Context) (map[string]*ledger.Row, error) 
 	return byShot, nil
 }
 
-// prepareFor makes the bench ready for the region that was drawn for shot i, if any.
-func (b *batch) prepareFor(ctx context.Context, i int) error {
-	region := rectangle(b.region(b.shots[i].Name))
-	if b.benches[region] != nil || region.Empty() {
-		return nil
+// bench returns what makes measures in a region, prepared when it is first asked for.
+func (b *batch) bench(ctx context.Context, region image.Rectangle) (func() measure, error) {
+	b.preparing.Lock()
+	defer b.preparing.Unlock()
+	if worker, ok := b.benches[region]; ok {
+		return worker, nil
 	}
 	f := &frames{n: len(b.readable), load: b.load}
 	f.all = func(yield func(*imageio.Raw) bool) {
@@ -108,11 +109,14 @@ func (b *batch) prepareFor(ctx context.Context, i int) error {
 	}
 	worker, err := b.prepare(ctx, b.Settings, region, f)
 	if err != nil {
-		return fmt.Errorf("prepare the region drawn for %s: %w", b.region(b.shots[i].Name).First, err)
+		return nil, err
 	}
 	b.benches[region] = worker
-	return nil
+	return worker, nil
 }
+
+// regionOf is the region that a person drew for shot i, empty for that of the settings.
+func (b *batch) regionOf(i int) image.Rectangle { return rectangle(b.region(b.shots[i].Name)) }
 
 // storeUnreadable writes the rows of shots that have no frames to fit.
 func (b *batch) storeUnreadable(ctx context.Context) error {
@@ -172,20 +176,15 @@ func (b *batch) fit(ctx context.Context, todo []int, done *int) error {
 
 // worker measures shots until there are none left or ctx is done.
 func (b *batch) worker(ctx context.Context, next <-chan int, rows chan<- *ledger.Row) {
-	measures := map[image.Rectangle]measure{}
+	k := kit{b, map[image.Rectangle]measure{}}
 	for at := range next {
-		i := b.readable[at]
-		region := rectangle(b.region(b.shots[i].Name))
-		if measures[region] == nil {
-			measures[region] = b.benches[region]()
-		}
-		r, err := b.row(ctx, at, measures[region])
+		r, err := b.row(ctx, at, k.measure)
 		if err != nil {
 			if ctx.Err() != nil {
 				return
 			}
-			r = b.failed(i, err)
-			delete(measures, region) // a panic may have left its scratch in any state
+			r = b.failed(b.readable[at], err)
+			clear(k.made) // a panic may have left its scratch in any state
 		}
 		rows <- r
 	}

@@ -17,6 +17,13 @@ const (
 	FlagStale       = "stale"
 )
 
+// FlagGrown says that a shot was not measured in the region given.
+const FlagGrown = "region_grown"
+
+var nightFlags = []fit.Flag{
+	{Name: FlagGrown, Sentence: "the cloud reached over the border of its region, and was fitted in the whole frame: give a larger region, or none"},
+}
+
 var ledgerFlags = []fit.Flag{
 	{Name: FlagDuplicate, Sentence: "another shot before it in the night has the same pixels: the same file was saved or copied twice"},
 	{Name: FlagProvisional, Sentence: "fitted while the night was being taken, with the light frames of that moment: batch makes it final"},
@@ -39,7 +46,7 @@ func Flags(r *ledger.Row) []string {
 }
 
 // AllFlags returns every flag that a row can have, with its sentence: those of the fit,
-// of the frames, and of the ledger.
+// of the frames, of the region, and of the ledger.
 func AllFlags() []fit.Flag {
 	all := slices.Clone(fit.Flags)
 	for _, p := range light.Problems {
@@ -47,5 +54,5 @@ func AllFlags() []fit.Flag {
 			all = append(all, fit.Flag{Name: p.Word, Sentence: p.What + ": " + p.Do})
 		}
 	}
-	return append(all, ledgerFlags...)
+	return slices.Concat(all, nightFlags, ledgerFlags)
 }

@@ -92,9 +92,6 @@ func (d *desk) foresee(lab *settings.Settings, region image.Rectangle) {
 	d.stand(key{lab: lab, region: region})
 }
 
-// large is the number of saved pixels up to which a frame is fitted as a whole.
-const large = 512 * 512
-
 // measure fits a shot with the given settings, in the region that a person drew or in the
 // one that suits. reference is a digest of the frames that its light was made from.
 func (d *desk) measure(ctx context.Context, lab *settings.Settings, drawn *ledger.Region, arrival int, raw *imageio.Raw, workspace *fit.Workspace) (f *report.Facts, reference ledger.Digest, err error) {
@@ -103,13 +100,24 @@ func (d *desk) measure(ctx context.Context, lab *settings.Settings, drawn *ledge
 	switch frame := sizeOf(raw); {
 	case drawn != nil:
 		in.region = image.Rect(drawn.X0, drawn.Y0, drawn.X1, drawn.Y1)
-	case lab.Region.Auto() && frame.X*frame.Y > large:
+	case lab.Region.Auto() && frame.X*frame.Y > fit.Large:
 		if f, reference, err = d.find(ctx, lab, frame, arrival, raw, workspace); err == nil {
 			d.follow(lab, f, frame)
 		}
 		return f, reference, err
 	}
-	return d.measureIn(ctx, in, arrival, raw, workspace)
+	if f, reference, err = d.measureIn(ctx, in, arrival, raw, workspace); err != nil || in.region.Empty() && lab.Region.Auto() {
+		return f, reference, err
+	}
+	var reference2 ledger.Digest
+	grown := night.Grow(f, func() (whole *report.Facts, err error) {
+		whole, reference2, err = d.measureIn(ctx, key{lab: lab, region: night.Everything, own: true}, arrival, raw, workspace)
+		return whole, err
+	})
+	if grown != f {
+		reference = reference2
+	}
+	return grown, reference, context.Cause(ctx)
 }
 
 // find fits a shot in the window, and in the whole frame where there is no window yet or
@@ -131,15 +139,7 @@ func (d *desk) find(ctx context.Context, lab *settings.Settings, frame image.Poi
 
 // lost reports whether a cloud may be elsewhere, or larger.
 func lost(f *report.Facts) bool {
-	if f.Fit.Model == fit.ModelNone {
-		return true
-	}
-	for _, flag := range f.Fit.Flags {
-		if flag == fit.FlagCut {
-			return true
-		}
-	}
-	return false
+	return f.Fit.Model == fit.ModelNone || f.Fit.Touches
 }
 
 func (d *desk) measureIn(ctx context.Context, k key, arrival int, raw *imageio.Raw, workspace *fit.Workspace) (*report.Facts, ledger.Digest, error) {

@@ -43,11 +43,11 @@ func TestLost(t *testing.T) {
 	if lost(f) {
 		t.Error("a cloud in the window is lost")
 	}
-	f.Fit.Flags = []string{fit.FlagDense, fit.FlagCut}
+	f.Fit.Touches = true
 	if !lost(f) {
 		t.Error("a cut cloud is not looked for")
 	}
-	f.Fit.Flags, f.Fit.Model = nil, fit.ModelNone
+	f.Fit.Touches, f.Fit.Model = false, fit.ModelNone
 	if !lost(f) {
 		t.Error("no cloud is not looked for")
 	}

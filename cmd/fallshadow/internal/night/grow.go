@@ -1,0 +1,68 @@
+package night
+
+import (
+	"context"
+	"image"
+	"slices"
+
+	"fallshadow/cmd/fallshadow/internal/report"
+	"fallshadow/fit"
+	"fallshadow/imageio"
+)
+
+// Everything stands for the region that is the whole frame, whatever the settings say.
+var Everything = image.Rect(0, 0, 1<<30, 1<<30)
+
+// Grow returns the facts of a shot measured in a region that a person gave or, where the cloud
+// reaches over its border, what whole makes of the whole frame, with a flag; the first facts
+// stand where that fails or sees no cloud.
+func Grow(f *report.Facts, whole func() (*report.Facts, error)) *report.Facts {
+	if !f.Fit.Touches {
+		return f
+	}
+	all, err := whole()
+	if err != nil || all.Fit.Model == fit.ModelNone {
+		return f
+	}
+	all.Notes = append(slices.Clone(all.Notes), report.FlagGrown)
+	return all
+}
+
+// kit is what one worker has made for the regions it met.
+type kit struct {
+	*batch
+	made map[image.Rectangle]measure
+}
+
+func (k kit) in(ctx context.Context, region image.Rectangle) (measure, error) {
+	if k.made[region] == nil {
+		worker, err := k.bench(ctx, region)
+		if err != nil {
+			return nil, err
+		}
+		k.made[region] = worker()
+	}
+	return k.made[region], nil
+}
+
+// measure measures the shot at a place in its region, or in the whole frame where its cloud is
+// not inside.
+func (k kit) measure(ctx context.Context, at int, raw *imageio.Raw) (*report.Facts, error) {
+	region := k.regionOf(k.readable[at])
+	m, err := k.in(ctx, region)
+	if err != nil {
+		return nil, err
+	}
+	f, err := m(ctx, at, raw)
+	if err != nil || region.Empty() && k.Settings.Region.Auto() {
+		return f, err
+	}
+	f = Grow(f, func() (*report.Facts, error) {
+		m, err := k.in(ctx, Everything)
+		if err != nil {
+			return nil, err
+		}
+		return m(ctx, at, raw)
+	})
+	return f, context.Cause(ctx)
+}
