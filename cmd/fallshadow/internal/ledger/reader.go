@@ -139,20 +139,3 @@ func (r *Reader) History(ctx context.Context, shot string) ([]Row, error) {
 	list, err := r.rows(ctx, "SELECT "+stored+" FROM history WHERE shot = ? ORDER BY id", shot)
 	return list, wrap("read the history of "+shot, err)
 }
-
-func (r *Reader) rows(ctx context.Context, query string, args ...any) ([]Row, error) {
-	rows, err := r.read.QueryContext(ctx, query, args...)
-	if err != nil {
-		return nil, err
-	}
-	defer rows.Close()
-	var list []Row
-	for rows.Next() {
-		row, err := scanRow(rows)
-		if err != nil {
-			return nil, err
-		}
-		list = append(list, row)
-	}
-	return list, rows.Err()
-}
