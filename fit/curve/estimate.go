@@ -135,9 +135,9 @@ func (p *problem) mean() Estimate {
 	e.Err = math.Sqrt(e.Err)
 	sum := p.night.noCalibration()
 	for c, calibration := range p.night.Calibrations {
-		change, gas := 0.0, calibration.Gas.scales()
-		for i := range p.points {
-			change += p.moved(i, c, gas, nil)[0] / count
+		change := 0.0
+		for _, d := range p.moved(c, nil) {
+			change += d[0] / count
 		}
 		sum.add(calibration.Known, change, tolerance)
 	}
@@ -185,19 +185,26 @@ func (p *problem) Residuals(theta, r []float64) {
 	}
 }
 
-// find fills near for θ, from where the last ones were. The points are shared out to
-// processors; each has its own place in near, so that the result is the same for any number.
+// find fills near for θ, from where the last ones were.
 func (p *problem) find(theta []float64) {
 	if p.at != nil && slices.Equal(theta, p.at) {
 		return
 	}
 	p.at = append([]float64{}, theta...)
+	share(len(p.points), func(i int) {
+		p.near[i] = p.relation.nearest(p.points[i], p.gas, theta, &p.near[i].latent)
+	})
+}
+
+// share calls do for 0 to n-1, shared out to processors. Each call keeps to a place of its
+// own, so that what comes out is the same for any number of them.
+func share(n int, do func(i int)) {
 	var workers sync.WaitGroup
-	size := max(64, (len(p.points)+runtime.GOMAXPROCS(0)-1)/runtime.GOMAXPROCS(0))
-	for first := 0; first < len(p.points); first += size {
+	size := max(64, (n+runtime.GOMAXPROCS(0)-1)/runtime.GOMAXPROCS(0))
+	for first := 0; first < n; first += size {
 		workers.Go(func() {
-			for i := first; i < min(first+size, len(p.points)); i++ {
-				p.near[i] = p.relation.nearest(p.points[i], p.gas, theta, &p.near[i].latent)
+			for i := first; i < min(first+size, n); i++ {
+				do(i)
 			}
 		})
 	}
@@ -208,14 +215,14 @@ func (p *problem) find(theta []float64) {
 func (p *problem) Jacobian(theta []float64, j *mat.Dense) {
 	k := p.relation.size
 	p.find(theta)
-	for i := range p.points {
+	share(len(p.points), func(i int) {
 		for a := range theta {
 			w := p.slope(i, theta, a)
 			for b := range k {
 				j.Set(k*i+b, a, w[b])
 			}
 		}
-	}
+	})
 }
 
 // slope returns the derivative of the distance of point i by parameter a.
@@ -236,19 +243,18 @@ func (p *problem) slope(i int, theta []float64, a int) [2]float64 {
 func (p *problem) calibrate(theta, cov []float64, out []Estimate, ignore []string) {
 	n := len(out)
 	slopes := make([][2]float64, len(p.points)*n)
-	for i := range p.points {
+	share(len(p.points), func(i int) {
 		for a := range n {
 			slopes[i*n+a] = p.slope(i, theta, a)
 		}
-	}
+	})
 	sums := slices.Repeat([]calibrationSum{p.night.noCalibration()}, n)
 	for c, calibration := range p.night.Calibrations {
 		if slices.Contains(ignore, calibration.Name) {
 			continue
 		}
-		g, gas := make([]float64, n), calibration.Gas.scales()
-		for i := range p.points {
-			d := p.moved(i, c, gas, theta)
+		g := make([]float64, n)
+		for i, d := range p.moved(c, theta) {
 			for a := range n {
 				g[a] += slopes[i*n+a][0]*d[0] + slopes[i*n+a][1]*d[1]
 			}
@@ -266,16 +272,19 @@ func (p *problem) calibrate(theta, cov []float64, out []Estimate, ignore []strin
 	}
 }
 
-// moved returns the change of the distance of point i under calibration c, which makes the
-// gas another.
-func (p *problem) moved(i, c int, gas *scales, theta []float64) [2]float64 {
-	var rest, h [2]float64
-	k, at := p.relation.size, &p.near[i]
-	p.relation.eval(p.points[i], &at.latent, p.gas, theta, rest[:k])
-	v := at.latent
-	for a, d := range p.points[i].Shifts[c] {
-		v[a] += d
-	}
-	p.relation.eval(p.points[i], &v, gas, theta, h[:k])
-	return at.whiten([2]float64{h[0] - rest[0], h[1] - rest[1]})
+// moved returns the changes of the distances under calibration c, which makes the gas another.
+func (p *problem) moved(c int, theta []float64) [][2]float64 {
+	changes, gas := make([][2]float64, len(p.points)), p.night.Calibrations[c].Gas.scales()
+	share(len(p.points), func(i int) {
+		var rest, h [2]float64
+		k, at := p.relation.size, &p.near[i]
+		p.relation.eval(p.points[i], &at.latent, p.gas, theta, rest[:k])
+		v := at.latent
+		for a, d := range p.points[i].Shifts[c] {
+			v[a] += d
+		}
+		p.relation.eval(p.points[i], &v, gas, theta, h[:k])
+		changes[i] = at.whiten([2]float64{h[0] - rest[0], h[1] - rest[1]})
+	})
+	return changes
 }
