@@ -46,7 +46,7 @@ func (a *Analysis) Groups(g Grouping) ([]curve.Group, error) {
 	if err != nil {
 		return nil, err
 	}
-	values := a.Night.series(a.Chosen, q).v
+	values := a.Night.values(a.Chosen, q)
 	if g.Width == 0 {
 		return curve.ByValue(values), nil
 	}

@@ -110,21 +110,26 @@ func (n *Night) find(name string) *Quantity {
 	return nil
 }
 
-// series returns the values of a quantity over the chosen rows with their statistical and
+// values returns a quantity over the chosen rows, NaN where there is none.
+func (n *Night) values(c *Chosen, q *Quantity) []float64 {
+	list := make([]float64, len(c.Rows))
+	for i, r := range c.Rows {
+		list[i] = q.value(n, r, c.Numbers[i])
+	}
+	return list
+}
+
+// series are the values of a quantity over the chosen rows with their statistical and
 // calibration errors, NaN where there is none.
 type series struct{ v, err, cal, low, high []float64 }
 
 func (n *Night) series(c *Chosen, q *Quantity) series {
-	var s series
-	columns := []struct {
-		name string
-		into *[]float64
-	}{{q.Name + "_err", &s.err}, {q.Name + "_cal", &s.cal}, {q.Name + "_low", &s.low}, {q.Name + "_high", &s.high}}
-	for i, r := range c.Rows {
-		s.v = append(s.v, q.value(n, r, c.Numbers[i]))
-		for _, k := range columns {
-			*k.into = append(*k.into, r.Number(k.name))
+	cells := func(ending string) []float64 {
+		name, list := q.Name+ending, make([]float64, len(c.Rows))
+		for i, r := range c.Rows {
+			list[i] = r.Number(name)
 		}
+		return list
 	}
-	return s
+	return series{n.values(c, q), cells("_err"), cells("_cal"), cells("_low"), cells("_high")}
 }

@@ -171,7 +171,7 @@ func (a *Analysis) span(name string) string {
 	if err != nil {
 		return ""
 	}
-	values := slices.DeleteFunc(a.Night.series(a.Chosen, q).v, func(v float64) bool { return v != v })
+	values := slices.DeleteFunc(a.Night.values(a.Chosen, q), func(v float64) bool { return v != v })
 	if len(values) == 0 {
 		return ""
 	}

@@ -78,6 +78,8 @@ type Chosen struct {
 	Rows    []*ledger.Row
 	Numbers []int // of the rows in the night, from 1
 	LeftOut []LeftOut
+
+	why map[string]string // of LeftOut, by shot
 }
 
 // LeftOut is a shot that takes no part, and why.
@@ -102,7 +104,7 @@ func (n *Night) Select(s Selection) (*Chosen, error) {
 			return nil, fmt.Errorf("no flag is called %q: %s", f, strings.Join(flagNames(), ", "))
 		}
 	}
-	c := &Chosen{}
+	c := &Chosen{why: map[string]string{}}
 	for i := range n.Rows {
 		r := &n.Rows[i]
 		why := verdict(r)
@@ -115,7 +117,7 @@ func (n *Night) Select(s Selection) (*Chosen, error) {
 			}
 		}
 		if why != "" {
-			c.LeftOut = append(c.LeftOut, LeftOut{r.Shot, why})
+			c.LeftOut, c.why[r.Shot] = append(c.LeftOut, LeftOut{r.Shot, why}), why
 			continue
 		}
 		c.Rows, c.Numbers = append(c.Rows, r), append(c.Numbers, i+1)

@@ -21,7 +21,7 @@ type PointColumn struct {
 // PointColumns is the one table of the columns of curve.csv.
 var PointColumns = append([]PointColumn{
 	{"shot", "", "path of the shot in the night", func(_ *Analysis, r *ledger.Row, _ *curve.Point) string { return r.Shot }},
-	{"left_out", "", "why the shot takes no part, empty where it does", func(a *Analysis, r *ledger.Row, _ *curve.Point) string { return a.Chosen.why(r.Shot) }},
+	{"left_out", "", "why the shot takes no part, empty where it does", func(a *Analysis, r *ledger.Row, _ *curve.Point) string { return a.Chosen.why[r.Shot] }},
 	cell("T_nK"), cell("T_nK_err"), cell("T_nK_cal"),
 	cell("atoms"), cell("atoms_err"), cell("atoms_cal"),
 	cell("t_reduced"), cell("t_reduced_err"), cell("t_reduced_cal"),
@@ -64,15 +64,6 @@ func entropy(of func(a *Analysis, t, n float64) float64) func(*Analysis, *ledger
 		}
 		return decimal(of(a, a.Curve.Gas.Reduced(p.Vector[curve.T], p.Atoms()), p.Atoms()))
 	}
-}
-
-func (c *Chosen) why(shot string) string {
-	for _, l := range c.LeftOut {
-		if l.Shot == shot {
-			return l.Why
-		}
-	}
-	return ""
 }
 
 // decimal writes a number with the digits that give it back, nothing for what is not finite.
