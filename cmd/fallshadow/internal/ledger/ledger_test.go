@@ -126,13 +126,6 @@ func TestDurable(t *testing.T) {
 	}
 }
 
-func TestReaderCannotWrite(t *testing.T) {
-	l := open0(t, t.TempDir())
-	if _, err := l.read.Exec("DELETE FROM row"); err == nil {
-		t.Error("a reader wrote")
-	}
-}
-
 func TestHistory(t *testing.T) {
 	tests := []struct {
 		name   string

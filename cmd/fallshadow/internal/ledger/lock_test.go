@@ -5,7 +5,6 @@ import (
 	"context"
 	"errors"
 	"fmt"
-	"io"
 	"os"
 	"os/exec"
 	"strings"
@@ -87,15 +86,8 @@ func TestKilledWriter(t *testing.T) {
 		if err := cmd.Process.Kill(); err != nil {
 			t.Fatal(err)
 		}
-		said, err := io.ReadAll(out)
-		if err != nil {
-			t.Fatal(err)
-		}
+		last := acknowledged(t, out)
 		cmd.Wait()
-		last := 4
-		for _, line := range strings.Fields(string(said)) {
-			fmt.Sscan(line, &last)
-		}
 		l := open0(t, dir)
 		if rows := read(t, l.Reader); len(rows) < last+1 {
 			t.Errorf("%d rows after the kill, %d were acknowledged", len(rows), last+1)

@@ -12,7 +12,8 @@ import (
 	"fallshadow/imageio"
 )
 
-// Reader is a ledger open for reading, at any time and beside a writer.
+// Reader is a ledger open for reading, at any time and beside a writer. It leaves the folder
+// as it was, but that it clears away the log that a killed writer left.
 type Reader struct{ read *sql.DB }
 
 // OpenReader opens the ledger in the folder dir for reading. It fails where there is
@@ -25,7 +26,10 @@ func OpenReader(ctx context.Context, dir string) (*Reader, error) {
 	if _, err := os.Stat(file); err != nil {
 		return nil, fmt.Errorf("no ledger in %s (run batch first): %w", dir, err)
 	}
-	db, err := openForReading(ctx, file, "mode=ro&_pragma=busy_timeout(10000)")
+	// A connection that may not write at all cannot take its log and the shared memory of it
+	// away again; this one can, and query_only keeps it from changing anything else. SQLite
+	// does so only for the last connection, under its locks, a writer beside it or not.
+	db, err := openForReading(ctx, file, "mode=rw&_pragma=busy_timeout(10000)&_pragma=query_only(1)")
 	if err != nil && !exists(file+"-wal") {
 		// A folder that cannot be written to has no place for the shared memory of the
 		// log; a ledger at rest can be read without.
