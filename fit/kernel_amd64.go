@@ -56,7 +56,8 @@ const (
 	wideNearH = wideNearG + 6
 	wideLog   = wideNearH + 6
 	wideExp   = wideLog + 5
-	numWide   = wideExp + 9
+	wideRough = wideExp + 9
+	numWide   = wideRough + 6
 )
 
 func widen() (w [numWide]lanes) {
@@ -86,6 +87,7 @@ func widen() (w [numWide]lanes) {
 		fill(wideNearH, boseNearH[:])
 		fill(wideLog, boseLog[:])
 		fill(wideExp, expForm[:])
+		fill(wideRough, expRough[:])
 	}
 	return w
 }

@@ -4,22 +4,41 @@
 // LIGHT is a constant of the light at l for the lanes that are run.
 #define LIGHT(field) field(R13)(BX*1)
 
-// EXP leaves e^−x in e.
-#define EXP(x, e, t, y) \
+// FRACTION splits e^−x: the power of two in the low bits of t, y and its square y2.
+#define FRACTION(x, t, y, y2) \
 	VMOVUPD WIDE(const_wideExpMagic), t \
 	VFMADD231PD WIDE(const_wideMinusLog2E), x, t \
 	VSUBPD  WIDE(const_wideExpMagic), t, y \
 	VFMADD213PD x, LN2, y \
-	VMOVUPD WIDE(const_wideExp+8), e \
-	VFMADD213PD WIDE(const_wideExp+7), y, e \
-	VFMADD213PD WIDE(const_wideExp+6), y, e \
-	VFMADD213PD WIDE(const_wideExp+5), y, e \
-	VFMADD213PD WIDE(const_wideExp+4), y, e \
-	VFMADD213PD WIDE(const_wideExp+3), y, e \
-	VFMADD213PD WIDE(const_wideExp+2), y, e \
-	VFMADD213PD WIDE(const_wideExp+1), y, e \
-	VFMADD213PD WIDE(const_wideExp+0), y, e \
-	VPSLLQ  $52, t, t \
+	VMULPD  y, y, y2 \
+	VPSLLQ  $52, t, t
+
+// LINE leaves c1·y + c0 in a, the coefficients being those from i on.
+#define LINE(i, y, a) \
+	VMOVUPD WIDE(i+1), a \
+	VFMADD213PD WIDE(i), y, a
+
+// EXP leaves e^−x in e, EXPROUGH nearly so.
+#define EXP(x, e, t, y, y2, b, c, d) \
+	FRACTION(x, t, y, y2) \
+	LINE(const_wideExp+6, y, d) \
+	LINE(const_wideExp+4, y, c) \
+	LINE(const_wideExp+2, y, b) \
+	LINE(const_wideExp+0, y, e) \
+	VFMADD231PD WIDE(const_wideExp+8), y2, d \
+	VFMADD231PD y2, b, e \
+	VFMADD231PD y2, d, c \
+	VMULPD  y2, y2, y2 \
+	VFMADD231PD y2, c, e \
+	VPADDQ  t, e, e
+
+#define EXPROUGH(x, e, t, y, y2, b, c) \
+	FRACTION(x, t, y, y2) \
+	LINE(const_wideRough+4, y, c) \
+	LINE(const_wideRough+2, y, b) \
+	LINE(const_wideRough+0, y, e) \
+	VFMADD231PD y2, c, b \
+	VFMADD231PD y2, b, e \
 	VPADDQ  t, e, e
 
 #define LN2 V14
@@ -37,8 +56,7 @@
 	VMULPD  (R9)(CX*1), m, a \
 	VMOVUPD a, (R9)(CX*1) \
 	VMULPD  (R10)(CX*1), m, a \
-	VMOVUPD a, (R10)(CX*1) \
-	VMULPD  LIGHT(kernelLight_step), V15, V15
+	VMOVUPD a, (R10)(CX*1)
 
 // DEPTH leaves d − u − s + q in r.
 #define DEPTH(d, u, s, q, r) \
@@ -62,13 +80,12 @@ absorbHalf:
 	VMOVUPD LIGHT(kernelLight_k), V15
 	MOVQ    BX, CX
 
-absorbLoop:
+absorbStart:
 	VMULPD  (R11)(CX*1), V15, V1
 	VMULPD  LIGHT(kernelLight_sat), V1, V1
+	VMULPD  LIGHT(kernelLight_step), V15, V15
 	VMOVUPD (R8)(CX*1), V0
 	VMINPD  WIDE(const_wideAbsorbMost), V0, V0
-
-	// u = V3
 	VMOVUPD WIDE(const_wideBend), V2
 	VFMSUB213PD ONE, V0, V2
 	VSUBPD  V1, V2, V2
@@ -79,8 +96,17 @@ absorbLoop:
 	VMULPD  WIDE(const_wideBendInv2), V3, V3
 	VSUBPD  V1, V0, V2
 	VMAXPD  V2, V3, V3
+	VMOVUPD V0, (R8)(CX*1)
+	VMOVUPD V1, (SI)(CX*1)
+	VMOVUPD V3, (DI)(CX*1)
+	NEXT(absorbStart)
+	MOVQ    BX, CX
 
-	EXP(V3, V5, V6, V7)
+absorbStep:
+	VMOVUPD (R8)(CX*1), V0
+	VMOVUPD (SI)(CX*1), V1
+	VMOVUPD (DI)(CX*1), V3
+	EXPROUGH(V3, V5, V6, V7, V8, V9, V10)
 	VMULPD  V5, V1, V6
 	DEPTH(V0, V3, V1, V6, V7)
 	VADDPD  ONE, V6, V8
@@ -94,8 +120,15 @@ absorbLoop:
 	VMULPD  V10, V8, V8
 	VDIVPD  V8, V9, V9
 	VADDPD  V9, V3, V3
+	VMOVUPD V3, (DI)(CX*1)
+	NEXT(absorbStep)
+	MOVQ    BX, CX
 
-	EXP(V3, V5, V6, V7)
+absorbEnd:
+	VMOVUPD (R8)(CX*1), V0
+	VMOVUPD (SI)(CX*1), V1
+	VMOVUPD (DI)(CX*1), V3
+	EXP(V3, V5, V6, V7, V8, V9, V10, V11)
 	VMULPD  V5, V1, V6
 	DEPTH(V0, V3, V1, V6, V7)
 	VADDPD  ONE, V6, V8
@@ -114,7 +147,7 @@ absorbLoop:
 	VFMADD213PD V8, V8, V6
 	VADDPD  ONE, V1, V1
 	ABSORBED(V5, V6, V1, V7, V8)
-	NEXT(absorbLoop)
+	NEXT(absorbEnd)
 	END(absorbHalf)
 
 // func thin(t, c, d, g, h, s []float64, l *kernelLight)
@@ -136,6 +169,7 @@ thinHalf:
 thinLoop:
 	VMULPD  (R11)(CX*1), V15, V1
 	VMULPD  LIGHT(kernelLight_sat), V1, V1
+	VMULPD  LIGHT(kernelLight_step), V15, V15
 	VMOVUPD (R8)(CX*1), V0
 	VADDPD  V14, V1, V2 // p
 	VMOVUPD WIDE(const_wideMinusThird), V3
