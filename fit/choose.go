@@ -46,19 +46,25 @@ func (c *candidates) dropIdle() {
 }
 
 // explore finds the candidates on the coarsest level from a first look, then follows them
-// down to the level of choices.
+// down to the level of choices. What was found before is followed only.
 func (s *session) explore() (*candidates, error) {
-	top := len(s.levels) - 1
-	c := new(candidates)
-	if near := s.opt.Near; near != nil && near.found != nil && !near.Rough {
-		*c, top = *near.found, s.work
-	} else {
-		var places []guess
-		places, top = s.lookCloser(top)
-		if err := s.first(top, places, c); err != nil {
-			return nil, err
-		}
+	if near := s.opt.Near; near != nil && !near.Rough {
+		c := *near.found
+		return s.descend(s.work, &c)
 	}
+	if s.pic.Width*s.pic.Height > Large && !s.part {
+		return s.exploreWindow()
+	}
+	places, top := s.lookCloser(len(s.levels) - 1)
+	c := new(candidates)
+	if err := s.first(top, places, c); err != nil {
+		return nil, err
+	}
+	return s.descend(top, c)
+}
+
+// descend follows the candidates from a level down to the level of choices.
+func (s *session) descend(top int, c *candidates) (*candidates, error) {
 	for i := top; i >= s.work; i-- {
 		b := c.best()
 		s.freeze(i, b)

@@ -32,10 +32,15 @@ func (p *problem) look() []guess {
 			od[i] -= base
 		}
 	}
+	spread := func([]float64, int) float64 { return noise }
+	if l.fullW*l.fullH > Large {
+		flatten(od, l.w, l.h)
+		spread = func(sum []float64, r int) float64 { return math.Max(noise, tileSpread(sum, r, l.w, l.h)) }
+	}
 	var list []guess
 	for len(list) < 2 {
 		g := guess{light: light}
-		x, y, half, signal := bestWindow(od, noise, l.w, l.h)
+		x, y, half, signal := bestWindow(od, spread, l.w, l.h)
 		g.signal = signal
 		g.follow(od, l, x, y, half)
 		if len(list) > 0 && signal < secondSignal*list[0].signal {
@@ -154,8 +159,9 @@ func medianOf(v []float64) float64 {
 }
 
 // bestWindow returns the square window, of half sizes 1, 2, 4, … bins, whose sum is largest
-// against the noise of so many bins: centre in bins, half size, and that ratio.
-func bestWindow(v []float64, noise float64, w, h int) (x, y, half int, best float64) {
+// against the noise of so many bins: centre in bins, half size, and that ratio. spread is the
+// noise of a bin as windows of a half size see it, from sums over all bins before a corner.
+func bestWindow(v []float64, spread func(sum []float64, r int) float64, w, h int) (x, y, half int, best float64) {
 	sum := make([]float64, (w+1)*(h+1))
 	for j := range h {
 		row := 0.0
@@ -166,6 +172,7 @@ func bestWindow(v []float64, noise float64, w, h int) (x, y, half int, best floa
 	}
 	best = math.Inf(-1)
 	for r := 1; r <= max(w, h)/4+1; r *= 2 {
+		noise := spread(sum, r)
 		for j := range h {
 			for i := range w {
 				x0, x1, y0, y1 := max(i-r, 0), min(i+r+1, w), max(j-r, 0), min(j+r+1, h)

@@ -21,6 +21,7 @@ type Place struct {
 	Window image.Rectangle
 
 	found *candidates // where the next fit of the same picture may begin
+	whole image.Rectangle
 }
 
 // roughChi2 is χ² a bin beyond which a fit is rough.
@@ -37,7 +38,7 @@ func Locate(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt Opt
 	if err != nil {
 		return nil, err
 	}
-	place := &Place{Mask: make([]bool, pic.Width*pic.Height), Window: image.Rect(0, 0, pic.Width, pic.Height), found: c}
+	place := &Place{Mask: make([]bool, pic.Width*pic.Height), Window: pic.bounds(), found: c, whole: pic.bounds()}
 	l := s.levels[s.work]
 	place.Rough = c.best().chi2 > roughChi2*float64(l.w*l.h)
 	st, model := s.choose(c)
@@ -48,8 +49,8 @@ func Locate(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt Opt
 		return nil, stateError("the search for the cloud found no minimum", st)
 	}
 	s.fillMask(st, place.Mask)
-	if !place.Rough {
-		place.Window = s.telling(st)
+	if pic.Width*pic.Height > Large {
+		place.Window = s.around(st)
 	}
 	p := s.problem(0, &st.p, st.kind)
 	place.Transmission = make([]float64, len(place.Mask))

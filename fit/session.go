@@ -20,6 +20,7 @@ type session struct {
 	blur   float64  // optical resolution, px rms
 	levels []*level // levels[0] is the full picture
 	work   int      // the level of choices and checks
+	part   bool     // the picture is a part of a large one
 
 	iterations int
 	condensed  float64        // N0 of the template of an attractive gas

@@ -29,7 +29,7 @@ func TestWindow(t *testing.T) {
 	}
 	whole := mustFit(t, sc, pic, Options{})
 	part := pic.Crop(w)
-	near, anew := mustFit(t, sc, part, Options{Near: p.In(pic)}), mustFit(t, sc, part, Options{})
+	near, anew := mustFit(t, sc, part, Options{Near: p.In(w)}), mustFit(t, sc, part, Options{})
 	if near.Touches || near.Model != ModelBimodal {
 		t.Errorf("%s, touches %v", near.Model, near.Touches)
 	}
@@ -58,7 +58,7 @@ func TestWindow(t *testing.T) {
 	if image.Pt(int(0.15*float64(sc.w)), int(0.85*float64(sc.h))).In(p.Window) {
 		t.Errorf("the other cloud is in the window %v", p.Window)
 	}
-	r := mustFit(t, sc, pic.Crop(p.Window), Options{Near: p.In(pic)})
+	r := mustFit(t, sc, pic.Crop(p.Window), Options{Near: p.In(p.Window)})
 	within(t, "N beside another cloud", r.Numbers.Atoms.V, near.Numbers.Atoms.V, 0.1*r.Numbers.Atoms.Err)
 }
 

@@ -14,6 +14,15 @@ type Workspace struct {
 
 	levels []*level
 	moved  levelMemory // of a level in a moved laboratory
+	within *Workspace  // of the window in a large picture
+}
+
+// inside returns the memory for a part of a picture, beside that of the picture.
+func (w *Workspace) inside() *Workspace {
+	if w.within == nil {
+		w.within = NewWorkspace()
+	}
+	return w.within
 }
 
 // NewWorkspace returns an empty workspace.

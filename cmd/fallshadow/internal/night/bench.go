@@ -142,7 +142,7 @@ func (b *bench) fit(ctx context.Context, at int, raw *imageio.Raw, flight float6
 func (b *bench) fitPart(ctx context.Context, pic *fit.Picture, place *fit.Place, flight float64, workspace *fit.Workspace) (*fitted, error) {
 	options, whole := b.options, image.Rect(0, 0, pic.Width, pic.Height)
 	if place != nil && b.finds && place.Window != whole {
-		options.Near = place.In(pic)
+		options.Near = place.In(place.Window)
 		r, err := fit.Cloud(ctx, pic.Crop(place.Window), &b.lab, flight, options, workspace)
 		if err != nil || !r.Touches {
 			return &fitted{r, place.Window}, err
@@ -158,8 +158,10 @@ func (b *bench) fitPart(ctx context.Context, pic *fit.Picture, place *fit.Place,
 // off and says anew where light may be compared.
 func (b *bench) relight(ctx context.Context, at int, e *imageio.Exposure, flight float64, workspace *fit.Workspace) (*imageio.Exposure, *fit.Place, error) {
 	lit := e
+	var place *fit.Place
 	for range 2 {
-		place, err := fit.Locate(ctx, b.picture(lit), &b.lab, flight, b.options, workspace)
+		var err error
+		place, err = fit.Locate(ctx, b.picture(lit), &b.lab, flight, b.options, workspace)
 		if err != nil {
 			return nil, nil, fmt.Errorf("locate the cloud: %w", err)
 		}
@@ -168,7 +170,7 @@ func (b *bench) relight(ctx context.Context, at int, e *imageio.Exposure, flight
 			return lit, place, err
 		}
 	}
-	return lit, nil, nil
+	return lit, place, nil
 }
 
 // picture hands an exposure to the fit.
