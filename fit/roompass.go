@@ -2,8 +2,8 @@ package fit
 
 import "math"
 
-// The images of a room, smeared along the rows: the transmission, c of forward, and the
-// derivatives of the transmission by the density's parameters.
+// The images of a room, smeared: the transmission, c of forward, and the derivatives of the
+// transmission by the density's parameters.
 const (
 	imageT     = 0
 	imageC     = 1
@@ -86,8 +86,7 @@ func (b *regionBuffers) begin(p *problem, in box, full bool) {
 	b.blocks = growTo(b.blocks, rows*columns)
 }
 
-// paint fills the images with the sharp cloud, weighted with the light and smeared along the
-// rows.
+// paint fills the images with the sharp cloud, weighted with the light and smeared.
 func (b *regionBuffers) paint(p *problem, q *params, full bool) {
 	f, r := &b.forward, &b.plate
 	sharp, core := p.geometry(q, 0), p.core(q)
@@ -111,6 +110,7 @@ func (b *regionBuffers) paint(p *problem, q *params, full bool) {
 			b.smear(imageFirst+i, j, b.line)
 		}
 	}
+	b.settle(full)
 }
 
 // weigh multiplies the row with the light.
@@ -177,20 +177,41 @@ func across(cos, sin, y, f float64) parabola {
 	return parabola{-f * cos * sin, f * (cos*cos - sin*sin) * y, f * cos * sin * y * y}
 }
 
-// transmission leaves row j of the room, from 0, in t.
-func (b *regionBuffers) transmission(j int) {
-	r := &b.plate
-	t := b.forward.t[r.margin : r.margin+r.inner]
-	b.across(t, imageT, j)
-	if len(r.beam) > 0 {
-		b.forward.kernels.times(t, t, r.inverse[j*r.inner:(j+1)*r.inner])
+// settle smears the images along the columns, each by itself, so that the rows under the taps
+// stay in the nearest cache: row j of the room, from 0, comes to stand in row j of the image,
+// which nothing below needs.
+func (b *regionBuffers) settle(full bool) {
+	b.across(imageT)
+	if !full {
+		return
+	}
+	b.across(imageC)
+	for _, i := range b.from[:len(b.from)-3] {
+		b.across(imageFirst + i)
 	}
 }
 
-// across smears an image along the columns.
-func (b *regionBuffers) across(dst []float64, image, j int) {
+func (b *regionBuffers) across(image int) {
+	r, v := &b.plate, b.images[image]
+	for j := range r.h - 2*r.margin {
+		b.forward.kernels.smear(v[j*r.inner:(j+1)*r.inner], v, (j+r.margin)*r.inner, r.inner, r.taps)
+	}
+}
+
+// image is row j of the room in an image, from 0.
+func (b *regionBuffers) image(image, j int) []float64 {
+	return b.images[image][j*b.plate.inner : (j+1)*b.plate.inner]
+}
+
+// transmission leaves row j of the room in t.
+func (b *regionBuffers) transmission(j int) {
 	r := &b.plate
-	b.forward.kernels.smear(dst, b.images[image], (j+r.margin)*r.inner, r.inner, r.taps)
+	t := b.forward.t[r.margin : r.margin+r.inner]
+	if len(r.beam) == 0 {
+		copy(t, b.image(imageT, j))
+		return
+	}
+	b.forward.kernels.times(t, b.image(imageT, j), r.inverse[j*r.inner:(j+1)*r.inner])
 }
 
 // jacobian fills rows and columns for row j of the room.
@@ -205,11 +226,9 @@ func (b *regionBuffers) jacobian(j int) {
 	}
 	shapes := len(b.from) - 3
 	for i, from := range b.from[:shapes] {
-		b.across(b.rows[i*n:(i+1)*n], imageFirst+from, j)
+		copy(b.rows[i*n:(i+1)*n], b.image(imageFirst+from, j))
 	}
-	c := b.line[:n]
-	b.across(c, imageC, j)
-	b.lights(c, j)
+	b.lights(b.image(imageC, j), j)
 	for i := range b.from {
 		f.kernels.times(b.columns[i*n:(i+1)*n], w, b.rows[i*n:(i+1)*n])
 	}
