@@ -15,6 +15,7 @@ type forward struct {
 	kernels *kernelSet
 	plate   *plate
 	linear  bool
+	bare    bool // no thermal part, nor one looked for
 	geo     geometry
 	excess  *excess
 	bose    boseRow
@@ -24,6 +25,10 @@ type forward struct {
 	tilt    float64 // and its slope per column
 	growth  float64 // exp(tilt)
 	thick   float64 // t below which the depth is beyond thinMost
+	seen    float64 // and beyond faintMost
+
+	first float64   // exp(plane)
+	grown []float64 // exp(tilt) to the power of the column
 
 	d, g, h, k, t, c, w, e, zero []float64
 }
@@ -31,6 +36,7 @@ type forward struct {
 // set prepares rows of a plate of level l.
 func (f *forward) set(p *problem, l *level, plate *plate, geo *geometry) {
 	f.plate, f.linear, f.geo, f.excess = plate, l.linear, *geo, p.tmpl.excess
+	f.bare = geo.amp == 0 && !p.used(pThermal)
 	if f.kernels == nil {
 		f.kernels = bestKernels()
 	}
@@ -47,10 +53,24 @@ func (f *forward) set(p *problem, l *level, plate *plate, geo *geometry) {
 	f.tilt = geo.light[1] * plate.bin * geo.iw
 	f.growth = math.Exp(f.tilt)
 	f.thick = math.Log(bose.Zeta2 * f.bose.line.amp / thinMost)
+	f.seen = f.thick + math.Log(thinMost/faintMost)
 	if f.excess != nil {
-		f.thick = math.Inf(1)
+		f.thick, f.seen = math.Inf(1), math.Inf(1)
 	}
+	f.grow(n)
 	f.setLight(&p.law, l)
+}
+
+// grow fills grown for n columns.
+func (f *forward) grow(n int) {
+	f.grown = growTo(f.grown, n)
+	step := math.Exp(kernelLanes * f.tilt)
+	for i := range min(n, kernelLanes) {
+		f.grown[i] = math.Exp(float64(i) * f.tilt)
+	}
+	for i := kernelLanes; i < n; i++ {
+		f.grown[i] = f.grown[i-kernelLanes] * step
+	}
 }
 
 func (f *forward) setLight(law *law, l *level) {
@@ -70,6 +90,7 @@ func (f *forward) line(j int) {
 	geo, l := &f.geo, &f.bose.line
 	y := f.plate.row(j)
 	f.plane = geo.plane(f.plate.x, y)
+	f.first = math.Exp(f.plane)
 	y -= geo.y0
 	f.y = y
 	l.t1, l.t0 = geo.axy*y, 0.5*geo.ayy*y*y+geo.alpha
@@ -77,16 +98,19 @@ func (f *forward) line(j int) {
 
 // lightFrom is the light of a run that begins at column a.
 func (f *forward) lightFrom(a int) *kernelLight {
-	k := math.Exp(f.plane + float64(a)*f.tilt)
-	for j := range f.light.k {
-		f.light.k[j] = k
-		k *= f.growth
+	for j, v := range (*lanes)(f.grown[a:]) {
+		f.light.k[j] = f.first * v
 	}
 	return &f.light
 }
 
 // cloud returns the columns, in whole groups, that the thermal part reaches.
-func (f *forward) cloud() (a, b int) { return f.within(farTau + f.geo.alpha) }
+func (f *forward) cloud() (a, b int) {
+	if f.bare {
+		return 0, 0
+	}
+	return f.within(farTau + f.geo.alpha)
+}
 
 func (f *forward) within(most float64) (a, b int) {
 	a, b = f.bose.below(most, f.plate.stride)
@@ -117,9 +141,21 @@ func (f *forward) carry(j, a, b int) {
 	}
 	ta, tb := f.within(f.thick)
 	ta, tb = min(max(ta, a), b), min(max(tb, a), b)
-	f.run(f.kernels.thin, j, a, ta)
+	f.thin(j, a, ta)
 	f.run(f.kernels.absorb, j, ta, tb)
-	f.run(f.kernels.thin, j, max(ta, tb), b)
+	f.thin(j, max(ta, tb), b)
+}
+
+// thin is carry where the depth is at most thinMost.
+func (f *forward) thin(j, a, b int) {
+	if a >= b {
+		return
+	}
+	sa, sb := f.within(f.seen)
+	sa, sb = min(max(sa, a), b), min(max(sb, a), b)
+	f.run(f.kernels.faint, j, a, sa)
+	f.run(f.kernels.thin, j, sa, sb)
+	f.run(f.kernels.faint, j, max(sa, sb), b)
 }
 
 func (f *forward) run(law func(t, c, d, g, h, s []float64, l *kernelLight), j, a, b int) {

@@ -133,9 +133,10 @@ type kernelSet struct {
 	// absorb carries d = σ0n/a through the absorption law: t is the transmitted fraction,
 	// d becomes −∂t/∂d, c is t and its derivative by the logarithm of the light together, and
 	// g and h are multiplied with the new d. s is the smooth reference. thin does so where
-	// d ≤ thinMost.
+	// d ≤ thinMost, faint where d ≤ faintMost.
 	absorb func(t, c, d, g, h, s []float64, l *kernelLight)
 	thin   func(t, c, d, g, h, s []float64, l *kernelLight)
+	faint  func(t, c, d, g, h, s []float64, l *kernelLight)
 	// compare fills the weight w and the weighted residual e of derivatives, both over their
 	// common factor, from transmission t, counts a, reference b, smooth reference s and the
 	// frozen variance v of a, and adds the sum of squares to rr. bare does so where t = 1, and

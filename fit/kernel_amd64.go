@@ -97,7 +97,7 @@ var avx2Kernels = kernelSet{
 	name: "avx2", far: far2, near: near2, edge: edge2, slope: slope2, cross: cross2, powers: powers2,
 	edgeSlope: edgeSlope2, peak: peak2, rootCross: rootCross2,
 	weigh: weigh2, halve: halve2, blocks: blocks2, totals: totals2,
-	absorb: absorb2, thin: thin2, compare: compare2, bare: bare2,
+	absorb: absorb2, thin: thin2, faint: faint2, compare: compare2, bare: bare2,
 	tilt: tilt2, lightCross: lightCross2, lightPowers: lightPowers2,
 	times: times2, shape: shape2, smear: smear2, products: products2,
 }
@@ -134,7 +134,7 @@ var avx512Kernels = kernelSet{
 	name: "avx512", far: far512, near: near512, edge: edge512, slope: slope512, cross: cross512, powers: powers512,
 	edgeSlope: edgeSlope512, peak: peak512, rootCross: rootCross512,
 	weigh: weigh512, halve: halve512, blocks: blocks512, totals: totals512,
-	absorb: absorb512, thin: thin512, compare: compare512, bare: bare512,
+	absorb: absorb512, thin: thin512, faint: faint512, compare: compare512, bare: bare512,
 	tilt: tilt512, lightCross: lightCross512, lightPowers: lightPowers512,
 	times: times512, shape: shape512, smear: smear512, products: products512,
 }

@@ -40,6 +40,7 @@
 
 #define ABSORB ·absorb2(SB)
 #define THIN ·thin2(SB)
+#define FAINT ·faint2(SB)
 #define COMPARE ·compare2(SB)
 #define BARE ·bare2(SB)
 #define TILT ·tilt2(SB)

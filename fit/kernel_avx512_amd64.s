@@ -40,6 +40,7 @@
 
 #define ABSORB ·absorb512(SB)
 #define THIN ·thin512(SB)
+#define FAINT ·faint512(SB)
 #define COMPARE ·compare512(SB)
 #define BARE ·bare512(SB)
 #define TILT ·tilt512(SB)

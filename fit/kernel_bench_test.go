@@ -108,6 +108,12 @@ func kernelCalls(s *kernelSet, c *kernelCase) []struct {
 			copy(c.h, c.d)
 			s.thin(c.t, c.c, c.e, c.g, c.h, c.k, &c.light)
 		}},
+		{"faint", func() {
+			copy(c.e, c.thin)
+			copy(c.g, c.d)
+			copy(c.h, c.d)
+			s.faint(c.t, c.c, c.e, c.g, c.h, c.k, &c.light)
+		}},
 	}
 }
 

@@ -7,6 +7,9 @@ func absorb2(t, c, d, g, h, s []float64, l *kernelLight)
 func thin2(t, c, d, g, h, s []float64, l *kernelLight)
 
 //go:noescape
+func faint2(t, c, d, g, h, s []float64, l *kernelLight)
+
+//go:noescape
 func compare2(rr *lanes, w, e, t, a, b, s, v []float64, l *kernelLight)
 
 //go:noescape
@@ -38,6 +41,9 @@ func absorb512(t, c, d, g, h, s []float64, l *kernelLight)
 
 //go:noescape
 func thin512(t, c, d, g, h, s []float64, l *kernelLight)
+
+//go:noescape
+func faint512(t, c, d, g, h, s []float64, l *kernelLight)
 
 //go:noescape
 func compare512(rr *lanes, w, e, t, a, b, s, v []float64, l *kernelLight)

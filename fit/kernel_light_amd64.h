@@ -199,6 +199,40 @@ thinLoop:
 	NEXT(thinLoop)
 	END(thinHalf)
 
+// func faint(t, c, d, g, h, s []float64, l *kernelLight)
+TEXT FAINT, NOSPLIT, $0-152
+	MOVQ t_base+0(FP), DI
+	MOVQ c_base+24(FP), SI
+	MOVQ d_base+48(FP), R8
+	MOVQ g_base+72(FP), R9
+	MOVQ h_base+96(FP), R10
+	MOVQ s_base+120(FP), R11
+	MOVQ l+144(FP), R13
+	START(t_len+8(FP))
+	VMOVUPD ONE, V14
+
+faintHalf:
+	VMOVUPD LIGHT(kernelLight_k), V15
+	MOVQ    BX, CX
+
+faintLoop:
+	VMULPD  (R11)(CX*1), V15, V1
+	VMULPD  LIGHT(kernelLight_sat), V1, V1
+	VMULPD  LIGHT(kernelLight_step), V15, V15
+	VADDPD  V14, V1, V2
+	VDIVPD  V2, V14, V3 // w
+	VMULPD  (R8)(CX*1), V3, V4 // x
+	VMULPD  V3, V4, V5
+	VMULPD  WIDE(const_wideMinusHalf), V5, V5
+	VFMADD213PD V4, V4, V5 // y
+	VMULPD  V3, V1, V6
+	VMULPD  V5, V6, V6
+	VFMADD213PD V3, V3, V6
+	VSUBPD  V5, V14, V5
+	ABSORBED(V5, V6, V2, V7, V8)
+	NEXT(faintLoop)
+	END(faintHalf)
+
 // PIXEL leaves weight and weighted residual in w and e, the residual in r and its
 // share in q, from κ in κ; the scale is in V15.
 #define PIXEL(kappa, a, b, s, v, w, e, r, q, x, y) \

@@ -54,6 +54,7 @@ const (
 	absorbBend = 0.7
 	absorbMost = 690
 	thinMost   = 0.01 // depth from which one step from 0 is off by less than 3e-10
+	faintMost  = 1e-6 // depth whose square is all that counts beside it
 )
 
 func scalarAbsorb(t, c, d, g, h, s []float64, l *kernelLight) {
@@ -115,6 +116,29 @@ func scalarThin(t, c, d, g, h, s []float64, l *kernelLight) {
 		f := math.FMA(z, z, z)
 		f = math.FMA(f, z, z)
 		v = math.FMA(f, v, v)
+		e := 1 - y
+		m := float64(float64(e*l.pass[j]) * v)
+		t[i] = math.FMA(e, l.pass[j], l.stray[j])
+		c[i] = math.FMA(m, p, l.stray[j])
+		d[i] = m
+		g[i] = float64(g[i] * m)
+		h[i] = float64(h[i] * m)
+		k[j] = float64(k[j] * l.step[j])
+	}
+}
+
+func scalarFaint(t, c, d, g, h, s []float64, l *kernelLight) {
+	n := len(t)
+	c, d, g, h, s = c[:n], d[:n], g[:n], h[:n], s[:n]
+	k := l.k
+	for i := range t {
+		j := i & (kernelLanes - 1)
+		sat := float64(float64(k[j]*s[i]) * l.sat[j])
+		p := 1 + sat
+		w := 1 / p
+		x := float64(d[i] * w)
+		y := math.FMA(float64(float64(x*w)*-0.5), x, x) // 1 − e^−u
+		v := math.FMA(float64(float64(sat*w)*y), w, w)
 		e := 1 - y
 		m := float64(float64(e*l.pass[j]) * v)
 		t[i] = math.FMA(e, l.pass[j], l.stray[j])

@@ -13,7 +13,7 @@ var scalarKernels = kernelSet{
 	name: "scalar", far: scalarFar, near: scalarNear, edge: scalarEdge, slope: scalarSlope, cross: scalarCross, powers: scalarPowers,
 	edgeSlope: scalarEdgeSlope, peak: scalarPeak, rootCross: scalarRootCross,
 	weigh: scalarWeigh, halve: scalarHalve, blocks: scalarBlocks, totals: scalarTotals,
-	absorb: scalarAbsorb, thin: scalarThin, compare: scalarCompare, bare: scalarBare,
+	absorb: scalarAbsorb, thin: scalarThin, faint: scalarFaint, compare: scalarCompare, bare: scalarBare,
 	tilt: scalarTilt, lightCross: scalarLightCross, lightPowers: scalarLightPowers,
 	times: scalarTimes, shape: scalarShape, smear: scalarSmear, products: scalarProducts,
 }
