@@ -28,9 +28,7 @@ func (n *Night) Compare(ctx context.Context, th *Theory) ([]Comparison, error) {
 	var list []Comparison
 	for _, l := range th.Laws() {
 		c := Comparison{Law: l, Amplitude: Estimate{math.NaN(), math.NaN(), math.NaN()}}
-		p := n.problem(points, relation{1, false, func(_ *Point, v *Vector, g *scales, _, h []float64) {
-			h[0] = v.Fraction() - th.at(l, v, g, 1)
-		}})
+		p := n.problem(points, follows(func(v *Vector, g *scales, _ []float64) float64 { return th.at(l, v, g, 1) }))
 		c.Quality, c.Deviation = p.quality(nil), p.mean()
 		if l.numeric {
 			var err error
@@ -46,15 +44,22 @@ func (n *Night) Compare(ctx context.Context, th *Theory) ([]Comparison, error) {
 // amplitude fits λ in f = ideal + λ (law − ideal).
 func (n *Night) amplitude(ctx context.Context, th *Theory, l Law, points []*Point) (Estimate, error) {
 	ideal, _ := Find(Ideal)
-	p := n.problem(points, relation{1, false, func(_ *Point, v *Vector, g *scales, theta, h []float64) {
+	p := n.problem(points, follows(func(v *Vector, g *scales, theta []float64) float64 {
 		none := th.at(ideal, v, g, 1)
-		h[0] = v.Fraction() - none - theta[0]*(th.at(l, v, g, 1)-none)
-	}})
+		return none + theta[0]*(th.at(l, v, g, 1)-none)
+	}))
 	e, _, err := p.fit(ctx, []float64{0.5})
 	if err != nil {
 		return Estimate{}, err
 	}
 	return e[0], nil
+}
+
+// follows returns the relation that the fraction is that of a law, 0 above its end.
+func follows(law func(v *Vector, g *scales, theta []float64) float64) relation {
+	return relation{size: 1, ends: true, eval: func(_ *Point, v *Vector, g *scales, theta, h []float64) {
+		h[0] = v.Fraction() - law(v, g, theta)
+	}}
 }
 
 // at returns the fraction that a law gives a cloud whose transition is at ratio Tc⁰.
@@ -77,7 +82,7 @@ func Best(list []Comparison) int {
 // Distance returns the signed distance of a point to a law in its statistical errors, with
 // its full covariance: f above the law counts as positive.
 func (n *Night) Distance(th *Theory, l Law, p *Point) float64 {
-	r := relation{1, false, func(_ *Point, v *Vector, g *scales, _, h []float64) { h[0] = v.Fraction() - th.at(l, v, g, 1) }}
+	r := follows(func(v *Vector, g *scales, _ []float64) float64 { return th.at(l, v, g, 1) })
 	near := r.nearest(p, n.Gas.scales(), nil, &p.Vector)
 	return near.r[0]
 }

@@ -110,8 +110,8 @@ func (p *problem) fit(ctx context.Context, start []float64, ignore ...string) ([
 func (p *problem) quality(theta []float64) Quality {
 	q := Quality{Points: len(p.points), Dof: len(p.points) * p.relation.size}
 	p.find(theta)
-	for _, n := range p.near {
-		q.Chi2 += n.r[0]*n.r[0] + n.r[1]*n.r[1]
+	for i := range p.near {
+		q.Chi2 += p.near[i].chi2()
 	}
 	return q
 }

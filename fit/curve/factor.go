@@ -151,7 +151,7 @@ func unchanged(_ *Point, _ []float64, v Vector) Vector { return v }
 
 // ratioProblem is that of the two relations after a correction of the measured numbers.
 func (n *Night) ratioProblem(points []*Point, law string, correct correction) *problem {
-	return n.problem(points, relation{2, true, func(p *Point, v *Vector, g *scales, theta, h []float64) {
+	return n.problem(points, relation{size: 2, mu: true, eval: func(p *Point, v *Vector, g *scales, theta, h []float64) {
 		c := correct(p, theta, *v)
 		h[0] = math.Log(c[Mu] / g.mu(c[Condensate]))
 		h[1] = math.Log(c[Thermal]/g.saturated(c[T])) - excessOf(law, &c)
@@ -197,7 +197,7 @@ func (n *Night) ratios(ctx context.Context, points []*Point, law string) (mu, sa
 	for i, into := range []*Estimate{&mu, &saturated} {
 		p := n.ratioProblem(points, law, unchanged)
 		both := p.relation.eval
-		p.relation = relation{1, true, func(p *Point, v *Vector, g *scales, theta, h []float64) {
+		p.relation = relation{size: 1, mu: true, eval: func(p *Point, v *Vector, g *scales, theta, h []float64) {
 			var two [2]float64
 			both(p, v, g, theta, two[:])
 			h[0] = two[i] - theta[0]

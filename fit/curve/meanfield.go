@@ -24,14 +24,14 @@ func (n *Night) CheckMeanField(ctx context.Context) (*MeanField, error) {
 		return nil, nil
 	}
 	middle := geometricMean(points, (*Point).condensate)
-	line := n.problem(points, relation{1, true, func(_ *Point, v *Vector, g *scales, theta, h []float64) {
+	line := n.problem(points, relation{size: 1, mu: true, eval: func(_ *Point, v *Vector, g *scales, theta, h []float64) {
 		h[0] = math.Log(v[Mu]/g.mu(middle)) - theta[0] - theta[1]*math.Log(v[Condensate]/middle)
 	}})
 	e, q, err := line.fit(ctx, []float64{0, 0.4})
 	if err != nil {
 		return nil, err
 	}
-	mean := n.problem(points, relation{1, true, func(_ *Point, v *Vector, g *scales, theta, h []float64) {
+	mean := n.problem(points, relation{size: 1, mu: true, eval: func(_ *Point, v *Vector, g *scales, theta, h []float64) {
 		h[0] = v[Mu]/g.mu(v[Condensate]) - theta[0]
 	}})
 	ratio, _, err := mean.fit(ctx, []float64{1})

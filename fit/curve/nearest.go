@@ -7,6 +7,9 @@ import "math"
 type relation struct {
 	size int  // values, 1 or 2
 	mu   bool // they hang on μ too
+	// ends says that the first value rises with T up to the end of a law, and does not change
+	// above it.
+	ends bool
 	// eval is asked for numbers v that the point p may truly have.
 	eval func(p *Point, v *Vector, g *scales, theta, h []float64)
 }
@@ -17,51 +20,105 @@ type near struct {
 	latent Vector
 	r      [2]float64 // signed distance, whitened: χ² is the sum of its squares
 	lower  [3]float64 // Cholesky factor of J C Jᵀ: l11, l21, l22
+	flat   bool       // the first value does not change along T there
 }
 
-// nearest minimises (v − v*)ᵀC⁻¹(v − v*) over v* with h(v*) = 0 by repeated linearisation,
+// nearest returns the nearest point, found from a start. Where a law ends below the measured
+// T, or nearly so, the cloud may truly have been colder, which no slope there tells: then it
+// is looked for from where the law holds the measured fraction too.
+func (r *relation) nearest(p *Point, g *scales, theta []float64, start *Vector) near {
+	best := r.descend(p, g, theta, start)
+	if r.ends && best.r[0] > 0 && (best.flat || best.r[0] > 2) {
+		from := r.colder(p, g, theta)
+		if n := r.descend(p, g, theta, &from); n.chi2() < best.chi2() {
+			best = n
+		}
+	}
+	return best
+}
+
+// colder returns the measured numbers with the T below the measured one at which the first
+// value vanishes.
+func (r *relation) colder(p *Point, g *scales, theta []float64) Vector {
+	var h [2]float64
+	low, high := 0.0, p.Vector[T]
+	at := p.Vector
+	for range 40 {
+		at[T] = (low + high) / 2
+		if r.eval(p, &at, g, theta, h[:r.size]); h[0] > 0 {
+			high = at[T]
+		} else {
+			low = at[T]
+		}
+	}
+	return at
+}
+
+// descend minimises (v − v*)ᵀC⁻¹(v − v*) over v* with h(v*) = 0 by repeated linearisation,
 //
 //	v* ← v − C Jᵀ (J C Jᵀ)⁻¹ (h + J (v − v*)),   J = ∂h/∂v at v*,
 //
 // so that a curved relation is met where the cloud truly was and not where its error put
-// it. NaN where the relation has no value there.
-func (r *relation) nearest(p *Point, g *scales, theta []float64, start *Vector) near {
-	at := *start
+// it. A step beyond the end of a law is halved. NaN where the relation has no value there.
+func (r *relation) descend(p *Point, g *scales, theta []float64, start *Vector) near {
+	at, before, sloped := *start, *start, false
 	var n near
 	for range 30 {
-		var c [2]Vector // C Jᵀ, by value of h
 		v, j := r.linear(p, g, theta, &at)
-		for k := range r.size {
-			for a := range numMeasured {
-				for b := range numMeasured {
-					c[k][a] += p.Cov[a][b] * j[k][b]
-				}
-			}
+		if r.ends && sloped && j[0][T] == 0 {
+			at = between(&before, &at)
+			continue
 		}
-		n.lower = r.factor(&j, &c)
-		n.r = n.whiten(v)
-		multiplier := n.unwhiten(n.r)
-		step := 0.0
-		for a := range at {
-			if p.Cov[a][a] == 0 {
-				continue
-			}
-			next := p.Vector[a]
-			for k := range r.size {
-				next -= c[k][a] * multiplier[k]
-			}
-			next = math.Max(next, 0.2*at[a]) // numbers, T and μ are positive
-			d := next - at[a]
-			step = math.Max(step, d*d/p.Cov[a][a])
-			at[a] = next
-		}
-		n.latent = at
-		if !(step > settled) {
+		sloped, before = j[0][T] != 0, at
+		n.flat = !sloped
+		if !r.step(p, &v, &j, &n, &at) {
 			break
 		}
 	}
 	return n
 }
+
+// step moves to the point nearest to the measured one on the relation as it is linearised at
+// the given numbers, and says whether it has moved by what matters.
+func (r *relation) step(p *Point, v *[2]float64, j *[2]Vector, n *near, at *Vector) bool {
+	var c [2]Vector // C Jᵀ, by value of h
+	for k := range r.size {
+		for a := range numMeasured {
+			for b := range numMeasured {
+				c[k][a] += p.Cov[a][b] * j[k][b]
+			}
+		}
+	}
+	n.lower = r.factor(j, &c)
+	n.r = n.whiten(*v)
+	multiplier := n.unwhiten(n.r)
+	moved := 0.0
+	for a := range at {
+		if p.Cov[a][a] == 0 {
+			continue
+		}
+		next := p.Vector[a]
+		for k := range r.size {
+			next -= c[k][a] * multiplier[k]
+		}
+		next = math.Max(next, 0.2*at[a]) // numbers, T and μ are positive
+		d := next - at[a]
+		moved = math.Max(moved, d*d/p.Cov[a][a])
+		at[a] = next
+	}
+	n.latent = *at
+	return moved > settled
+}
+
+func between(a, b *Vector) (v Vector) {
+	for i := range v {
+		v[i] = (a[i] + b[i]) / 2
+	}
+	return v
+}
+
+// chi2 is the square of the distance.
+func (n *near) chi2() float64 { return n.r[0]*n.r[0] + n.r[1]*n.r[1] }
 
 // settled is the square of the last step, a thousandth of an error: it is of the second
 // order in the steps before.

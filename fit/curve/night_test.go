@@ -94,6 +94,46 @@ func (p *pulls) judge(t *testing.T, what string) {
 	within(t, what+": mean square of the pulls", p.squares/p.count, 1, 0.35)
 }
 
+// TestNightAtTheTransition: clouds within the error of T of the end of their law, half of
+// them measured above it, are as near to it as any.
+func TestNightAtTheTransition(t *testing.T) {
+	ctx, g := context.Background(), rubidium(t)
+	th := NewTheory(g, 6e4, 1.5e5)
+	reduced := make([]float64, 300)
+	for i := range reduced {
+		reduced[i] = 0.94 + 0.059*float64(i)/300
+	}
+	for law, share := range map[string]float64{Ideal: 0, SemiIdeal: 1} {
+		n := draw(t, g, th, law, reduced, rand.New(rand.NewPCG(7, 5)))
+		list, err := n.Compare(ctx, th)
+		if err != nil {
+			t.Fatal(err)
+		}
+		if best := list[Best(list)].Law.Name; best != law {
+			t.Errorf("%s: the best law is %s", law, best)
+		}
+		for _, c := range list {
+			if c.Law.Name == law {
+				within(t, law+": chi2 a point", c.PerDof(), 1, 4*math.Sqrt(2./300))
+			}
+			if c.Law.Name == SemiIdeal {
+				within(t, law+": share", c.Amplitude.V, share, 4*c.Amplitude.Err)
+				within(t, law+": error of the share", c.Amplitude.Err, 0, 0.05)
+			}
+		}
+		tr, err := n.Locate(ctx, th)
+		if err != nil {
+			t.Fatal(err)
+		}
+		for _, o := range tr.Onsets {
+			if o.Law.Name == law {
+				within(t, law+": onset", o.Ratio.V, 1, 4*o.Ratio.Err)
+				within(t, law+": error of the onset", o.Ratio.Err, scatter[T]/math.Sqrt(300), scatter[T]/math.Sqrt(300))
+			}
+		}
+	}
+}
+
 // TestDrawnNights fits nights whose law, transition and number factor are known.
 func TestDrawnNights(t *testing.T) {
 	ctx, g := context.Background(), rubidium(t)

@@ -1,6 +1,7 @@
 package curve
 
 import (
+	"fmt"
 	"math"
 	"testing"
 
@@ -13,7 +14,7 @@ import (
 func TestNearestOfLine(t *testing.T) {
 	p := &Point{Vector: Vector{2, 5, 1, 1}}
 	p.Cov[0][0], p.Cov[1][1], p.Cov[0][1], p.Cov[1][0] = 0.04, 0.09, 0.03, 0.03
-	r := relation{1, false, func(_ *Point, v *Vector, _ *scales, theta, h []float64) { h[0] = v[1] - theta[0]*v[0] }}
+	r := relation{size: 1, eval: func(_ *Point, v *Vector, _ *scales, theta, h []float64) { h[0] = v[1] - theta[0]*v[0] }}
 	n := r.nearest(p, &scales{}, []float64{2}, &p.Vector)
 	within(t, "distance", n.r[0], (5-2*2)/math.Sqrt(0.09-4*0.03+4*0.04), 1e-9)
 	within(t, "nearest point", n.latent[1]-2*n.latent[0], 0, 1e-9)
@@ -25,7 +26,7 @@ func TestNearestOfLine(t *testing.T) {
 func TestNearestOfCurve(t *testing.T) {
 	p := &Point{Vector: Vector{1, 0.93, 0.55, 1}}
 	p.Cov[1][1], p.Cov[2][2], p.Cov[1][2], p.Cov[2][1] = 1e-5, 0.02, -1e-4, -1e-4
-	r := relation{1, false, func(_ *Point, v *Vector, _ *scales, _, h []float64) { h[0] = v[1] - (1 - v[2]*v[2]*v[2]) }}
+	r := relation{size: 1, eval: func(_ *Point, v *Vector, _ *scales, _, h []float64) { h[0] = v[1] - (1 - v[2]*v[2]*v[2]) }}
 	n := r.nearest(p, &scales{}, nil, &p.Vector)
 	det := p.Cov[1][1]*p.Cov[2][2] - p.Cov[1][2]*p.Cov[1][2]
 	least := math.Inf(1)
@@ -36,11 +37,34 @@ func TestNearestOfCurve(t *testing.T) {
 	within(t, "chi2", n.r[0]*n.r[0], least, 1e-5*(1+least))
 }
 
+// TestNearestBeyondTheEnd compares with a search along a law that ends at 1: a cloud that was
+// measured beyond it may have been colder, or have no condensate.
+func TestNearestBeyondTheEnd(t *testing.T) {
+	law := func(u float64) float64 { return math.Max(0, 1-u*u*u) }
+	r := relation{size: 1, ends: true, eval: func(_ *Point, v *Vector, _ *scales, _, h []float64) { h[0] = v[1] - law(v[2]) }}
+	for _, c := range []struct{ f, fErr, t, tErr, correlation float64 }{
+		{0.01, 2e-5, 1.003, 0.01, 0}, {0.01, 2e-5, 1.003, 0.01, -0.3}, {0.03, 1e-4, 0.9999, 0.01, 0.2}, {0.3, 1e-3, 1.05, 0.01, 0},
+		{0.002, 0.001, 1.2, 0.05, 0}, {0.002, 0.001, 1.02, 0.02, 0.5}, {0.002, 0.001, 0.98, 0.003, -0.1},
+	} {
+		p := &Point{Vector: Vector{1, c.f, c.t, 1}}
+		p.Cov[1][1], p.Cov[2][2] = c.fErr*c.fErr, c.tErr*c.tErr
+		p.Cov[1][2] = c.correlation * c.fErr * c.tErr
+		p.Cov[2][1] = p.Cov[1][2]
+		n := r.nearest(p, &scales{}, nil, &p.Vector)
+		least := math.Inf(1)
+		for u := 0.5; u < 1.5; u += 1e-6 {
+			a, b := (c.f-law(u))/c.fErr, (c.t-u)/c.tErr
+			least = math.Min(least, (a*a-2*c.correlation*a*b+b*b)/(1-c.correlation*c.correlation))
+		}
+		within(t, fmt.Sprintf("chi2 of %+v", c), n.chi2(), least, 0.01*(1+least))
+	}
+}
+
 // TestNearestOfTwo: two linear relations of independent numbers add their squares.
 func TestNearestOfTwo(t *testing.T) {
 	p := &Point{Vector: Vector{3, 4, 1, 1}}
 	p.Cov[0][0], p.Cov[1][1], p.Cov[0][1], p.Cov[1][0] = 1, 4, 0.5, 0.5
-	r := relation{2, false, func(_ *Point, v *Vector, _ *scales, _, h []float64) { h[0], h[1] = v[0], v[1] }}
+	r := relation{size: 2, eval: func(_ *Point, v *Vector, _ *scales, _, h []float64) { h[0], h[1] = v[0], v[1] }}
 	n := r.nearest(p, &scales{}, nil, &p.Vector)
 	want := (9*4 - 2*3*4*0.5 + 16*1) / (1*4 - 0.25)
 	within(t, "chi2", n.r[0]*n.r[0]+n.r[1]*n.r[1], want, 1e-9)

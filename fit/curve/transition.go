@@ -87,7 +87,7 @@ func (n *Night) saturation(ctx context.Context, points []*Point) (*Saturation, e
 	if len(points) < 4 {
 		return nil, nil
 	}
-	p := n.problem(points, relation{1, false, func(_ *Point, v *Vector, g *scales, theta, h []float64) {
+	p := n.problem(points, relation{size: 1, eval: func(_ *Point, v *Vector, g *scales, theta, h []float64) {
 		held := theta[0]
 		if len(theta) > 1 {
 			held += theta[1] * Excess(g.mu(v[Condensate])/(model.KB*v[T]))
@@ -115,9 +115,7 @@ func (n *Night) onsets(ctx context.Context, th *Theory, points []*Point) ([]Onse
 		if l.Name != Ideal && !l.numeric {
 			continue
 		}
-		p := n.problem(points, relation{1, false, func(_ *Point, v *Vector, g *scales, theta, h []float64) {
-			h[0] = v.Fraction() - th.at(l, v, g, theta[0])
-		}})
+		p := n.problem(points, follows(func(v *Vector, g *scales, theta []float64) float64 { return th.at(l, v, g, theta[0]) }))
 		e, q, err := p.fit(ctx, []float64{1})
 		if err != nil {
 			return nil, err
