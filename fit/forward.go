@@ -19,7 +19,7 @@ type forward struct {
 	geo     geometry
 	excess  *excess
 	bose    boseRow
-	light   kernelLight
+	light   *kernelLight
 	y       float64 // from the centre
 	plane   float64 // logarithm of the light's scale at the first column of the row
 	tilt    float64 // and its slope per column
@@ -76,7 +76,10 @@ func (f *forward) grow(n int) {
 func (f *forward) setLight(law *law, l *level) {
 	pixels := float64(l.bin * l.bin)
 	step := math.Exp(kernelLanes * f.tilt)
-	k := &f.light
+	if f.light == nil {
+		f.light = new(kernelLight)
+	}
+	k := f.light
 	for j := range kernelLanes {
 		k.step[j] = step
 		k.sat[j] = l.saturate / (pixels * law.a)
@@ -101,7 +104,7 @@ func (f *forward) lightFrom(a int) *kernelLight {
 	for j, v := range (*lanes)(f.grown[a:]) {
 		f.light.k[j] = f.first * v
 	}
-	return &f.light
+	return f.light
 }
 
 // cloud returns the columns, in whole groups, that the thermal part reaches.

@@ -20,7 +20,9 @@ func allKernels() []*kernelSet {
 	return all
 }
 
-// kernelWide are the constants of the kernels, one a row, repeated over the lanes.
+// kernelWide are the constants of the kernels, one a row, repeated over the lanes. They stand in
+// an object of their own, which starts with a cache line as a variable does not always: a row
+// across two lines is loaded at half the pace.
 var kernelWide = widen()
 
 const (
@@ -60,7 +62,8 @@ const (
 	numWide   = wideRough + 6
 )
 
-func widen() (w [numWide]lanes) {
+func widen() *[numWide]lanes {
+	w := new([numWide]lanes)
 	split := uint64(biasBits)
 	split -= rootHalf
 	for i := range kernelLanes {

@@ -5,10 +5,12 @@
 // Throughout, CX is the byte offset of the group from the start of the row, DX its end,
 // and AX and BX count the halves: 4 lanes are run along the whole row before the next 4.
 
-#define IOTA ·kernelWide+const_wideIota*64(SB)
-#define EIGHT ·kernelWide+const_wideEight*64(SB)
-#define ONE ·kernelWide+const_wideOne*64(SB)
-#define WIDE(i) ·kernelWide+(i)*64(SB)
+// The constants lie at R15, which START sets.
+#define WIDE(i) ((i)*64)(R15)
+#define IOTA WIDE(const_wideIota)
+#define EIGHT WIDE(const_wideEight)
+#define ONE WIDE(const_wideOne)
+#define CONSTANTS MOVQ ·kernelWide(SB), R15
 
 // X leaves the coordinate in x, given i, x0 and dx, and steps i on.
 #define X(i, x0, dx, x) \
@@ -23,6 +25,7 @@
 
 // START sets up the loop over halves and END closes it.
 #define START(n) \
+	CONSTANTS \
 	MOVQ n, DX \
 	SHLQ $3, DX \
 	XORQ BX, BX

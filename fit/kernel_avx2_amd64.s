@@ -111,6 +111,7 @@ total:
 
 // func blocks2(run []densitySums, w, d []float64)
 TEXT ·blocks2(SB), NOSPLIT, $0-72
+	CONSTANTS
 	MOVQ run_base+0(FP), R8
 	MOVQ w_base+24(FP), DI
 	MOVQ d_base+48(FP), SI

@@ -109,6 +109,7 @@ total:
 
 // func blocks512(run []densitySums, w, d []float64)
 TEXT ·blocks512(SB), NOSPLIT, $0-72
+	CONSTANTS
 	MOVQ run_base+0(FP), R8
 	MOVQ w_base+24(FP), DI
 	MOVQ d_base+48(FP), SI
