@@ -294,15 +294,15 @@ func TestDensityBadImage(t *testing.T) {
 }
 
 func BenchmarkDensityPass(b *testing.B) {
-	p := DensityParams{0.8, 51, 38, 1.1, 50, 27, 250, 262, 0.2, 0.02, -0.03, 0.04}
-	img := drawDensity(&p, 512, 512, 1)
+	p := benchCloud
+	img := drawDensity(&p, benchSide, benchSide, 1)
 	var ws DensityWorkspace
 	ws.load(img, &p)
 	ws.problem.level = &ws.levels[0]
 	var h [NumDensity * NumDensity]float64
 	var g [NumDensity]float64
 	perPixel := func(b *testing.B) {
-		b.ReportMetric(float64(b.Elapsed().Nanoseconds())/float64(b.N)/(512*512), "ns/px")
+		b.ReportMetric(float64(b.Elapsed().Nanoseconds())/float64(b.N)/(benchSide*benchSide), "ns/px")
 	}
 	b.Run("normal", func(b *testing.B) {
 		for b.Loop() {
