@@ -3,6 +3,8 @@ package curve
 import (
 	"math"
 	"slices"
+
+	"gonum.org/v1/gonum/stat"
 )
 
 // Group are points that belong together, by their places in order.
@@ -47,12 +49,14 @@ func by(values []float64, key func(float64) float64) []Group {
 	return list
 }
 
-// Mean is the mean of values, each weighted by 1/err².
+// Mean is the mean of values, each weighted by 1/(err² + Own²): by 1/err² where the errors
+// explain the scatter; else values that are small and have small errors for that would draw
+// it down (the random effects of R. DerSimonian, N. Laird, Control. Clin. Trials 7, 177 (1986)).
 type Mean struct {
 	Count  int     // values that have an error
 	V, Err float64 // Err from the errors alone
-	// Chi2 is Σ(v−V)²/err² of Count−1 degrees of freedom: above one each the values scatter
-	// by more than their errors, so that the machine is the limit and not the camera.
+	// Chi2 is the least Σ(v−V)²/err², of Count−1 degrees of freedom: above one each the values
+	// scatter by more than their errors, so that the machine is the limit and not the camera.
 	Chi2 float64
 	// Spread is the standard deviation of the values, Own what of it the errors do not
 	// explain, 0 where they explain all.
@@ -70,32 +74,36 @@ func (m Mean) Scatter() float64 {
 // MeanOf averages the values at the given places; those without a positive error do not
 // count. Without any it is NaN.
 func MeanOf(values, errs []float64, places []int) Mean {
-	m := Mean{V: math.NaN(), Err: math.NaN(), Spread: math.NaN(), Own: math.NaN()}
-	var w, wv, sum, noise float64
-	good := func(i int) bool { return errs[i] > 0 && !math.IsNaN(values[i]) }
+	var v, squares []float64 // of the errors
 	for _, i := range places {
-		if good(i) {
-			k := 1 / (errs[i] * errs[i])
-			m.Count++
-			w, wv, sum, noise = w+k, wv+k*values[i], sum+values[i], noise+errs[i]*errs[i]
+		if errs[i] > 0 && !math.IsNaN(values[i]) {
+			v, squares = append(v, values[i]), append(squares, errs[i]*errs[i])
 		}
 	}
-	if m.Count == 0 {
+	m := Mean{Count: len(v), V: math.NaN(), Err: math.NaN(), Spread: math.NaN(), Own: math.NaN()}
+	if len(v) == 0 {
 		return m
 	}
-	m.V, m.Err = wv/w, 1/math.Sqrt(w)
-	plain, squares := sum/float64(m.Count), 0.0
-	for _, i := range places {
-		if good(i) {
-			d, e := values[i]-m.V, values[i]-plain
-			m.Chi2 += d * d / (errs[i] * errs[i])
-			squares += e * e
-		}
+	closest, _ := weighted(v, squares, 0)
+	for i := range v {
+		m.Chi2 += (v[i] - closest) * (v[i] - closest) / squares[i]
 	}
-	if m.Count > 1 {
-		variance := squares / float64(m.Count-1)
-		m.Spread = math.Sqrt(variance)
-		m.Own = math.Sqrt(math.Max(0, variance-noise/float64(m.Count)))
+	own := 0.0
+	if len(v) > 1 {
+		variance := stat.Variance(v, nil)
+		own = math.Max(0, variance-stat.Mean(squares, nil))
+		m.Spread, m.Own = math.Sqrt(variance), math.Sqrt(own)
 	}
+	m.V, m.Err = weighted(v, squares, own)
 	return m
+}
+
+// weighted returns the mean with weights 1/(error² + own) and its error from the errors.
+func weighted(v, squares []float64, own float64) (mean, err float64) {
+	var w, wv, ww float64
+	for i := range v {
+		k := 1 / (squares[i] + own)
+		w, wv, ww = w+k, wv+k*v[i], ww+k*k*squares[i]
+	}
+	return wv / w, math.Sqrt(ww) / w
 }

@@ -99,20 +99,30 @@ func TestGroups(t *testing.T) {
 	}
 }
 
-// TestMeanOf: weights 1 and 1/4, and a value without an error.
+// TestMeanOf: weights 1 and 1/4 where the errors explain the scatter, else with the rest of
+// it in them; a value without an error does not count.
 func TestMeanOf(t *testing.T) {
-	values, errs := []float64{10, 15, 99}, []float64{1, 2, math.NaN()}
-	m := MeanOf(values, errs, []int{0, 1, 2})
-	within(t, "mean", m.V, 11, 1e-12)
-	within(t, "error", m.Err, math.Sqrt(0.8), 1e-12)
-	within(t, "chi2", m.Chi2, 1+4, 1e-12)
-	within(t, "scatter", m.Scatter(), math.Sqrt(5), 1e-12)
-	within(t, "spread", m.Spread, 5/math.Sqrt2, 1e-12)
-	within(t, "own spread", m.Own, math.Sqrt(12.5-2.5), 1e-12)
-	if m.Count != 2 {
-		t.Errorf("%d values count", m.Count)
+	nan := math.NaN()
+	for _, c := range []struct {
+		values, errs                        []float64
+		mean, err, chi2, scatter, own, span float64
+	}{
+		{[]float64{10, 11, 99}, []float64{1, 2, nan}, 10.2, math.Sqrt(0.8), 0.2, math.Sqrt(0.2), 0, 1 / math.Sqrt2},
+		// Own² is 12.5 − 2.5; the weights are 1/11 and 1/14.
+		{[]float64{10, 15, nan}, []float64{1, 2, 1}, (10*14 + 15*11) / 25., math.Sqrt(14*14+11*11*4) / 25, 5, math.Sqrt(5), math.Sqrt(10), 5 / math.Sqrt2},
+	} {
+		m := MeanOf(c.values, c.errs, []int{0, 1, 2})
+		within(t, "mean", m.V, c.mean, 1e-12)
+		within(t, "error", m.Err, c.err, 1e-12)
+		within(t, "chi2", m.Chi2, c.chi2, 1e-12)
+		within(t, "scatter", m.Scatter(), c.scatter, 1e-12)
+		within(t, "spread", m.Spread, c.span, 1e-12)
+		within(t, "own spread", m.Own, c.own, 1e-12)
+		if m.Count != 2 {
+			t.Errorf("%d values count", m.Count)
+		}
 	}
-	if m := MeanOf(values, errs, []int{2}); m.Count != 0 || !math.IsNaN(m.V) {
+	if m := MeanOf([]float64{1}, []float64{0}, []int{0}); m.Count != 0 || !math.IsNaN(m.V) {
 		t.Errorf("mean of nothing: %+v", m)
 	}
 }
