@@ -24,7 +24,16 @@ func format(e curve.Estimate) string {
 		}
 	}
 	decimals = min(max(decimals, 0), 12)
-	return strconv.FormatFloat(e.V, 'f', decimals, 64) + digits(e.Err, decimals) + digits(e.Cal, decimals)
+	return fixed(e.V, decimals) + digits(e.Err, decimals) + digits(e.Cal, decimals)
+}
+
+// fixed writes a number with so many decimals, 0 without a sign.
+func fixed(v float64, decimals int) string {
+	text := strconv.FormatFloat(v, 'f', decimals, 64)
+	if strings.Trim(text, "-0.") == "" {
+		return strings.TrimPrefix(text, "-")
+	}
+	return text
 }
 
 // digits writes an error in units of the last of so many decimals.

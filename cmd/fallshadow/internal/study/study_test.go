@@ -338,7 +338,7 @@ func TestPlot(t *testing.T) {
 	}
 }
 
-// TestCrowd: many shots are drawn as means.
+// TestCrowd: many shots are drawn as means, which lie on the law that the shots follow.
 func TestCrowd(t *testing.T) {
 	d, err := analysed(t, made(t, 500)).Plot(Axes{X: DefaultX, Y: DefaultY})
 	if err != nil {
@@ -346,6 +346,9 @@ func TestCrowd(t *testing.T) {
 	}
 	if n := len(d.Figure.Points[0].X); n > 60 || !strings.Contains(d.Note, "500 shots") {
 		t.Errorf("%d marks, note %q", n, d.Note)
+	}
+	for i, x := range d.Figure.Points[0].X {
+		within(t, fmt.Sprintf("mean at %.3f", x), d.Figure.Points[0].Y[i], model.IdealFraction(x), 0.015)
 	}
 }
 
@@ -382,6 +385,7 @@ func TestFormat(t *testing.T) {
 		"0.998(4)(35)":      {V: 0.99812, Err: 0.0042, Cal: 0.035},
 		"0.9981(2)(350)":    {V: 0.99812, Err: 0.00022, Cal: 0.035},
 		"1.098(12)(-)":      {V: 1.0978, Err: 0.0123, Cal: nan},
+		"0.000(4)(35)":      {V: -0.00012, Err: 0.004, Cal: 0.035},
 		"-3.4(2.1)(0)":      {V: -3.41, Err: 2.1, Cal: 0},
 		"123457(310)(2200)": {V: 123456.7, Err: 310, Cal: 2200},
 		"":                  {V: nan, Err: 1, Cal: 1},
