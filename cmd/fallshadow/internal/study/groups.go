@@ -53,15 +53,28 @@ func (a *Analysis) Groups(g Grouping) ([]curve.Group, error) {
 	return curve.ByWidth(values, g.Width), nil
 }
 
-// mean averages a series over places; without any error it is the plain mean, and its
-// error is NaN.
+// mean averages a series over places. Where a value has no error, as the fraction of a shot
+// without a condensate has none, it is the plain mean, so that every shot counts; its error
+// is that of the values that have one, NaN without any.
 func (s series) mean(places []int) curve.Mean {
-	if slices.ContainsFunc(places, func(i int) bool { return s.err[i] > 0 }) {
+	squares, all := 0.0, true
+	for _, i := range places {
+		switch e := s.err[i]; {
+		case e > 0:
+			squares += e * e
+		case !math.IsNaN(s.v[i]):
+			all = false
+		}
+	}
+	if all {
 		return curve.MeanOf(s.v, s.err, places)
 	}
 	ones := slices.Repeat([]float64{1}, len(s.v))
 	m := curve.MeanOf(s.v, ones, places)
 	m.Err, m.Chi2, m.Own = math.NaN(), math.NaN(), math.NaN()
+	if squares > 0 {
+		m.Err = math.Sqrt(squares) / float64(m.Count)
+	}
 	return m
 }
 

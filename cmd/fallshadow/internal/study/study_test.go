@@ -348,7 +348,7 @@ func TestCrowd(t *testing.T) {
 		t.Errorf("%d marks, note %q", n, d.Note)
 	}
 	for i, x := range d.Figure.Points[0].X {
-		within(t, fmt.Sprintf("mean at %.3f", x), d.Figure.Points[0].Y[i], model.IdealFraction(x), 0.015)
+		within(t, fmt.Sprintf("mean at %.3f", x), d.Figure.Points[0].Y[i], model.IdealFraction(x), 0.025)
 	}
 }
 
