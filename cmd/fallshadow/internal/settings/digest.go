@@ -104,7 +104,7 @@ func decimal(x float64) string {
 	return s
 }
 
+var escapes = strings.NewReplacer(`\`, `\\`, `"`, `\"`)
+
 // tomlText writes printable text as a TOML string.
-func tomlText(t string) string {
-	return `"` + strings.NewReplacer(`\`, `\\`, `"`, `\"`).Replace(t) + `"`
-}
+func tomlText(t string) string { return `"` + escapes.Replace(t) + `"` }

@@ -61,12 +61,10 @@ func (w *Watcher) Each(ctx context.Context) iter.Seq2[*ledger.Row, error] {
 		if !w.isReady() {
 			return
 		}
-		one := make([]ledger.Row, 1)
+		now := w.staleness()
 		for r, err := range w.store.Each(ctx) {
 			if err == nil {
-				one[0] = *r
-				w.markStale(one)
-				r = &one[0]
+				now.Mark(r)
 			}
 			if !yield(r, err) {
 				return
@@ -84,15 +82,15 @@ func (w *Watcher) Row(ctx context.Context, shot string) (*ledger.Row, error) {
 	if err != nil || r == nil {
 		return nil, err
 	}
-	one := []ledger.Row{*r}
-	w.markStale(one)
-	return &one[0], nil
+	w.staleness().Mark(r)
+	return r, nil
 }
 
-func (w *Watcher) markStale(rows []ledger.Row) {
+// staleness judges by the settings and regions in force.
+func (w *Watcher) staleness() night.Staleness {
 	w.mu.Lock()
 	defer w.mu.Unlock()
-	night.MarkStale(rows, w.lab, w.regions)
+	return night.NewStaleness(w.lab, w.regions)
 }
 
 // Notes returns what a person should know now.
