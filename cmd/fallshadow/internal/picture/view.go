@@ -5,6 +5,7 @@ import (
 	"image"
 	"image/png"
 	"math"
+	"sync"
 
 	"fallshadow/cmd/fallshadow/internal/report"
 	"fallshadow/fit"
@@ -98,7 +99,19 @@ func upper(pix []float32) float64 {
 // PNG encodes a picture, fast rather than small.
 func PNG(img image.Image) ([]byte, error) {
 	var b bytes.Buffer
-	e := png.Encoder{CompressionLevel: png.BestSpeed}
+	e := png.Encoder{CompressionLevel: png.BestSpeed, BufferPool: &buffers}
 	err := e.Encode(&b, img)
-	return b.Bytes(), err
+	return bytes.Clone(b.Bytes()), err // pictures are kept, the room to grow is not
 }
+
+// buffers keeps the compressors, whose tables are larger than most pictures.
+var buffers encoderBuffers
+
+type encoderBuffers struct{ pool sync.Pool }
+
+func (p *encoderBuffers) Get() *png.EncoderBuffer {
+	b, _ := p.pool.Get().(*png.EncoderBuffer)
+	return b // nil where there is none: the encoder makes one
+}
+
+func (p *encoderBuffers) Put(b *png.EncoderBuffer) { p.pool.Put(b) }
