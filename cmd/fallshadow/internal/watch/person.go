@@ -84,12 +84,13 @@ func (w *Watcher) Undraw() {
 }
 
 // beginRegion stores the region that was drawn with the first new shot behind all that
-// were there. Shots that come late but belong before them keep what held then.
-func (w *Watcher) beginRegion(ctx context.Context, jobs []*job, last string) {
+// were there, and reports whether there was one. Shots that come late but belong before
+// them keep what held then.
+func (w *Watcher) beginRegion(ctx context.Context, jobs []*job, last string) bool {
 	w.mu.Lock()
 	defer w.mu.Unlock()
 	if w.drawn == nil {
-		return
+		return false
 	}
 	for _, j := range jobs {
 		if !j.isNew || last != "" && imageio.Natural(j.Name, last) <= 0 {
@@ -105,11 +106,12 @@ func (w *Watcher) beginRegion(ctx context.Context, jobs []*job, last string) {
 		}
 		if err != nil {
 			w.notes.set("ledger", err.Error())
-			return
+			return false
 		}
 		w.regions, w.drawn = regions, nil
-		return
+		return true
 	}
+	return false
 }
 
 // regionOf returns the region that a person drew and that is in force for a shot.

@@ -66,7 +66,9 @@ func (w *Watcher) scanOnce(ctx context.Context) {
 		w.audience.Changed()
 		w.askTable()
 	}
-	w.beginRegion(ctx, jobs, last)
+	if w.beginRegion(ctx, jobs, last) {
+		w.audience.Changed()
+	}
 	w.queue.push(jobs...)
 	w.noteBacklog()
 	w.noteWaiting()
