@@ -97,6 +97,7 @@ func screenshot(t *testing.T, tab context.Context, name string) {
 // watched is a night that is watched and shown.
 type watched struct {
 	url   string
+	page  *page.Page
 	watch *watch.Watcher
 	stop  func()
 }
@@ -127,7 +128,7 @@ func watchNight(t *testing.T, dir, address string) *watched {
 		}
 	})
 	t.Cleanup(stop)
-	return &watched{url, w, stop}
+	return &watched{url, p, w, stop}
 }
 
 // newNight makes a night with the settings of the demo and some of its shots under their
@@ -211,35 +212,57 @@ func TestBrowserFollowsShots(t *testing.T) {
 	shown(t, tab, "ramp_0007")
 	addShot(t, dir, 8, "ramp_0008")
 	shown(t, tab, "ramp_0008")
+	do(t, tab, chromedp.Navigate(n.url))
+	shown(t, tab, "ramp_0008")
+	until(t, tab, "the connection", isLive)
+	late, err := n.watch.Row(context.Background(), "ramp_0001")
+	if err != nil {
+		t.Fatal(err)
+	}
+	n.page.Row(late, 0)
+	time.Sleep(300 * time.Millisecond)
+	shown(t, tab, "ramp_0008") // word of a shot that came earlier changes nothing
 }
 
-// The screens that were looked at: a desk in light and dark, and a phone.
+// The screens that were looked at: a desk in light and dark, a phone, a tablet, and the
+// large numbers for those who stand two metres away. A name may be long.
 func TestBrowserScreens(t *testing.T) {
-	n := watchNight(t, newNight(t, 1, 2, 3, 4, 5, 6, 7, 8, 9), "127.0.0.1:0")
+	dir := newNight(t, 1, 2, 3, 4, 5, 6, 7, 8, 9)
+	addShot(t, dir, 1, "ramp_0000_"+strings.Repeat("long", 20))
+	n := watchNight(t, dir, "127.0.0.1:0")
 	tab := browser(t)
 	for _, s := range []struct {
 		name          string
 		width, height int64
 		theme, shot   string
+		large         float64 // least size of the numbers that matter
 	}{
-		{"desk-light", 1440, 900, "light", "ramp_0005"}, {"desk-dark", 1440, 900, "dark", "ramp_0009"},
-		{"phone-dark", 390, 844, "dark", "ramp_0006"}, {"phone-light", 390, 844, "light", "ramp_0002"},
+		{"desk-light", 1440, 900, "light", "ramp_0005", 28}, {"desk-dark", 1440, 900, "dark", "ramp_0009", 28},
+		{"phone-dark", 390, 844, "dark", "ramp_0006", 28}, {"phone-light", 390, 844, "light", "ramp_0002", 28},
+		{"tablet-dark", 820, 1180, "dark", "ramp_0004", 28},
+		{"far-dark", 1440, 900, "dark", "ramp_0009", 80}, {"far-light", 1440, 900, "light", "ramp_0002", 80},
+		{"far-phone", 390, 844, "light", "ramp_0008", 55},
 	} {
 		do(t, tab, chromedp.EmulateViewport(s.width, s.height), chromedp.Navigate(n.url))
-		until(t, tab, "nine shots", fmt.Sprintf(countIs, 9))
+		until(t, tab, "ten shots", fmt.Sprintf(countIs, 10))
+		if far := eval[bool](t, tab, `document.body.classList.contains('far')`); far != (s.large > 50) {
+			do(t, tab, chromedp.KeyEvent("l"))
+		}
 		eval[bool](t, tab, fmt.Sprintf(`localStorage.setItem('theme', %q); document.documentElement.dataset.theme === %q || document.querySelector('#theme').click(); true`, s.theme, s.theme))
 		for shown := "ramp_0009"; shown > s.shot; shown = fmt.Sprintf("ramp_%04d", int(shown[8]-'0')-1) {
 			do(t, tab, chromedp.KeyEvent(kb.ArrowLeft))
 		}
 		shown(t, tab, s.shot)
 		screenshot(t, tab, s.name)
+		readable(t, tab, s.name)
 		if wide := eval[bool](t, tab, `document.documentElement.scrollWidth > innerWidth`); wide {
 			t.Errorf("%s: the page is wider than the window", s.name)
 		}
-		if size := eval[float64](t, tab, fontSize); !(size >= 28) {
-			t.Errorf("%s: the atom number is %g px high, too small from afar", s.name, size)
+		if size := eval[float64](t, tab, fontSize); !(size >= s.large) {
+			t.Errorf("%s: the atom number is %g px high, want %g", s.name, size, s.large)
 		}
 	}
+	testFaint(t, tab)
 }
 
 // shotName is hostile to whoever takes it for markup, a path or a parameter.
@@ -265,12 +288,18 @@ func TestBrowserHostileNames(t *testing.T) {
 // A shot is marked bad with a word, which can be taken back.
 func TestBrowserVerdict(t *testing.T) {
 	ctx := context.Background()
-	n := watchNight(t, newNight(t, 4, 5), "127.0.0.1:0")
+	dir := newNight(t, 4, 5)
+	n := watchNight(t, dir, "127.0.0.1:0")
 	tab := browser(t)
 	do(t, tab, chromedp.EmulateViewport(1440, 900), chromedp.Navigate(n.url))
 	shown(t, tab, "ramp_0005")
-	do(t, tab, chromedp.Click("#mark"), chromedp.SendKeys("#bad-word", "laser unlocked"), chromedp.KeyEvent(kb.Enter))
-	until(t, tab, "the word", `document.querySelector('#verdict').textContent.includes('laser unlocked') && document.querySelector('.item.bad')`)
+	do(t, tab, chromedp.Click("#mark"), chromedp.SendKeys("#bad-word", "laser unlocked"))
+	addShot(t, dir, 6, "ramp_0006")
+	shown(t, tab, "ramp_0006") // the word is still against the shot that was asked about
+	do(t, tab, chromedp.KeyEvent(kb.Enter))
+	until(t, tab, "a bad shot", `document.querySelector('.item.bad')?.textContent.includes('ramp_0005')`)
+	do(t, tab, chromedp.KeyEvent(kb.ArrowLeft))
+	until(t, tab, "the word", `document.querySelector('#verdict').textContent.includes('laser unlocked')`)
 	screenshot(t, tab, "bad")
 	if r, err := n.watch.Row(ctx, "ramp_0005"); err != nil || r.Bad != "laser unlocked" {
 		t.Errorf("stored: %+v, %v", r, err)
@@ -306,10 +335,19 @@ func TestBrowserRegion(t *testing.T) {
 	if next == nil || abs(next.Min.X-30) > 1 || abs(next.Min.Y-20) > 1 || abs(next.Max.X-130) > 1 || abs(next.Max.Y-125) > 1 {
 		t.Fatalf("the region is %v", next)
 	}
+	do(t, tab, chromedp.KeyEvent("r"), chromedp.Click("#drawing-undo"))
+	until(t, tab, "it taken back", `document.querySelector('#region-now').textContent === ''`)
+	if _, next := n.watch.Region(); next != nil {
+		t.Errorf("%v still waits", next)
+	}
+	if err := n.watch.Draw(*next); err != nil {
+		t.Fatal(err)
+	}
 	addShot(t, dir, 6, "ramp_0006")
 	shown(t, tab, "ramp_0006")
 	do(t, tab, chromedp.Click("#tab-fitted"))
 	want := fmt.Sprintf("0 0 %d %d", next.Dx(), next.Dy())
+	until(t, tab, "word that it holds", `document.querySelector('#region-now').textContent === 'region drawn by hand'`)
 	until(t, tab, "the region in the picture", fmt.Sprintf(`document.querySelector('#density').getAttribute('viewBox') === %q`, want))
 }
 
@@ -355,11 +393,11 @@ func TestBrowserTrend(t *testing.T) {
 	box := eval[[]float64](t, tab, `(() => { const b = document.querySelector('#trend-plot .u-over').getBoundingClientRect(); return [b.x, b.y, b.width, b.height]; })()`)
 	time.Sleep(300 * time.Millisecond)
 	at := func(part float64) (float64, float64) { return box[0] + part*box[2], box[1] + box[3]/2 }
-	x, y := at(0.02)
+	x, y := at(0.18)
 	do(t, tab, chromedp.MouseEvent(input.DispatchMouseEventTypeMouseMoved, x, y))
-	until(t, tab, "the value", `/^ramp_0007: 0\.8.* at RAMPEND 250/.test(document.querySelector('#trend-read').textContent)`)
+	until(t, tab, "the value", `/^ramp_0006: 0\.(69|7).* at RAMPEND 260/.test(document.querySelector('#trend-read').textContent)`)
 	do(t, tab, chromedp.MouseClickXY(x, y))
-	shown(t, tab, "ramp_0007")
+	shown(t, tab, "ramp_0006")
 	x0, y0 := at(0.4)
 	x1, y1 := at(0.9)
 	do(t, tab, chromedp.DragAndDropXY(x0, y0, x1, y1, 5))
@@ -367,6 +405,7 @@ func TestBrowserTrend(t *testing.T) {
 	screenshot(t, tab, "trend")
 	do(t, tab, chromedp.Click("#trend-all"))
 	until(t, tab, "all of it", `document.querySelector('#trend-all').hidden`)
+	shown(t, tab, "ramp_0006") // dragging was no click
 }
 
 // The first picture that means something is there within a second of asking for the page.

@@ -63,5 +63,8 @@ func (p *Page) servePicture(w http.ResponseWriter, r *http.Request) {
 		return
 	}
 	w.Header().Set("Content-Type", "image/png")
+	if v.Mark == r.URL.Query().Get("mark") { // the address holds for these bytes alone
+		w.Header().Set("Cache-Control", "private, max-age=3600, immutable")
+	}
 	w.Write(v.pictures[r.PathValue("kind")])
 }

@@ -12,6 +12,7 @@ import (
 	"iter"
 	"net"
 	"net/http"
+	"sync"
 	"time"
 
 	"fallshadow/cmd/fallshadow/internal/ledger"
@@ -43,6 +44,9 @@ type Page struct {
 	guard  guard
 	stream *stream
 	views  *views
+
+	mu     sync.Mutex
+	newest int // the latest arrival that was told, -1 before any
 }
 
 //go:embed assets
@@ -59,7 +63,7 @@ func must[T any](v T, err error) T {
 
 // New returns the page of a night of the given name.
 func New(name string) *Page {
-	p := &Page{name: name, stream: newStream()}
+	p := &Page{name: name, stream: newStream(), newest: -1}
 	p.views = newViews(p.measure)
 	return p
 }
@@ -73,10 +77,20 @@ func (p *Page) measure(ctx context.Context, shot string) (*report.Facts, *imagei
 
 // Row tells the browsers of a stored row.
 func (p *Page) Row(r *ledger.Row, arrival int) {
+	p.mu.Lock()
+	p.newest = max(p.newest, arrival)
+	p.mu.Unlock()
 	p.stream.send("row", struct {
 		Arrival int    `json:"arrival"`
 		Row     detail `json:"row"`
 	}{arrival, newDetail(r, p.night.Scan())})
+}
+
+// latest is the latest arrival that was told.
+func (p *Page) latest() int {
+	p.mu.Lock()
+	defer p.mu.Unlock()
+	return p.newest
 }
 
 // Picture draws a shot and tells the browsers that it can be seen.

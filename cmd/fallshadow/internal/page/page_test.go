@@ -329,6 +329,46 @@ func TestCatchUp(t *testing.T) {
 	}
 }
 
+// A browser that comes is told of the latest arrival, so that it can tell a late one.
+func TestLatestArrival(t *testing.T) {
+	p, _, url := newServer(t, "")
+	latest := func() (n struct{ Arrival int }) {
+		_, body := ask(t, "GET", url+"/api/night", "")
+		if err := json.Unmarshal([]byte(body), &n); err != nil {
+			t.Fatal(err)
+		}
+		return n
+	}
+	if n := latest(); n.Arrival != -1 {
+		t.Errorf("%d before any", n.Arrival)
+	}
+	p.Row(&ledger.Row{Shot: "shot_7"}, 7)
+	p.Row(&ledger.Row{Shot: "shot_3"}, 3)
+	if n := latest(); n.Arrival != 7 {
+		t.Errorf("%d, want 7", n.Arrival)
+	}
+}
+
+// A picture may be kept by a browser under the mark of its view alone.
+func TestPictureMark(t *testing.T) {
+	_, _, url := newServer(t, "")
+	_, body := ask(t, "GET", url+"/api/view?shot=shot_2", "")
+	var v struct{ Mark string }
+	if err := json.Unmarshal([]byte(body), &v); err != nil || v.Mark == "" {
+		t.Fatalf("%v, %s", err, body)
+	}
+	for mark, want := range map[string]string{v.Mark: "private, max-age=3600, immutable", "old": "no-store", "": "no-store"} {
+		r, err := http.Get(url + "/picture/density?shot=shot_2&mark=" + mark)
+		if err != nil {
+			t.Fatal(err)
+		}
+		r.Body.Close()
+		if got := r.Header.Get("Cache-Control"); got != want {
+			t.Errorf("mark %q: %q, want %q", mark, got, want)
+		}
+	}
+}
+
 // A browser that does not read is cut off and does not hold up the others.
 func TestSlowBrowser(t *testing.T) {
 	s := newStream()

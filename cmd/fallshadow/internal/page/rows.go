@@ -101,7 +101,7 @@ type column struct {
 
 // serveNight says what there is, without the numbers of the shots.
 func (p *Page) serveNight(r *http.Request) (any, error) {
-	last := p.stream.last() // before the rows are read, so that nothing falls in between
+	last, newest := p.stream.last(), p.latest() // before the rows are read, so that nothing falls in between
 	list := []brief{}
 	var final *ledger.Row
 	for row, err := range p.night.Each(r.Context()) {
@@ -113,7 +113,7 @@ func (p *Page) serveNight(r *http.Request) (any, error) {
 	}
 	now, next := p.night.Region()
 	answer := map[string]any{
-		"night": p.name, "event": last,
+		"night": p.name, "event": last, "arrival": newest,
 		"rows": list, "columns": columns(), "scan": p.night.Scan(), "flags": flagSentences(),
 		"settings": p.night.SettingsText(), "notes": p.night.Notes(),
 		"region": corners(now), "drawn": corners(next),

@@ -3,6 +3,7 @@ package page
 import (
 	"container/list"
 	"context"
+	"crypto/rand"
 	"image"
 	"math"
 	"sync"
@@ -15,6 +16,7 @@ import (
 // view is what a browser draws of a shot: pictures ready to be sent, and lines in the
 // pixels of the fitted map.
 type view struct {
+	Mark     string        `json:"mark"` // tells it from other views, also of the same shot
 	Width    int           `json:"width"`
 	Height   int           `json:"height"`
 	Region   [4]int        `json:"region"` // x0, y0, x1, y1 of the saved frame
@@ -44,7 +46,7 @@ type viewCut struct {
 
 // newView draws a shot. Either argument may be nil.
 func newView(f *report.Facts, raw *imageio.Raw) *view {
-	v := &view{pictures: map[string][]byte{}}
+	v := &view{Mark: rand.Text(), pictures: map[string][]byte{}}
 	if raw != nil {
 		for _, frame := range raw.Frames {
 			if frame != nil {

@@ -15,6 +15,7 @@ export async function post(path, body) {
   }));
 }
 
-export function pictureOf(kind, shot, version) {
-  return "/picture/" + kind + "?" + new URLSearchParams({ shot, v: version });
+// pictureOf is the address of a picture; the mark of its view tells it from earlier ones.
+export function pictureOf(kind, shot, mark) {
+  return "/picture/" + kind + "?" + new URLSearchParams({ shot, mark });
 }

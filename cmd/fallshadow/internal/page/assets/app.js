@@ -17,17 +17,20 @@ const region = new RegionTool(pictures, (text) => say(text));
 
 let columns = [], sentences = {};
 let following = true, connected = false;
-let newest = -1;        // the latest arrival that was shown
-let version = 0;        // of pictures, counts up as they change
+let newest = -1;        // the latest arrival that was told
+let turn = 0;           // counts views: the last one asked for stays
 let latestAt = null;    // when the last shot came
 let wanted = null;      // the shot that is being shown
 let detail = null;      // its row
+let judged = null;      // the row that a person is asked about
+let notes = [], trouble = ""; // what the program says, and what went wrong here
 
 // load reads everything but the numbers of single shots.
 async function load() {
   const night = await get("/api/night");
   columns = night.columns;
   sentences = night.flags;
+  newest = night.arrival;
   document.title = night.night + " · fallshadow";
   $("night").textContent = night.night;
   $("settings-text").textContent = night.settings;
@@ -60,7 +63,8 @@ async function show(shot, row, look = row === undefined) {
     const view = look ? get("/api/view", { shot }) : null;
     view?.catch(() => {}); // the row says why
     showRow(row ?? await get("/api/row", { shot }), shot);
-    if (view) showView(shot, await view);
+    say("");
+    if (view) await showView(shot, await view);
     else if (row.failed) showNothing();
   } catch (error) {
     if (wanted !== shot) return;
@@ -83,9 +87,11 @@ function showRow(row, shot) {
   showStatus();
 }
 
-function showView(shot, view) {
-  if (wanted !== shot) return;
-  pictures.show(shot, view, version);
+async function showView(shot, view) {
+  const mine = ++turn;
+  await pictures.load(shot, view);
+  if (wanted !== shot || mine !== turn) return;
+  pictures.show(shot, view);
   showCuts();
   document.body.dataset.seen = shot;
 }
@@ -112,7 +118,6 @@ const live = new Live({
     showStatus();
   },
   picture(shot) {
-    version++;
     if (wanted === shot) get("/api/view", { shot }).then((view) => showView(shot, view)).catch((error) => say(error.message));
   },
   changed: () => load().catch(() => {}),
@@ -134,23 +139,28 @@ function ago(ms) {
   return s < 100 ? s + " s ago" : s < 6000 ? Math.round(s / 60) + " min ago" : Math.round(s / 3600) + " h ago";
 }
 
-function showNotes(notes) {
-  $("notes").hidden = !notes?.length;
-  $("notes").textContent = (notes || []).join("\n");
+function showNotes(list) {
+  notes = list || [];
+  const lines = [...notes, trouble].filter(Boolean);
+  $("notes").hidden = !lines.length;
+  $("notes").textContent = lines.join("\n");
 }
 
 function showRegion(now, next) {
   pictures.region = { now, next };
+  $("drawing-undo").hidden = !next;
   $("region-now").textContent = next ? "a region waits for the next shot" : now ? "region drawn by hand" : "";
   pictures.draw();
 }
 
 function say(text) {
-  showNotes([text]);
+  trouble = text;
+  showNotes(notes);
 }
 
 function askBad() {
   if (!detail) return;
+  judged = detail; // another shot may be shown before the answer
   $("bad-shot").textContent = detail.shot;
   $("bad-word").value = detail.bad || "";
   $("bad-back").hidden = !detail.bad;
@@ -164,7 +174,7 @@ $("bad-dialog").addEventListener("close", async () => {
   if (answer !== "take" && answer !== "back") return;
   const word = answer === "back" ? "" : $("bad-word").value.trim() || "bad";
   try {
-    await post("/api/verdict", { shot: detail.shot, word });
+    await post("/api/verdict", { shot: judged.shot, word });
   } catch (error) {
     say(error.message);
   }
@@ -176,6 +186,17 @@ function toggleTheme() {
   localStorage.setItem("theme", theme);
   cuts.recolour();
   trend.build();
+}
+
+function toggleFar() {
+  far(!document.body.classList.contains("far"));
+}
+
+// far shows the numbers so large that they can be read from across the room.
+function far(is) {
+  document.body.classList.toggle("far", is);
+  $("far").setAttribute("aria-pressed", is);
+  localStorage.setItem("far", is ? "yes" : "");
 }
 
 function showCuts() {
@@ -198,6 +219,7 @@ const actions = {
   End: follow,
   b: askBad,
   c: () => pictures.toggleScale(),
+  l: toggleFar,
   f: () => choosePart(parts[(parts.indexOf(pictures.part) + 1) % parts.length]),
   r: () => (region.on ? region.end() : region.begin()),
   s: () => $("settings-dialog").showModal(),
@@ -217,9 +239,20 @@ addEventListener("keydown", (e) => {
 
 for (const [id, action] of Object.entries({
   scale: actions.c, older: actions.ArrowLeft, newer: actions.ArrowRight, follow, mark: askBad, draw: actions.r,
-  settings: actions.s, theme: toggleTheme, help: actions["?"],
+  settings: actions.s, far: toggleFar, theme: toggleTheme, help: actions["?"],
 })) $(id).addEventListener("click", action);
 for (const part of parts) $("tab-" + part).addEventListener("click", () => choosePart(part));
 
+for (const select of document.querySelectorAll("select")) freeKeys(select);
+
+// freeKeys gives the keys back to the page once a choice was made with a pointer.
+function freeKeys(select) {
+  let pointed = false;
+  select.addEventListener("pointerdown", () => { pointed = true; });
+  select.addEventListener("keydown", () => { pointed = false; });
+  select.addEventListener("change", () => pointed && select.blur());
+}
+
+far(localStorage.getItem("far") === "yes");
 setInterval(showStatus, 1000);
 load().then((event) => live.open(event)).catch(() => live.open(""));

@@ -29,8 +29,22 @@ export class Pictures {
     $("residual").classList.add("waits");
   }
 
-  show(shot, view, version) {
-    Object.assign(this, { shot, view, version });
+  // load fetches what will be in sight of a view, so that it takes its place at once.
+  async load(shot, view) {
+    const kinds = this.part === "frame" || !view.width ? ["frame"] : [this.kind];
+    if (view.width) kinds.push("residual");
+    await Promise.all(kinds.map((kind) => {
+      const image = new Image();
+      image.src = pictureOf(kind, shot, view.mark);
+      return image.decode().catch(() => {}); // there may be none of this kind
+    }));
+  }
+
+  // kind is that of the density: its colours go by the density or by its root.
+  get kind() { return this.root ? "faint" : "density"; }
+
+  show(shot, view) {
+    Object.assign(this, { shot, view });
     for (const id of ["density", "residual"]) $(id).classList.remove("waits");
     this.draw();
   }
@@ -59,6 +73,8 @@ export class Pictures {
     if (!v) return;
     const frame = this.part === "frame" || !v.width;
     $("scale").hidden = $("outlines").hidden = frame;
+    $("fitted").hidden = !frame || !v.width;
+    for (const part of ["thermal", "condensate"]) $("outline-" + part).hidden = !v.outlines?.some((o) => o.part === part);
     if (frame) this.drawFrame(v);
     else this.drawDensity(v);
     this.drawResidual();
@@ -79,7 +95,7 @@ export class Pictures {
   }
 
   drawDensity(v) {
-    const stage = $("density"), drawn = [this.image(this.root ? "faint" : "density", v.width, v.height)];
+    const stage = $("density"), drawn = [this.image(this.kind, v.width, v.height)];
     const box = this.box();
     (v.cuts || []).forEach((c, i) => drawn.push(...axis(c.line, box, i + 1)));
     for (const o of v.outlines || []) {
@@ -120,7 +136,7 @@ export class Pictures {
   }
 
   image(kind, width, height) {
-    return svg("image", { href: pictureOf(kind, this.shot, this.version), width, height, preserveAspectRatio: "none", "data-shot": this.shot });
+    return svg("image", { href: pictureOf(kind, this.shot, this.view.mark), width, height, preserveAspectRatio: "none", "data-shot": this.shot });
   }
 }
 

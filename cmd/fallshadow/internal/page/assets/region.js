@@ -17,6 +17,7 @@ export class RegionTool {
       const [w, h] = this.pictures.view.frame;
       this.set([0, 0, w, h]);
     });
+    $("drawing-undo").addEventListener("click", () => this.undo());
     $("drawing-cancel").addEventListener("click", () => this.end());
   }
 
@@ -69,10 +70,16 @@ export class RegionTool {
     this.set([Math.min(a, x), Math.min(b, y), Math.max(a, x), Math.max(b, y)]);
   }
 
-  async take() {
-    if (!this.on || $("drawing-take").disabled) return;
+  take() {
+    if (this.on && !$("drawing-take").disabled) this.ask({ region: this.pictures.drag });
+  }
+
+  // undo takes back the region that waits for the next shot.
+  undo() { this.ask({}); }
+
+  async ask(change) {
     try {
-      await post("/api/region", { region: this.pictures.drag });
+      await post("/api/region", change);
       this.end();
     } catch (error) {
       this.say(error.message);

@@ -4,6 +4,17 @@ import { $, el } from "./dom.js";
 import { natural } from "./natural.js";
 
 const height = 30;
+const tail = 12; // letters at the end of a name that stay in sight
+
+// parts cuts a long name in two: its end tells shots apart, its beginning may give way.
+function parts(name) {
+  const letters = [...name], at = Math.max(0, letters.length - tail);
+  const cut = at < 4 ? 0 : at;
+  return [
+    cut ? el("span", { class: "head" }, letters.slice(0, cut).join("")) : null,
+    el("span", { class: cut ? "tail" : "head" }, letters.slice(cut).join("")),
+  ];
+}
 
 export class Shots {
   constructor(choose) {
@@ -35,9 +46,10 @@ export class Shots {
     return row !== undefined && row.shot === shot;
   }
 
-  put(row) {
-    const i = this.place(row.shot);
-    this.rows.splice(i, this.has(row.shot) ? 1 : 0, row);
+  // put takes in what the list shows of a row; all of it would make a long night heavy.
+  put({ shot, model, flags, bad, failed, atoms }) {
+    const i = this.place(shot);
+    this.rows.splice(i, this.has(shot) ? 1 : 0, { shot, model, flags, bad, failed, atoms });
     this.draw();
   }
 
@@ -78,7 +90,7 @@ export class Shots {
       "aria-current": row.shot === this.current,
     },
     el("span", { class: "dot" }, row.bad || row.failed ? "✕" : flags.length ? "▲" : ""),
-    el("span", { class: "name" }, row.shot),
+    el("span", { class: "name" }, ...parts(row.shot)),
     el("span", { class: "what" }, row.failed ? "failed" : row.model === "none" ? "none" : row.atoms || ""));
     node.style.top = top + "px";
     node.addEventListener("click", () => this.choose(row.shot));

@@ -87,8 +87,8 @@ export class Trend {
       width, height, padding: [8, 14, 0, 0],
       scales: { x: { time: false, range: (u, a, b) => roomy(a, b, .02) }, y: { range: (u, a, b) => this.span(a, b) } },
       legend: { show: false },
-      cursor: { y: false, points: { show: false }, drag: { x: true, y: false }, bind: { click: () => () => this.click() } },
-      axes: [{ ...axis, size: 24, ...(this.x === order ? { incrs: [1, 2, 5, 10, 20, 50, 100, 200, 500, 1000] } : {}) }, { ...axis, size: 62 }],
+      cursor: { y: false, points: { show: false }, drag: { x: true, y: false } },
+      axes: [{ ...axis, size: 24, ...(this.x === order ? { incrs: [1, 2, 5, 10, 20, 50, 100, 200, 500, 1000] } : {}) }, { ...axis, size: 62, values: (u, list) => list.map((v) => tick(v, list)) }],
       series: [{}, dots(true), dots(false)],
       hooks: {
         draw: [(u) => this.drawErrors(u)],
@@ -96,6 +96,7 @@ export class Trend {
         setScale: [(u, key) => { if (key === "x") this.noteZoom(u); }],
       },
     }, this.data(), box);
+    this.plot.over.addEventListener("click", () => this.click()); // none comes after a drag
   }
 
   // span leaves room for the errors of usual size: a shot with a huge one would hide the rest.
@@ -159,8 +160,7 @@ export class Trend {
   }
 
   click() {
-    const selected = this.plot.select.width > 3;
-    if (this.under && !selected) this.choose(this.under.row.shot);
+    if (this.under) this.choose(this.under.row.shot);
   }
 }
 
@@ -168,6 +168,28 @@ function fill(select, names, columns) {
   const before = select.value;
   select.replaceChildren(...names.map((n) => el("option", { value: n, title: columns.get(n)?.meaning }, n)));
   if (names.includes(before)) select.value = before;
+}
+
+// tick writes a value of an axis, in powers of ten where it would be long.
+function tick(v, all) {
+  const most = Math.max(...all.map(Math.abs));
+  if (v === 0 || most === 0) return "0";
+  const step = all.length > 1 ? Math.abs(all[1] - all[0]) : most;
+  const power = Math.floor(Math.log10(most) + 1e-9);
+  if (power > 5 || power < -3) return tidy((v / 10 ** power).toFixed(places(step / 10 ** power))) + "e" + power;
+  return tidy(v.toFixed(places(step)));
+}
+
+// places is how many decimals a number has.
+function places(x) {
+  let n = 0;
+  while (n < 9 && Math.abs(x * 10 ** n - Math.round(x * 10 ** n)) > 1e-6 * x * 10 ** n) n++;
+  return n;
+}
+
+function tidy(text) {
+  const [whole, part] = text.replace("-", "\u2212").split(".");
+  return whole.replace(/\B(?=(\d{3})+$)/g, "\u2009") + (part ? "." + part : "");
 }
 
 function roomy(low, high, part) {
