@@ -318,7 +318,7 @@ func TestEmptyPicture(t *testing.T) {
 }
 
 // TestLimits: a thermal cloud has an upper limit of N0, a pure condensate one of T above the
-// truth.
+// truth and an interval of N0 that reaches down for the thermal atoms it may hide.
 func TestLimits(t *testing.T) {
 	sc := standardScene(t, 300e-9, 0, 8)
 	sc.alpha = 0.3
@@ -327,10 +327,16 @@ func TestLimits(t *testing.T) {
 	if f := r.Numbers.Fraction.High; r.Model != ModelThermal || !(f > 0 && f < 0.02) {
 		t.Errorf("%s with fraction below %g", r.Model, f)
 	}
-	sc = standardScene(t, 25e-9, 1e5, 9)
-	r = mustFit(t, sc, sc.draw(t), Options{})
-	if r.Model != ModelCondensate || !(r.Numbers.T.High > sc.T && r.Numbers.T.High < 90e-9) {
-		t.Errorf("%s with T below %g", r.Model, r.Numbers.T.High)
+	for seed := range uint64(6) {
+		sc = standardScene(t, 25e-9, 1e5, 9+seed)
+		r = mustFit(t, sc, sc.draw(t), Options{})
+		if r.Model != ModelCondensate || !(r.Numbers.T.High > sc.T && r.Numbers.T.High < 90e-9) {
+			t.Errorf("%s with T below %g", r.Model, r.Numbers.T.High)
+		}
+		n := r.Numbers.Condensate
+		if !(n.Low-n.Err < sc.condensate && sc.condensate < n.High+n.Err && n.Low < n.V-n.Err && n.Low > 0.9*n.V) {
+			t.Errorf("N0 is %g, from %g to %g, not %g", n.V, n.Low, n.High, sc.condensate)
+		}
 	}
 }
 

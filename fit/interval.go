@@ -223,20 +223,22 @@ func (s *session) limitCondensate(st *state, n *numbers.Result, c *Checks) {
 }
 
 // limitThermal sets the upper limits of T and N_th beside a condensate, and with them the
-// interval of N and the lower limit of the fraction: a saturated thermal
-// part at T, raised until χ² stands 2.7 above its least.
+// intervals of N and N0 and the lower limit of the fraction: a saturated thermal part at T, raised
+// until χ² stands 2.7 above its least. The atoms that hide there are missing from N, and those
+// of them that lie under the condensate were counted into N0.
 func (s *session) limitThermal(st *state, n *numbers.Result) error {
 	k := st.kind
 	k.thermal, k.fixWidth, k.fixThermal = true, true, true
-	limit, err := s.climb(st, k, s.saturate, 0.05*n.Tc0.V, 2*n.Tc0.V)
+	limit, beside, err := s.climb(st, k, s.saturate, 0.05*n.Tc0.V, 2*n.Tc0.V)
 	if err != nil || math.IsNaN(limit) {
 		return err
 	}
 	n.T.High = limit
 	n.Thermal.High = model.ThermalNumber(limit, 0, s.lab.Trap)
-	// The atoms that hide there are missing from the sums.
+	n.Condensate.Low = math.Min(beside*s.perSum(), n.Condensate.V) - n.Condensate.Err
+	n.Condensate.High = n.Condensate.V + n.Condensate.Err
 	n.Atoms.Low, n.Atoms.High = n.Atoms.V-n.Atoms.Err, n.Atoms.V+n.Atoms.Err+n.Thermal.High
-	n.Fraction.Low = n.Condensate.V / (n.Condensate.V + n.Thermal.High)
+	n.Fraction.Low = n.Condensate.Low / (n.Condensate.Low + n.Thermal.High)
 	return nil
 }
 
@@ -288,24 +290,26 @@ func (s *session) raise(st *state, k kind, set func(*params, float64), by, start
 }
 
 // climb is raise for a χ² that may first fall: it walks up in steps of a fifth and takes the
-// last crossing on a straight line of the root.
-func (s *session) climb(st *state, k kind, set func(*params, float64), low, most float64) (float64, error) {
-	least, before := math.Inf(1), 0.0
+// last crossing on a straight line of the root. It also returns the sum of the condensate there.
+func (s *session) climb(st *state, k kind, set func(*params, float64), low, most float64) (limit, condensate float64, err error) {
+	nan, least, before, sum := math.NaN(), math.Inf(1), 0.0, math.NaN()
 	for x := low; x < most; x *= 1.2 {
 		q := st.p
 		set(&q, x)
 		got, err := s.run(s.work, k, q, 0.1)
 		if err != nil {
-			return math.NaN(), err
+			return nan, nan, err
 		}
 		least = math.Min(least, got.chi2)
 		r := math.Sqrt((got.chi2 - least) / oneSided)
+		m, _ := s.tmpl.measured(&got.p, k)
 		if r > 1 {
-			return x / math.Pow(1.2, (r-1)/math.Max(r-before, 1e-9)), nil
+			beyond := (r - 1) / math.Max(r-before, 1e-9)
+			return x / math.Pow(1.2, beyond), m.CondensateSum + beyond*(zeroNaN(sum-m.CondensateSum)), nil
 		}
-		before = r
+		before, sum = r, m.CondensateSum
 	}
-	return math.NaN(), nil
+	return nan, nan, nil
 }
 
 // limitNone says how many atoms could hide in the middle of an empty picture, spread over a
