@@ -66,7 +66,12 @@ func orInfinity(v float64) float64 {
 }
 
 // sigmas writes a distance in errors.
-func sigmas(v float64) string { return fmt.Sprintf("%+.1f", v) }
+func sigmas(v float64) string {
+	if text := fixed(v, 1); text == "0.0" {
+		return text
+	}
+	return fmt.Sprintf("%+.1f", v)
+}
 
 // count writes a number of things, 1 shot, 2 shots.
 func count(n int, what string) string {

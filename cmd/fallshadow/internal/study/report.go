@@ -7,6 +7,7 @@ import (
 	"fmt"
 	"html/template"
 	"io"
+	"regexp"
 	"slices"
 	"strings"
 
@@ -20,7 +21,14 @@ import (
 //go:embed report.html
 var reportText string
 
-var reportTemplate = template.Must(template.New("report").Parse(reportText))
+var reportTemplate = template.Must(template.New("report").Funcs(template.FuncMap{"numbers": unbroken}).Parse(reportText))
+
+// unbroken returns text as HTML in which no line ends inside a number with its errors.
+func unbroken(text string) template.HTML {
+	return template.HTML(withErrors.ReplaceAllString(template.HTMLEscapeString(text), `<span class="n">$0</span>`))
+}
+
+var withErrors = regexp.MustCompile(`-?[0-9.]+(\([0-9.-]+\))+`)
 
 // The most that a report shows of long lists; the rest is counted.
 const (
@@ -69,8 +77,9 @@ type flagLine struct {
 }
 
 type thumbnail struct {
-	Shot, Why, Numbers string
-	Image              template.URL
+	Shot, Why string
+	Numbers   []string
+	Image     template.URL
 }
 
 // WriteReport writes the night as one page of HTML that needs no other file: the curve,
@@ -80,7 +89,7 @@ func (a *Analysis) WriteReport(ctx context.Context, w io.Writer, drawn *Drawn) e
 	p := page{Night: a.Night.Name, Shots: len(a.Night.Rows), Used: len(a.Chosen.Rows), CurveNote: drawn.Note,
 		Settings: a.Night.Settings.Text(), Unstated: strings.Join(a.Night.Settings.Unstated(), ", ")}
 	var err error
-	if p.Curve, err = inline(drawn.Figure, 112, 84); err != nil {
+	if p.Curve, err = inline(drawn.Figure, 96, 74); err != nil {
 		return err
 	}
 	a.fillNumbers(&p)
@@ -165,7 +174,7 @@ func (a *Analysis) fillTransition(p *page) {
 	}
 }
 
-// span returns the least and the largest value of a quantity.
+// span returns the least and the largest value of a quantity, one where they are the same.
 func (a *Analysis) span(name string) string {
 	q, err := a.Night.Quantity(name)
 	if err != nil {
@@ -175,7 +184,11 @@ func (a *Analysis) span(name string) string {
 	if len(values) == 0 {
 		return ""
 	}
-	return fmt.Sprintf("%.4g to %.4g", slices.Min(values), slices.Max(values))
+	low, high := fmt.Sprintf("%.4g", slices.Min(values)), fmt.Sprintf("%.4g", slices.Max(values))
+	if low == high {
+		return low
+	}
+	return low + " to " + high
 }
 
 // trends draws what a night should hold still, or change slowly.
@@ -195,7 +208,7 @@ func (a *Analysis) trends() (list []trend, err error) {
 				d.Figure.Points[i].Legend = ""
 			}
 		}
-		svg, err := inline(d.Figure, 96, 44)
+		svg, err := inline(d.Figure, 80, 42)
 		if err != nil {
 			return nil, err
 		}
@@ -263,12 +276,12 @@ func reasons(r *ledger.Row) string {
 }
 
 // concise writes the main numbers of a shot.
-func concise(r *ledger.Row) string {
+func concise(r *ledger.Row) []string {
 	var list []string
 	for _, c := range []struct{ column, head, unit string }{{"atoms", "N", ""}, {"fraction", "N0/N", ""}, {"T_nK", "T", " nK"}} {
 		if text := report.Concise(r, c.column); text != "" {
 			list = append(list, c.head+" "+text+c.unit)
 		}
 	}
-	return strings.Join(list, ", ")
+	return list
 }

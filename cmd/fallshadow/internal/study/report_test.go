@@ -101,6 +101,18 @@ func TestReportOfAFolderThatIsGone(t *testing.T) {
 	}
 }
 
+// TestUnbroken: numbers stay on a line with their errors, and markup is still escaped.
+func TestUnbroken(t *testing.T) {
+	for text, want := range map[string]string{
+		"Tc/Tc0 = 0.9925(64)(-); <b>": `Tc/Tc0 = <span class="n">0.9925(64)(-)</span>; &lt;b&gt;`,
+		"as -3.4(2.1), chi2 2":        `as <span class="n">-3.4(2.1)</span>, chi2 2`,
+	} {
+		if got := string(unbroken(text)); got != want {
+			t.Errorf("%s gives %s", text, got)
+		}
+	}
+}
+
 // TestBigReport: what a report shows of many shots does not grow with them.
 func TestBigReport(t *testing.T) {
 	n := made(t, 2000)
