@@ -18,7 +18,7 @@ import (
 type batchCmd struct {
 	Night     string `arg:"" help:"Folder with the shots of the night. It is only read."`
 	Settings  string `placeholder:"FILE" help:"Settings of the laboratory; fallshadow.toml in the night's folder if left out."`
-	Out       string `placeholder:"DIR" help:"Folder for ledger and table; results/NIGHT if left out."`
+	Out       string `placeholder:"DIR" help:"Folder for ledger and table; results/NIGHT if left out. Within the night's folder it must be results."`
 	Again     bool   `help:"Fit every shot, also those whose results are current."`
 	Workers   int    `placeholder:"N" help:"Shots to fit at a time; one a processor if left out. The results do not depend on it."`
 	OwnRegion bool   `help:"Leave out the regions of interest that were drawn by hand."`
@@ -50,6 +50,9 @@ func (c *batchCmd) Run(ctx context.Context, t terminal) error {
 	}
 	if names := lab.Unstated(); len(names) > 0 {
 		fmt.Fprintf(t.err, "no uncertainty is stated for %s: cells ending in _cal that need one stay empty\n", strings.Join(names, ", "))
+	}
+	if err := refuseResults(c.Night, c.Out); err != nil {
+		return err
 	}
 	options := night.Options{
 		Dir: c.Night, Out: c.Out, Settings: lab, Workers: c.Workers, Again: c.Again, OwnRegion: c.OwnRegion,

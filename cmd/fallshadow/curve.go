@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"io"
 	"path/filepath"
+	"strings"
 
 	"fallshadow/cmd/fallshadow/internal/figure"
 	"fallshadow/cmd/fallshadow/internal/report"
@@ -34,6 +35,15 @@ func (c *nightArgs) load(ctx context.Context) (*study.Night, *study.Chosen, erro
 	return n, chosen, err
 }
 
+// refuse fails where files to write would take the place of something that is read.
+func (c *nightArgs) refuse(files ...string) error {
+	s, err := sourcesOf(c.Night, c.Settings, c.Out)
+	if err != nil {
+		return err
+	}
+	return s.refuse(files...)
+}
+
 // figureArgs are the sizes of figures and where they go.
 type figureArgs struct {
 	Figure []figureFile `placeholder:"FILE" help:"File to draw the figure in, .png, .svg or .pdf; may be repeated."`
@@ -56,15 +66,20 @@ func (f figureFile) format() string {
 	return format
 }
 
-// save writes a figure to the named files, or to all formats under the name that is usual.
-func (c *figureArgs) save(t terminal, f *figure.Figure, usual string) error {
+// files are those named, or all formats under the name that is usual.
+func (c *figureArgs) files(usual string) []figureFile {
 	files := c.Figure
 	if files == nil {
 		for _, ending := range figure.Formats {
 			files = append(files, figureFile(usual+"."+ending))
 		}
 	}
-	for _, file := range files {
+	return files
+}
+
+// save writes a figure.
+func (c *figureArgs) save(t terminal, f *figure.Figure, usual string) error {
+	for _, file := range c.files(usual) {
 		if err := study.Save(f, string(file), c.Width, c.Height); err != nil {
 			return err
 		}
@@ -81,12 +96,42 @@ type curveCmd struct {
 	XUnit  string         `placeholder:"UNIT" help:"Unit of a scan variable on the axis."`
 	Law    []string       `placeholder:"LAW" enum:"ideal,finite-size,interacting,semi-ideal,hartree-fock" help:"Laws to draw, of ${enum}."`
 	Group  study.Grouping `placeholder:"NAME[:WIDTH]" help:"Draw and list means of shots with equal NAME, or of bins of it."`
-	Report string         `placeholder:"FILE" help:"Write the night as one HTML page that needs no other file: curve, trends, flags, pictures of flagged shots, settings."`
+	Report pageFile       `placeholder:"FILE" help:"Write the night as one HTML page that needs no other file: curve, trends, flags, pictures of flagged shots, settings."`
 	figureArgs
+}
+
+// pageFile is the name of a page.
+type pageFile string
+
+// UnmarshalText refuses other endings, those of camera files among them.
+func (f *pageFile) UnmarshalText(text []byte) error {
+	*f = pageFile(text)
+	if ending := strings.ToLower(filepath.Ext(string(text))); ending != ".html" && ending != ".htm" {
+		return fmt.Errorf("%s: a page is written as .html", text)
+	}
+	return nil
+}
+
+// outputs are all files that Run writes.
+func (c *curveCmd) outputs() ([]string, error) {
+	s, err := sourcesOf(c.Night, c.Settings, c.Out)
+	usual := filepath.Join(s.results, "curve")
+	files := append(names(c.files(usual)), usual+".csv", usual+".json")
+	if c.Report != "" {
+		files = append(files, string(c.Report))
+	}
+	return files, err
 }
 
 // Run analyses the night and writes its figure.
 func (c *curveCmd) Run(ctx context.Context, t terminal) error {
+	files, err := c.outputs()
+	if err != nil {
+		return err
+	}
+	if err := c.refuse(files...); err != nil {
+		return err
+	}
 	n, chosen, err := c.load(ctx)
 	if err != nil {
 		return err
@@ -128,7 +173,7 @@ func (c *curveCmd) report(ctx context.Context, t terminal, a *study.Analysis, d 
 	if c.Report == "" {
 		return nil
 	}
-	err := report.Replace(c.Report, func(w io.Writer) error { return a.WriteReport(ctx, w, d) })
+	err := report.Replace(string(c.Report), func(w io.Writer) error { return a.WriteReport(ctx, w, d) })
 	if err != nil {
 		return fmt.Errorf("write the report %s: %w", c.Report, err)
 	}

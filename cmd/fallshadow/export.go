@@ -12,7 +12,7 @@ import (
 // exportCmd writes the table of a fitted night for other programs.
 type exportCmd struct {
 	nightArgs
-	Files []exportFile `arg:"" name:"file" optional:"" help:"Files to write: .csv, .fits or .jsonl says the form. Without any, CSV goes to the terminal."`
+	Files []exportFile `arg:"" name:"output" optional:"" help:"New files to write the table to, not shots to read: .csv, .fits or .jsonl says the form. Without any, CSV goes to the terminal."`
 	Good  bool         `help:"Leave out shots that failed, that a person gave a word against, and those that are not of the settings of now; so does --where and --without."`
 }
 
@@ -28,6 +28,9 @@ func (f *exportFile) UnmarshalText(text []byte) error {
 
 // Run writes the files, and says which shots were left out.
 func (c *exportCmd) Run(ctx context.Context, t terminal) error {
+	if err := c.refuse(names(c.Files)...); err != nil {
+		return err
+	}
 	n, chosen, err := c.load(ctx)
 	if err != nil {
 		return err

@@ -75,12 +75,13 @@ func run(args []string, t terminal) int {
 	}
 	err = command.Run()
 	var wrong settings.Problems
+	var misused misuse
 	switch {
 	case err == nil:
 		return exitOK
 	case errors.Is(err, errSomeFailed):
 		return exitSomeFailed
-	case errors.As(err, &wrong):
+	case errors.As(err, &wrong), errors.As(err, &misused):
 		return complain(t, err, exitUsage)
 	case ctx.Err() != nil:
 		return complain(t, err, exitInterrupted)

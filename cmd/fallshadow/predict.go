@@ -63,6 +63,9 @@ func (p *pictureSize) UnmarshalText(text []byte) error {
 
 // Run prints the forecast and draws it where a file is named.
 func (c *predictCmd) Run(ctx context.Context, t terminal) error {
+	if err := c.sources().refuse(names(c.Figure)...); err != nil {
+		return err
+	}
 	lab, err := c.settings()
 	if err != nil {
 		return err
@@ -78,6 +81,14 @@ func (c *predictCmd) Run(ctx context.Context, t terminal) error {
 		return err
 	}
 	return c.draw(t, f)
+}
+
+// sources are what the figure must not be written over.
+func (c *predictCmd) sources() sources {
+	if info, err := os.Stat(c.Settings); err == nil && info.IsDir() {
+		return sources{night: c.Settings}
+	}
+	return sources{settings: c.Settings}
 }
 
 func (c *predictCmd) settings() (*settings.Settings, error) {

@@ -36,6 +36,9 @@ const ownAddress = "127.0.0.1:8417"
 
 // Run watches until it is interrupted.
 func (c *watchCmd) Run(ctx context.Context, t terminal) error {
+	if err := refuseResults(c.Night, c.Out); err != nil {
+		return err
+	}
 	lines := newShotLines(t, c.JSON)
 	hall := audience{lines}
 	var screen *page.Page

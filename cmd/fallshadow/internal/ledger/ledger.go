@@ -16,6 +16,11 @@ import (
 // Name of the ledger in the folder of a night's results.
 const Name = "ledger.sqlite"
 
+const lockName = "ledger.lock"
+
+// Files are the names of all files that a ledger may have beside one another.
+var Files = []string{Name, Name + "-wal", Name + "-shm", lockName}
+
 // Ledger is a ledger open for writing. It is safe for concurrent use; writes wait for
 // one another.
 type Ledger struct {

@@ -31,7 +31,7 @@ var errLocked = errors.New("locked by another process")
 // operating system lets go of it when the file is closed or the process dies, so the
 // file itself stays behind and means nothing by its being there.
 func lock(dir string) (*os.File, error) {
-	f, err := os.OpenFile(filepath.Join(dir, "ledger.lock"), os.O_RDWR|os.O_CREATE, 0o644)
+	f, err := os.OpenFile(filepath.Join(dir, lockName), os.O_RDWR|os.O_CREATE, 0o644)
 	if err != nil {
 		return nil, fmt.Errorf("open the lock of the ledger: %w", err)
 	}
