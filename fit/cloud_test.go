@@ -462,6 +462,10 @@ func TestMeanField(t *testing.T) {
 	if !(pt < -3) {
 		t.Errorf("the plain form is off by %.1f errors only: the scene tests nothing", pt)
 	}
+	if slices.Contains(fine.Flags, FlagForm) || len(fine.Flags) > 0 {
+		t.Errorf("flags of the semi-ideal form: %v", fine.Flags)
+	}
+	t.Logf("flags of the plain form: %v, N_th/N_sat %.2f", plain.Flags, plain.Checks.ThermalOverSaturated)
 	within(t, "pull of T", ft, 0, 3)
 	within(t, "pull of N0", f0, 0, 3)
 }

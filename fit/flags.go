@@ -32,6 +32,7 @@ const (
 	FlagFlight             = "suspect_flight"
 	FlagPixel              = "suspect_pixel"
 	FlagNumber             = "suspect_cross_section"
+	FlagForm               = "suspect_thermal_form"
 	FlagBlurred            = "blurred"
 	FlagAttractive         = "attractive"
 	FlagCollapse           = "beyond_collapse"
@@ -62,6 +63,7 @@ var Flags = []Flag{
 	{FlagFlight, "the ratios agree with another flight: check the flight's source and unit, and zero_ms"},
 	{FlagPixel, "the ratios agree with another pixel in the object plane: check pixel_um, binning and magnification"},
 	{FlagNumber, "the ratios agree with another cross-section: check alpha, detuning_gamma and counts_per_isat (a magnification that is off can look alike)"},
+	{FlagForm, "more thermal atoms than the ideal gas holds at this T, all else agrees: thermal atoms may have felt the condensate; compare with fit.thermal = \"semi-ideal\""},
 	{FlagBlurred, "the blur is above a third of the smallest radius or width: the resolution decides the result"},
 	{FlagAttractive, "the gas is attractive: Thomas-Fermi does not exist; the condensate is a gaussian of the variational width and has no mu from a radius"},
 	{FlagCollapse, "N0 is above the number at which an attractive condensate collapses: check the scattering length and the cross-section"},

@@ -60,9 +60,14 @@ func (m *measuredShape) ratios(lab *Lab, flight, number float64) [numRatios]floa
 
 // score is Σ(ratio/its error)², the error widened by three percent for what no fit knows.
 func (m *measuredShape) score(lab *Lab, flight, number float64) float64 {
+	return m.scoreBut(lab, flight, number, -1)
+}
+
+// scoreBut is score without one of the ratios.
+func (m *measuredShape) scoreBut(lab *Lab, flight, number float64, but int) float64 {
 	sum := 0.0
 	for i, v := range m.ratios(lab, flight, number) {
-		if !math.IsNaN(v) {
+		if i != but && !math.IsNaN(v) {
 			sum += v * v / (m.errs[i]*m.errs[i] + 0.03*0.03)
 		}
 	}
@@ -165,7 +170,10 @@ func (s *session) suspects(r *Result) []string {
 	if !(before > scoreOff) {
 		return nil
 	}
-	name, best := "", math.Inf(1)
+	name, best := s.formSuspect(m), math.Inf(1)
+	if name != "" {
+		best = m.scoreBut(s.lab, s.flight, 1, ratioSat) + formCost
+	}
 	for i := range slips {
 		v := m.bestScore(&slips[i], s.lab, s.flight)
 		if v+slips[i].cost < best {
@@ -184,6 +192,23 @@ func (s *session) suspects(r *Result) []string {
 		return f
 	}
 	return append(f, name)
+}
+
+// The cost of the thermal form as an explanation, which is likelier than any slip, and the most
+// that it explains.
+const (
+	formCost = 0.5
+	formMost = 3
+)
+
+// formSuspect names the thermal form where it can explain a surplus of thermal atoms: the plain form
+// reads T low where thermal atoms were pushed aside by a repulsive condensate.
+func (s *session) formSuspect(m *measuredShape) string {
+	sat := m.ratios(s.lab, s.flight, 1)[ratioSat]
+	if s.opt.MeanField || !(s.lab.Species.ScatteringLength > 0) || !(sat > 0 && sat < math.Log(formMost)) {
+		return ""
+	}
+	return FlagForm
 }
 
 func zeroNaN(x float64) float64 {
