@@ -17,6 +17,7 @@ const (
 	Law3               // dash-dotted
 	Law4               // dotted
 	Law5               // long dashes
+	Ground             // faint grey behind what is not to be trusted
 )
 
 type look struct {
@@ -35,6 +36,7 @@ var looks = map[Role]look{
 	Law3:   {color.NRGBA{0x0f, 0x8a, 0x7a, 0xff}, []float64{5, 1.8, 1.2, 1.8}, 1.1},
 	Law4:   {color.NRGBA{0x7a, 0x3b, 0x8f, 0xff}, []float64{1.2, 1.8}, 1.2},
 	Law5:   {color.NRGBA{0x9b, 0x82, 0x14, 0xff}, []float64{8, 2.2}, 1},
+	Ground: {color.NRGBA{0xa8, 0xa8, 0xa8, 0xff}, nil, 1},
 }
 
 // pale returns the colour mixed with white, for bands; opaque, since not every viewer

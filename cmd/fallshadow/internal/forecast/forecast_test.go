@@ -9,6 +9,7 @@ import (
 	"testing"
 
 	"fallshadow/cmd/fallshadow/internal/settings"
+	"fallshadow/fit/predict"
 )
 
 const laboratory = `[atom]
@@ -75,6 +76,41 @@ func TestForecast(t *testing.T) {
 	}
 	if err := f.Plot().Render(io.Discard, "svg", 86, 150); err != nil {
 		t.Error(err)
+	}
+}
+
+// TestGround: flights whose peak is above 3 have a ground of their own, which ends where the
+// text says that the peak falls below; a thin cloud has none.
+func TestGround(t *testing.T) {
+	thin := usual
+	thin.Atoms, thin.T = 100, 300e-9
+	for _, c := range []struct {
+		request Request
+		panels  int
+	}{{usual, 3}, {thin, 0}} {
+		f, err := New(context.Background(), lab(t), c.request)
+		if err != nil {
+			t.Fatal(err)
+		}
+		panels := 0
+		for _, g := range f.Plot() {
+			for _, b := range g.Bands {
+				panels++
+				last := 0.0
+				for i, x := range b.X {
+					if b.High[i] == g.Y.Max {
+						last = x
+					}
+				}
+				first, err := f.Plan.First(&f.Gas, c.request.From, c.request.To, func(s *predict.Sight) bool { return s.Depth < deep })
+				if err != nil || !(math.Abs(last-first*1e3) < 0.3) {
+					t.Errorf("the ground ends at %g ms, below 3 from %g (%v)", last, first*1e3, err)
+				}
+			}
+		}
+		if panels != c.panels {
+			t.Errorf("%g atoms: a ground in %d figures", c.request.Atoms, panels)
+		}
 	}
 }
 

@@ -3,15 +3,42 @@ package forecast
 import (
 	"fmt"
 	"math"
+	"slices"
+
+	"gonum.org/v1/gonum/interp"
 
 	"fallshadow/cmd/fallshadow/internal/figure"
 	"fallshadow/fit/predict"
 )
 
-// Plot draws sizes, peak optical density and errors against the flight.
+// Plot draws sizes, peak optical density and errors against the flight; the flights whose
+// peak is not to be trusted have a grey ground in all three.
 func (f *Forecast) Plot() figure.Stack {
 	x := figure.Axis{Label: figure.Plain("flight  (ms)"), Min: f.request.From * 1e3, Max: f.request.To * 1e3}
-	return figure.Stack{f.sizes(x), f.depth(x), f.errors(x)}
+	stack := figure.Stack{f.sizes(x), f.depth(x), f.errors(x)}
+	if !slices.ContainsFunc(f.Smooth, dense) {
+		return stack
+	}
+	for _, g := range stack {
+		g.Bands = []figure.Band{f.ground(&g.Y)}
+	}
+	stack[1].Bands[0].Legend = fmt.Sprintf("above %d: not to be trusted", deep)
+	return stack
+}
+
+func dense(s predict.Sight) bool { return s.Depth >= deep }
+
+// ground spans the flights that are dense.
+func (f *Forecast) ground(y *figure.Axis) figure.Band {
+	b := figure.Band{Role: figure.Ground}
+	for _, s := range f.Smooth {
+		low, high := math.NaN(), math.NaN()
+		if dense(s) {
+			low, high = y.Min, y.Max
+		}
+		b.X, b.Low, b.High = append(b.X, s.Flight*1e3), append(b.Low, low), append(b.High, high)
+	}
+	return b
 }
 
 // trace is a quantity along the flights, drawn as a curve.
@@ -21,6 +48,30 @@ func trace(sights []predict.Sight, legend string, role figure.Role, value func(*
 		c.X, c.Y = append(c.X, sights[i].Flight*1e3), append(c.Y, value(&sights[i]))
 	}
 	return c
+}
+
+// eased draws a curve of few flights through places between them, by a spline of its
+// logarithm.
+func eased(c figure.Curve) figure.Curve {
+	const parts = 12
+	y := make([]float64, len(c.Y))
+	for i, v := range c.Y {
+		y[i] = math.Log(v)
+	}
+	var through interp.AkimaSpline
+	if !finite(y) || through.Fit(c.X, y) != nil {
+		return c
+	}
+	fine := figure.Curve{Legend: c.Legend, Role: c.Role}
+	for i := range (len(c.X)-1)*parts + 1 {
+		x := c.X[0] + (c.X[len(c.X)-1]-c.X[0])*float64(i)/float64((len(c.X)-1)*parts)
+		fine.X, fine.Y = append(fine.X, x), append(fine.Y, math.Exp(through.Predict(x)))
+	}
+	return fine
+}
+
+func finite(list []float64) bool {
+	return !slices.ContainsFunc(list, func(v float64) bool { return v-v != 0 })
 }
 
 // told keeps the curves that have a value.
@@ -59,9 +110,7 @@ func (f *Forecast) depth(x figure.Axis) *figure.Figure {
 		trace(f.Smooth, "as counts show it", figure.Law1, func(s *predict.Sight) float64 { return s.Shown }),
 	)
 	g.Curves[0].Legend = "cloud"
-	g.Lines = []figure.Line{{Role: figure.Law4, At: deep, Across: true}}
 	g.Y.Min, g.Y.Max = math.Min(deep/2, least(g.Curves)/1.5), math.Max(2*deep, most(g.Curves)*1.5)
-	g.Marks = []figure.Mark{{X: x.Min + 0.02*(x.Max-x.Min), Y: deep * math.Pow(g.Y.Max/g.Y.Min, 0.015), Label: figure.Plain(fmt.Sprintf("%d, limit of trust", deep))}}
 	return g
 }
 
@@ -74,6 +123,9 @@ func (f *Forecast) errors(x figure.Axis) *figure.Figure {
 		trace(f.Sights, "*N*_{0} / *N*, absolute", figure.Law3, func(s *predict.Sight) float64 { return 100 * s.Errors.Fraction }),
 		trace(f.Sights, "*μ*", figure.Law4, func(s *predict.Sight) float64 { return 100 * s.Errors.Mu / gas.Mu }),
 	)
+	for i := range g.Curves {
+		g.Curves[i] = eased(g.Curves[i])
+	}
 	g.Y.Min = least(g.Curves) / 1.4
 	g.Y.Max = math.Max(4*g.Y.Min, math.Min(100, most(g.Curves)*1.4))
 	return g
