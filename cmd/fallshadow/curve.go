@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"io"
 	"path/filepath"
+	"strconv"
 	"strings"
 
 	"fallshadow/cmd/fallshadow/internal/figure"
@@ -47,8 +48,23 @@ func (c *nightArgs) refuse(files ...string) error {
 // figureArgs are the sizes of figures and where they go.
 type figureArgs struct {
 	Figure []figureFile `placeholder:"FILE" help:"File to draw the figure in, .png, .svg or .pdf; may be repeated."`
-	Width  float64      `default:"86" help:"Width of the figure in mm; letters keep their size."`
-	Height float64      `default:"66" help:"Height of the figure in mm."`
+	Width  millimetres  `default:"86" help:"Width of the figure in mm, 40 to 400; letters keep their size."`
+	Height millimetres  `default:"66" help:"Height of the figure in mm, 40 to 400."`
+}
+
+// millimetres is a side of a figure.
+type millimetres float64
+
+// UnmarshalText refuses sides that letters do not fit in and those that no page has, whose
+// pixels would fill the memory.
+func (m *millimetres) UnmarshalText(text []byte) error {
+	const least, most = 40, 400
+	v, err := strconv.ParseFloat(string(text), 64)
+	if err != nil || !(v >= least && v <= most) {
+		return fmt.Errorf("%q: a side of a figure is %d to %d mm", text, least, most)
+	}
+	*m = millimetres(v)
+	return nil
 }
 
 // figureFile is the name of a file whose ending is a format.
@@ -80,7 +96,7 @@ func (c *figureArgs) files(usual string) []figureFile {
 // save writes a figure.
 func (c *figureArgs) save(t terminal, f *figure.Figure, usual string) error {
 	for _, file := range c.files(usual) {
-		if err := study.Save(f, string(file), c.Width, c.Height); err != nil {
+		if err := study.Save(f, string(file), float64(c.Width), float64(c.Height)); err != nil {
 			return err
 		}
 		fmt.Fprintln(t.out, file)

@@ -24,8 +24,8 @@ type predictCmd struct {
 	Intensity float64      `placeholder:"S" help:"Probe at the cloud in I/Isat; 0.2 if left out."`
 	Picture   pictureSize  `placeholder:"WxH" help:"Picture in saved pixels, such as 640x480; the region of the settings, or 512x512, if left out."`
 	Figure    []figureFile `placeholder:"FILE" help:"File to draw the forecast in, .png, .svg or .pdf; may be repeated."`
-	Width     float64      `default:"86" help:"Width of the figure in mm."`
-	Height    float64      `default:"150" help:"Height of the figure in mm."`
+	Width     millimetres  `default:"86" help:"Width of the figure in mm, 40 to 400."`
+	Height    millimetres  `default:"150" help:"Height of the figure in mm, 40 to 400."`
 }
 
 // Help carries the caution.
@@ -101,7 +101,7 @@ func (c *predictCmd) settings() (*settings.Settings, error) {
 func (c *predictCmd) draw(t terminal, f *forecast.Forecast) error {
 	plot := f.Plot()
 	for _, file := range c.Figure {
-		err := report.Replace(string(file), func(w io.Writer) error { return plot.Render(w, file.format(), c.Width, c.Height) })
+		err := report.Replace(string(file), func(w io.Writer) error { return plot.Render(w, file.format(), float64(c.Width), float64(c.Height)) })
 		if err != nil {
 			return fmt.Errorf("write the figure %s: %w", file, err)
 		}
