@@ -40,7 +40,7 @@ var labels = map[string]string{
 	"mu_from_atoms_nK":       "*μ* / *k* from *N*_{0}  (nK)",
 	"phase_space_density":    "peak phase-space density  *nλ*^{3}",
 	"peak_density_um3":       "peak density  (1/µm^{3})",
-	"entropy_per_atom":       "entropy per atom  *S* / *Nk*",
+	"entropy_per_atom":       "entropy  *S* / *Nk*  (points: ideal gas with *N*_{th})",
 	"thermal_over_saturated": "*N*_{th} / *N*_{sat}",
 	"mu_over_mu_atoms":       "*μ* from radius / *μ* from *N*_{0}",
 	"flight_ms":              "flight  (ms)",
