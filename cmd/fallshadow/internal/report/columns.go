@@ -116,6 +116,7 @@ var Columns = slices.Concat([]Column{
 		correlation("condensate", "mu", 1, 3),
 		correlation("T", "mu", 2, 3),
 		number("iterations", "", "steps of the minimisation", func(f *Facts) float64 { return float64(f.Fit.Iterations) }),
+		fromRow("bad", "a person's word against the shot", func(r *ledger.Row) string { return r.Bad }),
 	},
 )
 

@@ -15,19 +15,26 @@ const (
 	FlagDuplicate   = "duplicate"
 	FlagProvisional = "provisional"
 	FlagStale       = "stale"
+	FlagMarkedBad   = "marked_bad"
 )
 
-// FlagGrown says that a shot was not measured in the region given.
-const FlagGrown = "region_grown"
+// The flags of the region that a person gave.
+const (
+	FlagGrown   = "region_grown"
+	FlagOutside = "cloud_outside_region"
+)
 
-var nightFlags = []fit.Flag{
+// RegionFlags are the flags of the region that a person gave.
+var RegionFlags = []fit.Flag{
 	{Name: FlagGrown, Sentence: "the cloud reached over the border of its region, and was fitted in the whole frame: give a larger region, or none"},
+	{Name: FlagOutside, Sentence: "there is no cloud in its region, but one elsewhere in the frame: move the region, or give none"},
 }
 
 var ledgerFlags = []fit.Flag{
 	{Name: FlagDuplicate, Sentence: "another shot before it in the night has the same pixels: the same file was saved or copied twice"},
 	{Name: FlagProvisional, Sentence: "fitted while the night was being taken, with the light frames of that moment: batch makes it final"},
 	{Name: FlagStale, Sentence: "fitted with other settings, frames or program than those of now: batch fits it again"},
+	{Name: FlagMarkedBad, Sentence: "a person marked the shot as bad; the word is in the column bad, and curve leaves the shot out"},
 }
 
 // Flags returns the flags of a row: those of its picture, then those that follow from the
@@ -37,7 +44,7 @@ func Flags(r *ledger.Row) []string {
 	for _, f := range []struct {
 		on   bool
 		name string
-	}{{r.Duplicate != "", FlagDuplicate}, {r.Provisional, FlagProvisional}, {r.Stale, FlagStale}} {
+	}{{r.Duplicate != "", FlagDuplicate}, {r.Provisional, FlagProvisional}, {r.Stale, FlagStale}, {r.Bad != "", FlagMarkedBad}} {
 		if f.on {
 			flags = append(flags, f.name)
 		}
@@ -54,5 +61,5 @@ func AllFlags() []fit.Flag {
 			all = append(all, fit.Flag{Name: p.Word, Sentence: p.What + ": " + p.Do})
 		}
 	}
-	return slices.Concat(all, nightFlags, ledgerFlags)
+	return slices.Concat(all, RegionFlags, ledgerFlags)
 }

@@ -92,14 +92,14 @@ func facts() *Facts {
 func TestFillAndCell(t *testing.T) {
 	r := ledger.Row{Shot: "a/1", Files: []string{"a/1.fits", "a/2.fits"}}
 	Fill(&r, facts())
-	r.Provisional, r.Duplicate, r.Stale = true, "a/0", true
+	r.Provisional, r.Duplicate, r.Stale, r.Bad = true, "a/0", true, "laser unlocked"
 	cell := map[string]string{}
 	for _, c := range Columns {
 		cell[c.Name] = c.Cell(&r)
 	}
 	for name, want := range map[string]string{
 		"shot": "a/1", "file": "a/1.fits;a/2.fits", "status": "ok", "reason": "",
-		"flags": "part_saturated+dense+misfit+duplicate+provisional+stale",
+		"flags": "part_saturated+dense+misfit+duplicate+provisional+stale+marked_bad", "bad": "laser unlocked",
 		"model": "bimodal", "form": "bose+tf", "flight_ms": "15", "atoms": "300000", "atoms_err": "3000",
 		"fraction": "0.3333333333333333", "mu_nK_cal": "", "fugacity": "", "T_nK_high": "", "width1_um": "100",
 		"width2_um": "", "x_px": "160.5", "angle_deg": "4", "reference": "own",
@@ -261,7 +261,7 @@ func TestFlagsAreOneTable(t *testing.T) {
 		}
 		seen[f.Name] = true
 	}
-	for _, name := range []string{FlagDuplicate, FlagProvisional, FlagStale} {
+	for _, name := range []string{FlagDuplicate, FlagProvisional, FlagStale, FlagMarkedBad} {
 		if !seen[name] {
 			t.Errorf("no flag %s", name)
 		}
