@@ -34,6 +34,13 @@ func (c Camera) ToSaved(x, y float64) (float64, float64) {
 	return float64(c.Region.Min.X) + b*x + half, float64(c.Region.Min.Y) + b*y + half
 }
 
+// FromSaved is the inverse of ToSaved.
+func (c Camera) FromSaved(x, y float64) (float64, float64) {
+	b := float64(c.bin())
+	half := (b - 1) / 2
+	return (x - half - float64(c.Region.Min.X)) / b, (y - half - float64(c.Region.Min.Y)) / b
+}
+
 // Saved returns the rectangle of the saved frame that a rectangle of pixels of an exposure made
 // with this camera covers.
 func (c Camera) Saved(r image.Rectangle) image.Rectangle {

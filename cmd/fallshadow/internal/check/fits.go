@@ -66,7 +66,8 @@ func (v *visit) try(ctx context.Context, i int) (*fitted, error) {
 	if e.Err != nil {
 		return nil, e.Err
 	}
-	f.light = lightAt(e.Exposure, facts.Fit, v.look.Lab.Optics.Pixel)
+	x, y := v.look.Light.Camera.FromSaved(facts.X, facts.Y)
+	f.light = lightAt(e.Exposure, x, y, facts.Fit, v.look.Lab.Optics.Pixel)
 	return f, nil
 }
 
@@ -141,10 +142,10 @@ type raised struct {
 
 // raised lists the flags of the fits that are of a kind, in the order of their table.
 func (v *visit) raised(kind func(flag string) bool) (list []raised) {
-	for _, flag := range fit.Flags {
+	for _, flag := range slices.Concat(fit.Flags, report.RegionFlags) {
 		r := raised{Flag: flag}
 		for i := range v.fitted {
-			if f := &v.fitted[i]; slices.Contains(f.facts.Fit.Flags, flag.Name) {
+			if f := &v.fitted[i]; slices.Contains(f.row.Flags, flag.Name) {
 				r.where = append(r.where, v.look.Shots[f.shot].Name)
 			}
 		}

@@ -71,15 +71,15 @@ func TestLightAt(t *testing.T) {
 		}
 	}
 	nan := math.NaN()
-	r := &fit.Result{Model: fit.ModelCondensate, X: 30, Y: 24, Angle: angle, Radius: [2]float64{a * 2e-6, b * 2e-6}, Width: [2]float64{nan, nan}}
-	if v := lightAt(e, r, 2e-6); v != 500 {
+	r := &fit.Result{Model: fit.ModelCondensate, Angle: angle, Radius: [2]float64{a * 2e-6, b * 2e-6}, Width: [2]float64{nan, nan}}
+	if v := lightAt(e, 30, 24, r, 2e-6); v != 500 {
 		t.Errorf("in the cloud's place the light is %g, want 500", v)
 	}
 	r.Model = fit.ModelNone
-	if v := lightAt(e, r, 2e-6); v != 100 {
+	if v := lightAt(e, 30, 24, r, 2e-6); v != 100 {
 		t.Errorf("in the whole picture the light is %g, want 100", v)
 	}
-	if v := lightAt(&imageio.Exposure{}, r, 2e-6); !math.IsNaN(v) {
+	if v := lightAt(&imageio.Exposure{}, 30, 24, r, 2e-6); !math.IsNaN(v) {
 		t.Errorf("a density image has the light %g", v)
 	}
 }

@@ -23,9 +23,9 @@ const (
 	middling       = 0.5
 )
 
-// lightAt returns the median of the light inside the ellipse of the cloud, or in the whole
-// picture where none was found.
-func lightAt(e *imageio.Exposure, r *fit.Result, pixel float64) float64 {
+// lightAt returns the median of the light inside the ellipse of the cloud about a place in an
+// exposure, or in the whole picture where none was found.
+func lightAt(e *imageio.Exposure, x, y float64, r *fit.Result, pixel float64) float64 {
 	if e.Light == nil {
 		return math.NaN()
 	}
@@ -42,7 +42,7 @@ func lightAt(e *imageio.Exposure, r *fit.Result, pixel float64) float64 {
 	sin, cos := math.Sincos(r.Angle)
 	var inside []float64
 	for i, v := range e.Light {
-		dx, dy := float64(i%e.Width)-r.X, float64(i/e.Width)-r.Y
+		dx, dy := float64(i%e.Width)-x, float64(i/e.Width)-y
 		u, w := (dx*cos+dy*sin)/a, (dy*cos-dx*sin)/b
 		if e.Good[i] && (r.Model == fit.ModelNone || u*u+w*w <= 1) {
 			inside = append(inside, v)

@@ -13,15 +13,20 @@ import (
 // Everything stands for the region that is the whole frame, whatever the settings say.
 var Everything = image.Rect(0, 0, 1<<30, 1<<30)
 
-// Grow returns the facts of a shot measured in a region that a person gave or, where the cloud
-// reaches over its border, what whole makes of the whole frame, with a flag; the first facts
-// stand where that fails or sees no cloud.
+// Grow looks at the whole frame where the cloud of a shot reaches over the border of a region that
+// a person gave, or there is none in it, and returns the facts to keep, with a flag. Those of the
+// region stand where whole fails or sees no more, and where the cloud lies outside.
 func Grow(f *report.Facts, whole func() (*report.Facts, error)) *report.Facts {
-	if !f.Fit.Touches {
+	empty := f.Fit.Model == fit.ModelNone
+	if !empty && !f.Fit.Touches {
 		return f
 	}
 	all, err := whole()
 	if err != nil || all.Fit.Model == fit.ModelNone {
+		return f
+	}
+	if empty && !image.Pt(int(all.X), int(all.Y)).In(f.Region) {
+		f.Notes = append(slices.Clone(f.Notes), report.FlagOutside)
 		return f
 	}
 	all.Notes = append(slices.Clone(all.Notes), report.FlagGrown)

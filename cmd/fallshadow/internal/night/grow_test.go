@@ -14,6 +14,7 @@ import (
 	"fallshadow/cmd/fallshadow/internal/settings"
 	"fallshadow/cmd/fallshadow/internal/simulate"
 	"fallshadow/fit"
+	"fallshadow/imageio"
 )
 
 // A cloud that reaches over the border of a region that somebody gave is fitted in the whole
@@ -37,6 +38,22 @@ func TestRegionGrows(t *testing.T) {
 			}
 		}
 		equal(t, "grown", grown, []string{"shot_1", "shot_3", "shot_4"})
+	}
+}
+
+// A region with nothing in it is said to miss a cloud that stands elsewhere, and grows to one that
+// stands in it.
+func TestEmptyRegion(t *testing.T) {
+	all := &report.Facts{X: 90, Y: 40, Fit: &fit.Result{Model: fit.ModelThermal}}
+	for _, c := range []struct {
+		region image.Rectangle
+		want   string
+	}{{image.Rect(0, 0, 60, 60), report.FlagOutside}, {image.Rect(50, 0, 120, 60), report.FlagGrown}} {
+		none := &report.Facts{Region: c.region, Fit: &fit.Result{Model: fit.ModelNone}}
+		got := Grow(none, func() (*report.Facts, error) { whole := *all; return &whole, nil })
+		if !slices.Equal(got.Notes, []string{c.want}) || (got.Fit.Model == fit.ModelNone) != (c.want == report.FlagOutside) {
+			t.Errorf("in %v: %v, %s", c.region, got.Notes, got.Fit.Model)
+		}
 	}
 }
 
@@ -108,6 +125,16 @@ func TestRegionIsFound(t *testing.T) {
 	cut := *made.Settings
 	cut.Region = settings.Region{X: 600, Y: 200, Width: 120, Height: 200}
 	grown := shows(&cut, 900*760/2)
+	aside := *made.Settings
+	aside.Region = settings.Region{X: 20, Y: 600, Width: 140, Height: 140}
+	look, err := TakeLook(context.Background(), Options{Dir: dir, Settings: &aside}, silent{}, func(int, *imageio.Raw) {})
+	if err != nil {
+		t.Fatal(err)
+	}
+	f, err := look.Measure(context.Background(), 1)
+	if err != nil || f.Fit.Model != fit.ModelNone || !slices.Contains(f.Notes, report.FlagOutside) {
+		t.Errorf("beside the cloud: %v, %+v", err, f)
+	}
 	for i := range grown.Rows {
 		r := &grown.Rows[i]
 		if !slices.Contains(r.Flags, report.FlagGrown) || slices.Contains(r.Flags, fit.FlagCut) {

@@ -27,6 +27,7 @@ type Look struct {
 	batch   *batch
 	bench   *bench
 	measure measure
+	whole   measure // in the whole frame, nil until a shot asks for it
 }
 
 // Seen is a shot and whether its frames can be read.
@@ -117,7 +118,21 @@ func (l *Look) Measure(ctx context.Context, shot int) (_ *report.Facts, err erro
 	if err != nil {
 		return nil, err
 	}
-	return l.measure(ctx, at, raw)
+	f, err := l.measure(ctx, at, raw)
+	if err != nil || l.Settings.Region.Auto() {
+		return f, err
+	}
+	f = Grow(f, func() (*report.Facts, error) {
+		if l.whole == nil {
+			b, err := setUp(ctx, l.batch.Settings, Everything, l.batch.again(ctx))
+			if err != nil {
+				return nil, err
+			}
+			l.whole = b.worker()
+		}
+		return l.whole(ctx, at, raw)
+	})
+	return f, context.Cause(ctx)
 }
 
 // Expose exposes one readable shot; see Exposures.

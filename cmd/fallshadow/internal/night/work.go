@@ -93,6 +93,16 @@ func (b *batch) bench(ctx context.Context, region image.Rectangle) (func() measu
 	if worker, ok := b.benches[region]; ok {
 		return worker, nil
 	}
+	worker, err := b.prepare(ctx, b.Settings, region, b.again(ctx))
+	if err != nil {
+		return nil, err
+	}
+	b.benches[region] = worker
+	return worker, nil
+}
+
+// again are the frames of a night that was read once.
+func (b *batch) again(ctx context.Context) *frames {
 	f := &frames{n: len(b.readable), load: b.load}
 	f.all = func(yield func(*imageio.Raw) bool) {
 		if !b.yieldDarks(ctx, yield) {
@@ -107,12 +117,7 @@ func (b *batch) bench(ctx context.Context, region image.Rectangle) (func() measu
 			}
 		}
 	}
-	worker, err := b.prepare(ctx, b.Settings, region, f)
-	if err != nil {
-		return nil, err
-	}
-	b.benches[region] = worker
-	return worker, nil
+	return f
 }
 
 // regionOf is the region that a person drew for shot i, empty for that of the settings.
