@@ -169,9 +169,7 @@ func (c *curveCmd) Run(ctx context.Context, t terminal) error {
 		}
 	}
 	fmt.Fprintln(t.out)
-	for _, l := range d.LeftOut {
-		fmt.Fprintf(t.out, "not drawn: %s: %s\n", report.Printable(l.Shot), report.Printable(l.Why))
-	}
+	study.WriteLeftOut(t.out, "not drawn", d.LeftOut)
 	if d.Note != "" {
 		fmt.Fprintln(t.out, d.Note)
 	}

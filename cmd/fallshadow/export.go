@@ -7,6 +7,7 @@ import (
 
 	"fallshadow/cmd/fallshadow/internal/ledger"
 	"fallshadow/cmd/fallshadow/internal/report"
+	"fallshadow/cmd/fallshadow/internal/study"
 )
 
 // exportCmd writes the table of a fitted night for other programs.
@@ -41,9 +42,7 @@ func (c *exportCmd) Run(ctx context.Context, t terminal) error {
 		for i, r := range chosen.Rows {
 			rows[i] = *r
 		}
-		for _, l := range chosen.LeftOut {
-			fmt.Fprintf(t.err, "left out: %s: %s\n", report.Printable(l.Shot), report.Printable(l.Why))
-		}
+		study.WriteLeftOut(t.err, "left out", chosen.LeftOut)
 	}
 	if c.Files == nil {
 		return report.Exports[0].Write(t.out, rows, scan)

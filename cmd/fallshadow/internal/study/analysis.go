@@ -56,7 +56,7 @@ func firstReason(c *Chosen) string {
 	if len(c.LeftOut) == 0 {
 		return ": run batch first"
 	}
-	return fmt.Sprintf(", such as %s: %s", c.LeftOut[0].Shot, c.LeftOut[0].Why)
+	return ": " + mostLeft(c.LeftOut)
 }
 
 // Best returns the law with the least χ², the ideal one where none was compared.

@@ -16,11 +16,14 @@ import (
 func (n *Night) WriteNumber(ctx context.Context, w io.Writer, c *Chosen) error {
 	f, err := n.curveNight(c.Rows).FindFactor(ctx)
 	if err != nil {
+		if len(c.LeftOut) > 0 {
+			err = fmt.Errorf("%w; %s", err, mostLeft(c.LeftOut))
+		}
 		return fmt.Errorf("calibrate the number of atoms from %s: %w", n.Name, err)
 	}
 	best := f.List[0]
 	fmt.Fprintf(w, "%s: %s with both parts and a large condensate, of %d\n", n.Name, count(best.Points, "shot"), len(n.Rows))
-	c.writeLeftOut(w)
+	WriteLeftOut(w, "left out", c.LeftOut)
 	fmt.Fprintf(w, "\nas measured: mu from the radii over mu from N0 %s; thermal atoms over what T lets them be, %s: %s\n\n",
 		format(f.Mu), thermalLaw(best.Law), format(f.Saturated))
 	t := tabwriter.NewWriter(w, 0, 0, 2, ' ', 0)
@@ -45,11 +48,30 @@ func thermalLaw(law string) string {
 	return "saturated"
 }
 
+// mends is the chi2 over degrees of freedom up to which a factor mends a night: shots scatter
+// somewhat beyond their errors.
+const mends = 3
+
+// writeUnmended says that a common factor is not what is wrong.
+func (n *Night) writeUnmended(w io.Writer, best *curve.Factor) {
+	what := "none"
+	if best.Setting != "" {
+		what = best.Setting + " times " + format(best.Factor)
+	}
+	fmt.Fprintf(w, "no single factor mends the night: with the best, %s, chi2 is still %.3g a degree of freedom, where about 1 is expected; look at the ratios that check prints and at the flags\n", what, best.PerDof())
+	if n.Settings.Fit.Thermal == "bose" {
+		fmt.Fprintln(w, "the gas repels and its thermal part was fitted as an ideal gas (fit.thermal = \"bose\"): if thermal atoms felt the condensate, T is low and their number above saturation; put thermal = \"semi-ideal\" into [fit], run batch, and calibrate once more")
+	}
+}
+
 // writeNamed says which setting it is, if it can be told, and what to write.
 func (n *Night) writeNamed(w io.Writer, f curve.Factors) error {
 	best := f.List[0]
 	fmt.Fprintln(w)
 	switch {
+	case best.PerDof() > mends:
+		n.writeUnmended(w, &best)
+		return nil
 	case !f.Wrong():
 		fmt.Fprintln(w, "no common factor is needed: mu from the radii and from N0 and the thermal numbers agree")
 		return nil

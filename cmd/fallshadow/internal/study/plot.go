@@ -80,11 +80,11 @@ func (p *plotting) keep() {
 	for i, r := range p.Chosen.Rows {
 		switch {
 		case math.IsNaN(p.xs.v[i]):
-			p.drawn.LeftOut = append(p.drawn.LeftOut, LeftOut{r.Shot, "no " + p.x.Name + " to draw it at"})
+			p.drawn.LeftOut = append(p.drawn.LeftOut, LeftOut{Shot: r.Shot, Why: "no " + p.x.Name + " to draw it at"})
 		case math.IsNaN(p.ys.v[i]):
-			p.drawn.LeftOut = append(p.drawn.LeftOut, LeftOut{r.Shot, "no " + p.y.Name + " to draw it at"})
+			p.drawn.LeftOut = append(p.drawn.LeftOut, LeftOut{Shot: r.Shot, Why: "no " + p.y.Name + " to draw it at"})
 		case p.log() && !(p.xs.v[i] > 0 && p.ys.v[i] > 0):
-			p.drawn.LeftOut = append(p.drawn.LeftOut, LeftOut{r.Shot, "not above 0 on an axis of logarithms"})
+			p.drawn.LeftOut = append(p.drawn.LeftOut, LeftOut{Shot: r.Shot, Why: "not above 0 on an axis of logarithms"})
 		default:
 			p.places = append(p.places, i)
 		}

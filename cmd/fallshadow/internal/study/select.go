@@ -82,12 +82,6 @@ type Chosen struct {
 	why map[string]string // of LeftOut, by shot
 }
 
-// LeftOut is a shot that takes no part, and why.
-type LeftOut struct {
-	Shot string `json:"shot"`
-	Why  string `json:"why"`
-}
-
 // Select applies a selection. Failed shots, shots that a person has given a word against,
 // duplicates and stale ones never take part. It fails on a name that is no quantity or flag.
 func (n *Night) Select(s Selection) (*Chosen, error) {
@@ -107,17 +101,18 @@ func (n *Night) Select(s Selection) (*Chosen, error) {
 	c := &Chosen{why: map[string]string{}}
 	for i := range n.Rows {
 		r := &n.Rows[i]
-		why := verdict(r)
+		why, kind := verdict(r), kindOf(r)
 		if why == "" {
 			why = flagged(r, s.Without)
 		}
 		for k, q := range wanted {
 			if v := q.value(n, r, i+1); why == "" && !(v >= s.Where[k].Low && v <= s.Where[k].High) {
 				why = fmt.Sprintf("%s is %s: asked for %s", q.Name, orNothing(v), s.Where[k])
+				kind = fmt.Sprintf("outside of %s", s.Where[k])
 			}
 		}
 		if why != "" {
-			c.LeftOut, c.why[r.Shot] = append(c.LeftOut, LeftOut{r.Shot, why}), why
+			c.LeftOut, c.why[r.Shot] = append(c.LeftOut, LeftOut{r.Shot, why, kind}), why
 			continue
 		}
 		c.Rows, c.Numbers = append(c.Rows, r), append(c.Numbers, i+1)
@@ -140,6 +135,19 @@ func verdict(r *ledger.Row) string {
 		return "no cloud in the picture"
 	case lacksCorrelations(r):
 		return "fitted by a program that kept no correlations: run batch --again"
+	}
+	return ""
+}
+
+// kindOf is what verdicts on several shots have in common where their words differ.
+func kindOf(r *ledger.Row) string {
+	switch {
+	case r.Reason != "":
+		return "failed, each with its reason in the table"
+	case r.Bad != "":
+		return "a person's word, each with its own"
+	case r.Duplicate != "" && !r.Stale:
+		return "the same pixels as another shot"
 	}
 	return ""
 }

@@ -481,9 +481,50 @@ func TestWriteNumber(t *testing.T) {
 			}
 		}
 	}
-	n := made(t, 2)
-	if err := n.WriteNumber(context.Background(), io.Discard, chosen(t, n, Selection{})); !errors.Is(err, curve.ErrNoFactor) {
-		t.Errorf("two shots give %v", err)
+	n := made(t, 12)
+	for i := range n.Rows {
+		n.Rows[i].Stale = true
+	}
+	err := n.WriteNumber(context.Background(), io.Discard, chosen(t, n, Selection{}))
+	if !errors.Is(err, curve.ErrNoFactor) || !strings.Contains(err.Error(), "12 of 12 left out") || !strings.Contains(err.Error(), "run batch") {
+		t.Errorf("stale shots give %v", err)
+	}
+}
+
+// TestUnmended: ratios that no factor makes agree are called so, and an interacting gas that
+// was fitted as an ideal one is told what else it may be.
+func TestUnmended(t *testing.T) {
+	n := made(t, 120)
+	for i := range n.Rows {
+		if i%2 == 0 {
+			n.Rows[i].Numbers["thermal"] *= 1.5
+		}
+	}
+	for thermal, hint := range map[string]bool{"bose": true, "semi-ideal": false} {
+		n.Settings.Fit.Thermal = thermal
+		var b bytes.Buffer
+		if err := n.WriteNumber(context.Background(), &b, chosen(t, n, Selection{})); err != nil {
+			t.Fatal(err)
+		}
+		if text := b.String(); !strings.Contains(text, "no single factor mends the night") || strings.Contains(text, "fits better") ||
+			strings.Contains(text, "either factor") || strings.Contains(text, `thermal = "semi-ideal" into [fit]`) != hint {
+			t.Errorf("%s:\n%s", thermal, text)
+		}
+	}
+}
+
+// TestWriteLeftOut: one line a reason, however many shots it leaves out.
+func TestWriteLeftOut(t *testing.T) {
+	n := made(t, 12)
+	n.Rows[0].Reason = "no frames"
+	n.Rows[11].Bad = "bad focus"
+	var b bytes.Buffer
+	WriteLeftOut(&b, "left out", chosen(t, n, Selection{Where: []Range{{"number", 10, 20}}}).LeftOut)
+	want := "left out: made_00001: failed: no frames\n" +
+		"left out (8): made_00002, made_00003, made_00004 and 5 more: outside of number=10:20\n" +
+		"left out: made_00012: a person's word: bad focus\n"
+	if b.String() != want {
+		t.Errorf("got\n%s\nwant\n%s", &b, want)
 	}
 }
 

@@ -43,14 +43,7 @@ func (a *Analysis) writeShots(w io.Writer) {
 	}
 	fmt.Fprintf(w, "%s: %s of %d take part, %d of them with thermal part and condensate\n",
 		a.Night.Name, count(len(a.Chosen.Rows), "shot"), len(a.Night.Rows), both)
-	a.Chosen.writeLeftOut(w)
-}
-
-// writeLeftOut lists every shot that takes no part.
-func (c *Chosen) writeLeftOut(w io.Writer) {
-	for _, l := range c.LeftOut {
-		fmt.Fprintf(w, "left out: %s: %s\n", report.Printable(l.Shot), report.Printable(l.Why))
-	}
+	WriteLeftOut(w, "left out", a.Chosen.LeftOut)
 }
 
 func (a *Analysis) writeLaws(w io.Writer) {
