@@ -21,14 +21,17 @@ type near struct {
 	r      [2]float64 // signed distance, whitened: χ² is the sum of its squares
 	lower  [3]float64 // Cholesky factor of J C Jᵀ: l11, l21, l22
 	flat   bool       // the first value does not change along T there
+	// settled says that the search came to rest.
+	settled bool
 }
 
 // nearest returns the nearest point, found from a start. Where a law ends below the measured
-// T, or nearly so, the cloud may truly have been colder, which no slope there tells: then it
-// is looked for from where the law holds the measured fraction too.
+// T, or nearly so, the cloud may truly have been colder, which no slope there tells: the search
+// ends above the law or not at all, and is made from where the law holds the measured
+// fraction too.
 func (r *relation) nearest(p *Point, g *scales, theta []float64, start *Vector) near {
 	best := r.descend(p, g, theta, start)
-	if r.ends && best.r[0] > 0 && (best.flat || best.r[0] > 2) {
+	if r.ends && best.r[0] > 0 && (best.flat || !best.settled) {
 		from := r.colder(p, g, theta)
 		if n := r.descend(p, g, theta, &from); n.chi2() < best.chi2() {
 			best = n
@@ -71,7 +74,7 @@ func (r *relation) descend(p *Point, g *scales, theta []float64, start *Vector) 
 		}
 		sloped, before = j[0][T] != 0, at
 		n.flat = !sloped
-		if !r.step(p, &v, &j, &n, &at) {
+		if n.settled = !r.step(p, &v, &j, &n, &at); n.settled {
 			break
 		}
 	}
@@ -107,7 +110,7 @@ func (r *relation) step(p *Point, v *[2]float64, j *[2]Vector, n *near, at *Vect
 		at[a] = next
 	}
 	n.latent = *at
-	return moved > settled
+	return moved > restful
 }
 
 func between(a, b *Vector) (v Vector) {
@@ -120,9 +123,9 @@ func between(a, b *Vector) (v Vector) {
 // chi2 is the square of the distance.
 func (n *near) chi2() float64 { return n.r[0]*n.r[0] + n.r[1]*n.r[1] }
 
-// settled is the square of the last step, a thousandth of an error: it is of the second
+// restful is the square of the last step, a thousandth of an error: it is of the second
 // order in the steps before.
-const settled = 1e-6
+const restful = 1e-6
 
 // linear returns h + J (v − at) and J at the given numbers, by central differences over a
 // fiftieth of an error.
