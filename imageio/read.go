@@ -15,6 +15,16 @@ import (
 // fault.Truncated, fault.Broken or fault.Unsupported where the file is at fault. No more
 // than fault.MaxPixels pixels are held.
 func Read(ctx context.Context, dir string, shot Shot, layout Layout) (*Raw, error) {
+	raw, err := ReadAgain(ctx, dir, shot, layout)
+	if err == nil {
+		raw.Digest = Digest(raw.Frames[:]...)
+	}
+	return raw, err
+}
+
+// ReadAgain is Read for a shot whose digest is known: it leaves Digest zero, which is a good part
+// of the time. Whether the frames are the same still is seen by Raw.Sum.
+func ReadAgain(ctx context.Context, dir string, shot Shot, layout Layout) (*Raw, error) {
 	p, err := layout.plan()
 	if err != nil {
 		return nil, err
@@ -36,7 +46,6 @@ func Read(ctx context.Context, dir string, shot Shot, layout Layout) (*Raw, erro
 	if err := raw.complete(shot.Name, p.roles()); err != nil {
 		return nil, err
 	}
-	raw.Digest = Digest(raw.Frames[:]...)
 	return raw, nil
 }
 

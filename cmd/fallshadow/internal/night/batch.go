@@ -230,16 +230,6 @@ func (b *batch) yieldDarks(ctx context.Context, yield func(*imageio.Raw) bool) b
 	return true
 }
 
-// load reads a readable shot again.
-func (b *batch) load(ctx context.Context, at int) (*imageio.Raw, error) {
-	s := b.shots[b.readable[at]]
-	raw, err := b.read(ctx, s.Shot)
-	if err == nil && raw.Digest != s.content {
-		err = fmt.Errorf("%s was changed while this ran: run batch again", s.Name)
-	}
-	return raw, err
-}
-
 // region returns the region that a person drew and that is in force for a shot.
 func (b *batch) region(shot string) *ledger.Region {
 	if g, ok := ledger.RegionFor(b.regions, shot); ok {

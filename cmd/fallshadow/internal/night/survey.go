@@ -16,6 +16,7 @@ import (
 type shot struct {
 	imageio.Shot
 	content ledger.Digest // zero: not even the bytes could be read
+	sum     uint64        // of the frames, to see whether they are the same when read again
 	frames  ledger.Digest // content and metadata
 	light   ledger.Digest
 	dark    ledger.Digest
@@ -24,10 +25,24 @@ type shot struct {
 	err     error // why the frames cannot be used
 }
 
-// read reads the frames of a shot.
+// read reads the frames of a shot for the first time.
 func (b *batch) read(ctx context.Context, s imageio.Shot) (raw *imageio.Raw, err error) {
 	defer caught(&err)
 	return imageio.Read(ctx, b.root, s, b.layout)
+}
+
+// load reads a readable shot again.
+func (b *batch) load(ctx context.Context, at int) (raw *imageio.Raw, err error) {
+	defer caught(&err)
+	s := &b.shots[b.readable[at]]
+	raw, err = imageio.ReadAgain(ctx, b.root, s.Shot, b.layout)
+	if err != nil {
+		return nil, err
+	}
+	if raw.Digest = s.content; raw.Sum() != s.sum {
+		return nil, fmt.Errorf("%s was changed while this ran: run batch again", s.Name)
+	}
+	return raw, nil
 }
 
 // look reads a shot and notes what there is to know of it; the frames are nil where they
@@ -38,7 +53,7 @@ func (b *batch) look(ctx context.Context, s imageio.Shot) (shot, *imageio.Raw) {
 		content := bytesDigest(b.root, s)
 		return shot{Shot: s, content: content, frames: framesDigest(content, s.Meta), meta: s.Meta, err: err}, nil
 	}
-	seen := shot{Shot: s, content: raw.Digest, frames: framesDigest(raw.Digest, raw.Meta), meta: raw.Meta}
+	seen := shot{Shot: s, content: raw.Digest, sum: raw.Sum(), frames: framesDigest(raw.Digest, raw.Meta), meta: raw.Meta}
 	seen.light = imageio.Digest(raw.Frames[imageio.Light])
 	seen.dark = imageio.Digest(raw.Frames[imageio.Dark], raw.Frames[imageio.DarkOfLight])
 	for _, f := range raw.Frames {
