@@ -74,6 +74,10 @@ func (c *predictCmd) Run(ctx context.Context, t terminal) error {
 		Atoms: c.Atoms, T: c.TNK * 1e-9, Reduced: c.Reduced, From: c.Flight.from * 1e-3, To: c.Flight.to * 1e-3,
 		Intensity: c.Intensity, Width: c.Picture.width, Height: c.Picture.height,
 	})
+	var wrong *forecast.RequestError
+	if errors.As(err, &wrong) {
+		return misuse{err}
+	}
 	if err != nil {
 		return err
 	}

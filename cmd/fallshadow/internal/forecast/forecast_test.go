@@ -3,6 +3,7 @@ package forecast
 import (
 	"bytes"
 	"context"
+	"errors"
 	"io"
 	"math"
 	"strings"
@@ -144,6 +145,32 @@ func TestSparse(t *testing.T) {
 		t.Errorf("text:\n%s", got)
 	}
 	if err := f.Plot().Render(io.Discard, "pdf", 86, 150); err != nil {
+		t.Error(err)
+	}
+}
+
+// TestUntold: flights whose picture tells nothing have no errors, and the others theirs.
+func TestUntold(t *testing.T) {
+	f, err := New(context.Background(), lab(t), usual)
+	if err != nil {
+		t.Fatal(err)
+	}
+	errs := make([]error, len(f.Sights))
+	errs[2], errs[len(errs)-1] = errors.New("singular"), errors.New("singular")
+	if err := f.settle(errs); err != nil {
+		t.Fatal(err)
+	}
+	if !math.IsNaN(f.Sights[2].Errors.T) || !(f.Sights[1].Errors.T > 0) {
+		t.Errorf("errors of T %g, %g", f.Sights[1].Errors.T, f.Sights[2].Errors.T)
+	}
+	if got := text(t, f); !strings.Contains(got, "after 2 of these flights") || strings.Contains(got, "NaN") {
+		t.Errorf("text:\n%s", got)
+	}
+	stack := f.Plot()
+	if g := stack[2]; len(g.Curves) != 4 || !(g.Y.Max > g.Y.Min) {
+		t.Errorf("%d curves of errors from %g to %g", len(g.Curves), g.Y.Min, g.Y.Max)
+	}
+	if err := stack.Render(io.Discard, "svg", 86, 150); err != nil {
 		t.Error(err)
 	}
 }

@@ -27,6 +27,32 @@ type Request struct {
 	Width, Height int // of the picture in saved pixels, 0 for that of the settings
 }
 
+// RequestError says what is wrong with a request.
+type RequestError struct{ text string }
+
+func (e *RequestError) Error() string { return e.text }
+
+// check refuses what is no cold gas, and no probe.
+func (r *Request) check() error {
+	const mostAtoms, mostT, mostReduced, mostIntensity = 1e12, 1e-3, 100, 1e3
+	fail := func(format string, a ...any) error { return &RequestError{fmt.Sprintf(format, a...)} }
+	switch {
+	case !(r.Atoms >= 1 && r.Atoms <= mostAtoms):
+		return fail("%g atoms: a plan is of 1 to %g", r.Atoms, mostAtoms)
+	case r.T == 0 && r.Reduced == 0:
+		return fail("a plan needs a temperature above 0: a picture without thermal atoms tells no T, and every real gas has some; take a low one, such as T/Tc0 = 0.2")
+	case r.Reduced == 0 && !(r.T > 0 && r.T <= mostT):
+		return fail("a temperature of %g nK: a plan is of a gas above 0 and up to %g nK", r.T*nK, mostT*nK)
+	case r.T == 0 && !(r.Reduced > 0 && r.Reduced <= mostReduced):
+		return fail("T/Tc0 = %g: a plan is of a gas above 0 and up to %d", r.Reduced, mostReduced)
+	case !(r.Intensity >= 0 && r.Intensity <= mostIntensity):
+		return fail("a probe of %g Isat: a plan is of above 0 and up to %g", r.Intensity, float64(mostIntensity))
+	case !(r.From >= 0 && r.To > r.From):
+		return fail("the flights need a shortest one below the longest")
+	}
+	return nil
+}
+
 // What is taken where neither settings nor request say it (common practice).
 const (
 	usualIntensity = 0.2
@@ -47,6 +73,7 @@ type Forecast struct {
 	Assumed  []string        // what nobody stated
 	Exposure float64         // s, NaN where the settings lack it
 	request  Request
+	untold   int // sights whose picture does not tell the numbers
 }
 
 // New makes the forecast. It fails where the settings or the request do not make a plan.
@@ -58,8 +85,8 @@ func New(ctx context.Context, s *settings.Settings, r Request) (*Forecast, error
 	if s.Shots.Layout == "density" {
 		return nil, errors.New("predict needs a camera that counts: the settings are of ready density images")
 	}
-	if !(r.From >= 0 && r.To > r.From) {
-		return nil, errors.New("the flights need a shortest one below the longest")
+	if err := r.check(); err != nil {
+		return nil, err
 	}
 	if err := f.plan(s); err != nil {
 		return nil, err
@@ -162,5 +189,35 @@ func (f *Forecast) look(ctx context.Context) error {
 	if ctx.Err() != nil {
 		return context.Cause(ctx)
 	}
-	return errors.Join(errs...)
+	return f.settle(errs)
 }
+
+// settle leaves the errors of flights empty whose picture does not tell them, and fails
+// where that is so after all flights.
+func (f *Forecast) settle(errs []error) error {
+	for i, err := range errs {
+		if err != nil {
+			nan := math.NaN()
+			f.Sights[i].Errors = bound.Errors{T: nan, Thermal: nan, Condensate: nan, Atoms: nan, Fraction: nan, Mu: nan}
+			f.untold++
+		}
+	}
+	if f.untold < len(errs) {
+		return nil
+	}
+	return &untoldError{f.Sights[0], f.Sights[len(f.Sights)-1], f.Plan.Experiment.Optics.Pixel, errors.Join(errs...)}
+}
+
+// untoldError says that no picture of a plan tells its numbers.
+type untoldError struct {
+	first, last predict.Sight
+	pixel       float64
+	cause       error
+}
+
+func (e *untoldError) Error() string {
+	return fmt.Sprintf("no picture of these flights tells the numbers of such a cloud: from %.4g to %.4g ms its peak optical density goes from %.2g to %.2g and its half size along axis 1 from %.2g to %.2g pixels; check the number of atoms and the temperature, or take other flights or another picture",
+		e.first.Flight*1e3, e.last.Flight*1e3, e.first.Depth, e.last.Depth, e.first.Reach[0]/e.pixel, e.last.Reach[0]/e.pixel)
+}
+
+func (e *untoldError) Unwrap() error { return e.cause }

@@ -77,7 +77,7 @@ func finite(list []float64) bool {
 // told keeps the curves that have a value.
 func told(curves ...figure.Curve) (list []figure.Curve) {
 	for _, c := range curves {
-		if !math.IsNaN(c.Y[len(c.Y)-1]) {
+		if slices.ContainsFunc(c.Y, func(y float64) bool { return !math.IsNaN(y) }) {
 			list = append(list, c)
 		}
 	}
@@ -135,7 +135,9 @@ func most(curves []figure.Curve) float64 {
 	v := 0.0
 	for _, c := range curves {
 		for _, y := range c.Y {
-			v = math.Max(v, y)
+			if y > v {
+				v = y
+			}
 		}
 	}
 	return v

@@ -43,7 +43,7 @@ func (f *Forecast) writeGas(w io.Writer) {
 	}
 	line("condensate", "%.4g atoms, fraction %.4f (%s; 1 - t^3 is %.4f)", g.Condensate, g.Fraction(), g.Law, g.IdealFraction)
 	if !math.IsNaN(g.Mu) {
-		line("chemical potential", "%.4g nK k; N0 a/a_ho = %.3g", g.Mu/model.KB*nK, g.ThomasFermiParameter)
+		line("chemical potential", "%.4g nK (mu/k); N0 a/a_ho = %.3g", g.Mu/model.KB*nK, g.ThomasFermiParameter)
 	}
 	if !math.IsNaN(g.Collapse) {
 		line("collapse", "N0 is %.2f of the number at which this condensate collapses", g.Collapse)
@@ -66,10 +66,18 @@ func (f *Forecast) writeFlights(w io.Writer) {
 		fmt.Fprintf(t, "%.4g\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t%s\t\n", s.Flight*1e3,
 			cell("%.1f", s.Width[0]*um), cell("%.1f", s.Width[1]*um), cell("%.1f", s.Radius[0]*um), cell("%.1f", s.Radius[1]*um),
 			cell("%.1f", s.Width[0]/px), cell("%.1f", s.Radius[0]/px), cell("%.2f", s.Depth),
-			cell("%.2g", 100*e.Atoms/f.Plan.Atoms), cell("%.2g", 100*e.Condensate/g.Condensate),
-			cell("%.2g", 100*e.T/f.Plan.T), cell("%.2g", 100*e.Mu/g.Mu), cell("%.2g", e.Fraction))
+			percent(e.Atoms/f.Plan.Atoms), percent(e.Condensate/g.Condensate), percent(e.T/f.Plan.T), percent(e.Mu/g.Mu),
+			cell("%.2g", e.Fraction))
 	}
 	t.Flush()
+}
+
+// percent writes a relative error; how much above ten times the value it is tells nothing.
+func percent(v float64) string {
+	if v > 10 && !math.IsInf(v, 1) {
+		return ">1000"
+	}
+	return cell("%.2g", 100*v)
 }
 
 func cell(format string, v float64) string {
@@ -138,6 +146,7 @@ func (f *Forecast) warnings() (list []string) {
 	if best := f.best(); best != nil {
 		say(true, "of these flights with a peak below %d and the wings inside, %.3g ms tells T of one shot best, to %.2g %%", deep, best.Flight*1e3, 100*best.Errors.T/p.T)
 	}
+	say(f.untold > 0, "after %d of these flights the picture does not tell the numbers of such a cloud (-)", f.untold)
 	say(g.Condensate > 0 && last.Radius[1] < 3*p.Experiment.Optics.Blur, "the resolution is above a third of the condensate's radius even after the longest flight: it decides the result")
 	say(g.Condensate > 0 && g.ThomasFermiParameter > 0 && g.ThomasFermiParameter < 30, "N0 a/a_ho of %.2g is small: the Thomas-Fermi form is off by several per cent in mu", g.ThomasFermiParameter)
 	say(g.Collapse > 1, "so large a condensate collapses: its atoms will not be there")
@@ -151,13 +160,13 @@ func (f *Forecast) warnings() (list []string) {
 	return list
 }
 
-// best returns the sight with the least error of T among those that can be trusted, nil
-// without any.
+// best returns the sight with the least error of T, below T itself, among those that can be
+// trusted, nil without any.
 func (f *Forecast) best() *predict.Sight {
 	var best *predict.Sight
 	for i := range f.Sights {
 		s := &f.Sights[i]
-		if s.Errors.T > 0 && s.Depth < deep && f.Plan.Inside(s) && (best == nil || s.Errors.T < best.Errors.T) {
+		if s.Errors.T > 0 && s.Errors.T < f.Plan.T && s.Depth < deep && f.Plan.Inside(s) && (best == nil || s.Errors.T < best.Errors.T) {
 			best = s
 		}
 	}

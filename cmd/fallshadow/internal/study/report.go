@@ -147,7 +147,7 @@ func (a *Analysis) fillNumbers(p *page) {
 		p.Checks = append(p.Checks, fmt.Sprintf("mu from the radii goes as N0 to the power %s (2/5 in Thomas-Fermi)", format(m.Slope)),
 			fmt.Sprintf("mu from the radii over mu from N0: %s", format(m.Ratio)))
 		if r := m.Release; r != nil {
-			p.Checks = append(p.Checks, fmt.Sprintf("release energy %.4g nK k from %d flights, over (2/7) mu(N0): %s", r.Energy.V/model.KB*1e9, r.Flights, format(r.Ratio)))
+			p.Checks = append(p.Checks, fmt.Sprintf("release energy %.4g nK (E/k) from %d flights, over (2/7) mu(N0): %s", r.Energy.V/model.KB*1e9, r.Flights, format(r.Ratio)))
 		}
 	}
 	if t := a.Attractive; t != nil {

@@ -133,7 +133,7 @@ func (a *Analysis) writeMeanField(w io.Writer) {
 	fmt.Fprintf(w, "\nmean field, %s with N0 a/a_ho above 30:\n", count(m.Points, "condensate"))
 	fmt.Fprintf(w, "  mu from the radii goes as N0^%s, Thomas-Fermi 2/5 (chi2/dof %.2g); mu from the radii over mu from N0: %s\n", format(m.Slope), m.PerDof(), format(m.Ratio))
 	if r := m.Release; r != nil {
-		fmt.Fprintf(w, "  release energy from %d flights: %.4g nK k for %.3g atoms, over (2/7) mu(N0): %s\n",
+		fmt.Fprintf(w, "  release energy from %d flights: %.4g nK (E/k) for %.3g atoms, over (2/7) mu(N0): %s\n",
 			r.Flights, r.Energy.V/model.KB*1e9, r.Atoms, format(r.Ratio))
 	}
 }
