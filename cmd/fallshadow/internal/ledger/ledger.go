@@ -210,6 +210,10 @@ func wrap(what string, err error) error {
 	return fmt.Errorf("%s in the ledger: %w", what, err)
 }
 
+// unreadable says what to do about a ledger that cannot be opened for writing.
 func unreadable(file string, err error) error {
+	if isFull(err) {
+		return fmt.Errorf("open %s: %w (free space on the disk, and run again)", file, err)
+	}
 	return fmt.Errorf("open %s: %w (move the file away to start a new ledger)", file, err)
 }

@@ -367,3 +367,23 @@ func TestReaderWithoutLedger(t *testing.T) {
 		t.Errorf("the reader left %v", list)
 	}
 }
+
+// TestFullDisk: a ledger without room is not to be moved away, a broken one is.
+func TestFullDisk(t *testing.T) {
+	db, err := open(filepath.Join(t.TempDir(), Name), "")
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer db.Close()
+	db.SetMaxOpenConns(1)
+	if _, err := db.Exec("PRAGMA max_page_count = 2"); err != nil {
+		t.Fatal(err)
+	}
+	err = migrate(context.Background(), db)
+	if got := unreadable(Name, err).Error(); !strings.Contains(got, "free space") || strings.Contains(got, "move the file") {
+		t.Errorf("a full disk: %s", got)
+	}
+	if got := unreadable(Name, errors.New("file is not a database")).Error(); !strings.Contains(got, "move the file away") {
+		t.Errorf("a broken file: %s", got)
+	}
+}

@@ -3,12 +3,13 @@ package ledger
 import (
 	"context"
 	"database/sql"
+	"errors"
 	"fmt"
 	"net/url"
 	"path/filepath"
 	"strings"
 
-	_ "modernc.org/sqlite" // the driver, seen by this package alone
+	"modernc.org/sqlite" // the driver, seen by this package alone
 )
 
 // application marks the file as one of ours in SQLite's header ("FSHL").
@@ -136,4 +137,11 @@ func versionOf(ctx context.Context, db *sql.DB) (int, error) {
 		return 0, fmt.Errorf("the file was written by a newer fallshadow (schema %d, this one knows %d)", was, version)
 	}
 	return was, nil
+}
+
+// isFull reports whether the disk has no room for what SQLite wanted to write.
+func isFull(err error) bool {
+	const full, primary = 13, 0xff // SQLITE_FULL, and the part of a code that all its kinds share
+	var e *sqlite.Error
+	return errors.As(err, &e) && e.Code()&primary == full
 }
