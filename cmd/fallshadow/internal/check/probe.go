@@ -13,14 +13,11 @@ import (
 
 // The limits of the cautions. At a Doppler shift of a tenth of the linewidth the
 // cross-section has fallen by 4 % at the end of the pulse; a recoil blur of a third of the
-// resolution widens the spot by 5 %. Optics and sensors together give a plausible
-// efficiency (common practice).
+// resolution widens the spot by 5 %. middling is an efficiency in the plausible range.
 const (
-	mostShift      = 0.1
-	mostBlur       = 1.0 / 3
-	leastPlausible = 0.05
-	mostPlausible  = 0.95
-	middling       = 0.5
+	mostShift = 0.1
+	mostBlur  = 1.0 / 3
+	middling  = 0.5
 )
 
 // lightAt returns the median of the light inside the ellipse of the cloud about a place in an
@@ -135,10 +132,10 @@ func (v *visit) writeEfficiency() {
 		return
 	}
 	e := s.Efficiency()
-	v.page.pair("efficiency", "%.3g electrons a photon, by counts_per_isat; %g to %g is plausible", e, leastPlausible, mostPlausible)
-	if e < leastPlausible || e > mostPlausible {
+	v.page.pair("efficiency", "%.3g electrons a photon, by counts_per_isat; %g to %g is plausible", e, settings.LeastEfficiency, settings.MostEfficiency)
+	if e < settings.LeastEfficiency || e > settings.MostEfficiency {
 		v.trouble.problem("", "counts_per_isat = %g means %.3g electrons for a photon that passes the atoms, where %g to %g is plausible: check it, electrons_per_count, exposure_us and the pixel (at %g it would be %s)",
-			given.Value, e, leastPlausible, mostPlausible, middling, digits(middling/perCount, 4))
+			given.Value, e, settings.LeastEfficiency, settings.MostEfficiency, middling, digits(middling/perCount, 4))
 	}
 }
 

@@ -14,7 +14,7 @@ func (v *visit) writeSettings() {
 func (v *visit) judgeSettings() {
 	for _, w := range v.look.Settings.Warnings() {
 		if strings.HasPrefix(w, "counts_per_isat means") {
-			continue // writeEfficiency is stricter
+			continue // writeEfficiency tells more
 		}
 		v.trouble.caution("", "%s", w)
 	}

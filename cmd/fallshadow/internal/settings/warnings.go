@@ -5,6 +5,12 @@ import (
 	"math"
 )
 
+// The electrons a photon that optics and sensors together make plausible (common practice).
+const (
+	LeastEfficiency = 0.05
+	MostEfficiency  = 0.95
+)
+
 // Warnings returns a sentence for every setting that is possible but looks like one of
 // the usual slips, in the order of the table of keys.
 func (s *Settings) Warnings() []string {
@@ -31,7 +37,8 @@ func (s *Settings) Warnings() []string {
 	warn(math.Abs(p.DetuningGamma.Value) > 3, "detuning_gamma = %g is far from resonance: it is in full widths Gamma, not in MHz", p.DetuningGamma.Value)
 	warn(!p.CountsPerIsat.Given && s.Shots.Layout != "density", "counts_per_isat is not given: the probe is taken as weak, and atoms are missed where it is not")
 	e := s.Efficiency()
-	warn(e > 1 || e < 0.01, "counts_per_isat means %.3g electrons for a photon that passes the atoms, where 0.05 to 0.95 is usual: check counts_per_isat, electrons_per_count, exposure_us and the pixel", e)
+	warn(e < LeastEfficiency || e > MostEfficiency, "counts_per_isat means %.3g electrons for a photon that passes the atoms, where %g to %g is plausible: check counts_per_isat, electrons_per_count, exposure_us and the pixel",
+		e, LeastEfficiency, MostEfficiency)
 	warn(f.FixedMs.Given && f.FixedMs.Value > 0 && f.FixedMs.Value < 0.5, "fixed_ms = %g is very short: it is in ms, not in s", f.FixedMs.Value)
 	return out
 }

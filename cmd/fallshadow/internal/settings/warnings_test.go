@@ -23,6 +23,7 @@ func TestWarnings(t *testing.T) {
 		{[]string{"#detuning_gamma = 0.0", "detuning_gamma = 6.0"}, "not in MHz"},
 		{[]string{isat, ""}, "taken as weak"},
 		{[]string{isat, "\ncounts_per_isat = 90000"}, "3.3 electrons for a photon"},
+		{[]string{isat, "\ncounts_per_isat = 900"}, "0.033 electrons for a photon that passes the atoms, where 0.05 to 0.95 is plausible"},
 		{[]string{"from = \"TOF\"", "fixed_ms = 0.015"}, "it is in ms, not in s"},
 		{[]string{"#scattering_length_a0 = { value = 100.4, err = 0.1 }", "scattering_length_a0 = 5.3e-9"}, "not in m"},
 	} {
