@@ -4,6 +4,7 @@ import (
 	"context"
 	"fmt"
 
+	"fallshadow/cmd/fallshadow/internal/ledger"
 	"fallshadow/cmd/fallshadow/internal/night"
 	"fallshadow/cmd/fallshadow/internal/report"
 	"fallshadow/fit"
@@ -21,6 +22,18 @@ func (w *Watcher) load(ctx context.Context, arrival int) (*imageio.Raw, error) {
 
 func (w *Watcher) darks(ctx context.Context, file imageio.ShotFile) ([]*imageio.Frame, error) {
 	return imageio.ReadDark(ctx, w.root, file)
+}
+
+// recall fits the last shot once more where its row stands, as after a restart: it can be
+// seen at once, and the next one finds all prepared.
+func (w *Watcher) recall(ctx context.Context) {
+	last := w.roll.last()
+	if w.roll.knownOf(last).content == (ledger.Digest{}) {
+		return
+	}
+	if f, raw, err := w.Measure(ctx, last); err == nil {
+		w.audience.Picture(last, f, raw)
+	}
 }
 
 // Measure fits a shot once more, for who wants to see it; nothing is stored.

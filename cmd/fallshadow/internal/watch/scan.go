@@ -14,10 +14,13 @@ const gap = 25 * time.Millisecond
 
 // scan looks through the folder whenever it is woken or a shot is due for another look.
 func (w *Watcher) scan(ctx context.Context, wake <-chan struct{}) {
-	for {
+	for first := true; ; first = false {
 		began := time.Now()
 		w.rereadSettings()
 		w.scanOnce(ctx)
+		if first {
+			w.desk.work.Go(func() { w.recall(ctx) })
+		}
 		took := time.Since(began)
 		if !pause(ctx, max(gap, 3*took)-took) {
 			return
