@@ -6,6 +6,7 @@ import (
 	"context"
 	"encoding/binary"
 	"fmt"
+	"math/rand/v2"
 	"net/http"
 	"os"
 	"path/filepath"
@@ -158,9 +159,11 @@ func BenchmarkLatency(b *testing.B) {
 }
 
 func benchmarkLatency(b *testing.B, events bool) {
+	const poll = 2 * time.Second
+	random := rand.New(rand.NewPCG(1, 2))
 	dir, shots := largeShots(b)
 	p := page.New("night")
-	w, err := watch.New(watch.Options{Dir: dir, Out: filepath.Join(b.TempDir(), "r"), NoEvents: !events}, p)
+	w, err := watch.New(watch.Options{Dir: dir, Out: filepath.Join(b.TempDir(), "r"), NoEvents: !events, Poll: poll}, p)
 	if err != nil {
 		b.Fatal(err)
 	}
@@ -192,7 +195,11 @@ func benchmarkLatency(b *testing.B, events bool) {
 		last := slowly(b, filepath.Join(dir, fmt.Sprintf("large_%04d.fits", n)), another(shots, n))
 		numbers = append(numbers, until(`row {"arrival"`).Sub(last))
 		pictures = append(pictures, until("picture").Sub(last))
-		time.Sleep(300 * time.Millisecond) // no machine takes shots faster than that
+		rest := 300 * time.Millisecond // no machine takes shots faster than that
+		if !events {
+			rest += time.Duration(random.Int64N(int64(poll))) // else all would come at the same time after a poll
+		}
+		time.Sleep(rest)
 	}
 	const young = 20 // shots until the night has its lights
 	for n := range young {
