@@ -186,27 +186,35 @@ func (s *session) doubt(st *state) float64 {
 	return 1 + 10*x*x
 }
 
-// choose takes the simplest model that the picture does not refuse: a second part must lower
-// χ² by a stated amount, and so must any cloud.
+// choose takes the simplest model that the picture does not refuse: a second part must lower χ²
+// by a stated amount, and so must any cloud and a condensate in place of a thermal cloud. A search
+// that did not end counts with what it had reached: its least is not above that.
 func (s *session) choose(c *candidates) (*state, string) {
 	chi := func(st *state) float64 {
-		if !st.used() {
+		if st == nil {
 			return math.Inf(1)
 		}
 		return st.chi2
 	}
 	single, name := c.thermal, ModelThermal
-	if chi(c.alone) < chi(c.thermal) {
+	if s.outdoes(c.alone, chi(c.thermal)) {
 		single, name = c.alone, ModelCondensate
 	}
-	if c.both.used() && c.both.p[pCondensate] > 0 && c.both.p[pThermal] > 0 && chi(c.alone)-chi(c.both) > s.opt.ThermalChi2 {
-		// What it takes to doubt a thermal cloud grows for a condensate that cannot be one.
-		if gain := chi(c.thermal) - chi(c.both); gain > s.opt.CondensateChi2 && gain > s.opt.CondensateChi2*s.doubt(c.both) {
-			return c.both, ModelBimodal
-		}
+	if c.both.used() && c.both.p[pCondensate] > 0 && c.both.p[pThermal] > 0 && chi(c.alone)-chi(c.both) > s.opt.ThermalChi2 && s.outdoes(c.both, chi(c.thermal)) {
+		return c.both, ModelBimodal
 	}
 	if chi(c.none)-chi(single) > s.opt.CloudChi2 {
 		return single, name
 	}
 	return c.none, ModelNone
+}
+
+// outdoes says that a fit with a condensate is so much better than that of a thermal cloud as is
+// asked of one. What it takes grows for a condensate that cannot be one.
+func (s *session) outdoes(st *state, thermal float64) bool {
+	if st == nil {
+		return false
+	}
+	gain := thermal - st.chi2
+	return gain > s.opt.CondensateChi2 && gain > s.opt.CondensateChi2*s.doubt(st)
 }

@@ -507,3 +507,65 @@ func TestScaledErrors(t *testing.T) {
 		t.Errorf("chi2 a pixel is %g", plain.ChiPerDof)
 	}
 }
+
+// TestNextToNothing: noise alone, and clouds that hardly stand out of it, are fitted whatever the
+// first look makes of them, and next to no noise is taken for a cloud, no thermal cloud for a
+// condensate.
+func TestNextToNothing(t *testing.T) {
+	clouds, condensates := 0, 0
+	ws := NewWorkspace()
+	for i := range 160 {
+		sc := &scene{lab: cigarLab(t), flight: 22e-3, T: 50e-9, x: 66, y: 61, w: 128, h: 120, electrons: 1200, read: 6, seed: 500 + uint64(i), powerNoise: 0.02}
+		if i%2 == 1 {
+			sc.thermal = 700
+		}
+		r, err := Cloud(context.Background(), sc.draw(t), sc.lab, sc.flight, Options{}, ws)
+		switch {
+		case err != nil:
+			t.Errorf("picture %d: %v", i, err)
+		case sc.thermal == 0 && r.Model != ModelNone:
+			clouds++
+		case r.Model == ModelCondensate || r.Model == ModelBimodal:
+			condensates++
+		}
+	}
+	if clouds > 1 || condensates > 0 {
+		t.Errorf("%d of 80 empty pictures with a cloud, %d of 80 thermal clouds with a condensate", clouds, condensates)
+	}
+}
+
+// TestDensityImage: the density of a cloud is fitted with the goodness that its noise allows,
+// whatever the workspace did before.
+func TestDensityImage(t *testing.T) {
+	sc := standardScene(t, 180e-9, 6e4, 4)
+	density := sc.column(t)
+	rng := rand.New(rand.NewPCG(3, 5))
+	const sigma = 0.03
+	pic := &Picture{Width: sc.w, Height: sc.h, DensitySigma: sigma}
+	for o := range sc.w * sc.h {
+		pic.Density = append(pic.Density, density(float64(o%sc.w), float64(o/sc.w))+sigma*rng.NormFloat64())
+		pic.Good = append(pic.Good, true)
+	}
+	lab := *sc.lab
+	lab.Optics.Blur = 0
+	ws := NewWorkspace()
+	var first *Result
+	for i := range 2 {
+		r, err := Cloud(context.Background(), pic, &lab, sc.flight, Options{}, ws)
+		if err != nil {
+			t.Fatal(err)
+		}
+		within(t, "chi2 a pixel", r.ChiPerDof, 1, 0.05)
+		within(t, "chi2 of the cloud", r.ChiCloud, 1, 0.4)
+		within(t, "N", r.Numbers.Atoms.V, sc.thermal+sc.condensate, 4*r.Numbers.Atoms.Err+0.005*r.Numbers.Atoms.V)
+		if i == 0 {
+			first = r
+		} else if fmt.Sprint(*r) != fmt.Sprint(*first) {
+			t.Errorf("the same picture gave\n%v\nand then\n%v", *first, *r)
+		}
+		other := standardScene(t, 240e-9, 3e4, 6)
+		if _, err := Cloud(context.Background(), other.draw(t), other.lab, other.flight, Options{}, ws); err != nil {
+			t.Fatal(err)
+		}
+	}
+}

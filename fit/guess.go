@@ -191,7 +191,7 @@ func bestWindow(v []float64, spread func(sum []float64, r int) float64, w, h int
 func (g *guess) follow(od []float64, l *level, x, y, half int) {
 	cx, cy := float64(x), float64(y)
 	rx, ry := 2*float64(half)+1, 2*float64(half)+1
-	var sxx, sxy, syy float64
+	sxx, sxy, syy := leastMoment, 0.0, leastMoment
 	for range 6 {
 		var s, mx, my, xx, xy, yy float64
 		each(l, cx, cy, rx, ry, func(o int, dx, dy float64) {
@@ -208,8 +208,8 @@ func (g *guess) follow(od []float64, l *level, x, y, half int) {
 		}
 		dx, dy := clamp(mx/s, rx/2), clamp(my/s, ry/2)
 		cx, cy = cx+dx, cy+dy
-		sxx, sxy, syy = xx/s-dx*dx, xy/s-dx*dy, yy/s-dy*dy
-		sxx, syy = clampLow(sxx, 0.5), clampLow(syy, 0.5)
+		sxx, syy = clampLow(xx/s-dx*dx, leastMoment), clampLow(yy/s-dy*dy, leastMoment)
+		sxy = clamp(xy/s-dx*dy, mostOblique*math.Sqrt(sxx*syy))
 		rx, ry = math.Max(2, 2.5*math.Sqrt(sxx)), math.Max(2, 2.5*math.Sqrt(syy))
 	}
 	bin := float64(l.bin)
@@ -227,6 +227,10 @@ func (g *guess) follow(od []float64, l *level, x, y, half int) {
 	g.moment = [3]float64{sxx * bin * bin, sxy * bin * bin, syy * bin * bin}
 	g.core = bin * math.Sqrt(float64(max(n, 1))/math.Pi)
 }
+
+// A density that is not positive everywhere can have any second moments: these are the least
+// square of a size, bins², and the largest share of the mixed one, so that they are an ellipse's.
+const leastMoment, mostOblique = 0.5, 0.95
 
 func clamp(v, most float64) float64 { return math.Max(-most, math.Min(most, v)) }
 

@@ -54,6 +54,8 @@ type numberTie struct {
 
 const numberWidth = 1e-3
 
+func (lab *Lab) numberTie() *numberTie { return &numberTie{trap: lab.Trap, perSum: lab.perSum()} }
+
 func (n *numberTie) add(s *search, q *params, h, g []float64) float64 {
 	m, j := s.tmpl.measured(q, s.kind)
 	r := math.Log(m.ThermalSum*n.perSum/model.ThermalNumber(m.T, m.Alpha, n.trap)) / numberWidth
@@ -104,9 +106,11 @@ func (s *session) limits(c *candidates, full *state, r *Result) error {
 }
 
 // perSum turns a sum of σ0 n over pixels into atoms.
-func (s *session) perSum() float64 {
-	return s.tmpl.pixel * s.tmpl.pixel / s.lab.Species.Sigma0()
+func (lab *Lab) perSum() float64 {
+	return lab.Optics.Pixel * lab.Optics.Pixel / lab.Species.Sigma0()
 }
+
+func (s *session) perSum() float64 { return s.lab.perSum() }
 
 // interval replaces a symmetric error by where χ² has risen by 1 on either side; where one
 // side has no end the other is moved to the one-sided 95 % limit. It works on the full picture:

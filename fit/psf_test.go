@@ -43,7 +43,7 @@ func psfTable(t *testing.T, name string) []map[string]float64 {
 // blurredImage draws a density image of a Thomas-Fermi cloud of peak 1 and radii rx, ry,
 // blurred by s; all in pixels.
 func blurredImage(w, h int, rx, ry, s float64) *Picture {
-	p := &Picture{Width: w, Height: h, Density: make([]float64, w*h), Good: make([]bool, w*h), DensitySigma: 1}
+	p := &Picture{Width: w, Height: h, Density: make([]float64, w*h), Good: make([]bool, w*h), DensitySigma: 0.3}
 	for i := range p.Density {
 		x, y := float64(i%w)-float64(w-1)/2, float64(i/w)-float64(h-1)/2
 		p.Density[i] = math.Pow(math.Max(0, 1-x*x/(rx*rx)-y*y/(ry*ry)), 1.5)
@@ -80,9 +80,10 @@ func fitImage(t *testing.T, p *Picture, aspect, blur float64) (rx, ry, a float64
 		t.Fatal(err)
 	}
 	const pixel = 1e-6
-	lab := &Lab{Species: rb, Trap: model.TrapHz(100, 100/aspect, 100), View: model.View(0, 0, 0),
+	// In this trap a condensate of this peak has this radius.
+	lab := &Lab{Species: rb, Trap: model.TrapHz(0.27, 0.27/aspect, 0.27), View: model.View(0, 0, 0),
 		Optics: Optics{Pixel: pixel, Blur: blur * pixel, Alpha: 1, Saturation: math.Inf(1)}}
-	r, err := Cloud(context.Background(), p, lab, 0, Options{Free: true}, NewWorkspace())
+	r, err := Cloud(context.Background(), p, lab, 0, Options{Free: true, ThermalChi2: 250}, NewWorkspace())
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -107,6 +108,7 @@ func TestDensityImageBlur(t *testing.T) {
 			within(t, where+"blurred radius 2", y/r, tableY, math.Abs(tableX-1)/14+3e-4)
 			within(t, where+"blurred peak", a, tableA, (1-tableA)/14+3e-4)
 		}
+		p.DensitySigma = 0.02 // so that the blurred image is surely no thermal cloud
 		x, y, a := fitImage(t, p, aspect, s*r)
 		within(t, where+"radius 1", x/r, 1, 5e-4)
 		within(t, where+"radius 2", y/r, aspect, 5e-4*aspect)

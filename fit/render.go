@@ -71,12 +71,13 @@ func (f *forward) scale(dst []float64, a int) {
 }
 
 // freeze sets the variance of the atoms frame from the model, where the problem looks: the counts
-// it expects plus read noise. outside and inside are scratch of the levels' sizes.
+// it expects plus read noise; that of a linear level is given. outside and inside are scratch of the levels' sizes.
 func (p *problem) freeze(q *params, outside, inside []float64) {
+	p.render(q, outside, inside)
+	p.buf.region.plate.owner = nil
 	if p.level.linear {
 		return
 	}
-	p.render(q, outside, inside)
 	in := p.room.bounds(p.level)
 	for j := range p.level.h {
 		a, b := in.gap(j, p.level.w)
@@ -87,7 +88,6 @@ func (p *problem) freeze(q *params, outside, inside []float64) {
 	for j := in.y0; j < in.y1; j++ {
 		p.fine.freezeRow(inside, j, in.x0, in.x1)
 	}
-	p.buf.region.plate.owner = nil
 }
 
 func (l *level) freezeRow(kappa []float64, j, i0, i1 int) {

@@ -44,6 +44,9 @@ func (s *session) answer(st *state, lab *Lab, flight float64) (numbers.Measured,
 	level := *p.level
 	level.saturate = lab.Optics.perElectron()
 	level.own, level.lit = &s.ws.moved, box{} // another blur has another beam
+	if p.number != nil {
+		p.number = lab.numberTie()
+	}
 	p.level, p.fine, p.tmpl, p.law, p.blur = &level, &level, &tmpl, newLaw(&lab.Optics), lab.Optics.Blur/lab.Optics.Pixel
 	q := st.p
 	// The same cloud in pixels: only what the shapes do not share with the template is left
@@ -53,6 +56,9 @@ func (s *session) answer(st *state, lab *Lab, flight float64) (numbers.Measured,
 		if !st.kind.fixRadius {
 			q[pRadius1+i] += 0.5 * math.Log(s.tmpl.condensate.square[i]/tmpl.condensate.square[i])
 		}
+	}
+	if st.kind.angle {
+		q[pAngle] += s.tmpl.thermal.angle - tmpl.thermal.angle
 	}
 	if !st.kind.free {
 		q[pWidth1] = (q[pWidth1] + q[pWidth2]) / 2

@@ -78,8 +78,10 @@ func (s *session) exploreWindow() (*candidates, error) {
 			best = c
 		}
 	}
-	if _, model := s.choose(best); model != ModelNone {
-		return s.descend(s.work, best)
+	if best.none != nil {
+		if _, model := s.choose(best); model != ModelNone {
+			return s.descend(s.work, best)
+		}
 	}
 	c := new(candidates)
 	if err := s.first(top, places, c); err != nil {
