@@ -127,14 +127,19 @@ func (b *bench) fit(ctx context.Context, at int, raw *imageio.Raw, flight float6
 		}
 	} else if b.finds && exposure.Width*exposure.Height > fit.Large {
 		if place, err = fit.Locate(ctx, b.picture(exposure), &b.lab, flight, b.options, workspace); err != nil {
-			return nil, nil, fmt.Errorf("locate the cloud: %w", err)
+			return nil, nil, unfitted(err)
 		}
 	}
 	found, err := b.fitPart(ctx, b.picture(exposure), place, flight, workspace)
 	if err != nil {
-		return nil, nil, fmt.Errorf("fit: %w", err)
+		return nil, nil, unfitted(err)
 	}
 	return exposure, found, nil
+}
+
+// unfitted says what a person can do about a fit that failed.
+func unfitted(err error) error {
+	return fmt.Errorf("the cloud cannot be fitted: look whether it is in the picture, and check flight, resolution_um, pixel_um, magnification and region (%w)", err)
 }
 
 // fitPart fits the part of a picture that tells the cloud, and all of it where the region is not
@@ -163,7 +168,7 @@ func (b *bench) relight(ctx context.Context, at int, e *imageio.Exposure, flight
 		var err error
 		place, err = fit.Locate(ctx, b.picture(lit), &b.lab, flight, b.options, workspace)
 		if err != nil {
-			return nil, nil, fmt.Errorf("locate the cloud: %w", err)
+			return nil, nil, unfitted(err)
 		}
 		lit, err = b.references.Apply(ctx, at, e, light.Cloud{Mask: place.Mask, Transmission: place.Transmission})
 		if err != nil || !place.Rough {

@@ -15,7 +15,8 @@ var Everything = image.Rect(0, 0, 1<<30, 1<<30)
 
 // Grow looks at the whole frame where the cloud of a shot reaches over the border of a region that
 // a person gave, or there is none in it, and returns the facts to keep, with a flag. Those of the
-// region stand where whole fails or sees no more, and where the cloud lies outside.
+// region stand where whole fails, sees no more, or sees another cloud, whose centre is not in the
+// region.
 func Grow(f *report.Facts, whole func() (*report.Facts, error)) *report.Facts {
 	empty := f.Fit.Model == fit.ModelNone
 	if !empty && !f.Fit.Touches {
@@ -25,8 +26,10 @@ func Grow(f *report.Facts, whole func() (*report.Facts, error)) *report.Facts {
 	if err != nil || all.Fit.Model == fit.ModelNone {
 		return f
 	}
-	if empty && !image.Pt(int(all.X), int(all.Y)).In(f.Region) {
-		f.Notes = append(slices.Clone(f.Notes), report.FlagOutside)
+	if !image.Pt(int(all.X), int(all.Y)).In(f.Region) {
+		if empty {
+			f.Notes = append(slices.Clone(f.Notes), report.FlagOutside)
+		}
 		return f
 	}
 	all.Notes = append(slices.Clone(all.Notes), report.FlagGrown)

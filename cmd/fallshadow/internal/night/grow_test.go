@@ -57,14 +57,15 @@ func TestEmptyRegion(t *testing.T) {
 	}
 }
 
-// The first facts stand where the whole frame says nothing better.
+// The first facts stand where the whole frame says nothing better, or of another cloud.
 func TestGrowKeepsWhatItHas(t *testing.T) {
+	other := &report.Facts{X: 300, Y: 290, Fit: &fit.Result{Model: fit.ModelThermal}}
 	cut := &report.Facts{Fit: &fit.Result{Model: fit.ModelThermal, Touches: true}}
 	none := &report.Facts{Fit: &fit.Result{Model: fit.ModelNone}}
 	for _, c := range []struct {
 		whole *report.Facts
 		err   error
-	}{{none, nil}, {nil, context.DeadlineExceeded}} {
+	}{{none, nil}, {other, nil}, {nil, context.DeadlineExceeded}} {
 		if got := Grow(cut, func() (*report.Facts, error) { return c.whole, c.err }); got != cut || len(got.Notes) != 0 {
 			t.Errorf("%v, %v: got %+v", c.whole, c.err, got)
 		}
