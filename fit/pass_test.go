@@ -209,6 +209,32 @@ func TestNormalBits(t *testing.T) {
 	}
 }
 
+// Where no thermal part is sought the pass looks at none, and says the same of the light.
+func TestNormalOfLightAlone(t *testing.T) {
+	q := testParams
+	q[pThermal], q[pCondensate] = 0, 0
+	p := testProblem(t, testLab(t), false, q, room{})
+	var h [2][numParams * numParams]float64
+	var g [2][numParams]float64
+	var f [2]float64
+	none := kind{}.tie()
+	for i, ties := range []*tie{nil, &none} {
+		p.ties = ties
+		f[i] = p.normal(&q, h[i][:], g[i][:])
+	}
+	within(t, "value", f[1], f[0], 1e-12*f[0])
+	if h[1][pThermal*numParams+pThermal] != 0 || h[0][pThermal*numParams+pThermal] == 0 {
+		t.Error("the derivative by the thermal part is not left out, or was never there")
+	}
+	for _, i := range []int{pLight, pLightX, pLightY} {
+		scale := math.Sqrt(h[0][i*numParams+i])
+		within(t, "gradient", g[1][i], g[0][i], 1e-12*scale*math.Sqrt(f[0]))
+		for _, k := range []int{pLight, pLightX, pLightY} {
+			within(t, "normal matrix", h[1][i*numParams+k], h[0][i*numParams+k], 1e-12*scale*math.Sqrt(h[0][k*numParams+k]))
+		}
+	}
+}
+
 // testExcess falls off from the middle.
 func testExcess() *excess {
 	e := &excess{values: make([]float64, excessW*excessH)}
