@@ -33,9 +33,9 @@ const (
 var Problems = []Problem{
 	{NoAtoms, "there is no atoms frame", "check the layout and that the file was written to its end", true},
 	{NoLight, "there is no light frame", "check the layout and that the file was written to its end", true},
-	{NoDark, "neither the shot nor the night has a dark frame", "take a dark frame, or put a shot with one into the night's folder", true},
+	{NoDark, "neither the shot nor the night has a dark frame", "take a dark frame, or put a shot with one into the night's folder; where the dark is subtracted already, save the frames as the camera gives them", true},
 	{WrongSize, "a frame differs in size from the others of the night", "give each camera setting a folder of its own", true},
-	{Blank, "a frame holds one and the same value everywhere", "check that the camera was triggered and the file written", true},
+	{Blank, "a frame holds one and the same value everywhere", "check that the camera was triggered and the file written; a dark frame of one value may come of subtracting it already: save the frames as the camera gives them", true},
 	{Saturated, "a frame is saturated over a large part", "lower the probe, the exposure or the gain; check full_scale", true},
 	{EmptyProbe, "the light frame holds no light above the dark", "check the probe shutter and the order of the planes", true},
 	{Unlit, "the atoms frame holds no light though the light frame does", "check the probe pulse of the first exposure and the order of the planes", true},

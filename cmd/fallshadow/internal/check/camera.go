@@ -49,6 +49,9 @@ func (v *visit) writeCamera() {
 		v.page.pair("darks", "none usable")
 	}
 	v.page.pair("bad pixels", "%d hot, restless or listed; %d are listed in the settings", n.BadPixels(), len(v.Settings.Camera.BadPixels))
+	if size := v.commonSize(); v.Settings.Misplaced(size.X, size.Y) != "" {
+		v.trouble.caution("", "%s", v.Settings.Misplaced(size.X, size.Y))
+	}
 	v.writePeaks()
 }
 

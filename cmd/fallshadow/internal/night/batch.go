@@ -49,6 +49,9 @@ type Outcome struct {
 	Kept   int          // shots whose rows were current
 	Failed int          // rows of failed shots
 	Strays []imageio.Stray
+	// Misplaced says that the settings list bad pixels outside of the first frames, "" that
+	// they do not.
+	Misplaced string
 }
 
 // Results returns the folder of a night's results: results/<night> below the working

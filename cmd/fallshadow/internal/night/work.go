@@ -21,6 +21,10 @@ func (b *batch) work(ctx context.Context) (*Outcome, error) {
 		return nil, err
 	}
 	out := &Outcome{Dir: b.Out, Strays: b.scanned.Strays}
+	if len(b.readable) > 0 {
+		size := b.shots[b.readable[0]].size
+		out.Misplaced = b.Settings.Misplaced(size[0], size[1])
+	}
 	unread := 0
 	for i := range b.shots {
 		if b.shots[i].err != nil {

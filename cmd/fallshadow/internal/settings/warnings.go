@@ -36,6 +36,9 @@ func (s *Settings) Warnings() []string {
 	warn(p.Alpha.Value < 0.9, "alpha = %g makes the cross-section larger than that of a two-level atom: sigma = sigma0/alpha; was its inverse %.3g meant?", p.Alpha.Value, 1/p.Alpha.Value)
 	warn(math.Abs(p.DetuningGamma.Value) > 3, "detuning_gamma = %g is far from resonance: it is in full widths Gamma, not in MHz", p.DetuningGamma.Value)
 	warn(!p.CountsPerIsat.Given && s.Shots.Layout != "density", "counts_per_isat is not given: the probe is taken as weak, and atoms are missed where it is not")
+	a0 := p.Alpha.Value * (1 + 4*p.DetuningGamma.Value*p.DetuningGamma.Value)
+	warn(s.Shots.DensityUnit == "log_ratio", "density_unit = \"log_ratio\" leaves saturation out: in a probe of s = I/Isat N is low by up to s/(a + s), a = alpha (1 + 4 detuning_gamma^2), such as %.2g %% at s = 0.1; save the raw frames, or sigma0_n with its term (I0 - I)/Isat",
+		100*0.1/(a0+0.1))
 	e := s.Efficiency()
 	warn(e < LeastEfficiency || e > MostEfficiency, "counts_per_isat means %.3g electrons for a photon that passes the atoms, where %g to %g is plausible: check counts_per_isat, electrons_per_count, exposure_us and the pixel",
 		e, LeastEfficiency, MostEfficiency)
@@ -60,4 +63,21 @@ func (s *Settings) angular() bool {
 func round(x, rest float64) bool {
 	unit := math.Pow(10, math.Floor(math.Log10(x))-1)
 	return math.Abs(x/unit-math.Round(x/unit)) <= rest*x/unit
+}
+
+// Misplaced returns a sentence where bad_pixels lists pixels that frames of a size do not
+// have, "" where it does not.
+func (s *Settings) Misplaced(width, height int) string {
+	n, first := 0, [2]int{}
+	for _, p := range s.Camera.BadPixels {
+		if p[0] >= width || p[1] >= height {
+			if n++; n == 1 {
+				first = p
+			}
+		}
+	}
+	if n == 0 {
+		return ""
+	}
+	return fmt.Sprintf("bad_pixels lists %d outside of the frames of %d x %d pixels, such as [%d, %d]: each is [column, row], from 0", n, width, height, first[0], first[1])
 }

@@ -40,6 +40,33 @@ func TestWarnings(t *testing.T) {
 	}
 }
 
+// TestLogRatio: at a tenth of Isat and alpha = 2 a thin cloud loses 0.1/2.1 of its atoms.
+func TestLogRatio(t *testing.T) {
+	warned := func(unit string) string {
+		text := strings.Replace(evap, "[shots]", "", 1) + "\n[shots]\nlayout = \"density\"\ndensity_unit = \"" + unit + "\"\n"
+		return strings.Join(parse(t, text).Warnings(), "\n")
+	}
+	if got := warned("log_ratio"); !strings.Contains(got, "such as 4.8 % at s = 0.1") {
+		t.Errorf("warned %q", got)
+	}
+	if got := warned("sigma0_n"); strings.Contains(got, "saturation out") {
+		t.Errorf("warned %q", got)
+	}
+}
+
+func TestMisplaced(t *testing.T) {
+	var s Settings
+	s.Camera.BadPixels = [][2]int{{3, 4}, {10, 4}, {3, 8}}
+	for _, c := range []struct {
+		width, height int
+		want          string
+	}{{11, 9, ""}, {10, 9, "lists 1 outside of the frames of 10 x 9 pixels, such as [10, 4]"}, {10, 8, "lists 2 "}} {
+		if got := s.Misplaced(c.width, c.height); (got == "") != (c.want == "") || !strings.Contains(got, c.want) {
+			t.Errorf("%d x %d: %q, want %q", c.width, c.height, got, c.want)
+		}
+	}
+}
+
 // TestAngular: frequencies in Hz as they come from a spectrum analyser are not suspected.
 func TestAngular(t *testing.T) {
 	for _, c := range []struct {
