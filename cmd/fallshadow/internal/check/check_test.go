@@ -128,6 +128,26 @@ func TestSoundNight(t *testing.T) {
 	}
 }
 
+// TestInteracting: a gas whose thermal atoms felt the condensate is told so when it is fitted
+// as an ideal one, and only then.
+func TestInteracting(t *testing.T) {
+	dir := simulated(t, "mean-field", 9)
+	const caution = "thermal atoms than an ideal gas holds"
+	_, text := look(t, dir, 3)
+	says(t, text, `Nth/Nsat is [12]\.\d\d in the median of 3 trial fits with a condensate, more `+caution, "No problems found")
+	if strings.Contains(text, "suspect_thermal_form") {
+		t.Errorf("said twice:\n%s", text)
+	}
+	file, err := os.ReadFile(filepath.Join(dir, "fallshadow.toml"))
+	if err != nil {
+		t.Fatal(err)
+	}
+	_, text = lookAs(t, dir, 3, string(file)+"\n[fit]\nthermal = \"semi-ideal\"\n")
+	if strings.Contains(strings.Join(strings.Fields(text), " "), caution) {
+		t.Errorf("a semi-ideal fit is told to be one:\n%s", text)
+	}
+}
+
 // listing tells of the files below a folder, with size and time.
 func listing(t *testing.T, dir string) string {
 	t.Helper()

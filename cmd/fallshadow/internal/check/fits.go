@@ -104,6 +104,9 @@ func (v *visit) judgeFits() {
 		shots += len(f.where)
 	}
 	if 2*shots <= v.condensates() {
+		if v.judgeSaturation() {
+			others = withoutForm(others)
+		}
 		for _, f := range slices.Concat(suspects, others) {
 			v.trouble.cautions = append(v.trouble.cautions, matter{f.Name + ": " + f.Sentence, f.where})
 		}
