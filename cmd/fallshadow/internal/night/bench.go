@@ -139,7 +139,7 @@ func (b *bench) fit(ctx context.Context, at int, raw *imageio.Raw, flight float6
 
 // unfitted says what a person can do about a fit that failed.
 func unfitted(err error) error {
-	return fmt.Errorf("the cloud cannot be fitted: look whether it is in the picture, and check flight, resolution_um, pixel_um, magnification and region (%w)", err)
+	return fmt.Errorf("the cloud cannot be fitted: look whether it is in the picture, and check flight, resolution_um, pixel_um, magnification, counts_per_isat and region (%w)", err)
 }
 
 // fitPart fits the part of a picture that tells the cloud, and all of it where the region is not
