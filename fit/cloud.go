@@ -73,7 +73,7 @@ func (s *session) finish(c *candidates, chosen *state, r *Result) error {
 		return err
 	}
 	s.sum(full, r)
-	if err := s.compare(chosen, full, r); err != nil {
+	if err := s.compare(full, r); err != nil {
 		return err
 	}
 	return s.limits(c, full, r)

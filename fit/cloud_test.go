@@ -569,3 +569,36 @@ func TestDensityImage(t *testing.T) {
 		}
 	}
 }
+
+// TestFewCondensed: beside a thermal cloud the limit of N0 holds also for so few atoms that their
+// size is that of the trap's lowest state, by the variational theory of package model.
+func TestFewCondensed(t *testing.T) {
+	over := 0
+	const atoms, shots = 60, 40
+	for i := range shots {
+		lab := cigarLab(t)
+		sc := &scene{lab: lab, flight: 22e-3, T: 110e-9, x: 80, y: 76, w: 160, h: 152, electrons: 1200, read: 6, seed: 700 + uint64(i), powerNoise: 0.01}
+		shape, err := gaussianShape(lab, sc.flight, atoms)
+		if err != nil {
+			t.Fatal(err)
+		}
+		bt, err := model.ExpandThermal(lab.Trap, sc.flight, lab.Release)
+		if err != nil {
+			t.Fatal(err)
+		}
+		px, sigma := lab.Optics.Pixel, lab.Species.Sigma0()
+		wide := lab.View.Project(model.ThermalVariances(sc.T, lab.Species.Mass, lab.Trap, bt))
+		n := sc.saturated()
+		sc.thermalColumn = func(x, y float64) float64 {
+			return sigma * (model.ThermalColumn(n, 0, wide, x*px, y*px) + model.GaussianColumn(atoms, shape, x*px, y*px))
+		}
+		r := mustFit(t, sc, sc.draw(t), Options{})
+		if r.Model == ModelThermal && r.Numbers.Condensate.High < atoms {
+			over++
+		}
+	}
+	if over > 5 {
+		t.Errorf("the 95 %% limit is below the truth in %d of %d pictures", over, shots)
+	}
+	t.Logf("the 95 %% limit is below the truth in %d of %d pictures", over, shots)
+}

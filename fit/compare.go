@@ -2,6 +2,8 @@ package fit
 
 import (
 	"math"
+
+	"fallshadow/model/bose"
 )
 
 // residuals fills the goodness of the fit: χ² over the whole picture, and that of the cloud,
@@ -99,7 +101,7 @@ func (s *session) block(l *level, i, j, side int) (float64, bool) {
 }
 
 // compare fills the checks in which two routes lead to one number.
-func (s *session) compare(chosen, full *state, r *Result) error {
+func (s *session) compare(full *state, r *Result) error {
 	c := &r.Checks
 	if v := r.Numbers.MuOverMuAtoms; !math.IsNaN(v.V) {
 		c.MuOverMuAtoms, c.MuOverMuAtomsErr = v.V, v.Err
@@ -107,28 +109,34 @@ func (s *session) compare(chosen, full *state, r *Result) error {
 	if full.kind.condensate && full.kind.thermal {
 		c.ThermalOverSaturated, c.ThermalOverSatErr = r.Numbers.ThermalOverSaturated.V, r.Numbers.ThermalOverSaturated.Err
 	}
-	if err := s.compareFree(chosen, c); err != nil {
+	if err := s.compareFree(full, c); err != nil {
 		return err
 	}
 	return s.compareWings(full, c)
 }
 
-// compareFree fits every width by itself and notes the ratios between the axes.
-func (s *session) compareFree(tied *state, c *Checks) error {
-	k := tied.kind
-	k.free, k.fixRadius = !k.free, false
-	st, err := s.run(s.work, k, tied.p, 0.01)
+// compareFree fits the full picture once more as it was and with every width by itself, both under
+// the same variances, and notes the ratios between the axes.
+func (s *session) compareFree(full *state, c *Checks) error {
+	s.freezeFull(full)
+	same, err := s.runFull(full.kind, full.p, 3e-3)
 	if err != nil {
 		return err
 	}
-	free := st
-	if tied.kind.free {
-		st, free = tied, tied
+	k := full.kind
+	k.free, k.fixRadius = !k.free, false
+	free, err := s.runFull(k, full.p, 3e-3)
+	if err != nil {
+		return err
+	}
+	tied := same
+	if full.kind.free {
+		tied, free = free, same
 	}
 	if !free.used() || free.cov == nil {
 		return nil
 	}
-	c.TiedOverFree = math.Abs(tied.chi2 - st.chi2)
+	c.TiedOverFree = tied.chi2 - free.chi2
 	if s.shown = s.shapeOf(free); c.TiedOverFree > hopeless {
 		if err := s.exploreFree(); err != nil {
 			return err
@@ -174,16 +182,21 @@ func (s *session) exploreFree() error {
 
 // shapeOf notes what a free fit shows, with the errors of the ratios between its parts.
 func (s *session) shapeOf(st *state) *measuredShape {
-	m := &measuredShape{thermal: st.kind.thermal, condensate: st.kind.condensate}
+	m := &measuredShape{thermal: st.p[pThermal] > 0, condensate: st.p[pCondensate] > 0}
 	m.width, m.radius = s.tmpl.thermalOf(&st.p).square, s.tmpl.condensateOf(&st.p).square
 	sums, j := s.tmpl.measured(&st.p, st.kind)
 	m.thermalSum, m.condenSum = sums.ThermalSum, sums.CondensateSum
 	var logs [numRatios][numParams]float64
 	logs[ratioT][pWidth1], logs[ratioT][pWidth2] = 2, -2
 	logs[ratioMu][pRadius1], logs[ratioMu][pRadius2] = 2, -2
+	m.alpha, m.fugacity = st.p[pAlpha], st.kind.alpha && !st.kind.condensate
+	slope := 0.0
+	if m.fugacity {
+		slope = bose.G2(m.alpha) / bose.G3(m.alpha)
+	}
 	for i := range numParams {
 		logs[ratioMuN][i] = j[atMu][i]/sums.Mu - 0.4*j[atCondensate][i]/sums.CondensateSum
-		logs[ratioSat][i] = j[atThermal][i]/sums.ThermalSum - 3*j[atT][i]/sums.T
+		logs[ratioSat][i] = j[atThermal][i]/sums.ThermalSum - 3*j[atT][i]/sums.T + slope*j[atAlpha][i]
 	}
 	c := st.spread(logs[:])
 	for i := range m.errs {

@@ -54,7 +54,7 @@ var Flags = []Flag{
 	{FlagWidths, "the widths along the two axes do not follow from one T and one mu: check trap frequencies, angle and flight; heating or hydrodynamic expansion look alike"},
 	{FlagWings, "the wings alone give another temperature than the whole cloud"},
 	{FlagSum, "the fitted atom number and the plain sum of the density disagree"},
-	{FlagRatios, "mu from radius and from number, or the thermal number and its saturated value, disagree, and no single setting mends it"},
+	{FlagRatios, "mu from radius and from number disagree, or the thermal number and what T and fugacity hold, and no single setting is seen to mend it: check magnification, alpha, counts_per_isat and trap frequencies"},
 	{FlagFrequencyUnit, "the ratios agree if the trap frequencies are in rad/s: settings take Hz (axis1_hz, axis2_hz, sight_hz)"},
 	{FlagAxes, "the ratios agree if two trap axes are exchanged: check which of axis1_hz, axis2_hz, sight_hz is which, and angle_deg"},
 	{FlagAxis1, "the ratios agree with another frequency along axis 1: check axis1_hz"},
@@ -64,7 +64,7 @@ var Flags = []Flag{
 	{FlagPixel, "the ratios agree with another pixel in the object plane: check pixel_um, binning and magnification"},
 	{FlagNumber, "the ratios agree with another cross-section: check alpha, detuning_gamma and counts_per_isat (a magnification that is off can look alike)"},
 	{FlagForm, "more thermal atoms than the ideal gas holds at this T, all else agrees: thermal atoms may have felt the condensate; compare with fit.thermal = \"semi-ideal\""},
-	{FlagBlurred, "the blur is above a third of the smallest radius or width: the resolution decides the result"},
+	{FlagBlurred, "the blur, with the pixel's width, is above a third of the smallest radius or width: the resolution decides the result"},
 	{FlagAttractive, "the gas is attractive: Thomas-Fermi does not exist; the condensate is a gaussian of the variational width and has no mu from a radius"},
 	{FlagCollapse, "N0 is above the number at which an attractive condensate collapses: check the scattering length and the cross-section"},
 	{FlagDensityNoReference, "a density image without raw frames: noise is estimated, saturation and black pixels cannot be seen"},
@@ -93,7 +93,7 @@ func (s *session) warnings(r *Result) []string {
 	raise(r.Model != ModelThermal && n.ThomasFermiParameter.V < 10, FlagSmall)
 	raise(n.T.Err > poor*n.T.V, FlagHot)
 	size := math.Min(math.Min(orInf(r.Width[0]), orInf(r.Width[1])), math.Min(orInf(r.Radius[0]), orInf(r.Radius[1])))
-	raise(s.lab.Optics.Blur > size/3, FlagBlurred)
+	raise(math.Sqrt(s.lab.Optics.Blur*s.lab.Optics.Blur+s.tmpl.pixel*s.tmpl.pixel/12) > size/3, FlagBlurred)
 	raise(s.tmpl.gaussian && r.Model != ModelThermal, FlagAttractive)
 	raise(n.Collapse.V > 1, FlagCollapse)
 	raise(off(c.WingsT/n.T.V, c.WingsTErr/n.T.V, 0.1), FlagWings)

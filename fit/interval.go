@@ -200,30 +200,51 @@ func (p *profile) rise(x float64) (float64, error) {
 // oneSided is the rise of χ² at a one-sided 95 % limit.
 const oneSided = 2.706
 
-// limitCondensate sets the upper limit of N0 in a thermal cloud: a condensate of N0 atoms
-// with the μ that they have in Thomas-Fermi, raised until χ² stands 2.7 above its least; and the
-// number that would be believed, where it stands as high as is asked of a condensate.
+// limitCondensate sets the upper limit of N0 in a thermal cloud: a condensate of the size that N0
+// atoms have, raised until χ² stands 2.7 above its least; and the number that would be believed,
+// where it stands as high as is asked of a condensate.
 func (s *session) limitCondensate(st *state, n *numbers.Result, c *Checks) {
 	if s.tmpl.gaussian {
 		return
 	}
 	k := st.kind
 	k.condensate, k.fixCondensate, k.fixRadius = true, true, true
+	square := s.tmpl.condensate.square
+	least := 7 * s.groundState() / math.Sqrt(square[0]*square[1])
 	set := func(q *params, atoms float64) {
 		m, err := model.Mu(atoms, s.lab.Species.Mass, s.lab.Species.ScatteringLength, s.lab.Trap)
 		if err != nil {
 			return
 		}
-		l := 0.5 * math.Log(m/templateMu)
+		// Radii² of Thomas-Fermi and, seven variances, of a few atoms, joined within a tenth
+		// where neither holds.
+		l := 0.5 * math.Log(math.Hypot(m/templateMu, least))
 		q[pRadius1], q[pRadius2] = l, l
 		e := s.tmpl.condensateOf(q)
 		size := math.Sqrt(e.square[0] * e.square[1])
 		q[pCondensate] = atoms / s.perSum() / (s.tmpl.condensateArea() * size)
 	}
 	limit := s.raise(st, k, set, oneSided, 1e-3*n.Thermal.V, n.Thermal.V)
+	if math.IsNaN(limit) { // any number could hide: the centre is not in the picture
+		n.Condensate.V, n.Fraction.V = limit, limit
+	}
 	n.Condensate.High = limit
 	n.Fraction.High = limit / (limit + n.Thermal.V)
 	c.CondensateDetected = s.raise(st, k, set, s.opt.CondensateChi2, limit, n.Thermal.V)
+}
+
+// groundState is the product of the rms sizes (px²) in the picture of atoms that do not interact, in
+// the lowest state of the trap: ħ/(2mω) along each axis, expanded as any ideal gas.
+func (s *session) groundState() float64 {
+	b, err := model.ExpandThermal(s.lab.Trap, s.flight, s.lab.Release)
+	if err != nil {
+		return 0
+	}
+	var v [3]float64
+	for i, w := range s.lab.Trap.Omega {
+		v[i] = model.HBar / (2 * s.lab.Species.Mass * w) * b[i] * b[i]
+	}
+	return math.Sqrt(s.lab.View.Project(v).Det()) / (s.tmpl.pixel * s.tmpl.pixel)
 }
 
 // limitThermal sets the upper limits of T and N_th beside a condensate, and with them the

@@ -5,7 +5,7 @@ import "math"
 // law is the saturated absorption law with its constants folded in: the depth u of
 // I_t = I_0 e^−u solves a u + s (1−e^−u) = σ0 n, a = α(1+4δ²), s = I_0/Isat
 // (Reinaudi et al., Opt. Lett. 32, 3143 (2007)). A fraction of the light that atoms cannot
-// absorb lifts the transmission to (e^−u + ε)/(1+ε).
+// absorb lifts the transmission to (1−ε) e^−u + ε.
 type law struct {
 	a     float64
 	stray float64

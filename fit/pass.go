@@ -117,7 +117,7 @@ type moments struct {
 	rl [2][2]float64
 }
 
-// Normal implements the pass: F = Σρ², and where h and g are given JᵀJ and Jᵀρ over all
+// normal is the pass: F = Σρ², and where h and g are given JᵀJ and Jᵀρ over all
 // parameters (numParams×numParams row by row). It returns +Inf for parameters that have no
 // picture.
 func (p *problem) normal(q *params, h, g []float64) float64 {

@@ -28,7 +28,7 @@ func testLab(t testing.TB) *Lab {
 	}
 }
 
-// testPicture draws noise around a model, its light uneven, a few pixels bad.
+// testProblem draws noise around a model, its light uneven, a few pixels bad.
 func testProblem(t testing.TB, lab *Lab, linear bool, q params, r room) *problem {
 	t.Helper()
 	tmpl, err := newTemplate(lab, 0.018, 0)

@@ -7,7 +7,8 @@ package fit
 // Picture is the input of a fit: counts in electrons above the dark, row by row from
 // the top, Width*Height of them. A picture with Density set has no counts: Density is
 // then σ0 n (dimensionless) and DensitySigma its standard deviation per pixel, 0 when it
-// must be estimated from the picture.
+// must be estimated from the picture. Counts and density are finite everywhere, also where Good is
+// false and they do not matter.
 type Picture struct {
 	Width, Height int
 	Atoms         []float64

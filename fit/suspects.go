@@ -12,6 +12,8 @@ type measuredShape struct {
 	thermal, condensate   bool
 	width, radius         [2]float64 // squares
 	thermalSum, condenSum float64
+	alpha                 float64    // −ln z of the thermal part
+	fugacity              bool       // fitted
 	errs                  [4]float64 // relative errors of the ratios below
 }
 
@@ -20,7 +22,7 @@ const (
 	ratioT   = iota // T along axis 1 over axis 2
 	ratioMu         // μ likewise
 	ratioMuN        // μ from the radii over μ from N0
-	ratioSat        // N_thermal over its saturated number
+	ratioSat        // N_thermal over what T and fugacity hold, the saturated number beside a condensate
 	numRatios
 )
 
@@ -47,16 +49,36 @@ func (m *measuredShape) ratios(lab *Lab, flight, number float64) [numRatios]floa
 			r[ratioMuN] = math.Log(mu / n)
 		}
 	}
-	if m.thermal && m.condensate {
-		sat := math.Log(m.thermalSum * perSum / model.ThermalNumber(temp, 0, lab.Trap))
-		most := 0.0
-		if mix, err := model.SemiIdealAt(temp, mu, lab.Species.Mass, lab.Species.ScatteringLength, lab.Trap); err == nil {
-			most = math.Log(mix.Thermal / model.ThermalNumber(temp, 0, lab.Trap))
-		}
-		r[ratioSat] = sat - math.Max(0, math.Min(most, sat))
+	if m.thermal {
+		r[ratioSat] = m.surplus(math.Log(m.thermalSum*perSum), temp, mu, lab)
 	}
 	return r
 }
+
+// surplus is the logarithm of the thermal number, given by its own, over what T and the fugacity
+// hold, as far as it is beyond what interactions allow; NaN where the fugacity is not fitted.
+func (m *measuredShape) surplus(number, temp, mu float64, lab *Lab) float64 {
+	alpha, most := 0.0, thermalSurplus
+	switch {
+	case m.condensate:
+		most = 0
+		if mix, err := model.SemiIdealAt(temp, mu, lab.Species.Mass, lab.Species.ScatteringLength, lab.Trap); err == nil {
+			most = math.Log(mix.Thermal / model.ThermalNumber(temp, 0, lab.Trap))
+		}
+	case m.fugacity:
+		alpha = m.alpha
+	default:
+		return math.NaN()
+	}
+	over := number - math.Log(model.ThermalNumber(temp, alpha, lab.Trap))
+	if !m.condensate && alpha < steepAlpha && over < 0 {
+		return math.NaN() // a fugacity at the end of its range may be any smaller one
+	}
+	return over - math.Max(0, math.Min(most, over))
+}
+
+// thermalSurplus is the logarithm of what interactions may add to a thermal cloud near the transition.
+const thermalSurplus = 0.05
 
 // score is Σ(ratio/its error)², the error widened by three percent for what no fit knows.
 func (m *measuredShape) score(lab *Lab, flight, number float64) float64 {
@@ -185,7 +207,7 @@ func (s *session) suspects(r *Result) []string {
 		f = append(f, FlagWidths)
 	}
 	// Two widths of a thermal cloud alone cannot tell one setting from another.
-	if best > math.Max(scoreFine, before/30) || best > before/2 || !m.condensate {
+	if name == "" || best > math.Max(scoreFine, before/30) || best > before/2 || !m.condensate {
 		if len(f) == 0 {
 			f = append(f, FlagRatios)
 		}

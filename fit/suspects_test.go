@@ -68,6 +68,24 @@ func TestSlipsAreNamed(t *testing.T) {
 	}
 }
 
+// TestThermalContradiction: a thermal cloud holds what its temperature and fugacity say, unless the
+// pixel is wrong.
+func TestThermalContradiction(t *testing.T) {
+	right := cigarLab(t)
+	sc := &scene{lab: right, flight: 22e-3, T: 120e-9, alpha: 0.05, x: 80, y: 76, w: 160, h: 152, electrons: 1200, read: 6, seed: 22, powerNoise: 0.01}
+	sc.thermal = model.ThermalNumber(sc.T, sc.alpha, right.Trap)
+	pic := sc.draw(t)
+	if r := mustFit(t, sc, pic, Options{}); len(r.Flags) > 0 {
+		t.Errorf("nothing is wrong: %v", r.Flags)
+	}
+	lab, wrong := *right, *sc
+	lab.Optics.Pixel *= 0.7
+	wrong.lab = &lab
+	if r := mustFit(t, &wrong, pic, Options{}); !slices.Contains(r.Flags, FlagRatios) {
+		t.Errorf("a pixel three tenths small: %v", r.Flags)
+	}
+}
+
 // TestFlagTable: every flag has a sentence, no name twice.
 func TestFlagTable(t *testing.T) {
 	seen := map[string]bool{}
