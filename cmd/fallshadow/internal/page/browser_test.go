@@ -3,6 +3,7 @@
 package page_test
 
 import (
+	"bytes"
 	"context"
 	"fmt"
 	"os"
@@ -308,6 +309,39 @@ func TestBrowserVerdict(t *testing.T) {
 	until(t, tab, "it taken back", `document.querySelector('#verdict').hidden && !document.querySelector('.item.bad')`)
 	if r, err := n.watch.Row(ctx, "ramp_0005"); err != nil || r.Bad != "" {
 		t.Errorf("stored: %+v, %v", r, err)
+	}
+}
+
+// A shot that cannot be fitted shows its frame and one that cannot be read nothing, and
+// never what belongs to the shot before.
+func TestBrowserFailedShots(t *testing.T) {
+	dir := newNight(t, 5)
+	n := watchNight(t, dir, "127.0.0.1:0")
+	tab := browser(t)
+	do(t, tab, chromedp.EmulateViewport(1440, 900), chromedp.Navigate(n.url))
+	shown(t, tab, "ramp_0005")
+	const seen = `['#density image', '#residual image', '#cut1 canvas', '#density-scale:not([hidden])', '#residual-scale:not([hidden])', '#outlines:not([hidden])'].map((s) => +(document.querySelector(s) !== null)).join("") === %q`
+	until(t, tab, "all of a good shot", fmt.Sprintf(seen, "111111"))
+	data, err := os.ReadFile(filepath.Join(demoNight, "ramp_0006.fits"))
+	if err != nil {
+		t.Fatal(err)
+	}
+	head := 2880 * (1 + bytes.Index(data, []byte("END"+strings.Repeat(" ", 77)))/2880)
+	clear(data[head:])
+	for _, f := range []struct {
+		name string
+		data []byte
+		seen string
+	}{
+		{"ramp_0006", data, "100100"},
+		{"ramp_0007", []byte("no frames"), "000000"},
+	} {
+		if err := os.WriteFile(filepath.Join(dir, f.name+".fits"), f.data, 0o644); err != nil {
+			t.Fatal(err)
+		}
+		until(t, tab, "why "+f.name+" failed", fmt.Sprintf(`document.body.dataset.shown === %q && document.querySelector('#flags .failed')`, f.name))
+		until(t, tab, "what there is of it", fmt.Sprintf(seen, f.seen))
+		screenshot(t, tab, "failed-"+f.name)
 	}
 }
 

@@ -200,7 +200,7 @@ function far(is) {
 }
 
 function showCuts() {
-  if (!pictures.view?.width) return;
+  if (!pictures.view?.width) return cuts.show(null);
   const [, , width, height] = pictures.box();
   cuts.show(pictures.view, Math.hypot(width, height) / 2 * pictures.view.pixel_um);
 }

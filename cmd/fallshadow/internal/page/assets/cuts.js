@@ -6,7 +6,7 @@ import { $, css } from "./dom.js";
 class Cut {
   constructor(id) {
     this.box = $(id);
-    this.data = [[], [], [], []];
+    this.data = null;
     new ResizeObserver(() => this.fit()).observe(this.box);
   }
 
@@ -18,8 +18,9 @@ class Cut {
 
   build() {
     const { clientWidth: width, clientHeight: height } = this.box;
-    if (!width || !height) return;
     this.plot?.destroy();
+    this.plot = null;
+    if (!width || !height || !this.data) return;
     const axis = { stroke: css("--muted"), grid: { stroke: css("--line"), width: 1 }, ticks: { show: false }, font: "11px system-ui" };
     this.plot = new uPlot({
       width, height, padding: [6, 8, 0, 0],
@@ -35,11 +36,11 @@ class Cut {
     }, this.data, this.box);
   }
 
-  // show draws a cut as far from the centre as the picture shows.
+  // show draws a cut, if there is one, as far from the centre as the picture shows.
   show(cut, reach) {
     this.reach = reach;
-    this.data = cut ? [cut.um, cut.data, cut.thermal, cut.total] : [[], [], [], []];
-    if (this.plot) this.plot.setData(this.data);
+    this.data = cut ? [cut.um, cut.data, cut.thermal, cut.total] : null;
+    if (this.plot && cut) this.plot.setData(this.data);
     else this.build();
   }
 }

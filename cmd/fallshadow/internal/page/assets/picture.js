@@ -50,9 +50,7 @@ export class Pictures {
   }
 
   clear() {
-    this.view = null;
-    $("density").replaceChildren();
-    $("residual").replaceChildren();
+    this.show(null, null);
   }
 
   choose(part) {
@@ -69,13 +67,14 @@ export class Pictures {
   draw() {
     $("scale").textContent = this.root ? "by root" : "linear";
     for (const part of parts) $("tab-" + part).setAttribute("aria-pressed", this.part === part);
-    const v = this.view;
-    if (!v) return;
-    const frame = this.part === "frame" || !v.width;
+    const v = this.view, frame = this.part === "frame" || !v?.width;
+    $("density-scale").hidden = !v;
+    $("residual-scale").hidden = !v?.width;
     $("scale").hidden = $("outlines").hidden = frame;
-    $("fitted").hidden = !frame || !v.width;
-    for (const part of ["thermal", "condensate"]) $("outline-" + part).hidden = !v.outlines?.some((o) => o.part === part);
-    if (frame) this.drawFrame(v);
+    $("fitted").hidden = !frame || !v?.width;
+    for (const part of ["thermal", "condensate"]) $("outline-" + part).hidden = !v?.outlines?.some((o) => o.part === part);
+    if (!v) $("density").replaceChildren();
+    else if (frame) this.drawFrame(v);
     else this.drawDensity(v);
     this.drawResidual();
   }
@@ -125,7 +124,7 @@ export class Pictures {
 
   drawResidual() {
     const v = this.view, stage = $("residual");
-    if (!v.width) return stage.replaceChildren();
+    if (!v?.width) return stage.replaceChildren();
     stage.setAttribute("viewBox", this.box().join(" "));
     const lines = (v.outlines || []).map((o) => svg("path", {
       class: "axis", fill: "none", d: path(o.line),
