@@ -59,10 +59,36 @@ func (n *Night) counts(raw *imageio.Raw, role imageio.Role) (*litFrame, error) {
 		return nil, refuse(WrongSize, "%s: %dx%d instead of %dx%d pixels", name, f.Width, f.Height, n.win.frame.X, n.win.frame.Y)
 	}
 	l := &litFrame{pix: n.win.crop(f), bad: append([]bool(nil), n.bad...)}
-	if err := l.judge(n.Camera.FullScale, name); err != nil {
+	full, err := l.judge(n.Camera.FullScale, name)
+	if err == nil && n.Camera.ElectronsPerCount > 0 && l.saturated*1000 > len(l.pix) {
+		err = l.shun(full, n, name)
+	}
+	if err != nil {
 		return nil, err
 	}
 	return l, nil
+}
+
+// headroom is how many standard deviations a mean must stand below full scale for noise not to be
+// clipped.
+const headroom = 4
+
+// shun marks the pixels whose mean, that of their neighbours, is within its noise of full scale: those
+// that fluctuated down are left there, and their mean is too low. It refuses a frame that is so in
+// more than half.
+func (l *litFrame) shun(full float64, n *Night, name string) error {
+	g, read := n.Camera.ElectronsPerCount, n.Camera.ReadNoise
+	near := 0
+	for i, v := range smooth(smooth(l.pix, n.win.width, 0), n.win.width, 0) {
+		if v+headroom*math.Sqrt(v/g+read*read/(g*g)) >= full {
+			l.bad[i] = true
+			near++
+		}
+	}
+	if near*2 > len(l.pix) {
+		return refuse(Saturated, "%s: %.0f %% of the pixels are within their noise of %g counts", name, 100*float64(near)/float64(len(l.pix)), full)
+	}
+	return nil
 }
 
 // subtract turns counts into electrons above a dark.
@@ -81,20 +107,20 @@ func (n *Night) subtract(l *litFrame, d dark) {
 	fill(l.pix, n.win.width, l.bad)
 }
 
-// judge counts saturated pixels and refuses frames that are blank or mostly saturated.
-// Without a full scale the highest value counts as one where a thousandth of all pixels
+// judge counts saturated pixels and refuses frames that are blank or mostly saturated; it returns the
+// full scale, 0 where there is none. Without a full scale the highest value counts as one where a thousandth of all pixels
 // have it.
-func (l *litFrame) judge(fullScale float64, name string) error {
+func (l *litFrame) judge(fullScale float64, name string) (float64, error) {
 	low, high, at := extremes(l.pix)
 	if full := fullScale; high == low && high > 0 && (full > 0 && high >= full || full == 0 && isFullScale(high)) {
-		return refuse(Saturated, "%s: every pixel at %g counts", name, high)
+		return 0, refuse(Saturated, "%s: every pixel at %g counts", name, high)
 	}
 	if !(high > low) {
-		return refuse(Blank, "%s: all %g counts", name, l.pix[0])
+		return 0, refuse(Blank, "%s: all %g counts", name, l.pix[0])
 	}
 	if fullScale == 0 {
 		if at < 20 || at*1000 < len(l.pix) || high-low < 100 {
-			return nil
+			return 0, nil
 		}
 		fullScale = high
 	}
@@ -105,9 +131,9 @@ func (l *litFrame) judge(fullScale float64, name string) error {
 		}
 	}
 	if l.saturated*5 > len(l.pix) {
-		return refuse(Saturated, "%s: %.0f %% of the pixels at %g counts or more", name, 100*float64(l.saturated)/float64(len(l.pix)), fullScale)
+		return 0, refuse(Saturated, "%s: %.0f %% of the pixels at %g counts or more", name, 100*float64(l.saturated)/float64(len(l.pix)), fullScale)
 	}
-	return nil
+	return fullScale, nil
 }
 
 // isFullScale says whether a count is the largest of a converter of 8 to 16 bits.

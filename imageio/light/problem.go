@@ -40,7 +40,7 @@ var Problems = []Problem{
 	{EmptyProbe, "the light frame holds no light above the dark", "check the probe shutter and the order of the planes", true},
 	{Unlit, "the atoms frame holds no light though the light frame does", "check the probe pulse of the first exposure and the order of the planes", true},
 	{Exchanged, "the light frame has a hole where the atoms frame has none", "the two are exchanged: correct the order of the planes", true},
-	{PartSaturate, "more than one pixel in a thousand is saturated and masked", "lower the probe, the exposure or the gain", false},
+	{PartSaturate, "more than one pixel in a thousand is saturated; these and all whose noise full scale clips are masked", "lower the probe, the exposure or the gain", false},
 	{Brighter, "along the border the atoms frame is brighter than the light frame by more than a quarter", "check that the probe pulses are alike and that the order of the planes is right", false},
 	{Power, "along the border the atoms frame holds less than three quarters of the light frame", "check the probe's power; if the cloud reaches the border, enlarge the region", false},
 	{OddDark, "the dark frame does not look like those of the night; the shot's own was used", "look for stray light in the dark exposure", false},
