@@ -1,6 +1,7 @@
 package check
 
 import (
+	"cmp"
 	"context"
 	"fmt"
 	"slices"
@@ -112,7 +113,9 @@ func (v *visit) judgeFits() {
 		}
 		return
 	}
-	slices.SortStableFunc(suspects, func(a, b raised) int { return len(b.where) - len(a.where) })
+	slices.SortStableFunc(suspects, func(a, b raised) int {
+		return cmp.Or(b.condensed-a.condensed, len(b.where)-len(a.where))
+	})
 	text := suspects[0].Name + ": " + suspects[0].Sentence
 	for _, f := range suspects[1:] {
 		text += fmt.Sprintf(" (%s instead: %s)", some(f.where), f.Name)
@@ -130,17 +133,23 @@ func (v *visit) judgeFits() {
 // condensates counts the fits with a condensate, whose ratios tell settings apart.
 func (v *visit) condensates() (n int) {
 	for i := range v.fitted {
-		if m := v.fitted[i].facts.Fit.Model; m == fit.ModelBimodal || m == fit.ModelCondensate {
+		if v.fitted[i].condensed() {
 			n++
 		}
 	}
 	return n
 }
 
+func (f *fitted) condensed() bool {
+	m := f.facts.Fit.Model
+	return m == fit.ModelBimodal || m == fit.ModelCondensate
+}
+
 // raised is a flag and the shots that have it.
 type raised struct {
 	fit.Flag
-	where []string
+	where     []string
+	condensed int // of them with a condensate, whose ratios name a setting best
 }
 
 // raised lists the flags of the fits that are of a kind, in the order of their table.
@@ -150,6 +159,9 @@ func (v *visit) raised(kind func(flag string) bool) (list []raised) {
 		for i := range v.fitted {
 			if f := &v.fitted[i]; slices.Contains(f.row.Flags, flag.Name) {
 				r.where = append(r.where, v.look.Shots[f.shot].Name)
+				if f.condensed() {
+					r.condensed++
+				}
 			}
 		}
 		if kind(flag.Name) && len(r.where) > 0 {
