@@ -293,7 +293,7 @@ func TestSlips(t *testing.T) {
 		problems int
 		want     []string
 	}{
-		{"name of the flight", []string{`"TOF"`, `"TOFF"`}, 2, []string{"TOFF is in no header", "no TOFF in the header", "these hold numbers: TOF, SHOT", "rubidium_0001 .*no flight"}},
+		{"name of the flight", []string{`"TOF"`, `"TOFF"`}, 1, []string{"TOFF is in no header", "no TOFF in the header", "these hold numbers: TOF, SHOT", "rubidium_0001 .*no flight"}},
 		{"order of the planes", []string{`["atoms", "light"`, `["light", "atoms"`}, 1, []string{"rubidium_0001, .*", "the two are exchanged: correct the order of the planes"}},
 		{"unit of the flight", []string{`"TOF"`, "\"TOF\"\nunit = \"us\""}, 1, []string{"the longest flight is 0.024 ms"}},
 		{"region", []string{"[shots]", "[region]\nx = 100\ny = 100\nwidth = 200\nheight = 200\n[shots]"}, 1, []string{"none of which a batch can fit", "columns 100 to 299", "is not inside a frame of 256x256 pixels"}},

@@ -82,14 +82,13 @@ const (
 
 // judgeFlights finds every shot's time of flight.
 func (v *visit) judgeFlights() {
-	missing, longest := 0, 0.0
+	longest := 0.0
 	for i, s := range v.look.Shots {
 		if s.Err != nil {
 			continue
 		}
 		var err error
 		if v.shots[i].flight, err = v.Settings.Flight(s.Meta); err != nil {
-			missing++
 			v.shots[i].refuse("no flight")
 			v.trouble.problem(s.Name, "%v", err)
 		}
@@ -97,11 +96,6 @@ func (v *visit) judgeFlights() {
 	}
 	if longest > 0 && longest < leastFlight || longest > mostFlight {
 		v.trouble.problem("", "the longest flight is %g ms, where %g to %g is usual: check unit and zero_ms in [flight]", longest, leastFlight, mostFlight)
-	}
-	if missing > 0 && missing == len(v.shots)-v.unread() {
-		if names := v.numeric(); len(names) > 0 {
-			v.trouble.problem("", "[flight] from = %q finds nothing; these hold numbers: %s", v.Settings.Clock.From, some(names))
-		}
 	}
 }
 

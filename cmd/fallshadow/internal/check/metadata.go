@@ -10,12 +10,10 @@ import (
 	"strings"
 
 	"fallshadow/cmd/fallshadow/internal/report"
+	"fallshadow/cmd/fallshadow/internal/settings"
 	"fallshadow/imageio"
 	"fallshadow/imageio/fits"
 )
-
-// structural are header keywords that tell of the file and not of the shot.
-var structural = regexp.MustCompile(`^(SIMPLE|BITPIX|NAXIS\d*|EXTEND|BSCALE|BZERO|PCOUNT|GCOUNT|XTENSION|EXTNAME|CHECKSUM|DATASUM|COMMENT|HISTORY|END|)$`)
 
 // entry is one key of the metadata over the readable shots, in whatever case.
 type entry struct {
@@ -33,7 +31,7 @@ func (v *visit) entriesOf() []entry {
 			continue
 		}
 		for _, key := range slices.Sorted(maps.Keys(s.Meta)) {
-			if structural.MatchString(key) {
+			if settings.IsStructural(key) {
 				continue
 			}
 			folded := strings.ToLower(key)
@@ -168,27 +166,6 @@ func (v *visit) scanSource(name string) string {
 		return name + " is nowhere"
 	}
 	return fmt.Sprintf("%s: %s, from %s", e.key, e.span(), e.source())
-}
-
-// numeric lists the keys that hold a number in every readable shot, those that are likely
-// a time first.
-func (v *visit) numeric() []string {
-	var likely, others []string
-	for _, e := range v.entries {
-		ok := true
-		for _, text := range e.values {
-			_, err := fits.ParseNumber(text)
-			ok = ok && err == nil
-		}
-		switch name := strings.ToLower(e.key); {
-		case !ok:
-		case strings.Contains(name, "tof") || strings.Contains(name, "flight") || strings.Contains(name, "time") || strings.HasSuffix(name, "ms"):
-			likely = append(likely, e.key)
-		default:
-			others = append(others, e.key)
-		}
-	}
-	return append(likely, others...)
 }
 
 // writeMetadata lists what came with the shots.

@@ -6,6 +6,7 @@ import (
 	"strings"
 	"testing"
 
+	"fallshadow/cmd/fallshadow/internal/night"
 	"fallshadow/fit"
 	"fallshadow/imageio"
 )
@@ -150,6 +151,29 @@ func TestTroubleGathers(t *testing.T) {
 	tr.write(&p)
 	if got := p.String(); got != "\nProblems (2)\n   1. a, b, c and 2 more: broken\n   2. all wrong\n" {
 		t.Errorf("got %q", got)
+	}
+}
+
+// TestLines: of a long list shots that would fail are shown, all of them up to a number.
+func TestLines(t *testing.T) {
+	for _, c := range []struct {
+		shots, failed int
+		lines         int
+		want          string
+	}{{12, 0, 12, ""}, {20, 0, 7, "... 14 more"}, {20, 12, 19, "... 2 more"}, {200, 120, 47, "... 154 more 80 of them would fail"}} {
+		v := &visit{shots: make([]shot, c.shots), look: &night.Look{Shots: make([]night.Seen, c.shots)}}
+		v.Settings = parsed(t)
+		for i := range c.failed {
+			v.shots[4+i].refuse("unfinished")
+		}
+		lines := v.lines()[1:]
+		text := ""
+		for _, l := range lines {
+			text += strings.Join(strings.Fields(strings.Join(l, " ")), " ") + "\n"
+		}
+		if len(lines) != c.lines || !strings.Contains(text, c.want) {
+			t.Errorf("%d of %d shots fail: %d lines, want %d with %q:\n%s", c.failed, c.shots, len(lines), c.lines, c.want, text)
+		}
 	}
 }
 

@@ -146,39 +146,58 @@ func (v *visit) commonSize() (size image.Point) {
 	return size
 }
 
-// lines is the table of shots: all of them, or the first, the last and those with
-// remarks.
+// lines is the table of shots: all of them, or the first, the last, those that a batch
+// would fail, and those with remarks where they are the lesser part.
 func (v *visit) lines() [][]string {
 	scan := v.Settings.Shots.Scan
 	head := append([]string{"shot", "files", "frames", "pixels", "flight/ms"}, scan...)
 	lines := [][]string{append(head, "atoms peak", "light peak", "remarks")}
-	skipped := 0
+	skipped, failed := 0, 0
 	flush := func() {
 		if skipped > 0 {
 			row := make([]string, len(lines[0]))
 			row[0] = fmt.Sprintf("... %d more", skipped)
+			if failed > 0 {
+				row[len(row)-1] = fmt.Sprintf("%d of them would fail", failed)
+			}
 			lines = append(lines, row)
-			skipped = 0
+			skipped, failed = 0, 0
 		}
 	}
-	remarked := 0
+	shown := v.shown()
 	for i := range v.shots {
-		if len(v.shots[i].remarks) > 0 {
-			remarked++
-		}
-	}
-	for i := range v.shots {
-		const first, last, most = 4, 2, 12
-		shown := v.Every || len(v.shots) <= most || i < first || i >= len(v.shots)-last ||
-			len(v.shots[i].remarks) > 0 && 2*remarked < len(v.shots)
-		if !shown {
+		if !shown[i] {
 			skipped++
+			if v.shots[i].unusable {
+				failed++
+			}
 			continue
 		}
 		flush()
 		lines = append(lines, v.row(i))
 	}
 	return lines
+}
+
+// shown chooses the shots that have a line of their own.
+func (v *visit) shown() []bool {
+	const first, last, most, mostFailed = 4, 2, 12, 40
+	remarked, failed, n := 0, 0, len(v.shots)
+	for i := range v.shots {
+		if len(v.shots[i].remarks) > 0 {
+			remarked++
+		}
+	}
+	list := make([]bool, n)
+	for i := range list {
+		s := &v.shots[i]
+		list[i] = v.Every || n <= most || i < first || i >= n-last || len(s.remarks) > 0 && 2*remarked < n
+		if s.unusable {
+			failed++
+			list[i] = list[i] || failed <= mostFailed
+		}
+	}
+	return list
 }
 
 func (v *visit) row(i int) []string {
