@@ -16,13 +16,13 @@ import (
 
 // batchCmd fits a night.
 type batchCmd struct {
-	Night     string `arg:"" help:"Folder with the shots of the night. It is only read."`
-	Settings  string `placeholder:"FILE" help:"Settings of the laboratory; fallshadow.toml in the night's folder if left out."`
-	Out       string `placeholder:"DIR" help:"Folder for ledger and table; results/NIGHT if left out. Within the night's folder it must be results."`
-	Again     bool   `help:"Fit every shot, also those whose results are current."`
-	Workers   int    `placeholder:"N" help:"Shots to fit at a time; one a processor if left out. The results do not depend on it."`
-	OwnRegion bool   `help:"Leave out the regions of interest that were drawn by hand."`
-	Pictures  bool   `help:"Draw a picture of every shot, PNG, into the folder pictures beside the table."`
+	Night     string     `arg:"" help:"Folder with the shots of the night. It is only read."`
+	Settings  string     `placeholder:"FILE" help:"Settings of the laboratory; fallshadow.toml in the night's folder if left out."`
+	Out       string     `placeholder:"DIR" help:"Folder for ledger and table; results/NIGHT if left out. Within the night's folder it must be results."`
+	Again     bool       `help:"Fit every shot, also those whose results are current."`
+	Workers   atLeastOne `placeholder:"N" help:"Shots to fit at a time; one a processor if left out. The results do not depend on it."`
+	OwnRegion bool       `help:"Leave out the regions of interest that were drawn by hand."`
+	Pictures  bool       `help:"Draw a picture of every shot, PNG, into the folder pictures beside the table."`
 
 	Columns columnsFlag `help:"Print what the columns and the flags of the table mean, and stop."`
 }
@@ -55,7 +55,7 @@ func (c *batchCmd) Run(ctx context.Context, t terminal) error {
 		return err
 	}
 	options := night.Options{
-		Dir: c.Night, Out: c.Out, Settings: lab, Workers: c.Workers, Again: c.Again, OwnRegion: c.OwnRegion,
+		Dir: c.Night, Out: c.Out, Settings: lab, Workers: int(c.Workers), Again: c.Again, OwnRegion: c.OwnRegion,
 	}
 	if c.Pictures {
 		if options.Out == "" {

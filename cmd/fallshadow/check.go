@@ -14,11 +14,11 @@ import (
 
 // checkCmd looks at a night before it is fitted.
 type checkCmd struct {
-	Folder   string `arg:"" help:"Folder with the shots of the night. It is only read."`
-	Settings string `placeholder:"FILE" help:"Settings of the laboratory; fallshadow.toml in the night's folder if left out."`
-	Fits     int    `default:"3" placeholder:"N" help:"Shots with a condensate to fit on trial (3 if left out); 0 fits none."`
-	Every    bool   `help:"Print a line for every shot of a long night."`
-	Workers  int    `placeholder:"N" help:"Shots to read at a time; one a processor if left out."`
+	Folder   string     `arg:"" help:"Folder with the shots of the night. It is only read."`
+	Settings string     `placeholder:"FILE" help:"Settings of the laboratory; fallshadow.toml in the night's folder if left out."`
+	Fits     int        `default:"3" placeholder:"N" help:"Shots with a condensate to fit on trial (3 if left out); 0 fits none."`
+	Every    bool       `help:"Print a line for every shot of a long night."`
+	Workers  atLeastOne `placeholder:"N" help:"Shots to read at a time; one a processor if left out."`
 }
 
 // Run prints what a batch would read and what is wrong with it. Nothing is written.
@@ -31,7 +31,7 @@ func (c *checkCmd) Run(ctx context.Context, t terminal) error {
 		c.Settings = filepath.Join(c.Folder, settings.FileName)
 	}
 	out, err := check.Night(ctx, check.Options{
-		Dir: c.Folder, File: c.Settings, Settings: lab, Workers: c.Workers, Fits: max(c.Fits, 0), Every: c.Every,
+		Dir: c.Folder, File: c.Settings, Settings: lab, Workers: int(c.Workers), Fits: max(c.Fits, 0), Every: c.Every,
 	}, newProgress(t))
 	if ctx.Err() != nil {
 		return errors.New("stopped before the end; nothing was written")

@@ -14,13 +14,13 @@ import (
 
 // simulateCmd writes a night of raw shots whose truth is known.
 type simulateCmd struct {
-	Folder   string  `arg:"" optional:"" help:"New folder for the night."`
-	Preset   string  `default:"demo" help:"Scenario that comes with the program, with the settings of its laboratory; --list names them."`
-	Scenario string  `placeholder:"FILE" help:"Scenario of your own instead of the preset's, such as the simulated.toml of a simulated night."`
-	Settings string  `placeholder:"FILE" help:"Settings of your own laboratory instead of the preset's."`
-	Shots    int     `help:"Number of shots instead of the scenario's."`
-	Seed     *uint64 `help:"Seed instead of the scenario's. The same seed gives the same bytes."`
-	List     bool    `help:"List the presets and stop."`
+	Folder   string     `arg:"" optional:"" help:"New folder for the night."`
+	Preset   string     `default:"demo" help:"Scenario that comes with the program, with the settings of its laboratory; --list names them."`
+	Scenario string     `placeholder:"FILE" help:"Scenario of your own instead of the preset's, such as the simulated.toml of a simulated night."`
+	Settings string     `placeholder:"FILE" help:"Settings of your own laboratory instead of the preset's."`
+	Shots    atLeastOne `placeholder:"N" help:"Number of shots instead of the scenario's."`
+	Seed     *uint64    `help:"Seed instead of the scenario's. The same seed gives the same bytes."`
+	List     bool       `help:"List the presets and stop."`
 }
 
 // Run draws the night, or lists the presets on out.
@@ -66,7 +66,7 @@ func (c *simulateCmd) night() (*simulate.Night, error) {
 		}
 	}
 	if c.Shots != 0 {
-		scenario = scenario.WithShots(c.Shots)
+		scenario = scenario.WithShots(int(c.Shots))
 	}
 	if c.Seed != nil {
 		scenario.Seed = *c.Seed

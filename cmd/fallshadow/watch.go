@@ -23,7 +23,7 @@ type watchCmd struct {
 	Night    string        `arg:"" help:"Folder that the camera program writes to. It is only read, and may appear later."`
 	Settings string        `placeholder:"FILE" help:"Settings of the laboratory; fallshadow.toml in the night's folder if left out. They are read again when they change."`
 	Out      string        `placeholder:"DIR" help:"Folder for ledger and table; results/NIGHT if left out."`
-	Workers  int           `placeholder:"N" help:"Shots to fit at a time; one a processor if left out."`
+	Workers  atLeastOne    `placeholder:"N" help:"Shots to fit at a time; one a processor if left out."`
 	Poll     time.Duration `default:"2s" help:"How often to look for shots where the system sends no events, as on a network share."`
 	JSON     bool          `name:"json" help:"Print each shot as a line of JSON."`
 	Page     string        `placeholder:"HOST:PORT" help:"Address of the page; 127.0.0.1:8417, or a free port, if left out. An address that other machines reach asks them for a token."`
@@ -46,7 +46,7 @@ func (c *watchCmd) Run(ctx context.Context, t terminal) error {
 		screen = page.New(nameOf(c.Night))
 		hall = append(hall, screen)
 	}
-	w, err := watch.New(watch.Options{Dir: c.Night, Out: c.Out, Settings: c.Settings, Workers: c.Workers, Poll: c.Poll}, hall)
+	w, err := watch.New(watch.Options{Dir: c.Night, Out: c.Out, Settings: c.Settings, Workers: int(c.Workers), Poll: c.Poll}, hall)
 	if err != nil {
 		return err
 	}
