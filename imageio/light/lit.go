@@ -73,13 +73,15 @@ func (n *Night) counts(raw *imageio.Raw, role imageio.Role) (*litFrame, error) {
 // clipped.
 const headroom = 4
 
-// shun marks the pixels whose mean, that of their neighbours, is within its noise of full scale: those
-// that fluctuated down are left there, and their mean is too low. It refuses a frame that is so in
-// more than half.
+// shun marks the pixels whose neighbours' mean is within its noise of full scale: those that
+// fluctuated down are left there, and their mean is too low. A pixel has no say in its own case,
+// or those that fluctuated up would be shunned. It refuses a frame that is so in more than half.
 func (l *litFrame) shun(full float64, n *Night, name string) error {
 	g, read := n.Camera.ElectronsPerCount, n.Camera.ReadNoise
-	near := 0
-	for i, v := range smooth(smooth(l.pix, n.win.width, 0), n.win.width, 0) {
+	near, width, height := 0, n.win.width, len(l.pix)/n.win.width
+	for i, mean := range smooth(l.pix, width, 0) {
+		pixels := float64(across(i%width, width) * across(i/width, height))
+		v := max((mean*pixels-l.pix[i])/(pixels-1), 0)
 		if v+headroom*math.Sqrt(v/g+read*read/(g*g)) >= full {
 			l.bad[i] = true
 			near++
@@ -106,6 +108,9 @@ func (n *Night) subtract(l *litFrame, d dark) {
 	}
 	fill(l.pix, n.win.width, l.bad)
 }
+
+// across is how many of n places are at most one from place i.
+func across(i, n int) int { return min(i+1, n-1) - max(i-1, 0) + 1 }
 
 // judge counts saturated pixels and refuses frames that are blank or mostly saturated; it returns the
 // full scale, 0 where there is none. Without a full scale the highest value counts as one where a thousandth of all pixels

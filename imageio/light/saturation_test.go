@@ -15,7 +15,7 @@ func TestClippedNoise(t *testing.T) {
 	s.waist, s.electrons, s.offset = 260, 3960, 60
 	const depth, full = 0.05, 4095
 	s.depth = func(_, _ float64) float64 { return depth }
-	raws := s.night(4)
+	raws := s.night(24)
 	clip := func() {
 		for _, r := range raws {
 			for _, role := range []imageio.Role{imageio.Atoms, imageio.Light} {
