@@ -85,8 +85,8 @@ func (c *batchCmd) show(t terminal, out *night.Outcome) error {
 	}
 	fmt.Fprintf(t.out, "\n%s: %d ok, %d failed; %d done now, %d current before\n%s\n",
 		shots(len(out.Rows)), len(out.Rows)-out.Failed, out.Failed, out.Fitted, out.Kept, filepath.Join(out.Dir, report.CSVName))
-	if out.Misplaced != "" {
-		fmt.Fprintf(t.err, "caution: %s\n", out.Misplaced)
+	for _, text := range out.Cautions {
+		fmt.Fprintf(t.err, "caution: %s\n", text)
 	}
 	const shown = 5
 	for i, s := range out.Strays {

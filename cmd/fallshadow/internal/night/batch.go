@@ -49,9 +49,8 @@ type Outcome struct {
 	Kept   int          // shots whose rows were current
 	Failed int          // rows of failed shots
 	Strays []imageio.Stray
-	// Misplaced says that the settings list bad pixels outside of the first frames, "" that
-	// they do not.
-	Misplaced string
+	// Cautions are of settings that frames, or what was measured of the camera, show to be odd.
+	Cautions []string
 }
 
 // Results returns the folder of a night's results: results/<night> below the working
@@ -95,11 +94,17 @@ type batch struct {
 // table, rows that are not current are flagged, and Batch returns the cause of ctx with
 // the outcome so far.
 func Batch(ctx context.Context, o Options, p Progress) (*Outcome, error) {
-	prepare := newBench
-	if o.Pictures != nil {
-		prepare = newBenchWithMaps
+	var known *settings.Settings
+	out, err := run(ctx, o, p, newBench(o.Pictures != nil, func(s *settings.Settings) { known = s }))
+	if out != nil && known != nil {
+		before := o.Settings.Warnings()
+		for _, w := range known.Warnings() {
+			if !slices.Contains(before, w) {
+				out.Cautions = append(out.Cautions, w)
+			}
+		}
 	}
-	return run(ctx, o, p, prepare)
+	return out, err
 }
 
 func run(ctx context.Context, o Options, p Progress, prepare prepare) (_ *Outcome, err error) {

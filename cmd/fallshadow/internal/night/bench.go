@@ -40,22 +40,20 @@ type bench struct {
 	finds      bool // the part of the frame that is fitted
 }
 
-func newBench(ctx context.Context, s *settings.Settings, region image.Rectangle, f *frames) (func() measure, error) {
-	b, err := setUp(ctx, s, region, f)
-	if err != nil {
-		return nil, err
+// newBench returns what makes ready, with maps for the eye in the results or without. told,
+// where not nil, is told the settings with what was measured of the camera filled in.
+func newBench(maps bool, told func(*settings.Settings)) prepare {
+	return func(ctx context.Context, s *settings.Settings, region image.Rectangle, f *frames) (func() measure, error) {
+		b, err := setUp(ctx, s, region, f)
+		if err != nil {
+			return nil, err
+		}
+		b.options.Maps = maps
+		if told != nil {
+			told(b.settings)
+		}
+		return b.worker, nil
 	}
-	return b.worker, nil
-}
-
-// newBenchWithMaps is newBench whose results hold maps for the eye.
-func newBenchWithMaps(ctx context.Context, s *settings.Settings, region image.Rectangle, f *frames) (func() measure, error) {
-	b, err := setUp(ctx, s, region, f)
-	if err != nil {
-		return nil, err
-	}
-	b.options.Maps = true
-	return b.worker, nil
 }
 
 func setUp(ctx context.Context, s *settings.Settings, region image.Rectangle, f *frames) (*bench, error) {

@@ -99,7 +99,7 @@ func TestRegionIsFound(t *testing.T) {
 	dir, made := wideNight(t)
 	shows := func(s *settings.Settings, most int) *Outcome {
 		a := &regions{}
-		out, err := run(context.Background(), Options{Dir: dir, Out: t.TempDir(), Settings: s, Pictures: a}, silent{}, newBenchWithMaps)
+		out, err := run(context.Background(), Options{Dir: dir, Out: t.TempDir(), Settings: s, Pictures: a}, silent{}, newBench(true, nil))
 		if err != nil {
 			t.Fatal(err)
 		}

@@ -23,7 +23,9 @@ func (b *batch) work(ctx context.Context) (*Outcome, error) {
 	out := &Outcome{Dir: b.Out, Strays: b.scanned.Strays}
 	if len(b.readable) > 0 {
 		size := b.shots[b.readable[0]].size
-		out.Misplaced = b.Settings.Misplaced(size[0], size[1])
+		if text := b.Settings.Misplaced(size[0], size[1]); text != "" {
+			out.Cautions = append(out.Cautions, text)
+		}
 	}
 	unread := 0
 	for i := range b.shots {
