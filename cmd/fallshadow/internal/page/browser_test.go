@@ -343,6 +343,15 @@ func TestBrowserFailedShots(t *testing.T) {
 		until(t, tab, "what there is of it", fmt.Sprintf(seen, f.seen))
 		screenshot(t, tab, "failed-"+f.name)
 	}
+	eval[bool](t, tab, `window.fault = '', addEventListener('error', (e) => { window.fault = e.message; }), true`)
+	do(t, tab, chromedp.KeyEvent(kb.ArrowLeft))
+	until(t, tab, "the frame", fmt.Sprintf(seen, "100100"))
+	do(t, tab, chromedp.KeyEvent("r"), chromedp.KeyEvent(kb.ArrowRight))
+	until(t, tab, "nothing to draw on", fmt.Sprintf(seen, "000000"))
+	do(t, tab, chromedp.Click("#density"), chromedp.Click("#drawing-whole"), chromedp.KeyEvent(kb.Enter))
+	if fault := eval[string](t, tab, `window.fault`); fault != "" {
+		t.Errorf("drawing on nothing: %s", fault)
+	}
 }
 
 // A region is drawn with the mouse on the whole frame and holds from the next shot on.

@@ -14,6 +14,7 @@ export class RegionTool {
     stage.addEventListener("pointercancel", () => { this.from = null; });
     $("drawing-take").addEventListener("click", () => this.take());
     $("drawing-whole").addEventListener("click", () => {
+      if (!this.draws) return;
       const [w, h] = this.pictures.view.frame;
       this.set([0, 0, w, h]);
     });
@@ -21,8 +22,13 @@ export class RegionTool {
     $("drawing-cancel").addEventListener("click", () => this.end());
   }
 
+  // framed reports whether there is a frame to draw on; a shot that comes meanwhile may have none.
+  get framed() { return this.pictures.view?.frame[0] > 0; }
+
+  get draws() { return this.on && this.framed; }
+
   begin() {
-    if (!this.pictures.view?.frame[0]) return;
+    if (!this.framed) return;
     this.on = true;
     this.before = this.pictures.part;
     this.pictures.part = "frame";
@@ -58,14 +64,14 @@ export class RegionTool {
   }
 
   down(e) {
-    if (!this.on) return;
+    if (!this.draws) return;
     e.preventDefault();
     $("density").setPointerCapture(e.pointerId);
     this.from = this.point(e);
   }
 
   move(e) {
-    if (!this.on || !this.from) return;
+    if (!this.draws || !this.from) return;
     const [x, y] = this.point(e), [a, b] = this.from;
     this.set([Math.min(a, x), Math.min(b, y), Math.max(a, x), Math.max(b, y)]);
   }
