@@ -79,19 +79,26 @@ func allowance(v, readVar float64) float64 {
 
 // suspects visits the pixels inside the middle one of three rows that a cheap test does not
 // let pass, as it does nearly all: an outlier differs by more than the noise part of the
-// allowance from the lowest of its four next neighbours, or, a hole, from the highest.
+// allowance from the lowest of its four next neighbours, or, a hole, from the highest. Before
+// that, none does that differs from each by less than the noise of a level that no neighbour is
+// below.
 func suspects(rows []float64, width int, readVar float64, holes bool, visit func(x int)) {
 	above, row, below := rows[:width], rows[width:2*width], rows[2*width:3*width]
-	left := row[0]
 	for x := 1; x < len(row)-1; x++ {
-		v, right, up, down := row[x], row[x+1], above[x], below[x]
-		low := min(left, right, up, down)
-		if beyond(v-low, low, readVar) || holes && beyond(max(left, right, up, down)-v, v, readVar) {
+		v, left, right, up, down := row[x], row[x-1], row[x+1], above[x], below[x]
+		most := math.Float64frombits(max(size(v-left), size(v-right), size(v-up), size(v-down)))
+		if most*most <= spikeSigmas*spikeSigmas*(v-most+readVar) {
+			continue
+		}
+		low, high := min(left, right, up, down), max(left, right, up, down)
+		if beyond(v-low, low, readVar) || holes && beyond(high-v, v, readVar) {
 			visit(x)
 		}
-		left = v
 	}
 }
+
+// size are the bits of |x|, which are in the order of numbers.
+func size(x float64) uint64 { return math.Float64bits(x) &^ (1 << 63) }
 
 // beyond compares a difference upwards with the noise part of the allowance at a level.
 func beyond(d, level, readVar float64) bool {

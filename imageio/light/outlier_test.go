@@ -2,6 +2,8 @@ package light
 
 import (
 	"math"
+	"math/rand/v2"
+	"slices"
 	"testing"
 
 	"fallshadow/imageio"
@@ -60,6 +62,39 @@ func TestFalseMasks(t *testing.T) {
 				t.Errorf("%d of %d good pixels masked, at most %d allowed", masked, len(raws)*128*128, limit)
 			}
 		})
+	}
+}
+
+// TestSuspects checks that a first glance passes over no pixel that the test behind it would find,
+// at few and many counts and beside pixels that are no numbers.
+func TestSuspects(t *testing.T) {
+	const width, readVar = 512, 36
+	rng := rand.New(rand.NewPCG(11, 4))
+	for _, level := range []float64{0, 3, 100, 3000} {
+		rows := make([]float64, 3*width)
+		for i := range rows {
+			rows[i] = level + math.Sqrt(level+readVar)*rng.NormFloat64()
+			switch rng.IntN(200) {
+			case 0, 1:
+				rows[i] += 2000 * (rng.Float64() - 0.5)
+			case 2:
+				rows[i] = []float64{math.NaN(), math.Inf(1), math.Inf(-1)}[rng.IntN(3)]
+			}
+		}
+		for _, holes := range []bool{false, true} {
+			var got, want []int
+			suspects(rows, width, readVar, holes, func(x int) { got = append(got, x) })
+			for x := 1; x < width-1; x++ {
+				v, near := rows[width+x], []float64{rows[width+x-1], rows[width+x+1], rows[x], rows[2*width+x]}
+				low := min(near[0], near[1], near[2], near[3])
+				if beyond(v-low, low, readVar) || holes && beyond(max(near[0], near[1], near[2], near[3])-v, v, readVar) {
+					want = append(want, x)
+				}
+			}
+			if len(want) < 3 || !slices.Equal(got, want) {
+				t.Errorf("level %g, holes %v: got %v, want %v", level, holes, got, want)
+			}
+		}
 	}
 }
 
