@@ -1,5 +1,7 @@
 package fit
 
+import "sync"
+
 // The kernels run along a row in groups of kernelLanes pixels, one pixel a lane. Every sum
 // is kept lane by lane, in the order of the pixels, and every multiplication that feeds an
 // addition is either fused or rounded on its own as written in kernel_scalar.go: so a
@@ -160,7 +162,8 @@ type kernelSet struct {
 	products func(s *productSums, rows, columns []float64, stride, n int)
 }
 
-func bestKernels() *kernelSet {
+// bestKernels asks the processor once: where it is a virtual one each question takes long.
+var bestKernels = sync.OnceValue(func() *kernelSet {
 	all := allKernels()
 	return all[len(all)-1]
-}
+})
