@@ -2,6 +2,7 @@ package fit
 
 import (
 	"context"
+	"errors"
 	"fmt"
 	"math"
 
@@ -27,7 +28,16 @@ func Cloud(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt Opti
 		return nil, stateError("the fit found no minimum", chosen)
 	}
 	r := &Result{Model: model, Form: s.form(chosen.kind)}
-	if err := s.finish(c, chosen, r); err != nil {
+	err = s.finish(c, chosen, r)
+	if errors.Is(err, errSingular) && model == ModelBimodal { // it is not told by the full picture
+		c.both = nil
+		if chosen, model = s.choose(c); !chosen.used() {
+			return nil, err
+		}
+		r = &Result{Model: model, Form: s.form(chosen.kind)}
+		err = s.finish(c, chosen, r)
+	}
+	if err != nil {
 		return nil, err
 	}
 	if r, err = s.secondThoughts(c, chosen, r); err != nil {
@@ -38,6 +48,9 @@ func Cloud(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt Opti
 	r.Flags = append(r.Flags, s.warnings(r)...)
 	return r, nil
 }
+
+// errSingular says that a model has parameters on which the picture does not depend.
+var errSingular = errors.New("the picture does not determine the parameters")
 
 // finish refines the chosen model on the full picture and fills the result.
 func (s *session) finish(c *candidates, chosen *state, r *Result) error {
@@ -60,6 +73,7 @@ func (s *session) finish(c *candidates, chosen *state, r *Result) error {
 		if full, err = s.meanField(full); err != nil {
 			return err
 		}
+		r.Form = s.form(full.kind)
 	}
 	r.clear()
 	s.residuals(full, r)
@@ -205,7 +219,7 @@ func (s *session) fillShape(st *state, r *Result) error {
 	}
 	r.PeakOD = q[pThermal] + q[pCondensate]
 	if st.cov == nil {
-		return fmt.Errorf("the picture does not determine the parameters of the %s fit: the normal matrix is singular", r.Model)
+		return fmt.Errorf("%w of the %s fit: the normal matrix is singular", errSingular, r.Model)
 	}
 	m, j := s.tmpl.measured(q, st.kind)
 	cov := matrix(st.spread(j[:]))

@@ -602,3 +602,17 @@ func TestFewCondensed(t *testing.T) {
 	}
 	t.Logf("the 95 %% limit is below the truth in %d of %d pictures", over, shots)
 }
+
+// TestIdealFormStandsIn: after so short a flight that the semi-ideal cloud is not known, the ideal
+// form is fitted and said to be.
+func TestIdealFormStandsIn(t *testing.T) {
+	lab := cigarLab(t)
+	lab.Trap, lab.Optics.Pixel, lab.Optics.Blur = model.TrapHz(4, 12, 9), 2e-6, 1e-6
+	sc := &scene{lab: lab, flight: 1e-3, T: 8e-9, condensate: 4000, x: 80, y: 76, w: 160, h: 152, electrons: 1200, read: 6, seed: 33, powerNoise: 0.01}
+	sc.thermal = sc.saturated()
+	r := mustFit(t, sc, sc.draw(t), Options{MeanField: true})
+	if r.Model != ModelBimodal || r.Form != "bose+tf" || !slices.Contains(r.Flags, FlagPlain) {
+		t.Errorf("%s %s %v", r.Model, r.Form, r.Flags)
+	}
+	within(t, "T", r.Numbers.T.V, sc.T, 5*r.Numbers.T.Err)
+}

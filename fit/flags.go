@@ -33,6 +33,7 @@ const (
 	FlagPixel              = "suspect_pixel"
 	FlagNumber             = "suspect_cross_section"
 	FlagForm               = "suspect_thermal_form"
+	FlagPlain              = "ideal_form"
 	FlagBlurred            = "blurred"
 	FlagAttractive         = "attractive"
 	FlagCollapse           = "beyond_collapse"
@@ -64,6 +65,7 @@ var Flags = []Flag{
 	{FlagPixel, "the ratios agree with another pixel in the object plane: check pixel_um, binning and magnification"},
 	{FlagNumber, "the ratios agree with another cross-section: check alpha, detuning_gamma and counts_per_isat (a magnification that is off can look alike)"},
 	{FlagForm, "more thermal atoms than the ideal gas holds at this T, all else agrees: thermal atoms may have felt the condensate; compare with fit.thermal = \"semi-ideal\""},
+	{FlagPlain, "so cold a thermal part, or so short a flight, is outside what the semi-ideal form is known for: the ideal one was fitted"},
 	{FlagBlurred, "the blur, with the pixel's width, is above a third of the smallest radius or width: the resolution decides the result"},
 	{FlagAttractive, "the gas is attractive: Thomas-Fermi does not exist; the condensate is a gaussian of the variational width and has no mu from a radius"},
 	{FlagCollapse, "N0 is above the number at which an attractive condensate collapses: check the scattering length and the cross-section"},
@@ -93,6 +95,7 @@ func (s *session) warnings(r *Result) []string {
 	raise(r.Model != ModelThermal && n.ThomasFermiParameter.V < 10, FlagSmall)
 	raise(n.T.Err > poor*n.T.V, FlagHot)
 	size := math.Min(math.Min(orInf(r.Width[0]), orInf(r.Width[1])), math.Min(orInf(r.Radius[0]), orInf(r.Radius[1])))
+	raise(s.plain, FlagPlain)
 	raise(math.Sqrt(s.lab.Optics.Blur*s.lab.Optics.Blur+s.tmpl.pixel*s.tmpl.pixel/12) > size/3, FlagBlurred)
 	raise(s.tmpl.gaussian && r.Model != ModelThermal, FlagAttractive)
 	raise(n.Collapse.V > 1, FlagCollapse)

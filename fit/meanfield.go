@@ -82,13 +82,15 @@ func (e *excess) at(u, v float64) float64 {
 
 // meanField refits a condensed cloud with the thermal part that its own condensate shapes, until
 // T and μ no longer move. The derivatives leave out that of the excess: the estimate stays true,
-// since its residuals still mean nothing at the truth.
+// since its residuals still mean nothing at the truth. Where T and μ, or the flight, are outside what
+// the semi-ideal cloud is known for, the ideal form stays.
 func (s *session) meanField(st *state) (*state, error) {
 	for range 5 {
 		m, _ := s.tmpl.measured(&st.p, st.kind)
 		e, err := newExcess(s.lab, s.flight, m.T, m.Mu)
 		if err != nil {
-			return nil, err
+			s.tmpl.excess, s.opt.MeanField, s.plain = nil, false, true
+			return s.refine(st)
 		}
 		s.tmpl.excess = e
 		next, err := s.refine(st)

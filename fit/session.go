@@ -21,6 +21,7 @@ type session struct {
 	levels []*level // levels[0] is the full picture
 	work   int      // the level of choices and checks
 	part   bool     // the picture is a part of a large one
+	plain  bool     // the ideal form stands in for the semi-ideal one
 
 	iterations int
 	condensed  float64        // N0 of the template of an attractive gas
