@@ -155,7 +155,7 @@ type raised struct {
 // raised lists the flags of the fits that are of a kind, in the order of their table.
 func (v *visit) raised(kind func(flag string) bool) (list []raised) {
 	for _, flag := range slices.Concat(fit.Flags, report.RegionFlags) {
-		r := raised{Flag: flag}
+		r := raised{Flag: report.Worded(flag, v.Settings.Shots.Layout == "density")}
 		for i := range v.fitted {
 			if f := &v.fitted[i]; slices.Contains(f.row.Flags, flag.Name) {
 				r.where = append(r.where, v.look.Shots[f.shot].Name)

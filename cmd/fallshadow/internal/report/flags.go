@@ -63,3 +63,12 @@ func AllFlags() []fit.Flag {
 	}
 	return slices.Concat(all, RegionFlags, ledgerFlags)
 }
+
+// Worded is a flag as it is to be read of density images, whose noise no setting of a camera
+// tells, or of frames.
+func Worded(f fit.Flag, density bool) fit.Flag {
+	if density && f.Name == fit.FlagNoise {
+		f.Sentence = "the residuals of the whole picture do not match the noise that was estimated from it: look for fringes, and for noise that neighbouring pixels share, as after smoothing or interpolation"
+	}
+	return f
+}

@@ -253,6 +253,23 @@ b?[2J                                                                           
 	}
 }
 
+// TestNoiseOfDensityImages: nobody is sent to settings of a camera that density images lack.
+func TestNoiseOfDensityImages(t *testing.T) {
+	for _, density := range []bool{false, true} {
+		r := ledger.Row{Shot: "a", Flags: []string{fit.FlagNoise}}
+		if density {
+			r.Flags = append(r.Flags, fit.FlagDensityNoReference)
+		}
+		var out bytes.Buffer
+		if err := Summary(&out, []ledger.Row{r}); err != nil {
+			t.Fatal(err)
+		}
+		if got := out.String(); strings.Contains(got, "electrons_per_count") == density || strings.Contains(got, "neighbouring pixels") != density {
+			t.Errorf("density %v:\n%s", density, got)
+		}
+	}
+}
+
 func TestFlagsAreOneTable(t *testing.T) {
 	seen := map[string]bool{}
 	for _, f := range AllFlags() {

@@ -9,6 +9,7 @@ import (
 	"unicode/utf8"
 
 	"fallshadow/cmd/fallshadow/internal/ledger"
+	"fallshadow/fit"
 )
 
 // summaryColumns are the columns of the table on the terminal.
@@ -94,6 +95,7 @@ func legend(out io.Writer, rows []ledger.Row) {
 	fmt.Fprintln(out)
 	for _, f := range AllFlags() {
 		if n := seen[f.Name]; n > 0 {
+			f = Worded(f, seen[fit.FlagDensityNoReference] > 0)
 			fmt.Fprintf(out, "%s (%d): %s\n", f.Name, n, f.Sentence)
 		}
 	}

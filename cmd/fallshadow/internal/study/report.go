@@ -14,6 +14,7 @@ import (
 	"fallshadow/cmd/fallshadow/internal/figure"
 	"fallshadow/cmd/fallshadow/internal/ledger"
 	"fallshadow/cmd/fallshadow/internal/report"
+	"fallshadow/fit"
 	"fallshadow/fit/curve"
 	"fallshadow/model"
 )
@@ -229,6 +230,7 @@ func (a *Analysis) fillFlags(p *page) {
 	for _, f := range report.AllFlags() {
 		if names := shots[f.Name]; len(names) > 0 {
 			shown, more := cut(names, 24)
+			f = report.Worded(f, shots[fit.FlagDensityNoReference] != nil)
 			p.Flags = append(p.Flags, flagLine{f.Name, f.Sentence, strings.Join(shown, ", "), len(names), more})
 		}
 	}
