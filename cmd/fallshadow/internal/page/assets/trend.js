@@ -81,14 +81,14 @@ export class Trend {
     if (!width || !height || !this.columns) return;
     this.plot?.destroy();
     $("trend-all").hidden = true;
-    const axis = { stroke: css("--muted"), grid: { stroke: css("--line"), width: 1 }, ticks: { show: false }, font: "12px system-ui" };
+    const axis = { stroke: css("--muted"), grid: { stroke: css("--line"), width: 1 }, ticks: { show: false }, font: "12px system-ui", values: (u, list) => list.map((v) => tick(v, list)) };
     const dots = (fill) => ({ paths: () => null, points: { show: true, size: this.shots.rows.length > 300 ? 4 : 7, width: 1.5, stroke: css(fill ? "--data" : "--muted"), fill: fill ? css("--data") : "transparent" } });
     this.plot = new uPlot({
       width, height, padding: [8, 14, 0, 0],
       scales: { x: { time: false, range: (u, a, b) => roomy(a, b, .02) }, y: { range: (u, a, b) => this.span(a, b) } },
       legend: { show: false },
       cursor: { y: false, points: { show: false }, drag: { x: true, y: false } },
-      axes: [{ ...axis, size: 24, ...(this.x === order ? { incrs: [1, 2, 5, 10, 20, 50, 100, 200, 500, 1000] } : {}) }, { ...axis, size: 62, values: (u, list) => list.map((v) => tick(v, list)) }],
+      axes: [{ ...axis, size: 24, ...(this.x === order ? { incrs: [1, 2, 5, 10, 20, 50, 100, 200, 500, 1000] } : {}) }, { ...axis, size: 62 }],
       series: [{}, dots(true), dots(false)],
       hooks: {
         draw: [(u) => this.drawErrors(u)],
