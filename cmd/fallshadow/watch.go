@@ -7,6 +7,7 @@ import (
 	"net"
 	"os"
 	"path/filepath"
+	"runtime/debug"
 	"time"
 
 	"github.com/mattn/go-isatty"
@@ -36,6 +37,9 @@ const ownAddress = "127.0.0.1:8417"
 
 // Run watches until it is interrupted.
 func (c *watchCmd) Run(ctx context.Context, t terminal) error {
+	if os.Getenv("GOGC") == "" {
+		debug.SetGCPercent(50) // it runs all night beside other programs: rather some more work than memory
+	}
 	if err := refuseResults(c.Night, c.Out); err != nil {
 		return err
 	}
