@@ -99,7 +99,7 @@ func (p *problem) densityMap(light float64) (od []float64, noise float64) {
 	return od, math.Max(spreadOf(od, l.w, l.h), 1e-12)
 }
 
-func finite(x float64) bool { return !math.IsNaN(x) && !math.IsInf(x, 0) }
+func finite(x float64) bool { return math.Abs(x) <= math.MaxFloat64 }
 
 // borderLight is the median over the outer ring of ln(atoms/reference).
 func (l *level) borderLight() float64 {

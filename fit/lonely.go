@@ -9,14 +9,17 @@ import (
 // median of their neighbours, none of which is half as far from it. A cloud of any size that
 // a fit can measure covers neighbours, too.
 func (l *level) strike() {
-	rest := l.noise.Read*l.noise.Read + 1e-9 + l.noise.LightRead
+	shot, rest := 1+l.noise.LightShot, l.noise.Read*l.noise.Read+1e-9+l.noise.LightRead
 	for j := 1; j+1 < l.h; j++ {
 		atoms, light := l.atoms[j*l.w:(j+1)*l.w], l.light[j*l.w:(j+1)*l.w]
 		smooth, count := l.smooth[j*l.w:(j+1)*l.w], l.count[j*l.w:(j+1)*l.w]
 		before, v := atoms[0]-light[0], atoms[1]-light[1]
 		for i := 1; i+1 < l.w; i++ {
-			next := atoms[i+1] - light[i+1]
-			most := struck * struck * (max(smooth[i], 0)*(1+l.noise.LightShot) + rest)
+			next, lit := atoms[i+1]-light[i+1], smooth[i]
+			if lit < 0 {
+				lit = 0
+			}
+			most := struck * struck * (lit*shot + rest)
 			// Most pixels are like those beside them: no median for them.
 			a, b := v-before, v-next
 			if a*a >= most && b*b >= most && count[i] > 0 && l.alone(j*l.w+i, math.Sqrt(most)) {

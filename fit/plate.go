@@ -51,7 +51,9 @@ func (l *level) castLight(j int) {
 	whole := float64(l.bin * l.bin)
 	smooth := l.smooth[j*l.w : (j+1)*l.w]
 	for i, c := range l.count[j*l.w : (j+1)*l.w] {
-		row[i] = max(smooth[i], 0)
+		if row[i] = smooth[i]; row[i] < 0 {
+			row[i] = 0
+		}
 		if c != whole {
 			row[i] *= l.full(j*l.w + i)
 		}
