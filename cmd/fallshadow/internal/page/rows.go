@@ -161,7 +161,8 @@ func (p *Page) serveRow(r *http.Request) (any, error) {
 	return newDetail(row, p.night.Scan()), nil
 }
 
-// serveColumn gives a column of all shots with its errors, in the order of the shots.
+// serveColumn gives a column of all shots with its errors and the ends of its intervals, of
+// which a limit has one, in the order of the shots.
 func (p *Page) serveColumn(r *http.Request) (any, error) {
 	name := r.URL.Query().Get("name")
 	scan := p.night.Scan()
@@ -169,18 +170,24 @@ func (p *Page) serveColumn(r *http.Request) (any, error) {
 	if !isScan && !slices.ContainsFunc(columns(), func(c column) bool { return c.Name == name }) {
 		return nil, &refusal{http.StatusNotFound, "there is no such column"}
 	}
-	shots, values, errs := []string{}, []*float64{}, []*float64{}
+	shots, cells := []string{}, map[string][]*float64{}
+	for _, end := range []string{"", "_err", "_low", "_high"} {
+		cells[end] = []*float64{}
+	}
 	for row, err := range p.night.Each(r.Context()) {
 		if err != nil {
 			return nil, err
 		}
-		v := row.Number(name)
-		if isScan {
-			v = scanNumber(row, name)
+		shots = append(shots, row.Shot)
+		for end := range cells {
+			v := row.Number(name + end)
+			if isScan && end == "" {
+				v = scanNumber(row, name)
+			}
+			cells[end] = append(cells[end], finite(v))
 		}
-		shots, values, errs = append(shots, row.Shot), append(values, finite(v)), append(errs, finite(row.Number(name+"_err")))
 	}
-	return map[string]any{"shots": shots, "values": values, "errors": errs}, nil
+	return map[string]any{"shots": shots, "values": cells[""], "errors": cells["_err"], "lows": cells["_low"], "highs": cells["_high"]}, nil
 }
 
 func finite(v float64) *float64 {

@@ -1,5 +1,6 @@
 // The numbers of a shot, its flags in plain words, and all cells of its row.
 import { $, el } from "./dom.js";
+import { readingOf, written } from "./reading.js";
 
 const major = new Set(["atoms", "fraction", "T_nK", "mu_nK"]);
 const calm = new Set(["provisional"]); // no reason to look up
@@ -42,11 +43,8 @@ function flags(row, sentences) {
 function cells(row, columns) {
   const lines = [];
   for (const c of columns) {
-    const v = row.numbers[c.name];
-    if (v === undefined) continue;
-    const e = row.numbers[c.name + "_err"];
-    const text = Number(v.toPrecision(5)) + (e > 0 ? " ± " + Number(e.toPrecision(2)) : "");
-    lines.push(el("tr", { title: c.meaning }, el("td", {}, c.name), el("td", {}, text)));
+    const r = readingOf(row, c.name);
+    if (r) lines.push(el("tr", { title: c.meaning }, el("td", {}, c.name), el("td", {}, written(r))));
   }
   for (const [name, word] of Object.entries(row.words || {})) {
     lines.push(el("tr", {}, el("td", {}, name), el("td", {}, word)));

@@ -1,6 +1,7 @@
 // The trend of one column over the shots or against a scan variable.
 import { $, css, el } from "./dom.js";
 import { get } from "./api.js";
+import { reading, readingOf, written } from "./reading.js";
 
 /* global uPlot */
 
@@ -11,7 +12,7 @@ export class Trend {
   constructor(shots, choose) {
     this.shots = shots;
     this.choose = choose;
-    this.values = { x: new Map(), y: new Map(), e: new Map() };
+    this.values = { x: new Map(), y: new Map() };
     this.points = [];
     $("trend-y").addEventListener("change", () => this.load());
     $("trend-x").addEventListener("change", () => this.load());
@@ -35,18 +36,16 @@ export class Trend {
     if (!y) return;
     const [ys, xs] = await Promise.all([get("/api/column", { name: y }), x === order ? null : get("/api/column", { name: x })]);
     if (x !== this.x || y !== this.y) return;
-    const map = (names, values) => new Map(names.map((n, i) => [n, values[i]]));
     this.values = {
-      y: map(ys.shots, ys.values), e: map(ys.shots, ys.errors),
-      x: xs ? map(xs.shots, xs.values) : new Map(),
+      y: new Map(ys.shots.map((n, i) => [n, reading(ys.values[i], ys.errors[i], ys.lows[i], ys.highs[i])])),
+      x: new Map(xs?.shots.map((n, i) => [n, xs.values[i]])),
     };
     this.build();
   }
 
   // put takes in the numbers of one shot.
   put(row) {
-    this.values.y.set(row.shot, row.numbers[this.y] ?? null);
-    this.values.e.set(row.shot, row.numbers[this.y + "_err"] ?? null);
+    this.values.y.set(row.shot, readingOf(row, this.y));
     if (this.x !== order) this.values.x.set(row.shot, row.numbers[this.x] ?? null);
     this.refresh();
   }
@@ -56,11 +55,11 @@ export class Trend {
     this.shots.rows.forEach((row, i) => {
       const y = this.values.y.get(row.shot) ?? null;
       const x = this.x === order ? i + 1 : this.values.x.get(row.shot) ?? null;
-      if (x !== null && y !== null) this.points.push({ x, y, e: this.values.e.get(row.shot) ?? null, row });
+      if (x !== null && y !== null) this.points.push({ x, row, ...y });
     });
     this.points.sort((a, b) => a.x - b.x);
     const pick = (f) => this.points.map((p) => (f(p) ? p.y : null));
-    return [this.points.map((p) => p.x), pick((p) => !p.row.bad), pick((p) => p.row.bad)];
+    return [this.points.map((p) => p.x), pick((p) => !p.row.bad && !p.limit), pick((p) => p.row.bad), pick((p) => !p.row.bad && p.limit)];
   }
 
   refresh() {
@@ -82,14 +81,14 @@ export class Trend {
     this.plot?.destroy();
     $("trend-all").hidden = true;
     const axis = { stroke: css("--muted"), grid: { stroke: css("--line"), width: 1 }, ticks: { show: false }, font: "12px system-ui", values: (u, list) => list.map((v) => tick(v, list)) };
-    const dots = (fill) => ({ paths: () => null, points: { show: true, size: this.shots.rows.length > 300 ? 4 : 7, width: 1.5, stroke: css(fill ? "--data" : "--muted"), fill: fill ? css("--data") : "transparent" } });
+    const dots = (stroke, fill) => ({ paths: () => null, points: { show: true, size: this.shots.rows.length > 300 ? 4 : 7, width: 1.5, stroke: css(stroke), fill } });
     this.plot = new uPlot({
       width, height, padding: [8, 14, 0, 0],
       scales: { x: { time: false, range: (u, a, b) => roomy(a, b, .02) }, y: { range: (u, a, b) => this.span(a, b) } },
       legend: { show: false },
       cursor: { y: false, points: { show: false }, drag: { x: true, y: false } },
       axes: [{ ...axis, size: 24, ...(this.x === order ? { incrs: [1, 2, 5, 10, 20, 50, 100, 200, 500, 1000] } : {}) }, { ...axis, size: 62 }],
-      series: [{}, dots(true), dots(false)],
+      series: [{}, dots("--data", css("--data")), dots("--muted", "transparent"), dots("--data", "transparent")],
       hooks: {
         draw: [(u) => this.drawErrors(u)],
         setCursor: [(u) => this.read(u.cursor.idx)],
@@ -102,14 +101,13 @@ export class Trend {
   // span leaves room for the errors of usual size: a shot with a huge one would hide the rest.
   span(low, high) {
     if (low === null) return [0, 1];
-    const errors = this.points.map((p) => p.e).filter((e) => e > 0).sort((a, b) => a - b);
-    const usual = 3 * (errors[errors.length >> 1] ?? 0);
+    const errors = this.points.map((p) => p.high - p.low).filter((e) => e > 0).sort((a, b) => a - b);
+    const usual = 1.5 * (errors[errors.length >> 1] ?? 0);
     for (const p of this.points) {
-      const e = Math.min(p.e ?? 0, usual);
-      low = Math.min(low, p.y - e);
-      high = Math.max(high, p.y + e);
+      low = Math.min(low, Math.max(p.low ?? p.y, p.y - usual));
+      high = Math.max(high, Math.min(p.high ?? p.y, p.y + usual));
     }
-    return roomy(low, high, .06);
+    return roomy(low, high, this.points.some((p) => p.limit) ? .16 : .06); // arrows need more
   }
 
   drawErrors(u) {
@@ -122,10 +120,12 @@ export class Trend {
     c.lineWidth = devicePixelRatio * 1.2;
     c.beginPath();
     for (const p of this.points) {
-      if (!(p.e > 0) || p.row.bad) continue;
+      if (p.row.bad) continue;
       const x = u.valToPos(p.x, "x", true);
-      c.moveTo(x, u.valToPos(p.y - p.e, "y", true));
-      c.lineTo(x, u.valToPos(p.y + p.e, "y", true));
+      if (p.limit) arrow(c, x, u.valToPos(p.y, "y", true), p.limit === "<" ? 1 : -1);
+      if (p.low === undefined) continue;
+      c.moveTo(x, u.valToPos(p.low, "y", true));
+      c.lineTo(x, u.valToPos(p.high, "y", true));
     }
     c.stroke();
     const now = this.points.find((p) => p.row.shot === this.shots.current);
@@ -154,7 +154,7 @@ export class Trend {
     this.under = p;
     const unit = this.columns.get(this.y)?.unit ?? "";
     $("trend-read").textContent = p
-      ? `${p.row.shot}: ${Number(p.y.toPrecision(5))}${p.e > 0 ? " ± " + Number(p.e.toPrecision(2)) : ""} ${unit}`
+      ? `${p.row.shot}: ${written(p)} ${unit}`
         + (this.x === order ? "" : ` at ${this.x} ${p.x}`) + (p.row.bad ? `, bad: ${p.row.bad}` : "")
       : "";
   }
@@ -162,6 +162,16 @@ export class Trend {
   click() {
     if (this.under) this.choose(this.under.row.shot);
   }
+}
+
+// arrow points from a limit to where the value is.
+function arrow(c, x, y, down) {
+  const size = 5 * devicePixelRatio, end = y + 4 * size * down;
+  c.moveTo(x, y);
+  c.lineTo(x, end);
+  c.moveTo(x - size, end - size * down);
+  c.lineTo(x, end);
+  c.lineTo(x + size, end - size * down);
 }
 
 function fill(select, names, columns) {
