@@ -19,7 +19,8 @@ type Comparison struct {
 }
 
 // Compare holds the fractions of a night against every law for its gas, in the order of
-// Laws. A night without three points that have both parts gives none.
+// Laws. A night without three points that have both parts, and T apart
+// from their numbers, gives none.
 func (n *Night) Compare(ctx context.Context, th *Theory) ([]Comparison, error) {
 	points := n.condensed()
 	if len(points) < 3 {

@@ -59,7 +59,7 @@ const DecisiveLead = 4
 const leastParameter = 30
 
 // ErrNoFactor says that a night does not tell a number factor.
-var ErrNoFactor = errors.New("a number factor needs at least three shots with a thermal part and a condensate, T known to a third, and a repulsive gas whose condensate is large (N0 a over the oscillator length above 30)")
+var ErrNoFactor = errors.New("a number factor needs at least three shots with a thermal part and a condensate, T known to a third and not computed from the number, and a repulsive gas whose condensate is large (N0 a over the oscillator length above 30)")
 
 // FindFactor fits one common factor of alpha or of the magnification to the night: with it
 // μ from the radii and μ from N0 agree, and N_thermal and the number that T lets it have,
@@ -72,7 +72,7 @@ var ErrNoFactor = errors.New("a number factor needs at least three shots with a 
 // leaves out the setting itself.
 func (n *Night) FindFactor(ctx context.Context) (Factors, error) {
 	points := n.pick(func(p *Point) bool {
-		return p.Condensed() && p.radii() && p.relative(T) < 1./3 &&
+		return p.comparable() && p.radii() && p.relative(T) < 1./3 &&
 			p.Vector[Condensate]*n.Gas.ScatteringLength/n.Gas.Trap.Length(n.Gas.Mass) > leastParameter
 	})
 	if len(points) < 3 {

@@ -30,6 +30,17 @@ type Point struct {
 	// Shifts holds the change of the numbers when a calibration of the night moves up by one
 	// standard deviation, in the order of Night.Calibrations.
 	Shifts []Vector
+	// ByNumber says that T was computed from the number of a saturated thermal part.
+	ByNumber bool
+}
+
+// Independent says that T and the number of the thermal part were measured apart from each
+// other. Where T follows from the number, all that is said of the two together holds by
+// itself, with next to no variance.
+func (p *Point) Independent() bool {
+	const whole = 1 - 1e-6 // of a squared correlation
+	c := p.Cov[Thermal][T]
+	return !p.ByNumber && !(c*c > 0 && c*c >= whole*p.Cov[Thermal][Thermal]*p.Cov[T][T])
 }
 
 // Condensed says that the point has both parts, with an error of each and of T.
@@ -83,5 +94,8 @@ func (n *Night) pick(want func(*Point) bool) []*Point {
 	return list
 }
 
-// condensed returns the points with both parts.
-func (n *Night) condensed() []*Point { return n.pick((*Point).Condensed) }
+// comparable says that the point has both parts, and T and their numbers apart.
+func (p *Point) comparable() bool { return p.Condensed() && p.Independent() }
+
+// condensed returns the points with both parts that tell a law.
+func (n *Night) condensed() []*Point { return n.pick((*Point).comparable) }

@@ -9,6 +9,8 @@ import (
 
 // Transition is where the night has its transition, in three ways, beside what theory says.
 type Transition struct {
+	// Points whose T follows from their number take no part in any.
+
 	// Saturation is the way by the thermal part at fixed T; nil with fewer than four points.
 	Saturation *Saturation
 	// Onsets are the way by the fraction against t, by law; empty with fewer than three
@@ -55,6 +57,9 @@ func (n *Night) Locate(ctx context.Context, th *Theory) (Transition, error) {
 	t := Transition{Hottest: math.NaN(), Coldest: math.NaN()}
 	for i := range n.Points {
 		p := &n.Points[i]
+		if !p.Independent() {
+			continue
+		}
 		reduced := n.Gas.Reduced(p.Vector[T], p.Atoms())
 		switch {
 		case p.Condensed() && !(t.Hottest >= reduced):
@@ -68,7 +73,7 @@ func (n *Night) Locate(ctx context.Context, th *Theory) (Transition, error) {
 	if t.Saturation, err = n.saturation(ctx, points); err != nil {
 		return t, err
 	}
-	small := n.pick(func(p *Point) bool { return p.Condensed() && p.Fraction() < OnsetFraction })
+	small := n.pick(func(p *Point) bool { return p.comparable() && p.Fraction() < OnsetFraction })
 	if len(small) >= 3 {
 		points = small
 		if t.Onsets, err = n.onsets(ctx, th, small); err != nil {

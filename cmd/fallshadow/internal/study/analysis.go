@@ -17,6 +17,7 @@ type Analysis struct {
 	Chosen      *Chosen
 	Curve       *curve.Night
 	Theory      *curve.Theory
+	Aside       []LeftOut          // that tell no law and no transition, and why
 	Comparisons []curve.Comparison // none with fewer than three shots of both parts
 	Transition  curve.Transition
 	MeanField   *curve.MeanField
@@ -37,6 +38,7 @@ func (n *Night) Analyse(ctx context.Context, c *Chosen) (*Analysis, error) {
 	if !(low > 0) {
 		return nil, errors.New("a shot has no atoms: --where atoms=1: leaves it out")
 	}
+	a.Aside = aside(a.Curve)
 	a.Theory = curve.NewTheory(a.Curve.Gas, low, high)
 	var err error
 	if a.Comparisons, err = a.Curve.Compare(ctx, a.Theory); err != nil {

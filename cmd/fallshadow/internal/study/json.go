@@ -13,6 +13,7 @@ type summary struct {
 	Night       string       `json:"night"`
 	Shots       int          `json:"shots"`
 	LeftOut     []LeftOut    `json:"left_out"`
+	Aside       []LeftOut    `json:"left_out_of_laws"`
 	Laws        []compared   `json:"laws"`
 	Best        string       `json:"least_chi2"`
 	Saturation  *located     `json:"saturation"`
@@ -67,7 +68,7 @@ func finite(v float64) *float64 {
 // WriteJSON writes the numbers of the analysis as one JSON object.
 func (a *Analysis) WriteJSON(w io.Writer) error {
 	t := &a.Transition
-	v := summary{Night: a.Night.Name, Shots: len(a.Chosen.Rows), LeftOut: a.Chosen.LeftOut, Best: a.Best().Name, Atoms: finite(t.Atoms)}
+	v := summary{Night: a.Night.Name, Shots: len(a.Chosen.Rows), LeftOut: a.Chosen.LeftOut, Aside: a.Aside, Best: a.Best().Name, Atoms: finite(t.Atoms)}
 	for _, c := range a.Comparisons {
 		v.Laws = append(v.Laws, compared{c.Law.Name, c.Law.Note, c.Points, c.Chi2, jsonNumber(c.Deviation), jsonNumber(c.Amplitude)})
 	}

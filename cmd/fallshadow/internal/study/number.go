@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"io"
 	"math"
+	"slices"
 	"strconv"
 	"text/tabwriter"
 
@@ -14,8 +15,13 @@ import (
 // WriteNumber looks for one common factor of alpha or of the magnification in the chosen
 // shots and words what it finds, with the setting to paste where one is named.
 func (n *Night) WriteNumber(ctx context.Context, w io.Writer, c *Chosen) error {
-	f, err := n.curveNight(c.Rows).FindFactor(ctx)
+	night := n.curveNight(c.Rows)
+	tied := aside(night)
+	f, err := night.FindFactor(ctx)
 	if err != nil {
+		if len(tied) > 0 {
+			err = fmt.Errorf("%w; %s", err, mostLeft(tied))
+		}
 		if len(c.LeftOut) > 0 {
 			err = fmt.Errorf("%w; %s", err, mostLeft(c.LeftOut))
 		}
@@ -23,7 +29,7 @@ func (n *Night) WriteNumber(ctx context.Context, w io.Writer, c *Chosen) error {
 	}
 	best := f.List[0]
 	fmt.Fprintf(w, "%s: %s with both parts and a large condensate, of %d\n", n.Name, count(best.Points, "shot"), len(n.Rows))
-	WriteLeftOut(w, "left out", c.LeftOut)
+	WriteLeftOut(w, "left out", append(slices.Clone(c.LeftOut), tied...))
 	fmt.Fprintf(w, "\nas measured: mu from the radii over mu from N0 %s; thermal atoms over what T lets them be, %s: %s\n\n",
 		format(f.Mu), thermalLaw(best.Law), format(f.Saturated))
 	t := tabwriter.NewWriter(w, 0, 0, 2, ' ', 0)

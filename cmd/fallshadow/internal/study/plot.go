@@ -200,17 +200,22 @@ func (p *plotting) within(groups []curve.Group) []curve.Group {
 	return list
 }
 
-// single draws every shot: closed marks with a condensate, open ones without.
+// single draws every shot: closed marks with a condensate, open ones without, others where T
+// follows from the number.
 func (p *plotting) single() {
 	with := figure.Points{Legend: "shots, stat. error", Role: figure.Data}
 	if !p.anyError() {
 		with.Legend, with.Plain = "shots", true
 	}
 	none := figure.Points{Legend: "no condensate", Role: figure.Data, Open: true, Plain: with.Plain}
+	tied := figure.Points{Legend: "*T* from *N*_{th}", Role: figure.Third, Plain: with.Plain}
 	banded := p.banded()
 	for _, i := range p.places {
 		into := &with
-		if p.Curve.Points[i].Vector[curve.Condensate] == 0 {
+		switch pt := &p.Curve.Points[i]; {
+		case !pt.Independent():
+			into = &tied
+		case pt.Vector[curve.Condensate] == 0:
 			into = &none
 		}
 		into.X, into.Y = append(into.X, p.xs.v[i]), append(into.Y, p.ys.v[i])
@@ -221,7 +226,7 @@ func (p *plotting) single() {
 			into.YTotal = append(into.YTotal, math.Hypot(p.ys.err[i], p.ys.cal[i]))
 		}
 	}
-	for _, pt := range []figure.Points{with, none} {
+	for _, pt := range []figure.Points{with, none, tied} {
 		if len(pt.X) > 0 {
 			p.figure.Points = append(p.figure.Points, pt)
 		}

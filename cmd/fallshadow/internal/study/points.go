@@ -63,7 +63,7 @@ func calibrations(lab *fit.Lab) []curve.Calibration {
 
 // point returns a row as a point.
 func point(r *ledger.Row, calibrations []curve.Calibration) curve.Point {
-	p := curve.Point{Name: r.Shot, Flight: r.Number("flight_ms") * 1e-3}
+	p := curve.Point{Name: r.Shot, Flight: r.Number("flight_ms") * 1e-3, ByNumber: byNumber(r)}
 	var sigma curve.Vector
 	for i, m := range measured {
 		p.Vector[i] = r.Number(m.column) / m.perSI

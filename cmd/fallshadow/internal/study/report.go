@@ -7,6 +7,7 @@ import (
 	"fmt"
 	"html/template"
 	"io"
+	"math"
 	"regexp"
 	"slices"
 	"strings"
@@ -154,6 +155,9 @@ func (a *Analysis) fillNumbers(p *page) {
 	if t := a.Attractive; t != nil {
 		p.Checks = append(p.Checks, fmt.Sprintf("attractive gas: collapse at N0 = %.0f; the largest condensate has %.2f of it", t.Critical, t.Largest))
 	}
+	for _, c := range causes(a.Aside) {
+		p.Cautions = append(p.Cautions, fmt.Sprintf("%s left out of laws and transition: %s", count(len(c.shots), "shot"), c))
+	}
 	if a.plainForm() {
 		p.Cautions = append(p.Cautions, plainFormCaution)
 	}
@@ -161,6 +165,9 @@ func (a *Analysis) fillNumbers(p *page) {
 
 func (a *Analysis) fillTransition(p *page) {
 	t := &a.Transition
+	if math.IsNaN(t.Hottest) && math.IsNaN(t.Coldest) {
+		return
+	}
 	p.Transition = append(p.Transition, fmt.Sprintf("condensates up to T/Tc0 = %s, none found from %s on", short(t.Hottest), short(t.Coldest)))
 	if s := t.Saturation; s != nil {
 		p.Transition = append(p.Transition, fmt.Sprintf("by saturation at fixed T: Tc/Tc0 = %s; %s of the semi-ideal excess", format(s.Ratio), format(s.Excess)))

@@ -21,7 +21,12 @@ type PointColumn struct {
 // PointColumns is the one table of the columns of curve.csv.
 var PointColumns = append([]PointColumn{
 	{"shot", "", "path of the shot in the night", func(_ *Analysis, r *ledger.Row, _ *curve.Point) string { return r.Shot }},
-	{"left_out", "", "why the shot takes no part, empty where it does", func(a *Analysis, r *ledger.Row, _ *curve.Point) string { return a.Chosen.why[r.Shot] }},
+	{"left_out", "", "why the shot takes no part, empty where it does", func(a *Analysis, r *ledger.Row, p *curve.Point) string {
+		if p != nil && !p.Independent() {
+			return "of laws and transition: " + whyByNumber
+		}
+		return a.Chosen.why[r.Shot]
+	}},
 	cell("T_nK"), cell("T_nK_err"), cell("T_nK_cal"),
 	cell("atoms"), cell("atoms_err"), cell("atoms_cal"),
 	cell("t_reduced"), cell("t_reduced_err"), cell("t_reduced_cal"),
@@ -51,7 +56,7 @@ func lawColumns() (list []PointColumn) {
 }
 
 func distance(a *Analysis, _ *ledger.Row, p *curve.Point) string {
-	if p == nil || !p.Condensed() {
+	if p == nil || !p.Condensed() || !p.Independent() {
 		return ""
 	}
 	return decimal(a.Curve.Distance(a.Theory, a.Best(), p))

@@ -44,11 +44,12 @@ func (a *Analysis) writeShots(w io.Writer) {
 	fmt.Fprintf(w, "%s: %s of %d take part, %d of them with thermal part and condensate\n",
 		a.Night.Name, count(len(a.Chosen.Rows), "shot"), len(a.Night.Rows), both)
 	WriteLeftOut(w, "left out", a.Chosen.LeftOut)
+	WriteLeftOut(w, "left out of laws and transition", a.Aside)
 }
 
 func (a *Analysis) writeLaws(w io.Writer) {
 	if len(a.Comparisons) == 0 {
-		fmt.Fprintln(w, "\nfewer than three shots have both parts: no comparison with the laws")
+		fmt.Fprintln(w, "\nfewer than three shots have both parts and a T of their own: no comparison with the laws")
 		return
 	}
 	fmt.Fprintf(w, "\nfraction f = N0/N against T/Tc0(N) of %s, chi2 with the covariance of thermal number, N0 and T:\n", count(a.Comparisons[0].Points, "shot"))
@@ -89,6 +90,9 @@ func (a *Analysis) plainForm() bool {
 
 func (a *Analysis) writeTransition(w io.Writer) {
 	t := &a.Transition
+	if math.IsNaN(t.Hottest) && math.IsNaN(t.Coldest) {
+		return // no shot tells T/Tc0
+	}
 	fmt.Fprintf(w, "\ntransition: condensates up to T/Tc0 = %s, none found from %s on\n", short(t.Hottest), short(t.Coldest))
 	if s := t.Saturation; s != nil {
 		fmt.Fprintf(w, "  by saturation at fixed T: Tc/Tc0 = %s, thermal part %s of the semi-ideal excess beyond saturation (chi2/dof %.2g, %s)\n",
