@@ -60,7 +60,10 @@ func (s *session) explore() (*candidates, error) {
 	if err := s.first(top, places, c); err != nil {
 		return nil, err
 	}
-	return s.descend(top, c)
+	if c, err := s.descend(top, c); err != nil || s.opt.searchFree {
+		return c, err
+	}
+	return s.retry(c)
 }
 
 // descend follows the candidates from a level down to the level of choices.

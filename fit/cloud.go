@@ -93,17 +93,21 @@ func (s *session) finish(c *candidates, chosen *state, r *Result) error {
 	return s.limits(c, full, r)
 }
 
-// impossible says that the widths of a poorly known thermal part do not belong to its number: even
-// at the high end of its interval of T the trap could not hold two thirds of its atoms,
+// impossible says that the widths of a thermal part do not belong to its number: even at the high end
+// of its interval of T, or three errors above it, the trap could not hold two thirds of its atoms,
 // semi-ideal ones included.
 func (s *session) impossible(r *Result) bool {
 	n := &r.Numbers
-	if math.IsNaN(n.T.High) || s.tmpl.gaussian {
+	if s.tmpl.gaussian {
 		return false
 	}
-	most := model.ThermalNumber(n.T.High, 0, s.lab.Trap)
+	high := n.T.High
+	if math.IsNaN(high) {
+		high = n.T.V + 3*n.T.Err
+	}
+	most := model.ThermalNumber(high, 0, s.lab.Trap)
 	sp := &s.lab.Species
-	if mix, err := model.SemiIdealAt(n.T.High, n.Mu.V, sp.Mass, sp.ScatteringLength, s.lab.Trap); err == nil {
+	if mix, err := model.SemiIdealAt(high, n.Mu.V, sp.Mass, sp.ScatteringLength, s.lab.Trap); err == nil {
 		most = mix.Thermal
 	}
 	return n.Thermal.V > 1.5*most
@@ -134,10 +138,14 @@ func (s *session) secondThoughts(c *candidates, chosen *state, r *Result) (*Resu
 		// A second thought that comes to nothing leaves the first; only the end of ctx is an end.
 		return r, s.ctx.Err()
 	}
-	s.iterations, s.shown = again.iterations, again.shown
+	s.iterations = again.iterations
 	if thermal := n.Numbers.Thermal; r.Model == ModelCondensate && !(thermal.V > 2*thermal.Err) {
 		return r, nil
 	}
+	if pixels := float64(s.pic.Width * s.pic.Height); (n.ChiPerDof-r.ChiPerDof)*pixels > hopeless {
+		return r, nil // no tie to the number mends this: a setting is wrong
+	}
+	s.shown = again.shown
 	n.Flags = append(n.Flags, FlagByNumber)
 	return n, nil
 }

@@ -358,6 +358,14 @@ func TestAttractive(t *testing.T) {
 		t.Errorf("mu from a radius that does not exist: %g", r.Numbers.Mu.V)
 	}
 	within(t, "part of the collapse number", r.Numbers.Collapse.V, sc.condensate/model.CriticalNumber(lab.Trap, li.Mass, li.ScatteringLength), 0.25)
+
+	sc.T, sc.condensate = 220e-9, 0
+	sc.alpha = 0.2
+	sc.thermal = model.ThermalNumber(sc.T, sc.alpha, lab.Trap)
+	r = mustFit(t, sc, sc.draw(t), Options{})
+	if n := r.Numbers.Condensate; r.Model != ModelThermal || !(n.High > 1 && n.High < 0.1*sc.thermal) {
+		t.Errorf("without a condensate: %s, N0 below %g", r.Model, n.High)
+	}
 }
 
 // TestBadInput gets one sentence.
@@ -468,6 +476,11 @@ func TestMeanField(t *testing.T) {
 	t.Logf("flags of the plain form: %v, N_th/N_sat %.2f", plain.Flags, plain.Checks.ThermalOverSaturated)
 	within(t, "pull of T", ft, 0, 3)
 	within(t, "pull of N0", f0, 0, 3)
+	tied := mustFit(t, sc, pic, Options{MeanField: true, Fugacity: FugacityNumber}).Numbers
+	within(t, "T from the semi-ideal number", tied.T.V, T, 0.02*T)
+	if !(tied.T.Err < 0.7*fine.Numbers.T.Err) {
+		t.Errorf("T from the number is known to %g, from the widths to %g", tied.T.Err, fine.Numbers.T.Err)
+	}
 }
 
 // TestFugacity: a fugacity left free beside a condensate comes back near 1; a thermal number

@@ -46,19 +46,22 @@ func (u *pull) add(s *search, q *params, h, g []float64) float64 {
 	return r * r
 }
 
-// numberTie draws the thermal number to g3(z)(kT/ħω̄)³ by numberWidth of itself.
+// numberTie draws the thermal number to surplus g3(z)(kT/ħω̄)³ by numberWidth of itself.
 type numberTie struct {
-	trap   model.Trap
-	perSum float64
+	trap    model.Trap
+	perSum  float64
+	surplus float64
 }
 
 const numberWidth = 1e-3
 
-func (lab *Lab) numberTie() *numberTie { return &numberTie{trap: lab.Trap, perSum: lab.perSum()} }
+func (lab *Lab) numberTie(e *excess) *numberTie {
+	return &numberTie{trap: lab.Trap, perSum: lab.perSum(), surplus: e.number()}
+}
 
 func (n *numberTie) add(s *search, q *params, h, g []float64) float64 {
 	m, j := s.tmpl.measured(q, s.kind)
-	r := math.Log(m.ThermalSum*n.perSum/model.ThermalNumber(m.T, m.Alpha, n.trap)) / numberWidth
+	r := math.Log(m.ThermalSum*n.perSum/n.surplus/model.ThermalNumber(m.T, m.Alpha, n.trap)) / numberWidth
 	if !finite(r) {
 		return math.Inf(1)
 	}
@@ -204,21 +207,21 @@ const oneSided = 2.706
 // atoms have, raised until χ² stands 2.7 above its least; and the number that would be believed,
 // where it stands as high as is asked of a condensate.
 func (s *session) limitCondensate(st *state, n *numbers.Result, c *Checks) {
-	if s.tmpl.gaussian {
-		return
-	}
 	k := st.kind
 	k.condensate, k.fixCondensate, k.fixRadius = true, true, true
 	square := s.tmpl.condensate.square
 	least := 7 * s.groundState() / math.Sqrt(square[0]*square[1])
 	set := func(q *params, atoms float64) {
-		m, err := model.Mu(atoms, s.lab.Species.Mass, s.lab.Species.ScatteringLength, s.lab.Trap)
-		if err != nil {
-			return
+		l := 0.0 // few atoms that attract each other have the size of the template
+		if !s.tmpl.gaussian {
+			m, err := model.Mu(atoms, s.lab.Species.Mass, s.lab.Species.ScatteringLength, s.lab.Trap)
+			if err != nil {
+				return
+			}
+			// Radii² of Thomas-Fermi and, seven variances, of a few atoms, joined within a tenth
+			// where neither holds.
+			l = 0.5 * math.Log(math.Hypot(m/templateMu, least))
 		}
-		// Radii² of Thomas-Fermi and, seven variances, of a few atoms, joined within a tenth
-		// where neither holds.
-		l := 0.5 * math.Log(math.Hypot(m/templateMu, least))
 		q[pRadius1], q[pRadius2] = l, l
 		e := s.tmpl.condensateOf(q)
 		size := math.Sqrt(e.square[0] * e.square[1])

@@ -12,7 +12,8 @@ import (
 // It is scaled so that it leaves the number of the thermal part as it is. Beyond the grid it
 // keeps its border value.
 type excess struct {
-	values []float64 // rows in v from 0, columns in u from −excessReach
+	values  []float64 // rows in v from 0, columns in u from −excessReach
+	surplus float64   // atoms of the semi-ideal thermal part over those of the ideal one
 }
 
 // The grid of an excess: u from −4.5 to 4.5 widths, v from 0 (the cloud looks the same from
@@ -39,9 +40,13 @@ func newExcess(lab *Lab, flight, T, mu float64) (*excess, error) {
 	shape := lab.View.Project(model.ThermalVariances(T, sp.Mass, lab.Trap, b))
 	axes := principal(shape, math.Atan2(lab.View[1][0], lab.View[0][0]))
 	n := model.ThermalNumber(T, 0, lab.Trap)
+	mix, err := model.SemiIdealAt(T, mu, sp.Mass, sp.ScatteringLength, lab.Trap)
+	if err != nil {
+		return nil, fmt.Errorf("thermal part beside the condensate: %w", err)
+	}
 	c, s := math.Cos(axes.angle), math.Sin(axes.angle)
 	s1, s2 := math.Sqrt(axes.square[0]), math.Sqrt(axes.square[1])
-	e := &excess{values: make([]float64, excessW*excessH)}
+	e := &excess{values: make([]float64, excessW*excessH), surplus: mix.Thermal / n}
 	var with, without float64
 	for j := range excessH {
 		for i := range excessW {
@@ -61,6 +66,14 @@ func newExcess(lab *Lab, flight, T, mu float64) (*excess, error) {
 		e.values[i] *= without / with
 	}
 	return e, nil
+}
+
+// number is the surplus, 1 for a nil excess.
+func (e *excess) number() float64 {
+	if e == nil {
+		return 1
+	}
+	return e.surplus
 }
 
 // at interpolates at u, v widths from the centre; 1 for a nil excess.

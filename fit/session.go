@@ -138,7 +138,7 @@ func (s *session) problem(i int, q *params, k kind) *problem {
 	p := &problem{level: s.levels[i], fine: s.levels[i], tmpl: &s.tmpl, law: s.law, blur: s.blur, buf: &s.ws.buf}
 	p.room = s.roomFor(i, q, k)
 	if s.opt.Fugacity == FugacityNumber && !k.fixThermal {
-		p.number = s.lab.numberTie()
+		p.number = s.lab.numberTie(s.tmpl.excess)
 	}
 	return p
 }

@@ -45,7 +45,7 @@ func (s *session) answer(st *state, lab *Lab, flight float64) (numbers.Measured,
 	level.saturate = lab.Optics.perElectron()
 	level.own, level.lit = &s.ws.moved, box{} // another blur has another beam
 	if p.number != nil {
-		p.number = lab.numberTie()
+		p.number = lab.numberTie(s.tmpl.excess)
 	}
 	p.level, p.fine, p.tmpl, p.law, p.blur = &level, &level, &tmpl, newLaw(&lab.Optics), lab.Optics.Blur/lab.Optics.Pixel
 	q := st.p

@@ -188,8 +188,12 @@ func (s *session) suspects(r *Result) []string {
 	if m == nil {
 		return nil
 	}
+	untied := r.Checks.TiedOverFree > untiedChi2*math.Max(1, nanLow(r.ChiCloud))
 	before := m.score(s.lab, s.flight, 1)
 	if !(before > scoreOff) {
+		if untied {
+			return []string{FlagWidths}
+		}
 		return nil
 	}
 	name, best := s.formSuspect(m), math.Inf(1)
@@ -203,7 +207,7 @@ func (s *session) suspects(r *Result) []string {
 		}
 	}
 	var f []string
-	if a := m.ratios(s.lab, s.flight, 1); math.Abs(zeroNaN(a[ratioT])) > 0.1 || math.Abs(zeroNaN(a[ratioMu])) > 0.05 {
+	if a := m.ratios(s.lab, s.flight, 1); untied || math.Abs(zeroNaN(a[ratioT])) > 0.1 || math.Abs(zeroNaN(a[ratioMu])) > 0.05 {
 		f = append(f, FlagWidths)
 	}
 	// Two widths of a thermal cloud alone cannot tell one setting from another.
@@ -215,6 +219,10 @@ func (s *session) suspects(r *Result) []string {
 	}
 	return append(f, name)
 }
+
+// untiedChi2 is the χ², times that of the residuals under the cloud, by which widths of their own
+// are better than tied ones where the ties do not hold: 1 in 2e5 for two of them.
+const untiedChi2 = 25
 
 // The cost of the thermal form as an explanation, which is likelier than any slip, and the most
 // that it explains.
