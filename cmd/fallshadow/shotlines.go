@@ -36,7 +36,7 @@ func newShotLines(t terminal, json bool) *shotLines {
 }
 
 // Row prints a row as one line, aligned with those before as far as they are alike.
-func (l *shotLines) Row(r *ledger.Row, _ int) {
+func (l *shotLines) Row(r *ledger.Row) {
 	l.mu.Lock()
 	defer l.mu.Unlock()
 	if l.json {

@@ -23,9 +23,9 @@ func TestShotLines(t *testing.T) {
 	var out, errs bytes.Buffer
 	l := newShotLines(terminal{out: &out, err: &errs}, false)
 	l.scan = func() []string { return []string{"RAMP"} }
-	l.Row(shotRow("ramp_1", 51234), 0)
-	l.Row(shotRow("ramp_2\x1b[2J", 1e6), 1)
-	l.Row(&ledger.Row{Shot: "ramp_3", Reason: "cut\x07 short"}, 2)
+	l.Row(shotRow("ramp_1", 51234))
+	l.Row(shotRow("ramp_2\x1b[2J", 1e6))
+	l.Row(&ledger.Row{Shot: "ramp_3", Reason: "cut\x07 short"})
 	want := strings.Join([]string{
 		"shot          flight/ms        RAMP         N  fraction      T/nK  flags",
 		"ramp_1               16         310  51234(512)                      dense cut",
@@ -34,7 +34,7 @@ func TestShotLines(t *testing.T) {
 		t.Errorf("got\n%s\nwant\n%s", got, want)
 	}
 	l.color = true
-	l.Row(shotRow("ramp_4", 1), 3)
+	l.Row(shotRow("ramp_4", 1))
 	if !strings.Contains(out.String(), "\x1b[33mdense cut\x1b[0m") {
 		t.Error("no colour on a screen")
 	}
@@ -55,7 +55,7 @@ func TestShotLinesJSON(t *testing.T) {
 	var out bytes.Buffer
 	l := newShotLines(terminal{out: &out, err: &out}, true)
 	l.scan = func() []string { return nil }
-	l.Row(shotRow("ramp_1", 51234), 0)
+	l.Row(shotRow("ramp_1", 51234))
 	if got := out.String(); !strings.HasPrefix(got, `{"shot":"ramp_1",`) || strings.Count(got, "\n") != 1 {
 		t.Error(got)
 	}

@@ -103,9 +103,9 @@ func nameOf(dir string) string {
 // audience tells several.
 type audience []watch.Audience
 
-func (a audience) Row(r *ledger.Row, arrival int) {
+func (a audience) Row(r *ledger.Row) {
 	for _, one := range a {
-		one.Row(r, arrival)
+		one.Row(r)
 	}
 }
 

@@ -220,7 +220,7 @@ func TestBrowserFollowsShots(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	n.page.Row(late, 0)
+	n.page.Row(late)
 	time.Sleep(300 * time.Millisecond)
 	shown(t, tab, "ramp_0008") // word of a shot that came earlier changes nothing
 }
@@ -228,8 +228,11 @@ func TestBrowserFollowsShots(t *testing.T) {
 // The screens that were looked at: a desk in light and dark, a phone, a tablet, and the
 // large numbers for those who stand two metres away. A name may be long.
 func TestBrowserScreens(t *testing.T) {
-	dir := newNight(t, 1, 2, 3, 4, 5, 6, 7, 8, 9)
+	dir := newNight(t)
 	addShot(t, dir, 1, "ramp_0000_"+strings.Repeat("long", 20))
+	for n := 1; n <= 9; n++ {
+		addShot(t, dir, n, fmt.Sprintf("ramp_%04d", n))
+	}
 	n := watchNight(t, dir, "127.0.0.1:0")
 	tab := browser(t)
 	for _, s := range []struct {
@@ -458,6 +461,56 @@ func TestBrowserTrend(t *testing.T) {
 	do(t, tab, chromedp.Click("#trend-all"))
 	until(t, tab, "all of it", `document.querySelector('#trend-all').hidden`)
 	shown(t, tab, "ramp_0006") // dragging was no click
+}
+
+// Two series in one night: shots stand, follow one another and are drawn as they came, not
+// by name, and so after a restart.
+func TestBrowserTwoSeries(t *testing.T) {
+	dir := newNight(t)
+	start := time.Now().Add(-time.Hour)
+	shots := []string{"mot_0001", "bec_0001", "mot_0002", "bec_0002", "bec_0003"}
+	for i, name := range shots[:4] {
+		addShot(t, dir, i+3, name)
+		at := start.Add(time.Duration(i) * 20 * time.Second)
+		if err := os.Chtimes(filepath.Join(dir, name+".fits"), at, at); err != nil {
+			t.Fatal(err)
+		}
+	}
+	n := watchNight(t, dir, "127.0.0.1:0")
+	tab := browser(t)
+	do(t, tab, chromedp.EmulateViewport(1440, 900), chromedp.Navigate(n.url))
+	until(t, tab, "four shots", fmt.Sprintf(countIs, 4))
+	shown(t, tab, "bec_0002")
+	inOrder := func(n int) {
+		t.Helper()
+		list := eval[[]string](t, tab, `[...document.querySelectorAll('.item .name')].map((e) => e.textContent).reverse()`)
+		if !slices.Equal(list, shots[:n]) {
+			t.Errorf("the list is %v", list)
+		}
+		box := eval[[]float64](t, tab, `(() => { const b = document.querySelector('#trend-plot .u-over').getBoundingClientRect(); return [b.x, b.y, b.width, b.height]; })()`)
+		for i, name := range shots[:n] {
+			x := box[0] + box[2]*(0.02+0.96*float64(i)/float64(n-1))
+			do(t, tab, chromedp.MouseEvent(input.DispatchMouseEventTypeMouseMoved, x, box[1]+box[3]/2))
+			until(t, tab, name+" in the trend", fmt.Sprintf(`document.querySelector('#trend-read').textContent.startsWith(%q)`, name+":"))
+		}
+	}
+	inOrder(4)
+	addShot(t, dir, 7, "bec_0003")
+	shown(t, tab, "bec_0003")
+	inOrder(5)
+	for i := 3; i >= 0; i-- {
+		do(t, tab, chromedp.KeyEvent(kb.ArrowLeft))
+		shown(t, tab, shots[i])
+	}
+	do(t, tab, chromedp.KeyEvent(kb.End))
+	shown(t, tab, "bec_0003")
+	n.stop()
+	until(t, tab, "word of the loss", `document.querySelector('#status').className === 'lost'`)
+	watchNight(t, dir, strings.TrimSuffix(strings.TrimPrefix(n.url, "http://"), "/"))
+	until(t, tab, "the connection", isLive)
+	shown(t, tab, "bec_0003")
+	inOrder(5)
+	screenshot(t, tab, "two-series")
 }
 
 // The first picture that means something is there within a second of asking for the page.

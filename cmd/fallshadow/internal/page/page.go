@@ -12,7 +12,6 @@ import (
 	"iter"
 	"net"
 	"net/http"
-	"sync"
 	"time"
 
 	"fallshadow/cmd/fallshadow/internal/ledger"
@@ -22,8 +21,10 @@ import (
 
 // Night is the night that is shown. Its methods may be called from any goroutine.
 type Night interface {
-	// Each yields all rows in their order; a row holds until the next.
+	// Each yields all rows in natural order; a row holds until the next.
 	Each(ctx context.Context) iter.Seq2[*ledger.Row, error]
+	// Arrived tells when the shot of a row came.
+	Arrived(r *ledger.Row) time.Time
 	Row(ctx context.Context, shot string) (*ledger.Row, error)
 	// Measure fits a shot once more, for its picture.
 	Measure(ctx context.Context, shot string) (*report.Facts, *imageio.Raw, error)
@@ -44,9 +45,6 @@ type Page struct {
 	guard  guard
 	stream *stream
 	views  *views
-
-	mu     sync.Mutex
-	newest int // the latest arrival that was told, -1 before any
 }
 
 //go:embed assets
@@ -63,7 +61,7 @@ func must[T any](v T, err error) T {
 
 // New returns the page of a night of the given name.
 func New(name string) *Page {
-	p := &Page{name: name, stream: newStream(), newest: -1}
+	p := &Page{name: name, stream: newStream()}
 	p.views = newViews(p.measure)
 	return p
 }
@@ -76,22 +74,7 @@ func (p *Page) measure(ctx context.Context, shot string) (*report.Facts, *imagei
 }
 
 // Row tells the browsers of a stored row.
-func (p *Page) Row(r *ledger.Row, arrival int) {
-	p.mu.Lock()
-	p.newest = max(p.newest, arrival)
-	p.mu.Unlock()
-	p.stream.send("row", struct {
-		Arrival int    `json:"arrival"`
-		Row     detail `json:"row"`
-	}{arrival, newDetail(r, p.night.Scan())})
-}
-
-// latest is the latest arrival that was told.
-func (p *Page) latest() int {
-	p.mu.Lock()
-	defer p.mu.Unlock()
-	return p.newest
-}
+func (p *Page) Row(r *ledger.Row) { p.stream.send("row", p.detail(r)) }
 
 // Picture draws a shot and tells the browsers that it can be seen.
 func (p *Page) Picture(shot string, f *report.Facts, raw *imageio.Raw) {

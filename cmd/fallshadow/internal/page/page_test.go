@@ -31,6 +31,7 @@ type still struct {
 	judged []string
 	drawn  image.Rectangle
 	undone bool
+	came   map[string]time.Time
 }
 
 func (s *still) Each(context.Context) iter.Seq2[*ledger.Row, error] {
@@ -42,6 +43,7 @@ func (s *still) Each(context.Context) iter.Seq2[*ledger.Row, error] {
 		}
 	}
 }
+func (s *still) Arrived(r *ledger.Row) time.Time { return s.came[r.Shot] }
 func (s *still) Row(_ context.Context, shot string) (*ledger.Row, error) {
 	if i := slices.IndexFunc(s.rows, func(r ledger.Row) bool { return r.Shot == shot }); i >= 0 {
 		return &s.rows[i], nil
@@ -266,8 +268,9 @@ func TestHostileNames(t *testing.T) {
 
 // A row tells its numbers with the digits that their errors leave.
 func TestDetail(t *testing.T) {
-	s := newStill()
-	d := newDetail(&s.rows[0], s.Scan())
+	p, s := New("night"), newStill()
+	p.Show(s)
+	d := p.detail(&s.rows[0])
 	want := []report.Card{
 		{Name: "atoms", Label: "N", Value: "123\u2009500", Err: "± 800", Cal: "± 2900"},
 		{Name: "fraction", Label: "N₀/N", Value: "< 0.012"},
@@ -312,7 +315,7 @@ func TestCatchUp(t *testing.T) {
 	p.Notes([]string{"a"})
 	first := p.stream.last()
 	p.Changed()
-	p.Row(&ledger.Row{Shot: "shot_3"}, 3)
+	p.Row(&ledger.Row{Shot: "shot_3"})
 	if kinds, last := events(t, url, first, 2); !slices.Equal(kinds, []string{"changed", "row"}) || last != p.stream.last() {
 		t.Errorf("missed %v up to %s", kinds, last)
 	}
@@ -329,23 +332,39 @@ func TestCatchUp(t *testing.T) {
 	}
 }
 
-// A browser that comes is told of the latest arrival, so that it can tell a late one.
-func TestLatestArrival(t *testing.T) {
-	p, _, url := newServer(t, "")
-	latest := func() (n struct{ Arrival int }) {
+// Shots are listed as they came, and by name where that is not known, and the last one of
+// them is told in full.
+func TestListedAsTheyCame(t *testing.T) {
+	_, s, url := newServer(t, "")
+	at := func(ms int64) time.Time { return time.UnixMilli(1764617000000 + ms) }
+	s.rows = nil
+	for _, shot := range []string{"bec_1", "bec_2", "mot_1", "mot_2", "mot_10"} {
+		s.rows = append(s.rows, ledger.Row{Shot: shot})
+	}
+	for _, test := range []struct {
+		came map[string]time.Time
+		want []string
+	}{
+		{map[string]time.Time{"mot_1": at(1), "mot_2": at(2), "bec_1": at(3), "mot_10": at(4), "bec_2": at(5)}, []string{"mot_1", "mot_2", "bec_1", "mot_10", "bec_2"}},
+		{map[string]time.Time{"mot_1": at(9), "mot_2": at(9), "mot_10": at(9), "bec_1": at(8), "bec_2": at(20)}, []string{"bec_1", "mot_1", "mot_2", "mot_10", "bec_2"}},
+		{nil, []string{"bec_1", "bec_2", "mot_1", "mot_2", "mot_10"}},
+	} {
+		s.came = test.came
 		_, body := ask(t, "GET", url+"/api/night", "")
-		if err := json.Unmarshal([]byte(body), &n); err != nil {
+		var night struct {
+			Rows []struct{ Shot string }
+			Last struct{ Shot string }
+		}
+		if err := json.Unmarshal([]byte(body), &night); err != nil {
 			t.Fatal(err)
 		}
-		return n
-	}
-	if n := latest(); n.Arrival != -1 {
-		t.Errorf("%d before any", n.Arrival)
-	}
-	p.Row(&ledger.Row{Shot: "shot_7"}, 7)
-	p.Row(&ledger.Row{Shot: "shot_3"}, 3)
-	if n := latest(); n.Arrival != 7 {
-		t.Errorf("%d, want 7", n.Arrival)
+		var got []string
+		for _, r := range night.Rows {
+			got = append(got, r.Shot)
+		}
+		if diff := cmp.Diff(test.want, got); diff != "" || night.Last.Shot != got[len(got)-1] {
+			t.Errorf("last %q, %s", night.Last.Shot, diff)
+		}
 	}
 }
 

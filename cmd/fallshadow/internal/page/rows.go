@@ -1,6 +1,7 @@
 package page
 
 import (
+	"cmp"
 	"math"
 	"net/http"
 	"slices"
@@ -16,6 +17,7 @@ import (
 // brief is a row in the list of shots.
 type brief struct {
 	Shot   string   `json:"shot"`
+	At     int64    `json:"at"` // when it came, ms since 1970
 	Model  string   `json:"model,omitempty"`
 	Flags  []string `json:"flags,omitempty"`
 	Bad    string   `json:"bad,omitempty"`
@@ -41,16 +43,16 @@ type named struct {
 	Text string `json:"text"`
 }
 
-func newBrief(r *ledger.Row) brief {
+func (p *Page) brief(r *ledger.Row) brief {
 	return brief{
-		Shot: r.Shot, Model: r.Words["model"], Flags: report.Flags(r), Bad: r.Bad, Failed: r.Reason != "",
+		Shot: r.Shot, At: p.night.Arrived(r).UnixMilli(), Model: r.Words["model"], Flags: report.Flags(r), Bad: r.Bad, Failed: r.Reason != "",
 		Atoms: short(r.Number("atoms")),
 	}
 }
 
-func newDetail(r *ledger.Row, scan []string) detail {
+func (p *Page) detail(r *ledger.Row) detail {
 	d := detail{
-		brief: newBrief(r), Files: r.Files, Reason: r.Reason, Numbers: map[string]float64{}, Words: r.Words, Same: r.Duplicate,
+		brief: p.brief(r), Files: r.Files, Reason: r.Reason, Numbers: map[string]float64{}, Words: r.Words, Same: r.Duplicate,
 		Cards: report.Cards(r),
 	}
 	for name, v := range r.Numbers {
@@ -59,7 +61,7 @@ func newDetail(r *ledger.Row, scan []string) detail {
 	if v := r.Number("flight_ms"); !math.IsNaN(v) {
 		d.Flight = report.Plain(v, 4) + " ms"
 	}
-	for _, name := range scan {
+	for _, name := range p.night.Scan() {
 		text, ok := imageio.Metadata(r.Meta).Get(name)
 		if !ok {
 			continue
@@ -99,28 +101,33 @@ type column struct {
 	Meaning string `json:"meaning"`
 }
 
-// serveNight says what there is, without the numbers of the shots.
+// serveNight says what there is, without the numbers of the shots, which are listed as they
+// came.
 func (p *Page) serveNight(r *http.Request) (any, error) {
-	last, newest := p.stream.last(), p.latest() // before the rows are read, so that nothing falls in between
+	last := p.stream.last() // before the rows are read, so that nothing falls in between
 	list := []brief{}
 	var final *ledger.Row
+	latest := int64(math.MinInt64)
 	for row, err := range p.night.Each(r.Context()) {
 		if err != nil {
 			return nil, err
 		}
-		list = append(list, newBrief(row))
-		final = row
+		list = append(list, p.brief(row))
+		if at := list[len(list)-1].At; at >= latest {
+			final, latest = row, at
+		}
 	}
+	slices.SortStableFunc(list, func(a, b brief) int { return cmp.Compare(a.At, b.At) })
 	now, next := p.night.Region()
 	answer := map[string]any{
-		"night": p.name, "event": last, "arrival": newest,
+		"night": p.name, "event": last,
 		"rows": list, "columns": columns(), "scan": p.night.Scan(), "flags": flagSentences(),
 		"settings": p.night.SettingsText(), "notes": p.night.Notes(),
 		"region": corners(now), "drawn": corners(next),
 		"scales": map[string][]string{"density": hexes(picture.DensityColors), "residual": hexes(picture.ResidualColors)},
 	}
 	if final != nil {
-		answer["last"] = newDetail(final, p.night.Scan())
+		answer["last"] = p.detail(final)
 	}
 	return answer, nil
 }
@@ -158,7 +165,7 @@ func (p *Page) serveRow(r *http.Request) (any, error) {
 	if err != nil {
 		return nil, err
 	}
-	return newDetail(row, p.night.Scan()), nil
+	return p.detail(row), nil
 }
 
 // serveColumn gives a column of all shots with its errors and the ends of its intervals, of

@@ -27,7 +27,7 @@ func (w *Watcher) darks(ctx context.Context, file imageio.ShotFile) ([]*imageio.
 // recall fits the last shot once more where its row stands, as after a restart: it can be
 // seen at once, and the next one finds all prepared.
 func (w *Watcher) recall(ctx context.Context) {
-	last := w.roll.last()
+	last := w.roll.newest()
 	if w.roll.knownOf(last).content == (ledger.Digest{}) {
 		return
 	}

@@ -39,7 +39,7 @@ func (w *Watcher) Region() (now, next *image.Rectangle) {
 	if !w.isReady() {
 		return nil, nil
 	}
-	last := w.roll.last()
+	last := w.roll.newest()
 	w.mu.Lock()
 	defer w.mu.Unlock()
 	if g, ok := ledger.RegionFor(w.regions, last); ok {

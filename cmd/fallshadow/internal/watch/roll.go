@@ -49,6 +49,7 @@ type entry struct {
 	shot    imageio.Shot
 	looks   []ledger.Sighting // of its files
 	since   time.Time         // of their last change
+	moment  int64             // when it came, see moments
 	state   state
 	tries   int
 	next    time.Time // for the next look
@@ -82,15 +83,19 @@ func newRoll(root string, rows []ledger.Row, seen map[string]ledger.Sighting) *r
 	return r
 }
 
-// update takes in what a scan found and returns the shots to be read now, in natural
-// order, and whether shots have left the folder.
-func (r *roll) update(shots []imageio.Shot, now time.Time) (jobs []*job, gone bool) {
+// update takes in what a scan found and returns the shots to be read now, in the order
+// they came, whether shots have left the folder, and whether shots that were there have
+// another place in that order.
+func (r *roll) update(shots []imageio.Shot, now time.Time) (jobs []*job, gone, moved bool) {
 	r.mu.Lock()
 	defer r.mu.Unlock()
 	here := make(map[string]bool, len(shots))
 	for _, s := range shots {
 		here[s.Name] = true
-		if j := r.meet(s, now); j != nil {
+	}
+	for _, m := range moments(r.root, shots) {
+		moved = moved || r.moves(m)
+		if j := r.meet(m, now); j != nil {
 			jobs = append(jobs, j)
 		}
 	}
@@ -100,15 +105,25 @@ func (r *roll) update(shots []imageio.Shot, now time.Time) (jobs []*job, gone bo
 			gone = true
 		}
 	}
-	return jobs, gone
+	return jobs, gone, moved
+}
+
+// moves reports whether a shot that has a row has another place now.
+func (r *roll) moves(m met) bool {
+	if e := r.shots[m.shot.Name]; e != nil {
+		return e.state == done && e.moment != m.moment
+	}
+	var files []string
+	for _, l := range m.looks {
+		files = append(files, l.Path)
+	}
+	_, has := r.rows[m.shot.Name]
+	return has && r.written(files) != m.moment
 }
 
 // meet takes in one shot of a scan.
-func (r *roll) meet(s imageio.Shot, now time.Time) *job {
-	looks, ok := look(r.root, s)
-	if !ok {
-		return nil // a file went away in between; the next scan tells
-	}
+func (r *roll) meet(m met, now time.Time) *job {
+	s, looks := m.shot, m.looks
 	e := r.shots[s.Name]
 	switch {
 	case e == nil:
@@ -126,6 +141,7 @@ func (r *roll) meet(s imageio.Shot, now time.Time) *job {
 			e.state = waiting
 		}
 	}
+	e.moment = m.moment
 	if e.state != waiting || now.Before(e.next) {
 		return nil
 	}
@@ -273,6 +289,41 @@ func (r *roll) find(name string) (s imageio.Shot, arrival int, ok bool) {
 		return s, 0, false
 	}
 	return e.shot, e.arrival, true
+}
+
+// newest returns the shot that came last and was whole, "" where there is none.
+func (r *roll) newest() (name string) {
+	r.mu.Lock()
+	defer r.mu.Unlock()
+	var latest *entry
+	for _, e := range r.shots {
+		if e.arrival >= 0 && (latest == nil || inOrder(latest.moment, e.moment, latest.shot.Name, e.shot.Name) < 0) {
+			latest = e
+		}
+	}
+	if latest == nil {
+		return ""
+	}
+	return latest.shot.Name
+}
+
+// momentOf returns when a shot came, from the ledger's word on its files where it is not in
+// the folder, and 0 where that is not known.
+func (r *roll) momentOf(name string, files []string) int64 {
+	r.mu.Lock()
+	defer r.mu.Unlock()
+	if e := r.shots[name]; e != nil {
+		return e.moment
+	}
+	return r.written(files)
+}
+
+// written returns when the last of some files was written that the ledger knows.
+func (r *roll) written(files []string) (last int64) {
+	for _, f := range files {
+		last = max(last, r.seen[f].Modified)
+	}
+	return last
 }
 
 // last returns the last shot in natural order that was whole, "" where there is none.

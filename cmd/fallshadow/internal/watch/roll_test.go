@@ -27,7 +27,7 @@ func newAlbum(t *testing.T, layout imageio.Layout) *album {
 }
 
 // after lets time go by and scans.
-func (a *album) after(d time.Duration) (jobs []*job, gone bool) {
+func (a *album) after(d time.Duration) (jobs []*job, gone, moved bool) {
 	a.t.Helper()
 	a.now = a.now.Add(d)
 	night, err := imageio.Scan(context.Background(), a.dir, a.layout)
@@ -40,7 +40,7 @@ func (a *album) after(d time.Duration) (jobs []*job, gone bool) {
 // expect wants so many jobs after a while.
 func (a *album) expect(d time.Duration, n int) []*job {
 	a.t.Helper()
-	jobs, _ := a.after(d)
+	jobs, _, _ := a.after(d)
 	if len(jobs) != n {
 		a.t.Fatalf("%d jobs, want %d", len(jobs), n)
 	}
@@ -163,7 +163,7 @@ func TestRollReadsAgain(t *testing.T) {
 	if a.roll.unchanged(j, a.now) {
 		t.Error("a file that is gone is unchanged")
 	}
-	if _, gone := a.after(time.Second); !gone || a.roll.last() != "" || len(a.roll.present()) != 0 {
+	if _, gone, _ := a.after(time.Second); !gone || a.roll.last() != "" || len(a.roll.present()) != 0 {
 		t.Error("the shot that left is still there")
 	}
 	if _, ok := a.roll.at(j.arrival); ok {

@@ -60,7 +60,7 @@ func (w *Watcher) scanOnce(ctx context.Context) {
 	w.notes.set("folder", "")
 	w.desk.setDarks(scanned.Darks)
 	last := w.roll.last()
-	jobs, gone := w.roll.update(scanned.Shots, time.Now())
+	jobs, gone, moved := w.roll.update(scanned.Shots, time.Now())
 	w.noteStrays(scanned)
 	if gone {
 		if err := w.store.Reconcile(context.WithoutCancel(ctx), w.roll.present()); err != nil {
@@ -69,7 +69,7 @@ func (w *Watcher) scanOnce(ctx context.Context) {
 		w.audience.Changed()
 		w.askTable()
 	}
-	if w.beginRegion(ctx, jobs, last) {
+	if w.beginRegion(ctx, jobs, last) || moved {
 		w.audience.Changed()
 	}
 	w.queue.push(jobs...)

@@ -86,6 +86,16 @@ func (w *Watcher) Row(ctx context.Context, shot string) (*ledger.Row, error) {
 	return r, nil
 }
 
+// Arrived tells when the shot of a row came: when its last file was written, or the first of
+// the shots that were written in one go with it. Shots go in this order, and in natural
+// order where it is the same; it is 0 s after 1970 where it is not known.
+func (w *Watcher) Arrived(r *ledger.Row) time.Time {
+	if !w.isReady() {
+		return time.Unix(0, 0)
+	}
+	return time.Unix(0, w.roll.momentOf(r.Shot, r.Files))
+}
+
 // staleness judges by the settings and regions in force.
 func (w *Watcher) staleness() night.Staleness {
 	w.mu.Lock()

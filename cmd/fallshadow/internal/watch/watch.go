@@ -34,8 +34,8 @@ type Options struct {
 // Audience is told what happens. Its methods may be called from several goroutines and
 // must not block for long.
 type Audience interface {
-	// Row tells of a row that was stored. arrival counts the shots as they came.
-	Row(r *ledger.Row, arrival int)
+	// Row tells of a row that was stored.
+	Row(r *ledger.Row)
 	// Picture tells what the shot looks like; it comes after the row.
 	Picture(shot string, f *report.Facts, raw *imageio.Raw)
 	// Changed says that rows changed in another way, so that all are to be read again.

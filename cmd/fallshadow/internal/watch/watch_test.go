@@ -44,7 +44,7 @@ func (h *hall) tell(f func()) {
 	}
 }
 
-func (h *hall) Row(r *ledger.Row, _ int) {
+func (h *hall) Row(r *ledger.Row) {
 	h.tell(func() { h.rows[r.Shot] = append(h.rows[r.Shot], *r); h.order = append(h.order, r.Shot) })
 }
 func (h *hall) Picture(shot string, f *report.Facts, _ *imageio.Raw) {

@@ -138,7 +138,7 @@ func (w *Watcher) tell(ctx context.Context, j *job, m *measured) error {
 	if err != nil || r == nil {
 		return err
 	}
-	w.audience.Row(r, j.arrival)
+	w.audience.Row(r)
 	if m.facts != nil || m.raw != nil {
 		w.audience.Picture(j.Name, m.facts, m.raw)
 	}

@@ -17,7 +17,6 @@ const region = new RegionTool(pictures, (text) => say(text));
 
 let columns = [], sentences = {};
 let following = true, connected = false;
-let newest = -1;        // the latest arrival that was told
 let turn = 0;           // counts views: the last one asked for stays
 let latestAt = null;    // when the last shot came
 let wanted = null;      // the shot that is being shown
@@ -30,7 +29,6 @@ async function load() {
   const night = await get("/api/night");
   columns = night.columns;
   sentences = night.flags;
-  newest = night.arrival;
   document.title = night.night + " · fallshadow";
   $("night").textContent = night.night;
   $("settings-text").textContent = night.settings;
@@ -109,12 +107,11 @@ function follow() {
 }
 
 const live = new Live({
-  row({ arrival, row }) {
+  row(row) {
     shots.put(row);
     trend.put(row);
     latestAt = Date.now();
-    if (following && arrival >= newest || wanted === row.shot) show(row.shot, row);
-    newest = Math.max(newest, arrival);
+    if (following && row.shot === shots.last() || wanted === row.shot) show(row.shot, row);
     showStatus();
   },
   picture(shot) {

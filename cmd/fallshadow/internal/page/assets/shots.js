@@ -1,5 +1,5 @@
-// The list of shots: kept in natural order, drawn newest first, and only the part that is
-// in sight, so that a long night stays light.
+// The list of shots: kept in the order they came, drawn newest first, and only the part that
+// is in sight, so that a long night stays light.
 import { $, el } from "./dom.js";
 import { natural } from "./natural.js";
 
@@ -19,6 +19,7 @@ function parts(name) {
 export class Shots {
   constructor(choose) {
     this.rows = [];
+    this.came = new Map(); // when each shot came
     this.current = null;
     this.choose = choose;
     $("list").addEventListener("scroll", () => this.draw());
@@ -27,29 +28,31 @@ export class Shots {
 
   reset(rows) {
     this.rows = rows;
+    this.came = new Map(rows.map((r) => [r.shot, r.at]));
     this.draw();
   }
 
-  // place returns where a shot is or belongs.
-  place(shot) {
+  // place returns where a shot is, or belongs that came at a time; natural order decides
+  // between those of the same time.
+  place(shot, at = this.came.get(shot) ?? 0) {
     let low = 0, high = this.rows.length;
     while (low < high) {
-      const mid = (low + high) >> 1;
-      if (natural(this.rows[mid].shot, shot) < 0) low = mid + 1;
+      const mid = (low + high) >> 1, row = this.rows[mid];
+      if ((row.at - at || natural(row.shot, shot)) < 0) low = mid + 1;
       else high = mid;
     }
     return low;
   }
 
   has(shot) {
-    const row = this.rows[this.place(shot)];
-    return row !== undefined && row.shot === shot;
+    return this.came.has(shot);
   }
 
   // put takes in what the list shows of a row; all of it would make a long night heavy.
-  put({ shot, model, flags, bad, failed, atoms }) {
-    const i = this.place(shot);
-    this.rows.splice(i, this.has(shot) ? 1 : 0, { shot, model, flags, bad, failed, atoms });
+  put({ shot, at, model, flags, bad, failed, atoms }) {
+    if (this.has(shot)) this.rows.splice(this.place(shot), 1);
+    this.came.set(shot, at);
+    this.rows.splice(this.place(shot), 0, { shot, at, model, flags, bad, failed, atoms });
     this.draw();
   }
 

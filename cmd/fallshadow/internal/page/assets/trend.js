@@ -6,7 +6,7 @@ import { reading, readingOf, written } from "./reading.js";
 /* global uPlot */
 
 const first = ["atoms", "fraction", "T_nK", "mu_nK", "condensate", "t_reduced", "chi2_cloud"];
-const order = "shot";
+const order = "order of arrival";
 
 export class Trend {
   constructor(shots, choose) {
