@@ -1,6 +1,7 @@
 package main
 
 import (
+	"cmp"
 	"context"
 	"errors"
 	"fmt"
@@ -8,6 +9,7 @@ import (
 	"os"
 	"path/filepath"
 	"runtime/debug"
+	"sync"
 	"time"
 
 	"github.com/mattn/go-isatty"
@@ -62,34 +64,46 @@ func (c *watchCmd) Run(ctx context.Context, t terminal) error {
 	return c.runWithPage(ctx, t, w, screen)
 }
 
-// runWithPage runs watch and page until the first of them ends.
+// runWithPage runs watch and page until the first of them ends. The page begins with the
+// watch: one that is refused shows none.
 func (c *watchCmd) runWithPage(ctx context.Context, t terminal, w *watch.Watcher, screen *page.Page) error {
-	l, url, err := c.listen(screen)
-	if err != nil {
-		return err
-	}
-	fmt.Fprintf(t.err, "page: %s\n", url)
 	ctx, cancel := context.WithCancel(ctx)
 	defer cancel()
-	served := make(chan error, 1)
-	go func() {
-		defer cancel()
-		served <- screen.Serve(ctx, l)
-	}()
-	err = w.Run(ctx)
+	var serving sync.WaitGroup
+	var served error
+	w.Begun = func() error {
+		l, err := c.listen(t, screen)
+		if err == nil {
+			serving.Go(func() {
+				defer cancel()
+				served = screen.Serve(ctx, l)
+			})
+		}
+		return err
+	}
+	err := w.Run(ctx)
 	cancel()
-	return errors.Join(err, <-served)
+	serving.Wait()
+	return errors.Join(err, served)
 }
 
-// listen opens the page; where nobody named a place and ours is taken, on a free port.
-func (c *watchCmd) listen(screen *page.Page) (net.Listener, string, error) {
-	if c.Page != "" {
-		return screen.Listen(c.Page, c.Token)
+// listen opens the page and says where it is; where nobody named a place and ours is taken,
+// on a free port.
+func (c *watchCmd) listen(t terminal, screen *page.Page) (net.Listener, error) {
+	const choose = "choose another address with --page HOST:PORT"
+	l, url, err := screen.Listen(cmp.Or(c.Page, ownAddress), c.Token)
+	if err != nil && c.Page != "" {
+		return nil, fmt.Errorf("%w: %s", err, choose)
 	}
-	if l, url, err := screen.Listen(ownAddress, ""); err == nil {
-		return l, url, nil
+	why := ""
+	if err != nil {
+		why = fmt.Sprintf("%s is in use, so the page is on a free port; for one that stays, %s\n", ownAddress, choose)
+		if l, url, err = screen.Listen("127.0.0.1:0", c.Token); err != nil {
+			return nil, err
+		}
 	}
-	return screen.Listen("127.0.0.1:0", "")
+	fmt.Fprintf(t.err, "page: %s\n%s", url, why)
+	return l, nil
 }
 
 // nameOf is what a night is called.

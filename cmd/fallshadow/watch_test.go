@@ -2,8 +2,10 @@ package main
 
 import (
 	"bufio"
+	"bytes"
 	"encoding/json"
 	"io"
+	"net"
 	"net/http"
 	"os"
 	"os/exec"
@@ -12,6 +14,7 @@ import (
 	"strings"
 	"testing"
 
+	"fallshadow/cmd/fallshadow/internal/page"
 	"fallshadow/cmd/fallshadow/internal/report"
 )
 
@@ -74,6 +77,12 @@ func TestWatchCommand(t *testing.T) {
 	if _, code := program(t, "batch", night, "--out", results); code != exitError {
 		t.Errorf("a batch beside the watch ended with %d", code)
 	}
+	for _, address := range []string{"127.0.0.1:0", strings.TrimSuffix(strings.TrimPrefix(url, "http://"), "/")} {
+		second, _ := exec.Command("fallshadow", "watch", night, "--out", results, "--page", address).CombinedOutput()
+		if !strings.Contains(string(second), "is writing the ledger") || strings.Contains(string(second), "page") {
+			t.Errorf("a second watch at %s said %q", address, second)
+		}
+	}
 	if err := cmd.Process.Signal(os.Interrupt); err != nil {
 		t.Fatal(err)
 	}
@@ -91,6 +100,32 @@ func TestWatchCommand(t *testing.T) {
 	}
 	if table := tableOf(t, results); strings.Contains(table, report.FlagProvisional) {
 		t.Errorf("the table is\n%s", table)
+	}
+}
+
+// Where the page's port is in use it is said what to do: one that somebody named is refused,
+// ours gives way to a free one.
+func TestPortInUse(t *testing.T) {
+	l, err := net.Listen("tcp", "127.0.0.1:0")
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer l.Close()
+	out, err := exec.Command("fallshadow", "watch", smallNight(t, 1), "--out", filepath.Join(t.TempDir(), "r"), "--page", l.Addr().String()).CombinedOutput()
+	if exitCode(err) != exitError || !strings.HasSuffix(string(out), ": choose another address with --page HOST:PORT\n") || strings.Contains(string(out), "page: ") {
+		t.Errorf("it ended with %v and said %q", err, out)
+	}
+	if ours, err := net.Listen("tcp", ownAddress); err == nil { // else somebody has it already
+		defer ours.Close()
+	}
+	var said bytes.Buffer
+	free, err := (&watchCmd{}).listen(terminal{err: &said}, page.New("night"))
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer free.Close()
+	if got := said.String(); !strings.HasPrefix(got, "page: http://"+free.Addr().String()) || !strings.Contains(got, ownAddress+" is in use") || !strings.Contains(got, "--page HOST:PORT") {
+		t.Errorf("said %q", got)
 	}
 }
 

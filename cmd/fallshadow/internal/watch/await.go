@@ -31,15 +31,16 @@ func (w *Watcher) await(ctx context.Context) error {
 		info, err := os.Stat(w.Dir)
 		switch {
 		case errors.Is(err, fs.ErrNotExist):
-			w.notes.set("folder", "waiting for the folder "+w.Dir+" to appear")
+			err = w.waiting("folder", "waiting for the folder "+w.Dir+" to appear")
 		case err != nil:
-			w.notes.set("folder", "the folder cannot be read: "+err.Error())
+			err = w.waiting("folder", "the folder cannot be read: "+err.Error())
 		case !info.IsDir():
 			return errors.New(w.Dir + " is a file: name the folder of the night")
 		default:
 			w.notes.set("folder", "")
-			lab, state, err := w.readSettings()
-			if err == nil {
+			var lab *settings.Settings
+			var state fileState
+			if lab, state, err = w.readSettings(); err == nil {
 				w.notes.set("settings", "")
 				w.mu.Lock()
 				defer w.mu.Unlock()
@@ -49,12 +50,24 @@ func (w *Watcher) await(ctx context.Context) error {
 			if state != (fileState{}) || w.Settings != "" {
 				return err
 			}
-			w.notes.set("settings", "waiting for settings: "+err.Error())
+			err = w.waiting("settings", "waiting for settings: "+err.Error())
+		}
+		if err != nil {
+			return err
 		}
 		if !pause(ctx, min(w.Poll, time.Second)) {
 			return context.Cause(ctx)
 		}
 	}
+}
+
+// waiting notes what the watch waits for before it can begin.
+func (w *Watcher) waiting(kind, what string) error {
+	err := w.begun()
+	if err == nil {
+		w.notes.set(kind, what)
+	}
+	return err
 }
 
 // pause waits, and reports whether it was not stopped by ctx.

@@ -29,6 +29,9 @@ type Options struct {
 	Poll     time.Duration
 	// NoEvents leaves all to polling.
 	NoEvents bool
+	// Begun, if there is one, is called once, before anything is told: when the ledger is
+	// held, or when the watch has to wait for folder or settings. An error ends the watch.
+	Begun func() error
 }
 
 // Audience is told what happens. Its methods may be called from several goroutines and
@@ -95,6 +98,9 @@ func (w *Watcher) Run(ctx context.Context) (err error) {
 		return orStopped(ctx, err)
 	}
 	defer func() { err = errors.Join(err, w.store.Close()) }()
+	if err := w.begun(); err != nil {
+		return err
+	}
 	close(w.ready)
 	wake := w.wakes(ctx)
 	var all sync.WaitGroup
@@ -114,6 +120,15 @@ func (w *Watcher) Run(ctx context.Context) (err error) {
 		return cause
 	}
 	return w.writeTable(context.WithoutCancel(ctx))
+}
+
+// begun says that the watch goes on from here.
+func (w *Watcher) begun() error {
+	begun := w.Begun
+	if w.Begun = nil; begun == nil {
+		return nil
+	}
+	return begun()
 }
 
 // orStopped is err, or nothing where it only says that ctx is done.
