@@ -18,6 +18,7 @@ import (
 	"github.com/chromedp/chromedp"
 	"github.com/chromedp/chromedp/kb"
 
+	"fallshadow/cmd/fallshadow/internal/ledger"
 	"fallshadow/cmd/fallshadow/internal/page"
 	"fallshadow/cmd/fallshadow/internal/watch"
 )
@@ -511,6 +512,88 @@ func TestBrowserTwoSeries(t *testing.T) {
 	shown(t, tab, "bec_0003")
 	inOrder(5)
 	screenshot(t, tab, "two-series")
+}
+
+// markShape looks at the pixels of one colour around the point of the trend at a place from
+// left to right: how much of their box they fill, how far down they are widest, 0 to 1, and
+// whether the middle of the box is one of them.
+const markShape = `(() => {
+	const canvas = document.querySelector('#trend-plot canvas'), over = document.querySelector('#trend-plot .u-over').getBoundingClientRect();
+	const box = canvas.getBoundingClientRect(), scale = canvas.width / box.width;
+	const middle = Math.round((over.x - box.x + over.width * (0.02 + 0.96 * %g)) * scale), half = Math.round(9 * scale);
+	const probe = document.body.appendChild(document.createElement('p'));
+	probe.style.color = 'var(%s)';
+	const want = getComputedStyle(probe).color.match(/\d+/g).map(Number);
+	probe.remove();
+	const { data, width, height } = canvas.getContext('2d').getImageData(middle - half, (over.y - box.y) * scale, 2 * half + 1, over.height * scale);
+	const is = (x, y) => [0, 1, 2].every((k) => Math.abs(data[4 * (y * width + x) + k] - want[k]) < 40) && data[4 * (y * width + x) + 3] > 200;
+	const rows = [];
+	for (let y = 0; y < height; y++) {
+		const xs = [...Array(width).keys()].filter((x) => is(x, y));
+		if (xs.length > 1) rows.push({ y, n: xs.length, from: xs[0], to: xs[xs.length - 1] });
+	}
+	const wide = rows.filter((r) => r.to - r.from > 1);
+	if (wide.length < 4) return [0, 0, 0];
+	const top = wide[0].y, bottom = wide[wide.length - 1].y, spans = wide.map((r) => r.to - r.from + 1), most = Math.max(...spans);
+	const widest = wide.filter((r) => r.to - r.from + 1 === most).map((r) => r.y);
+	return [wide.reduce((n, r) => n + r.n, 0) / (most * (bottom - top + 1)), (widest.reduce((a, b) => a + b) / widest.length - top) / (bottom - top), +is(half, Math.round((top + bottom) / 2))];
+})()`
+
+// What is to be said against a shot is told by the shape of its point, and by a legend that
+// is there when it is needed.
+func TestBrowserMarks(t *testing.T) {
+	n := watchNight(t, newNight(t, 1, 2, 3, 4), "127.0.0.1:0")
+	tab := browser(t)
+	do(t, tab, chromedp.EmulateViewport(1440, 900), chromedp.Navigate(n.url))
+	until(t, tab, "four shots", fmt.Sprintf(countIs, 4))
+	shown(t, tab, "ramp_0004")
+	until(t, tab, "the connection", isLive)
+	tell := func(shot int, change func(*ledger.Row)) {
+		r, err := n.watch.Row(context.Background(), fmt.Sprintf("ramp_%04d", shot))
+		if err != nil {
+			t.Fatal(err)
+		}
+		r.Flags = nil
+		change(r)
+		n.page.Row(r)
+	}
+	legend := func(want string) {
+		t.Helper()
+		until(t, tab, "the legend "+want, fmt.Sprintf(`[...document.querySelectorAll('#trend-legend > span')].filter((s) => s.checkVisibility()).map((s) => s.textContent.trim()).join() === %q`, want))
+	}
+	for i := range 4 {
+		tell(i+1, func(*ledger.Row) {})
+	}
+	legend("")
+	tell(2, func(r *ledger.Row) { r.Flags = []string{"dense"} })
+	legend("good,flagged")
+	tell(3, func(r *ledger.Row) { r.Stale, r.Flags = true, []string{"dense"} })
+	tell(4, func(r *ledger.Row) { r.Bad, r.Stale = "lamp on", true })
+	legend("good,flagged,stale,marked bad")
+	do(t, tab, chromedp.KeyEvent(kb.ArrowLeft), chromedp.KeyEvent(kb.ArrowLeft), chromedp.KeyEvent(kb.ArrowLeft))
+	until(t, tab, "the first", fmt.Sprintf(shownIs, "ramp_0001", "ramp_0001"))
+	for _, theme := range []string{"light", "dark"} {
+		eval[bool](t, tab, fmt.Sprintf(`document.documentElement.dataset.theme === %q || document.querySelector('#theme').click(); true`, theme))
+		time.Sleep(100 * time.Millisecond)
+		for i, m := range []struct {
+			colour               string
+			least, most, in, out float64
+			middle               float64
+		}{
+			{"--data", 0.75, 1, 0.35, 0.65, 1},
+			{"--warn", 0.4, 0.75, 0.8, 1, 1},
+			{"--muted", 0.4, 0.72, 0.35, 0.65, 1},
+			{"--muted", 0.1, 0.6, 0.3, 0.7, 0},
+		} {
+			got := eval[[]float64](t, tab, fmt.Sprintf(markShape, float64(i)/3, m.colour))
+			t.Logf("%s, shot %d: %.2f", theme, i+1, got)
+			if !(got[0] >= m.least && got[0] <= m.most && got[1] >= m.in && got[1] <= m.out && got[2] == m.middle) {
+				t.Errorf("%s: the mark of shot %d fills %.2f of its box, is widest at %.2f, middle %g", theme, i+1, got[0], got[1], got[2])
+			}
+		}
+		screenshot(t, tab, "marks-"+theme)
+		readable(t, tab, "marks-"+theme)
+	}
 }
 
 // The first picture that means something is there within a second of asking for the page.

@@ -445,7 +445,7 @@ func TestWeight(t *testing.T) {
 	p.guard, _ = newGuard(&net.TCPAddr{IP: net.IPv4(127, 0, 0, 1), Port: 80}, "127.0.0.1:80", "")
 	total := 0
 	for _, path := range []string{
-		"/", "/style.css", "/theme.js", "/app.js", "/api.js", "/dom.js", "/natural.js", "/shots.js", "/numbers.js", "/reading.js", "/picture.js",
+		"/", "/style.css", "/theme.js", "/app.js", "/api.js", "/dom.js", "/natural.js", "/shots.js", "/numbers.js", "/reading.js", "/marks.js", "/picture.js",
 		"/region.js", "/cuts.js", "/trend.js", "/live.js", "/icon.svg", "/uplot/uPlot.iife.min.js", "/uplot/uPlot.min.css",
 		"/api/night", "/api/column?name=atoms",
 	} {

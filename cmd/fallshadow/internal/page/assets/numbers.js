@@ -22,7 +22,7 @@ function card(c) {
   const errors = el("div", { class: "errors" });
   if (c.err) errors.append(el("span", {}, el("b", {}, c.err), " stat"));
   if (c.cal) errors.append(el("span", {}, el("b", {}, c.cal), " cal"));
-  const length = c.value.length, size = major.has(c.name) ? length <= 6 ? "" : length <= 8 ? " long" : " longer" : " minor";
+  const length = c.value.length, size = major.has(c.name) ? length <= 6 ? "" : length <= 7 ? " long" : " longer" : " minor";
   return el("div", { class: "card" + size, "data-name": c.name },
     el("div", { class: "label" }, c.label),
     el("div", { class: "value" }, c.value, c.unit ? el("span", { class: "unit" }, c.unit) : null),

@@ -1,9 +1,11 @@
 // The list of shots: kept in the order they came, drawn newest first, and only the part that
 // is in sight, so that a long night stays light.
 import { $, el } from "./dom.js";
+import { kind } from "./marks.js";
 import { natural } from "./natural.js";
 
 const height = 30;
+const signs = { good: "", flagged: "▲", stale: "◆", bad: "✕" };
 const tail = 12; // letters at the end of a name that stay in sight
 
 // parts cuts a long name in two: its end tells shots apart, its beginning may give way.
@@ -92,7 +94,7 @@ export class Shots {
       title: [row.shot, row.bad, ...flags].filter(Boolean).join("\n"),
       "aria-current": row.shot === this.current,
     },
-    el("span", { class: "dot" }, row.bad || row.failed ? "✕" : flags.length ? "▲" : ""),
+    el("span", { class: "dot" }, row.failed ? signs.bad : signs[kind(row)]),
     el("span", { class: "name" }, ...parts(row.shot)),
     el("span", { class: "what" }, row.failed ? "failed" : row.model === "none" ? "none" : row.atoms || ""));
     node.style.top = top + "px";

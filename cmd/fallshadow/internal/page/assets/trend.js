@@ -1,6 +1,7 @@
 // The trend of one column over the shots or against a scan variable.
 import { $, css, el } from "./dom.js";
 import { get } from "./api.js";
+import { colours, kind, mark } from "./marks.js";
 import { reading, readingOf, written } from "./reading.js";
 
 /* global uPlot */
@@ -55,11 +56,18 @@ export class Trend {
     this.shots.rows.forEach((row, i) => {
       const y = this.values.y.get(row.shot) ?? null;
       const x = this.x === order ? i + 1 : this.values.x.get(row.shot) ?? null;
-      if (x !== null && y !== null) this.points.push({ x, row, ...y });
+      if (x !== null && y !== null) this.points.push({ x, row, kind: kind(row), ...y });
     });
     this.points.sort((a, b) => a.x - b.x);
-    const pick = (f) => this.points.map((p) => (f(p) ? p.y : null));
-    return [this.points.map((p) => p.x), pick((p) => !p.row.bad && !p.limit), pick((p) => p.row.bad), pick((p) => !p.row.bad && p.limit)];
+    this.explain();
+    return [this.points.map((p) => p.x), this.points.map((p) => p.y)];
+  }
+
+  // explain shows the legend of the marks that there are, if there are others than good ones.
+  explain() {
+    const kinds = new Set(this.points.map((p) => p.kind));
+    $("trend-legend").hidden = !kinds.size || kinds.size === 1 && kinds.has("good");
+    for (const k of Object.keys(colours)) $("trend-" + k).hidden = !kinds.has(k);
   }
 
   refresh() {
@@ -81,16 +89,15 @@ export class Trend {
     this.plot?.destroy();
     $("trend-all").hidden = true;
     const axis = { stroke: css("--muted"), grid: { stroke: css("--line"), width: 1 }, ticks: { show: false }, font: "12px system-ui", values: (u, list) => list.map((v) => tick(v, list)) };
-    const dots = (stroke, fill) => ({ paths: () => null, points: { show: true, size: this.shots.rows.length > 300 ? 4 : 7, width: 1.5, stroke: css(stroke), fill } });
     this.plot = new uPlot({
       width, height, padding: [8, 14, 0, 0],
       scales: { x: { time: false, range: (u, a, b) => roomy(a, b, .02) }, y: { range: (u, a, b) => this.span(a, b) } },
       legend: { show: false },
       cursor: { y: false, points: { show: false }, drag: { x: true, y: false } },
       axes: [{ ...axis, size: 24, ...(this.x === order ? { incrs: [1, 2, 5, 10, 20, 50, 100, 200, 500, 1000] } : {}) }, { ...axis, size: 62 }],
-      series: [{}, dots("--data", css("--data")), dots("--muted", "transparent"), dots("--data", "transparent")],
+      series: [{}, { paths: () => null, points: { show: false } }],
       hooks: {
-        draw: [(u) => this.drawErrors(u)],
+        draw: [(u) => this.drawPoints(u)],
         setCursor: [(u) => this.read(u.cursor.idx)],
         setScale: [(u, key) => { if (key === "x") this.noteZoom(u); }],
       },
@@ -110,30 +117,32 @@ export class Trend {
     return roomy(low, high, this.points.some((p) => p.limit) ? .16 : .06); // arrows need more
   }
 
-  drawErrors(u) {
-    const c = u.ctx;
+  drawPoints(u) {
+    const c = u.ctx, dot = devicePixelRatio, size = (this.points.length > 300 ? 2 : 3.5) * dot;
+    const theme = Object.fromEntries(Object.entries(colours).map(([k, name]) => [k, css(name)]));
     c.save();
     c.beginPath();
     c.rect(u.bbox.left, u.bbox.top, u.bbox.width, u.bbox.height);
     c.clip();
-    c.strokeStyle = css("--data");
-    c.lineWidth = devicePixelRatio * 1.2;
-    c.beginPath();
+    c.lineWidth = dot * 1.3;
     for (const p of this.points) {
-      if (p.row.bad) continue;
-      const x = u.valToPos(p.x, "x", true);
-      if (p.limit) arrow(c, x, u.valToPos(p.y, "y", true), p.limit === "<" ? 1 : -1);
-      if (p.low === undefined) continue;
-      c.moveTo(x, u.valToPos(p.low, "y", true));
-      c.lineTo(x, u.valToPos(p.high, "y", true));
+      const x = u.valToPos(p.x, "x", true), y = u.valToPos(p.y, "y", true);
+      mark(c, p.kind, x, y, size, theme[p.kind], p.limit);
+      if (p.kind === "bad") continue;
+      c.beginPath();
+      if (p.limit) arrow(c, x, y, p.limit === "<" ? 1 : -1);
+      if (p.low !== undefined) {
+        c.moveTo(x, u.valToPos(p.low, "y", true));
+        c.lineTo(x, u.valToPos(p.high, "y", true));
+      }
+      c.stroke();
     }
-    c.stroke();
     const now = this.points.find((p) => p.row.shot === this.shots.current);
     if (now) {
       c.strokeStyle = css("--ink");
-      c.lineWidth = devicePixelRatio * 2;
+      c.lineWidth = dot * 2;
       c.beginPath();
-      c.arc(u.valToPos(now.x, "x", true), u.valToPos(now.y, "y", true), 8 * devicePixelRatio, 0, 7);
+      c.arc(u.valToPos(now.x, "x", true), u.valToPos(now.y, "y", true), 8 * dot, 0, 7);
       c.stroke();
     }
     c.restore();
@@ -155,7 +164,7 @@ export class Trend {
     const unit = this.columns.get(this.y)?.unit ?? "";
     $("trend-read").textContent = p
       ? `${p.row.shot}: ${written(p)} ${unit}`
-        + (this.x === order ? "" : ` at ${this.x} ${p.x}`) + (p.row.bad ? `, bad: ${p.row.bad}` : "")
+        + (this.x === order ? "" : ` at ${this.x} ${p.x}`) + (p.row.bad ? `, bad: ${p.row.bad}` : p.kind === "good" ? "" : ", " + p.kind)
       : "";
   }
 
