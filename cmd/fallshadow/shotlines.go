@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"io"
 	"maps"
+	"slices"
 	"strings"
 	"sync"
 	"time"
@@ -25,6 +26,7 @@ type shotLines struct {
 	head   bool
 	widths []int
 	now    func() time.Time
+	stand  []string             // the notes of now
 	said   map[string]time.Time // notes, and when they last were there
 }
 
@@ -111,16 +113,19 @@ func (l *shotLines) Picture(string, *report.Facts, *imageio.Raw) {}
 // Changed is for who shows all rows.
 func (l *shotLines) Changed() {}
 
-// Notes prints what was not said of late.
+// Notes prints what is new and was not said of late, each line of it on a line.
 func (l *shotLines) Notes(notes []string) {
 	l.mu.Lock()
 	defer l.mu.Unlock()
 	now := l.now()
 	for _, n := range notes {
-		if last, said := l.said[n]; !said || now.Sub(last) > again {
-			fmt.Fprintln(l.err, report.Printable(n))
+		if last, said := l.said[n]; !slices.Contains(l.stand, n) && (!said || now.Sub(last) > again) {
+			for i, line := range strings.Split(n, "\n") {
+				fmt.Fprintln(l.err, strings.Repeat("  ", min(i, 1))+report.Printable(line))
+			}
 		}
 		l.said[n] = now
 	}
+	l.stand = slices.Clone(notes)
 	maps.DeleteFunc(l.said, func(_ string, last time.Time) bool { return now.Sub(last) > again })
 }

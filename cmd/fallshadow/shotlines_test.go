@@ -44,8 +44,14 @@ func TestShotLines(t *testing.T) {
 	l.Notes([]string{"crowded"})
 	l.Notes([]string{"waiting", "crowded"})
 	clock = clock.Add(again + time.Second)
+	l.Notes([]string{"crowded"}) // it stood all the time
+	l.Notes(nil)
 	l.Notes([]string{"crowded"})
-	if got := errs.String(); got != "waiting\ncrowded\ncrowded\n" {
+	clock = clock.Add(again + time.Second)
+	l.Notes(nil)
+	l.Notes([]string{"two are wrong:\none\x07\nother"})
+	l.Notes([]string{"crowded"})
+	if got := errs.String(); got != "waiting\ncrowded\ntwo are wrong:\n  one?\n  other\ncrowded\n" {
 		t.Errorf("said %q", got)
 	}
 }

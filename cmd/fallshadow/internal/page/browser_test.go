@@ -514,6 +514,52 @@ func TestBrowserTwoSeries(t *testing.T) {
 	screenshot(t, tab, "two-series")
 }
 
+// Settings that change are said on the page, in the words of the terminal, and what was
+// fitted before is shown as stale.
+func TestBrowserSettingsChange(t *testing.T) {
+	dir := newNight(t, 1, 2, 3)
+	n := watchNight(t, dir, "127.0.0.1:0")
+	tab := browser(t)
+	do(t, tab, chromedp.EmulateViewport(1440, 900), chromedp.Navigate(n.url))
+	until(t, tab, "three shots", fmt.Sprintf(countIs, 3))
+	until(t, tab, "the connection", isLive)
+	file := filepath.Join(dir, "fallshadow.toml")
+	text, err := os.ReadFile(file)
+	if err != nil {
+		t.Fatal(err)
+	}
+	save := func(old, new string) {
+		t.Helper()
+		if !bytes.Contains(text, []byte(old)) {
+			t.Fatalf("there is no %q in the settings", old)
+		}
+		if err := os.WriteFile(file, bytes.Replace(text, []byte(old), []byte(new), 1), 0o644); err != nil {
+			t.Fatal(err)
+		}
+	}
+	notes := func(part string) {
+		t.Helper()
+		until(t, tab, part, fmt.Sprintf(`document.querySelector('#notes').checkVisibility() && document.querySelector('#notes').textContent.includes(%q)`, part))
+		if got, want := eval[string](t, tab, `document.querySelector('#notes').textContent`), strings.Join(n.watch.Notes(), "\n"); got != want {
+			t.Errorf("the page says %q, the watch %q", got, want)
+		}
+	}
+	save("alpha = { value = 1.5,", "alhpa = { value = 1.5,")
+	notes("the settings were changed and are wrong, the old ones hold")
+	save("alpha = { value = 1.5,", "alpha = { value = 3,")
+	const said = "the settings are right again: probe.alpha 1.5 ± 0.04 -> 3.0 ± 0.04; they hold from the next shot on, the first after ramp_0003"
+	notes(said)
+	until(t, tab, "stale shots", `document.querySelectorAll('.item').length === 3 && [...document.querySelectorAll('.item .dot')].every((d) => d.textContent === '◆')`)
+	addShot(t, dir, 4, "ramp_0004")
+	shown(t, tab, "ramp_0004")
+	until(t, tab, "both in the legend", `document.querySelector('#trend-stale').checkVisibility()`)
+	do(t, tab, chromedp.Navigate(n.url))
+	shown(t, tab, "ramp_0004")
+	notes(said)
+	screenshot(t, tab, "settings-changed")
+	readable(t, tab, "settings-changed")
+}
+
 // markShape looks at the pixels of one colour around the point of the trend at a place from
 // left to right: how much of their box they fill, how far down they are widest, 0 to 1, and
 // whether the middle of the box is one of them.

@@ -6,23 +6,7 @@ import (
 	"io/fs"
 	"os"
 	"time"
-
-	"fallshadow/cmd/fallshadow/internal/settings"
 )
-
-// fileState is what tells whether a file has changed.
-type fileState struct {
-	size     int64
-	modified time.Time
-}
-
-func stateOf(file string) (fileState, error) {
-	info, err := os.Stat(file)
-	if err != nil {
-		return fileState{}, err
-	}
-	return fileState{info.Size(), info.ModTime()}, nil
-}
 
 // await waits until the folder is there and its settings can be read. Settings that are
 // there and wrong end the wait with what is wrong.
@@ -38,24 +22,15 @@ func (w *Watcher) await(ctx context.Context) error {
 			return errors.New(w.Dir + " is a file: name the folder of the night")
 		default:
 			w.notes.set("folder", "")
-			var lab *settings.Settings
-			var state fileState
-			if lab, state, err = w.readSettings(); err == nil {
-				w.notes.set("settings", "")
-				w.mu.Lock()
-				defer w.mu.Unlock()
-				w.lab, w.labFile = lab, state
+			var done bool
+			if done, err = w.firstSettings(time.Now()); done {
 				return nil
 			}
-			if state != (fileState{}) || w.Settings != "" {
-				return err
-			}
-			err = w.waiting("settings", "waiting for settings: "+err.Error())
 		}
 		if err != nil {
 			return err
 		}
-		if !pause(ctx, min(w.Poll, time.Second)) {
+		if !pause(ctx, min(w.Poll, composed)) {
 			return context.Cause(ctx)
 		}
 	}
@@ -78,57 +53,4 @@ func pause(ctx context.Context, d time.Duration) bool {
 	case <-ctx.Done():
 		return false
 	}
-}
-
-// readSettings reads the settings; the state is that of the file before it was read, zero
-// where there is none.
-func (w *Watcher) readSettings() (*settings.Settings, fileState, error) {
-	file, err := w.settingsFile()
-	if err != nil {
-		return nil, fileState{}, err
-	}
-	state, _ := stateOf(file)
-	lab, err := settings.Load(file)
-	return lab, state, err
-}
-
-func (w *Watcher) settingsFile() (string, error) {
-	if w.Settings != "" {
-		return w.Settings, nil
-	}
-	return settings.Find(w.Dir)
-}
-
-// rereadSettings takes over settings that have changed. Wrong ones change nothing, and a
-// note says so.
-func (w *Watcher) rereadSettings() {
-	file, err := w.settingsFile()
-	if err != nil {
-		w.notes.set("settings", "the settings are gone, the old ones hold: "+err.Error())
-		return
-	}
-	state, err := stateOf(file)
-	if err != nil || state == w.labFile {
-		return
-	}
-	lab, state, err := w.readSettings()
-	w.labFile = state
-	if err != nil {
-		w.notes.set("settings", "the settings were changed and are wrong, the old ones hold: "+err.Error())
-		return
-	}
-	w.notes.set("settings", "")
-	w.mu.Lock()
-	w.lab = lab
-	w.mu.Unlock()
-	w.desk.resettle(lab)
-	w.audience.Changed()
-	w.askTable()
-}
-
-// settings returns the settings in force, nil before there are any.
-func (w *Watcher) settings() *settings.Settings {
-	w.mu.Lock()
-	defer w.mu.Unlock()
-	return w.lab
 }

@@ -162,7 +162,7 @@ func TestSettingsChange(t *testing.T) {
 	write(t, file, []byte(strings.Replace(text, "magnification", "magnificence", 1)))
 	h.until(t, "word of wrong settings", said(h, "magnificence"))
 	write(t, file, []byte(strings.Replace(text, "value = 1.5, err = 0.04", "value = 3.0, err = 0.04", 1)))
-	h.until(t, "new settings", func() bool { return h.changed > 0 && len(h.notes) == 0 })
+	h.until(t, "new settings", said(h, "the settings are right again: probe.alpha 1.5 ± 0.04 -> 3.0 ± 0.04"))
 	copyFile(t, shotFile("1"), filepath.Join(dir, "ramp_0002.fits"))
 	h.until(t, "the second", h.seen(2))
 	rows := rowsOf(t, w)

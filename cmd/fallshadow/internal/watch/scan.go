@@ -16,7 +16,7 @@ const gap = 25 * time.Millisecond
 func (w *Watcher) scan(ctx context.Context, wake <-chan struct{}) {
 	for first := true; ; first = false {
 		began := time.Now()
-		w.rereadSettings()
+		w.rereadSettings(began)
 		w.scanOnce(ctx)
 		if first {
 			w.desk.work.Go(func() { w.recall(ctx) })
@@ -38,13 +38,17 @@ func (w *Watcher) scan(ctx context.Context, wake <-chan struct{}) {
 	}
 }
 
-// untilDue is the time until a waiting shot is to be looked at again.
+// untilDue is the time until a waiting shot or settings that changed are to be looked at
+// again.
 func (w *Watcher) untilDue() time.Duration {
-	next, _, _ := w.roll.patience()
-	if next.IsZero() {
-		return w.Poll
+	due := w.Poll
+	if next, _, _ := w.roll.patience(); !next.IsZero() {
+		due = time.Until(next)
 	}
-	return max(0, time.Until(next))
+	if !w.sheet.judged {
+		due = min(due, time.Until(w.sheet.due()))
+	}
+	return max(0, due)
 }
 
 // scanOnce finds what is new and hands it to the workers.

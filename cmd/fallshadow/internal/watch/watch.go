@@ -62,9 +62,12 @@ type Watcher struct {
 	table chan struct{} // asks for the table to be written
 	notes notes
 
+	sheet    sheet     // this and the next two belong to who scans
+	taken    time.Time // when settings were put in force, as long as a note says so
+	objected bool      // a note says that settings are wrong or gone
+
 	mu      sync.Mutex
 	lab     *settings.Settings
-	labFile fileState
 	regions []ledger.Region
 	drawn   *drawing // a region that waits for its first shot
 }
@@ -142,9 +145,6 @@ func orStopped(ctx context.Context, err error) error {
 // begin waits for the folder and its settings, opens the ledger and brings it in line.
 func (w *Watcher) begin(ctx context.Context) error {
 	if err := w.await(ctx); err != nil {
-		return err
-	}
-	if err := report.CheckScan(w.lab.Shots.Scan); err != nil {
 		return err
 	}
 	var err error
