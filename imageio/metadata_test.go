@@ -115,8 +115,10 @@ func TestSidecar(t *testing.T) {
 			t.Errorf("%s: %v", tt.name, err)
 			continue
 		}
-		if got := side.metadata(shot); !maps.Equal(got, tt.want) {
-			t.Errorf("%s: %v, want %v", tt.name, got, tt.want)
+		shots := []Shot{shot}
+		side.assign(shots, nil)
+		if got := shots[0].Meta; !maps.Equal(got, tt.want) || shots[0].Problem != nil {
+			t.Errorf("%s: %v, %v, want %v", tt.name, got, shots[0].Problem, tt.want)
 		}
 	}
 }

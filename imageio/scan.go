@@ -19,6 +19,8 @@ type Night struct {
 	Shots  []Shot
 	Darks  []ShotFile // files with dark frames for the whole night
 	Strays []Stray
+	// Unclaimed are the keys of the side table's rows that fit no shot, in their order.
+	Unclaimed []string
 }
 
 // Stray is a file or folder that belongs to no shot, and why.
@@ -177,11 +179,11 @@ func (s *search) finish(side *sidecar) Night {
 			return Natural(a.Path, b.Path)
 		})
 		shot.Problem = s.plan.incomplete(shot.Files)
-		shot.Meta = side.metadata(*shot)
-		shot.Meta.under(groups(s.plan.pattern, shot.Files[0].Path))
+		shot.Meta = groups(s.plan.pattern, shot.Files[0].Path)
 		s.night.Shots = append(s.night.Shots, *shot)
 	}
 	slices.SortFunc(s.night.Shots, func(a, b Shot) int { return Natural(a.Name, b.Name) })
+	s.night.Unclaimed = side.assign(s.night.Shots, s.plan.pattern)
 	slices.SortFunc(s.night.Darks, func(a, b ShotFile) int { return Natural(a.Path, b.Path) })
 	slices.SortFunc(s.night.Strays, func(a, b Stray) int { return Natural(a.Path, b.Path) })
 	return s.night

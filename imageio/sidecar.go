@@ -7,9 +7,9 @@ import (
 	"fmt"
 	"io"
 	"os"
-	"path"
 	"path/filepath"
 	"regexp"
+	"slices"
 	"strings"
 
 	"fallshadow/imageio/fault"
@@ -18,10 +18,20 @@ import (
 // maxSidecar is the size in bytes above which a side table is refused.
 const maxSidecar = 64 << 20
 
-// sidecar is a side table: its rows by their key, and by the number that the key is.
+// sidecar is a side table: its rows in order, and their places by the key and by the number
+// that the key is.
 type sidecar struct {
-	byText   map[string]Metadata
-	byNumber map[string]Metadata
+	file, key string // the table, and the name of its column of keys
+	columns   []string
+	rows      []sideRow
+	byText    map[string]int
+	byNumber  map[string]int
+}
+
+// sideRow is a row of a side table: the cell that says whose it is, and all cells.
+type sideRow struct {
+	key   string
+	cells Metadata
 }
 
 // readSidecar reads the side table of a layout, nil where it has none: CSV with one
@@ -40,6 +50,7 @@ func readSidecar(dir string, layout Layout) (*sidecar, error) {
 	if err != nil {
 		return nil, fmt.Errorf("side table %s: %w", layout.Sidecar, err)
 	}
+	side.file = layout.Sidecar
 	return side, nil
 }
 
@@ -88,7 +99,7 @@ func readRows(r *csv.Reader, key string) (*sidecar, error) {
 	if key != "" && head[column] != key {
 		return nil, fmt.Errorf("no column %q among %s", key, strings.Join(head, ", "))
 	}
-	side := &sidecar{make(map[string]Metadata), make(map[string]Metadata)}
+	side := &sidecar{key: head[column], columns: head, byText: make(map[string]int), byNumber: make(map[string]int)}
 	for {
 		row, err := r.Read()
 		if errors.Is(err, io.EOF) {
@@ -103,6 +114,11 @@ func readRows(r *csv.Reader, key string) (*sidecar, error) {
 	}
 }
 
+// hasColumn reports whether a column is called so, in whatever case.
+func (s *sidecar) hasColumn(name string) bool {
+	return slices.ContainsFunc(s.columns, func(c string) bool { return strings.EqualFold(c, name) })
+}
+
 func (s *sidecar) add(head, row []string, column int) error {
 	key := strings.TrimSpace(row[column])
 	if key == "" {
@@ -115,36 +131,16 @@ func (s *sidecar) add(head, row []string, column int) error {
 		}
 	}
 	number := wholeNumber(key)
-	if s.byText[key] != nil || number != "" && s.byNumber[number] != nil {
+	_, twice := s.byText[key]
+	if _, same := s.byNumber[number]; twice || same && number != "" {
 		return fmt.Errorf("%w: a second row for %s", fault.Broken, key)
 	}
-	s.byText[key] = m
+	s.byText[key] = len(s.rows)
 	if number != "" {
-		s.byNumber[number] = m
+		s.byNumber[number] = len(s.rows)
 	}
+	s.rows = append(s.rows, sideRow{key, m})
 	return nil
-}
-
-// metadata returns the cells of a shot: the row whose key is the shot's name or the last
-// part of it, a path or a file name of one of its files, or its number, which is the last
-// run of digits in its name.
-func (s *sidecar) metadata(shot Shot) Metadata {
-	m := Metadata{}
-	if s == nil {
-		return m
-	}
-	keys := []string{shot.Name, path.Base(shot.Name)}
-	for _, f := range shot.Files {
-		keys = append(keys, f.Path, path.Base(f.Path))
-	}
-	for _, k := range keys {
-		if row := s.byText[k]; row != nil {
-			m.under(row)
-			return m
-		}
-	}
-	m.under(s.byNumber[lastNumber(path.Base(shot.Name))])
-	return m
 }
 
 var wholeText = regexp.MustCompile(`^(\d+)(\.0*)?$`)
@@ -156,19 +152,6 @@ func wholeNumber(key string) string {
 		return normal(m[1])
 	}
 	return ""
-}
-
-// lastNumber returns the last run of digits in a name, without leading zeros, or "".
-func lastNumber(name string) string {
-	end := strings.LastIndexAny(name, "0123456789") + 1
-	start := end
-	for start > 0 && digit(name[start-1]) {
-		start--
-	}
-	if start == end {
-		return ""
-	}
-	return normal(name[start:end])
 }
 
 func normal(digits string) string {

@@ -5,6 +5,7 @@ import (
 	"errors"
 	"maps"
 	"path/filepath"
+	"regexp"
 	"runtime"
 	"testing"
 
@@ -91,18 +92,43 @@ func FuzzOpen(f *testing.F) {
 }
 
 func FuzzSidecar(f *testing.F) {
-	f.Add([]byte("shot,tof\n1,28\n2,30\n"), "shot_001")
-	f.Add([]byte("\ufeffname;tof\nshot_1.fits;\"2\n8\"\n"), "shot_1")
-	f.Fuzz(func(t *testing.T, table []byte, name string) {
+	f.Add([]byte("shot,tof\n1,28\n2,30\n"), "shot_001", "b/shot_1", `(?P<shot>\d+)`)
+	f.Add([]byte("\ufeffname;tof\nshot_1.fits;\"2\n8\"\n"), "shot_1", "20260101_120501_7", "")
+	f.Add([]byte("n,TOF\n1,11\n15,99\n"), "scan_1_tof15", "scan_2_d1.5", `tof(?P<tof>\d+)`)
+	f.Fuzz(func(t *testing.T, table []byte, one, two, pattern string) {
 		side, err := parseSidecar(table, "")
 		if err != nil {
 			return
 		}
-		for key, row := range side.byText {
-			if got := side.metadata(Shot{Name: key}); !maps.Equal(got, row) {
-				t.Fatalf("row %q: %v, want %v", key, got, row)
+		re, err := expression("pattern", pattern)
+		if err != nil {
+			return
+		}
+		for _, row := range side.rows {
+			if got := given(side, re, row.key); !maps.Equal(got[0].Meta, row.cells) {
+				t.Fatalf("row %q: %v, want %v", row.key, got, row.cells)
 			}
 		}
-		side.metadata(Shot{Name: name})
+		const mark = "row\n" // in no header
+		for _, row := range side.rows {
+			row.cells[mark] = row.key
+		}
+		shots := given(side, re, one, two)
+		for i, s := range shots {
+			row, ok := s.Meta[mark]
+			if ok && (s.Problem != nil || one != two && shots[1-i].Meta[mark] == row) {
+				t.Fatalf("%q, %q: row %q serves %q in spite of %v", one, two, row, s.Name, s.Problem)
+			}
+		}
 	})
+}
+
+// given returns shots of the names, a file each, with their rows.
+func given(side *sidecar, pattern *regexp.Regexp, names ...string) []Shot {
+	shots := make([]Shot, len(names))
+	for i, name := range names {
+		shots[i] = Shot{Name: name, Files: []ShotFile{{name + ".fits", Unused}}}
+	}
+	side.assign(shots, pattern)
+	return shots
 }

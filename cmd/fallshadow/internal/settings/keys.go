@@ -160,7 +160,7 @@ var keys = []key{
 		also: []string{"sidecar", "table", "csv"},
 		doc:  "CSV file in the night's folder with metadata, a row a shot, under one line of names."},
 	{table: "shots", name: "side_key", field: func(s *Settings) any { return &s.Shots.SideKey }, def: `""`, sample: `"shot"`, silent: true,
-		doc: "Column of the side table that names the shot, by its path, a file name or its number; the first column if left out."},
+		doc: "Column of the side table that names the shot, by its path, a file name or its number; the first column if left out. Where a name holds several numbers, a group of pattern with the name of the column says which."},
 	{table: "shots", name: "scan", field: func(s *Settings) any { return &s.Shots.Scan }, def: "[]", sample: `["EVAP"]`, silent: true,
 		also: []string{"variables", "scan_variables"},
 		doc:  "Names in the metadata to carry into the table."},
