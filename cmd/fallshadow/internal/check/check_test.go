@@ -331,7 +331,29 @@ func TestSideTable(t *testing.T) {
 	if out.Problems != 1 {
 		t.Errorf("%d problems", out.Problems)
 	}
-	says(t, text, "other.csv names no shot", "such as that of rubidium_0001")
+	says(t, text, "other.csv names no shot", "such as rubidium_0001", "other.csv has rows that fit no shot: run7")
+}
+
+// TestSideTableTwice: a row that fits two shots serves none.
+func TestSideTableTwice(t *testing.T) {
+	dir := simulated(t, "rubidium", 3)
+	if err := os.Mkdir(filepath.Join(dir, "b"), 0o755); err != nil {
+		t.Fatal(err)
+	}
+	if err := os.Rename(filepath.Join(dir, "rubidium_0003.fits"), filepath.Join(dir, "b", "rubidium_0001.fits")); err != nil {
+		t.Fatal(err)
+	}
+	if err := os.WriteFile(filepath.Join(dir, "log.csv"), []byte("shot,tof\n1,25\n2,26\n3,27\n"), 0o644); err != nil {
+		t.Fatal(err)
+	}
+	out, text := look(t, dir, 0, "[shots]", "[shots]\nside_table = \"log.csv\"")
+	if out.Unusable != 2 {
+		t.Errorf("%d unusable shots, want 2", out.Unusable)
+	}
+	says(t, text, "log.csv has a row for 1 of 3 shots", "log.csv has rows that fit no shot: 3", "no row of its own: row 1 fits b/rubidium_0001 too", "no row of its own: row 1 fits rubidium_0001 too")
+	if strings.Contains(text, "has no row for") {
+		t.Errorf("a row that is not told is called missing:\n%s", text)
+	}
 }
 
 func TestStrayLight(t *testing.T) {

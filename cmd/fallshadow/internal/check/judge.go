@@ -7,6 +7,7 @@ import (
 
 	"fallshadow/cmd/fallshadow/internal/night"
 	"fallshadow/cmd/fallshadow/internal/report"
+	"fallshadow/imageio"
 	"fallshadow/imageio/fault"
 	"fallshadow/imageio/light"
 )
@@ -32,6 +33,9 @@ func (v *visit) judgeNight() {
 	for i, s := range v.look.Shots {
 		switch {
 		case s.Err == nil:
+		case errors.Is(s.Problem, imageio.ErrRow):
+			v.shots[i].refuse("no row")
+			v.trouble.problem(s.Name, "%s", bare(s))
 		case s.Problem != nil:
 			v.shots[i].refuse("incomplete")
 			v.trouble.problem(s.Name, "%s", bare(s))

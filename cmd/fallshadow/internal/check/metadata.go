@@ -1,6 +1,7 @@
 package check
 
 import (
+	"errors"
 	"fmt"
 	"maps"
 	"math"
@@ -86,17 +87,24 @@ func (v *visit) writeSideTable() {
 		return
 	}
 	var without []string
+	with := len(v.shots)
 	for _, s := range v.look.Shots {
-		if !slices.ContainsFunc(slices.Collect(maps.Keys(s.Shot.Meta)), func(key string) bool { return v.source(s.Shot, key) == table }) {
+		if errors.Is(s.Problem, imageio.ErrRow) {
+			with--
+		} else if !slices.ContainsFunc(slices.Collect(maps.Keys(s.Shot.Meta)), func(key string) bool { return v.source(s.Shot, key) == table }) {
 			without = append(without, s.Name)
 		}
 	}
-	v.page.pair("side table", "%s has a row for %d of %d shots", table, len(v.shots)-len(without), len(v.shots))
+	with -= len(without)
+	v.page.pair("side table", "%s has a row for %d of %d shots", table, with, len(v.shots))
 	switch {
 	case len(without) == len(v.shots):
-		v.trouble.problem("", "%s names no shot: its column side_key must hold a shot's path, a file name, or the last number in the shot's name, such as that of %s", table, without[0])
+		v.trouble.problem("", "%s names no shot: its column side_key must hold a shot's path, such as %s, a file name, or the number that counts the shot in its name", table, without[0])
 	case len(without) > 0:
 		v.trouble.caution("", "%s has no row for %s", table, some(without))
+	}
+	if rows := v.look.Unclaimed; len(rows) > 0 {
+		v.trouble.caution("", "%s has rows that fit no shot: %s", table, some(rows))
 	}
 }
 

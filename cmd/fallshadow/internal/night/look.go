@@ -20,6 +20,7 @@ type Look struct {
 	Shots     []Seen // in natural order
 	DarkFiles []imageio.ShotFile
 	Strays    []imageio.Stray
+	Unclaimed []string // keys of the side table's rows that fit no shot
 	Light     *light.Night
 	Settings  *settings.Settings // with gain and read noise filled in
 	Lab       fit.Lab
@@ -68,7 +69,7 @@ func TakeLook(ctx context.Context, o Options, p Progress, see func(shot int, raw
 	if err == nil {
 		err = b.survey(ctx)
 	}
-	l.DarkFiles, l.Strays = b.scanned.Darks, b.scanned.Strays
+	l.DarkFiles, l.Strays, l.Unclaimed = b.scanned.Darks, b.scanned.Strays, b.scanned.Unclaimed
 	for _, s := range b.shots {
 		l.Shots = append(l.Shots, Seen{s.Shot, s.meta, s.err})
 	}
