@@ -132,6 +132,8 @@ func TestRefusals(t *testing.T) {
 		{func(e *Experiment, _ *Cloud) { e.Flight = -1 }, "flight"},
 		{func(e *Experiment, _ *Cloud) { e.Optics.Pixel = math.NaN() }, "pixel"},
 		{func(e *Experiment, _ *Cloud) { e.Optics.Saturation = 0 }, "saturation"},
+		{func(e *Experiment, _ *Cloud) { e.Optics.Stray = -0.1 }, "stray light"},
+		{func(e *Experiment, _ *Cloud) { e.Optics.Stray = 1 }, "stray light is 1"},
 		{func(e *Experiment, _ *Cloud) { e.Noise.Read = -6 }, "read noise"},
 		{func(e *Experiment, _ *Cloud) { e.Light = nil }, "no light"},
 		{func(e *Experiment, _ *Cloud) { e.Light = func(x, y float64) float64 { return 100 - 50*x } }, "light of pixel (2, 0)"},

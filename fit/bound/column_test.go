@@ -27,7 +27,7 @@ func expected(t testing.TB, e *Experiment, q *values) []float64 {
 		w, h := float64(e.Width), float64(e.Height)
 		k := math.Exp(q[Light] + q[LightX]*(x-(w-1)/2)/w + q[LightY]*(y-(h-1)/2)/h)
 		light[i] = k * e.Light(x, y)
-		m[i] = law.Transmit(m[i], light[i]/(e.Optics.Saturation*(1+e.Optics.Stray)))
+		m[i] = law.Transmit(m[i], light[i]*(1-e.Optics.Stray)/e.Optics.Saturation)
 	}
 	blur := e.Optics.Blur / e.Optics.Pixel
 	convolve(m, make([]float64, len(m)), e.Width, e.Height, gaussianTaps(blur*blur+1.0/12))

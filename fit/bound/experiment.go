@@ -37,7 +37,7 @@ type Optics struct {
 	Alpha      float64 // correction of the cross-section, σ = σ0/alpha
 	Detuning   float64 // of the probe, in full widths Γ
 	Saturation float64 // electrons per saved pixel at I = Isat in this exposure; +Inf: a weak probe
-	Stray      float64 // light that atoms cannot absorb, as a fraction of the light they can
+	Stray      float64 // part of the counted light that atoms cannot absorb, below 1
 }
 
 // Noise is the variance of counts beside the shot noise of the atoms frame; it has the
@@ -90,6 +90,9 @@ func (e *Experiment) validate() error {
 	}
 	if e.Light == nil {
 		return errors.New("no light is given: set Light, or DensitySigma for a picture of density")
+	}
+	if e.Optics.Stray >= 1 {
+		return fmt.Errorf("stray light is %g: it is a part of the counted light, below 1", e.Optics.Stray)
 	}
 	return validateAll(append(settings,
 		setting{"correction of the cross-section", e.Optics.Alpha, false},

@@ -61,7 +61,7 @@ func (s *sight) expose() error {
 		if err := (setting{fmt.Sprintf("light of pixel (%d, %d)", x, y), l, false}).validate(); err != nil {
 			return err
 		}
-		intensity := l / (o.Saturation * (1 + o.Stray))
+		intensity := l * (1 - o.Stray) / o.Saturation
 		t, dod, ds := law.TransmitDeriv(od, intensity)
 		s.light[i], s.passed[i], s.slope[i], s.push[i] = l, t, dod, intensity*ds
 	}

@@ -75,6 +75,14 @@ func TestForecast(t *testing.T) {
 	if e := f.Plan.Experiment; math.Abs(e.Light(3, 4)-1800) > 1e-9 || e.X != 59.5 || e.Y != 44.5 {
 		t.Errorf("light %g, centre (%g, %g)", e.Light(3, 4), e.X, e.Y)
 	}
+	stray, err := New(context.Background(), lab(t, "alpha = 2.0", "alpha = 2.0\nstray_fraction = 0.25"), usual)
+	if err != nil {
+		t.Fatal(err)
+	}
+	// Three quarters of 2400 electrons are the 0.2 Isat that atoms see.
+	if e := stray.Plan.Experiment; !(math.Abs(e.Light(3, 4)-2400) <= 1e-9) || !(math.Abs(stray.Plan.Saturation()-0.2) <= 1e-12) {
+		t.Errorf("with stray light: %g electrons, I/Isat %g", e.Light(3, 4), stray.Plan.Saturation())
+	}
 	if err := f.Plot().Render(io.Discard, "svg", 86, 150); err != nil {
 		t.Error(err)
 	}

@@ -123,7 +123,7 @@ func (f *Forecast) plan(s *settings.Settings) error {
 	if intensity == 0 {
 		intensity = usualIntensity
 	}
-	light := intensity * lab.Optics.Saturation * (1 + lab.Optics.Stray)
+	light := intensity * lab.Optics.Saturation / (1 - lab.Optics.Stray) // what atoms can absorb is the rest
 	switch {
 	case math.IsInf(light, 1):
 		light = usualElectrons * float64(own.Fit.Rebin*own.Fit.Rebin)
