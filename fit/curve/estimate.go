@@ -15,8 +15,14 @@ import (
 
 // Estimate is a number with its errors, one standard deviation each. Err is statistical,
 // times √(χ²/dof) where the points scatter by more than their errors. Cal is NaN where a
-// calibration that moves the number has no stated uncertainty.
+// calibration that moves the number has no stated uncertainty. A number whose minimum was not
+// found has no value and an infinite Err.
 type Estimate struct{ V, Err, Cal float64 }
+
+func notFound() Estimate { return Estimate{math.NaN(), math.Inf(1), math.NaN()} }
+
+// Found says that the search for the number came to its minimum.
+func (e Estimate) Found() bool { return !math.IsInf(e.Err, 1) }
 
 // Error returns both errors together, the statistical one alone where Cal is NaN.
 func (e Estimate) Error() float64 {
@@ -28,12 +34,24 @@ func (e Estimate) Error() float64 {
 
 // power returns e to the power p, with errors by the delta method.
 func (e Estimate) power(p float64) Estimate {
+	if !e.Found() {
+		return e
+	}
 	v := math.Pow(e.V, p)
 	slope := math.Abs(p * v / e.V)
 	return Estimate{v, slope * e.Err, slope * e.Cal}
 }
 
-// Quality is how well a law describes points.
+// exp returns the number of which e is the logarithm, with errors by the delta method.
+func (e Estimate) exp() Estimate {
+	if !e.Found() {
+		return e
+	}
+	v := math.Exp(e.V)
+	return Estimate{v, v * e.Err, v * e.Cal}
+}
+
+// Quality is how well a law describes points. Chi2 is NaN where the minimum was not found.
 type Quality struct {
 	Points int
 	Chi2   float64
@@ -80,8 +98,9 @@ func (n *Night) problem(points []*Point, r relation) *problem {
 	return p
 }
 
-// fit returns the estimates of θ, found from a start. ignore names calibrations that take
-// no part in the calibration errors.
+// fit returns the estimates of θ, found from a start; none of them is Found where the search
+// did not come to a minimum. ignore names calibrations that take no part in the calibration
+// errors.
 func (p *problem) fit(ctx context.Context, start []float64, ignore ...string) ([]Estimate, Quality, error) {
 	p.parameters = len(start)
 	q := Quality{Points: len(p.points), Dof: len(p.points)*p.relation.size - len(start)}
@@ -89,13 +108,14 @@ func (p *problem) fit(ctx context.Context, start []float64, ignore ...string) ([
 		return nil, q, fmt.Errorf("%d points cannot tell %d parameters", len(p.points), len(start))
 	}
 	found, err := lm.MinimizeDense(ctx, p, start, &lm.Settings{XTol: 1e-5, FTol: 1e-7})
-	if err != nil {
+	if err != nil && found.Reason != lm.StartOutside {
 		return nil, q, err
 	}
 	q.Chi2 = found.F
-	cov := make([]float64, len(start)*len(start))
-	if err := found.Covariance(cov); err != nil {
-		return nil, q, err
+	cov, told := p.minimum(&found, q)
+	if !told {
+		q.Chi2 = math.NaN()
+		return slices.Repeat([]Estimate{notFound()}, len(start)), q, ctx.Err()
 	}
 	out := make([]Estimate, len(start))
 	for a := range out {
@@ -104,6 +124,34 @@ func (p *problem) fit(ctx context.Context, start []float64, ignore ...string) ([
 	p.find(found.X)
 	p.calibrate(found.X, cov, out, ignore)
 	return out, q, nil
+}
+
+// minimum returns the covariance of θ, and says whether the search came to a minimum that
+// determines all of θ. A search that stalled, as at a kink, did so where next to nothing was
+// left to go.
+func (p *problem) minimum(found *lm.Result, q Quality) (cov []float64, told bool) {
+	cov = make([]float64, len(found.X)*len(found.X))
+	if found.Reason == lm.StartOutside || found.Covariance(cov) != nil {
+		return nil, false
+	}
+	scale := settled * q.scale()
+	return cov, found.Reason.Usable() || p.left(found.X, cov) <= scale*scale
+}
+
+// settled is the part of an error that a search may have left to go and yet count as ended.
+const settled = 0.1
+
+// left returns gᵀ cov g with g = Jᵀr, the fall of χ² that a search has before it: the square
+// of the way to the minimum in errors.
+func (p *problem) left(theta, cov []float64) float64 {
+	m, n := p.Size()
+	j, r := mat.NewDense(m, n, nil), make([]float64, m)
+	p.Jacobian(theta, j)
+	p.Residuals(theta, r)
+	var g, step mat.VecDense
+	g.MulVec(j.T(), mat.NewVecDense(m, r))
+	step.MulVec(mat.NewDense(n, n, cov), &g)
+	return mat.Dot(&g, &step)
 }
 
 // quality returns χ² at fixed θ.

@@ -44,7 +44,8 @@ type Factors struct {
 	List []Factor
 	// Lead is by how much χ² of the second setting is above that of the best one, each with
 	// its better law, in units of the scatter (the best χ²/dof where that is above 1). Two
-	// settings are told apart where it is above DecisiveLead.
+	// settings are told apart where it is above DecisiveLead. NaN where the minimum of one
+	// was not found.
 	Lead float64
 	// Mu is the mean of μ from the radii over μ from N0, Saturated that of N_thermal over its
 	// number by the law of the best hypothesis, both as measured.
@@ -94,10 +95,10 @@ func (n *Night) FindFactor(ctx context.Context) (Factors, error) {
 	return f, err
 }
 
-// insert keeps the list in order of χ².
+// insert keeps the list in order of χ², those whose minimum was not found behind.
 func (f *Factors) insert(h Factor) {
 	at := len(f.List)
-	for at > 0 && h.Chi2 < f.List[at-1].Chi2 {
+	for at > 0 && !(h.Chi2 >= f.List[at-1].Chi2 || math.IsNaN(h.Chi2)) {
 		at--
 	}
 	f.List = append(f.List, Factor{})
@@ -107,6 +108,12 @@ func (f *Factors) insert(h Factor) {
 
 func (f *Factors) lead() {
 	best := f.List[0]
+	f.Lead = math.NaN()
+	for _, h := range f.List {
+		if !h.Factor.Found() {
+			return
+		}
+	}
 	for _, h := range f.List {
 		if h.Setting != best.Setting && h.Setting != "" {
 			scale := best.scale()
@@ -139,8 +146,7 @@ func (n *Night) factor(ctx context.Context, points []*Point, law, setting string
 	if err != nil {
 		return h, err
 	}
-	factor := math.Exp(e[0].V)
-	h.Factor, h.Quality = Estimate{factor, factor * e[0].Err, factor * e[0].Cal}, q
+	h.Factor, h.Quality = e[0].exp(), q
 	return h, nil
 }
 
@@ -206,8 +212,7 @@ func (n *Night) ratios(ctx context.Context, points []*Point, law string) (mu, sa
 		if err != nil {
 			return mu, saturated, err
 		}
-		ratio := math.Exp(e[0].V)
-		*into = Estimate{ratio, ratio * e[0].Err, ratio * e[0].Cal}
+		*into = e[0].exp()
 	}
 	return mu, saturated, nil
 }

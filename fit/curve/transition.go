@@ -11,8 +11,10 @@ import (
 type Transition struct {
 	// Points whose T follows from their number take no part in any.
 
-	// Saturation is the way by the thermal part at fixed T; nil with fewer than four points.
-	Saturation *Saturation
+	// Saturation is the way by the thermal part at fixed T; nil where Unsaturated says why the
+	// night does not tell it.
+	Saturation  *Saturation
+	Unsaturated string
 	// Onsets are the way by the fraction against t, by law; empty with fewer than three
 	// points of a fraction below OnsetFraction.
 	Onsets []Onset
@@ -70,7 +72,7 @@ func (n *Night) Locate(ctx context.Context, th *Theory) (Transition, error) {
 	}
 	points := n.condensed()
 	var err error
-	if t.Saturation, err = n.saturation(ctx, points); err != nil {
+	if t.Saturation, t.Unsaturated, err = n.saturation(ctx, points); err != nil {
 		return t, err
 	}
 	small := n.pick(func(p *Point) bool { return p.comparable() && p.Fraction() < OnsetFraction })
@@ -88,9 +90,22 @@ func (n *Night) Locate(ctx context.Context, th *Theory) (Transition, error) {
 	return t, nil
 }
 
-func (n *Night) saturation(ctx context.Context, points []*Point) (*Saturation, error) {
-	if len(points) < 4 {
-		return nil, nil
+// What keeps a night from telling Saturation.
+const (
+	fewShots    = "fewer than four shots have both parts and a T of their own"
+	narrowRange = "too narrow a range of T/Tc to tell: mu/kT varies by little more than its errors"
+	notSearched = "the minimum was not found"
+)
+
+func (n *Night) saturation(ctx context.Context, points []*Point) (*Saturation, string, error) {
+	start := []float64{1, 0.5}
+	switch {
+	case len(points) < 4:
+		return nil, fewShots, nil
+	case !n.Gas.repulsive():
+		start = start[:1]
+	case !(n.spread(points) >= leastSpread):
+		return nil, narrowRange, nil
 	}
 	p := n.problem(points, relation{size: 1, eval: func(_ *Point, v *Vector, g *scales, theta, h []float64) {
 		held := theta[0]
@@ -99,19 +114,38 @@ func (n *Night) saturation(ctx context.Context, points []*Point) (*Saturation, e
 		}
 		h[0] = v[Thermal]/g.saturated(v[T]) - held
 	}})
-	start := []float64{1, 0.5}
-	if !n.Gas.repulsive() {
-		start = start[:1]
-	}
 	e, q, err := p.fit(ctx, start)
-	if err != nil {
-		return nil, err
+	switch {
+	case err != nil:
+		return nil, "", err
+	case !e[0].Found():
+		return nil, notSearched, nil
+	case !(e[0].V > 0):
+		return nil, narrowRange, nil
 	}
 	s := &Saturation{Critical: e[0], Excess: Estimate{math.NaN(), math.NaN(), math.NaN()}, Ratio: e[0].power(-1. / 3), Quality: q}
 	if len(e) > 1 {
 		s.Excess = e[1]
 	}
-	return s, nil
+	return s, "", nil
+}
+
+// leastSpread is the spread of ln(μ/kT) over its errors from which on a night tells s and λ
+// apart: below it the errors of T move a cloud along both axes as far as clouds differ.
+const leastSpread = 3
+
+// spread returns by how many of their errors the values of ln(μ/kT) spread, √(χ²/dof) about
+// their weighted mean; μ is that of N0.
+func (n *Night) spread(points []*Point) float64 {
+	var v, errs []float64
+	places := make([]int, len(points))
+	for i, p := range points {
+		a, b := 0.4/p.Vector[Condensate], -1/p.Vector[T]
+		v = append(v, 0.4*math.Log(p.Vector[Condensate])-math.Log(p.Vector[T]))
+		errs = append(errs, math.Sqrt(a*a*p.Cov[Condensate][Condensate]+2*a*b*p.Cov[Condensate][T]+b*b*p.Cov[T][T]))
+		places[i] = i
+	}
+	return MeanOf(v, errs, places).Scatter()
 }
 
 func (n *Night) onsets(ctx context.Context, th *Theory, points []*Point) ([]Onset, error) {

@@ -10,8 +10,12 @@ import (
 )
 
 // format writes a number with its statistical and its calibration error in parentheses,
-// 0.9981(42)(35) in units of its last digit; the second is a dash where it is not known.
+// 0.9981(42)(35) in units of its last digit; the second is a dash where it is not known. Nothing
+// stands for a number that there is not.
 func format(e curve.Estimate) string {
+	if !e.Found() {
+		return "not found"
+	}
 	if math.IsNaN(e.V) {
 		return ""
 	}
@@ -71,6 +75,14 @@ func sigmas(v float64) string {
 		return text
 	}
 	return fmt.Sprintf("%+.1f", v)
+}
+
+// perDof writes chi2 over degrees of freedom.
+func perDof(q curve.Quality) string {
+	if v := q.PerDof(); !math.IsNaN(v) {
+		return strconv.FormatFloat(v, 'g', 2, 64)
+	}
+	return "-"
 }
 
 // count writes a number of things, 1 shot, 2 shots.

@@ -17,6 +17,7 @@ type summary struct {
 	Laws        []compared   `json:"laws"`
 	Best        string       `json:"least_chi2"`
 	Saturation  *located     `json:"saturation"`
+	Unsaturated string       `json:"saturation_not_told,omitempty"`
 	Onsets      []located    `json:"onsets"`
 	Predictions []prediction `json:"predictions"`
 	Atoms       *float64     `json:"predictions_for_atoms"`
@@ -26,21 +27,21 @@ type summary struct {
 }
 
 type compared struct {
-	Law       string  `json:"law"`
-	Note      string  `json:"note"`
-	Shots     int     `json:"shots"`
-	Chi2      float64 `json:"chi2"`
-	Deviation *number `json:"mean_deviation"`
-	Share     *number `json:"share"`
+	Law       string   `json:"law"`
+	Note      string   `json:"note"`
+	Shots     int      `json:"shots"`
+	Chi2      *float64 `json:"chi2"`
+	Deviation *number  `json:"mean_deviation"`
+	Share     *number  `json:"share"`
 }
 
 type located struct {
-	Law   string  `json:"law,omitempty"`
-	Ratio *number `json:"tc_ratio"`
-	Share *number `json:"share_of_semi_ideal_excess,omitempty"`
-	Shots int     `json:"shots"`
-	Chi2  float64 `json:"chi2"`
-	Dof   int     `json:"dof"`
+	Law   string   `json:"law,omitempty"`
+	Ratio *number  `json:"tc_ratio"`
+	Share *number  `json:"share_of_semi_ideal_excess,omitempty"`
+	Shots int      `json:"shots"`
+	Chi2  *float64 `json:"chi2"`
+	Dof   int      `json:"dof"`
 }
 
 type prediction struct {
@@ -70,13 +71,14 @@ func (a *Analysis) WriteJSON(w io.Writer) error {
 	t := &a.Transition
 	v := summary{Night: a.Night.Name, Shots: len(a.Chosen.Rows), LeftOut: a.Chosen.LeftOut, Aside: a.Aside, Best: a.Best().Name, Atoms: finite(t.Atoms)}
 	for _, c := range a.Comparisons {
-		v.Laws = append(v.Laws, compared{c.Law.Name, c.Law.Note, c.Points, c.Chi2, jsonNumber(c.Deviation), jsonNumber(c.Amplitude)})
+		v.Laws = append(v.Laws, compared{c.Law.Name, c.Law.Note, c.Points, finite(c.Chi2), jsonNumber(c.Deviation), jsonNumber(c.Amplitude)})
 	}
 	if s := t.Saturation; s != nil {
-		v.Saturation = &located{"", jsonNumber(s.Ratio), jsonNumber(s.Excess), s.Points, s.Chi2, s.Dof}
+		v.Saturation = &located{"", jsonNumber(s.Ratio), jsonNumber(s.Excess), s.Points, finite(s.Chi2), s.Dof}
 	}
+	v.Unsaturated = t.Unsaturated
 	for _, o := range t.Onsets {
-		v.Onsets = append(v.Onsets, located{o.Law.Name, jsonNumber(o.Ratio), nil, o.Points, o.Chi2, o.Dof})
+		v.Onsets = append(v.Onsets, located{o.Law.Name, jsonNumber(o.Ratio), nil, o.Points, finite(o.Chi2), o.Dof})
 	}
 	for _, p := range t.Predictions {
 		v.Predictions = append(v.Predictions, prediction{p.Name, p.Note, p.Ratio})

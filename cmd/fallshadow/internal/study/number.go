@@ -39,7 +39,11 @@ func (n *Night) WriteNumber(ctx context.Context, w io.Writer, c *Chosen) error {
 		if setting == "" {
 			setting, factor = "none", ""
 		}
-		fmt.Fprintf(t, "%s\t%s\t%s\t%.1f\t%d\n", setting, thermalLaw(h.Law), factor, h.Chi2, h.Dof)
+		chi2 := ""
+		if !math.IsNaN(h.Chi2) {
+			chi2 = fixed(h.Chi2, 1)
+		}
+		fmt.Fprintf(t, "%s\t%s\t%s\t%s\t%d\n", setting, thermalLaw(h.Law), factor, chi2, h.Dof)
 	}
 	if err := t.Flush(); err != nil {
 		return err

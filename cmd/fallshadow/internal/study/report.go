@@ -170,10 +170,12 @@ func (a *Analysis) fillTransition(p *page) {
 	}
 	p.Transition = append(p.Transition, fmt.Sprintf("condensates up to T/Tc0 = %s, none found from %s on", short(t.Hottest), short(t.Coldest)))
 	if s := t.Saturation; s != nil {
-		p.Transition = append(p.Transition, fmt.Sprintf("by saturation at fixed T: Tc/Tc0 = %s; %s of the semi-ideal excess", format(s.Ratio), format(s.Excess)))
+		p.Transition = append(p.Transition, fmt.Sprintf("by saturation at fixed T: Tc/Tc0 = %s%s", format(s.Ratio), excess(s)))
+	} else {
+		p.Transition = append(p.Transition, "by saturation at fixed T: not told, "+t.Unsaturated)
 	}
 	for _, o := range t.Onsets {
-		p.Transition = append(p.Transition, fmt.Sprintf("by onset as %s: Tc over that of the law %s, chi2/dof %.2g", o.Law.Title, format(o.Ratio), o.PerDof()))
+		p.Transition = append(p.Transition, fmt.Sprintf("by onset as %s: Tc over that of the law %s, chi2/dof %s", o.Law.Title, format(o.Ratio), perDof(o.Quality)))
 	}
 	if m := a.Measured(); m != nil {
 		for _, q := range t.Predictions {

@@ -389,6 +389,7 @@ func TestFormat(t *testing.T) {
 		"-3.4(2.1)(0)":      {V: -3.41, Err: 2.1, Cal: 0},
 		"123457(310)(2200)": {V: 123456.7, Err: 310, Cal: 2200},
 		"":                  {V: nan, Err: 1, Cal: 1},
+		"not found":         {V: nan, Err: math.Inf(1), Cal: nan},
 	} {
 		if got := format(e); got != want {
 			t.Errorf("%+v: %s, want %s", e, got, want)

@@ -95,12 +95,13 @@ func (a *Analysis) writeTransition(w io.Writer) {
 	}
 	fmt.Fprintf(w, "\ntransition: condensates up to T/Tc0 = %s, none found from %s on\n", short(t.Hottest), short(t.Coldest))
 	if s := t.Saturation; s != nil {
-		fmt.Fprintf(w, "  by saturation at fixed T: Tc/Tc0 = %s, thermal part %s of the semi-ideal excess beyond saturation (chi2/dof %.2g, %s)\n",
-			format(s.Ratio), format(s.Excess), s.PerDof(), count(s.Points, "shot"))
+		fmt.Fprintf(w, "  by saturation at fixed T: Tc/Tc0 = %s%s (chi2/dof %s, %s)\n", format(s.Ratio), excess(s), perDof(s.Quality), count(s.Points, "shot"))
+	} else {
+		fmt.Fprintf(w, "  by saturation at fixed T: not told, %s\n", t.Unsaturated)
 	}
 	for _, o := range t.Onsets {
-		fmt.Fprintf(w, "  by onset, f below %g as %s: Tc over that of the law = %s (chi2/dof %.2g, %s)\n",
-			curve.OnsetFraction, o.Law.Title, format(o.Ratio), o.PerDof(), count(o.Points, "shot"))
+		fmt.Fprintf(w, "  by onset, f below %g as %s: Tc over that of the law = %s (chi2/dof %s, %s)\n",
+			curve.OnsetFraction, o.Law.Title, format(o.Ratio), perDof(o.Quality), count(o.Points, "shot"))
 	}
 	measured := a.Measured()
 	if measured == nil {
@@ -112,6 +113,14 @@ func (a *Analysis) writeTransition(w io.Writer) {
 		fmt.Fprintf(tab, "  %s\t%.4f\t%s\t%s\n", p.Name, p.Ratio, sigmas(p.Sigmas(*measured)), p.Note)
 	}
 	tab.Flush()
+}
+
+// excess words what the thermal part holds beyond saturation, where the gas can have that.
+func excess(s *curve.Saturation) string {
+	if math.IsNaN(s.Excess.V) {
+		return ""
+	}
+	return ", thermal part with " + format(s.Excess) + " of the semi-ideal excess beyond saturation"
 }
 
 // Measured returns the Tc/Tc⁰ that is compared with theory, nil where there is none.
@@ -135,7 +144,7 @@ func (a *Analysis) writeMeanField(w io.Writer) {
 		return
 	}
 	fmt.Fprintf(w, "\nmean field, %s with N0 a/a_ho above 30:\n", count(m.Points, "condensate"))
-	fmt.Fprintf(w, "  mu from the radii goes as N0^%s, Thomas-Fermi 2/5 (chi2/dof %.2g); mu from the radii over mu from N0: %s\n", format(m.Slope), m.PerDof(), format(m.Ratio))
+	fmt.Fprintf(w, "  mu from the radii goes as N0^%s, Thomas-Fermi 2/5 (chi2/dof %s); mu from the radii over mu from N0: %s\n", format(m.Slope), perDof(m.Quality), format(m.Ratio))
 	if r := m.Release; r != nil {
 		fmt.Fprintf(w, "  release energy from %d flights: %.4g nK (E/k) for %.3g atoms, over (2/7) mu(N0): %s\n",
 			r.Flights, r.Energy.V/model.KB*1e9, r.Atoms, format(r.Ratio))
