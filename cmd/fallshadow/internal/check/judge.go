@@ -6,7 +6,6 @@ import (
 	"strings"
 
 	"fallshadow/cmd/fallshadow/internal/night"
-	"fallshadow/cmd/fallshadow/internal/report"
 	"fallshadow/imageio"
 	"fallshadow/imageio/fault"
 	"fallshadow/imageio/light"
@@ -27,9 +26,6 @@ func (s *shot) refuse(remark string) {
 
 // judgeNight notes what cannot be read, and what stopped the look.
 func (v *visit) judgeNight() {
-	if err := report.CheckScan(v.Settings.Shots.Scan); err != nil {
-		v.trouble.problem("", "%v", err)
-	}
 	for i, s := range v.look.Shots {
 		switch {
 		case s.Err == nil:

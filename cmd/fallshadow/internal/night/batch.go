@@ -108,9 +108,6 @@ func Batch(ctx context.Context, o Options, p Progress) (*Outcome, error) {
 }
 
 func run(ctx context.Context, o Options, p Progress, prepare prepare) (_ *Outcome, err error) {
-	if err := report.CheckScan(o.Settings.Shots.Scan); err != nil {
-		return nil, err
-	}
 	b := &batch{Options: o, layout: o.Settings.Layout(), settings: o.Settings.Digest(), prepare: prepare, progress: p}
 	if b.Out == "" {
 		if b.Out, err = Results(b.Dir); err != nil {

@@ -86,7 +86,7 @@ func (b *binder) quantity(k *key, v value, q *Quantity) {
 	case len(b.problems) > before:
 	case !slices.Contains(seen, "value"):
 		b.wrong(v.offset, "%s has no value: write { value = ..., err = ... }", k.name)
-	case k.low > 0 && got.Value > 0 && got.Err >= got.Value:
+	case k.most == 0 && got.Value > 0 && got.Err >= got.Value:
 		b.wrong(v.offset, "%s: err = %s is as large as the value %s itself: err is one standard deviation, in the unit of the value", k.name, short(got.Err), short(got.Value))
 	}
 	*q = got
@@ -96,6 +96,10 @@ func (b *binder) uncertainty(k *key, v value) (float64, bool) {
 	x, ok := v.number()
 	if !ok || !(x >= 0) || math.IsInf(x, 0) {
 		b.wrong(v.offset, "%s: err: expected one standard deviation, 0 or more, in the unit of the value, found %s", k.name, v.found())
+		return 0, false
+	}
+	if k.most > 0 && x > k.most {
+		b.wrong(v.offset, "%s: err = %s is out of range: it is one standard deviation, in the unit of the value, and expected to be %s at most", k.name, v.text, short(k.most))
 		return 0, false
 	}
 	return x, true

@@ -8,6 +8,7 @@ import (
 	"strconv"
 	"strings"
 
+	"fallshadow/cmd/fallshadow/internal/report"
 	"fallshadow/model"
 )
 
@@ -161,6 +162,9 @@ func (b *binder) checkNames() {
 		if strings.ContainsAny(name, ",\"") {
 			b.wrong(b.at("shots.scan"), "scan: %q cannot be the name of a column", name)
 		}
+	}
+	if err := report.CheckScan(s.Scan); err != nil {
+		b.wrong(b.at("shots.scan"), "scan: %v", err)
 	}
 }
 

@@ -18,6 +18,7 @@ type key struct {
 	def         string   // in TOML, empty where there is none
 	sample      string   // a value for the template, where it is not the default
 	low, high   float64  // of every number
+	most        float64  // that err may be; where it is 0, less than the value
 	words       []string // that the text may be
 	also        []string // names that others give it
 	doc         string
@@ -70,7 +71,7 @@ var keys = []key{
 	{table: "atom", name: "linewidth_MHz", unit: "MHz", field: func(s *Settings) any { return &s.Atom.LinewidthMHz }, sample: "6.0666", low: 1e-4, high: 1000,
 		also: []string{"gamma_MHz", "gamma"},
 		doc:  "Natural full width Gamma/2pi of the imaging line. The species' own if left out."},
-	{table: "atom", name: "scattering_length_a0", unit: "Bohr radii", field: func(s *Settings) any { return &s.Atom.ScatteringLengthA0 }, sample: "{ value = 100.4, err = 0.1 }", low: -1e5, high: 1e5,
+	{table: "atom", name: "scattering_length_a0", unit: "Bohr radii", field: func(s *Settings) any { return &s.Atom.ScatteringLengthA0 }, sample: "{ value = 100.4, err = 0.1 }", low: -1e5, high: 1e5, most: 1e4,
 		doc: "s-wave scattering length at the field of the trap. The species' own if left out; to be given where a magnetic field sets it."},
 
 	{table: "trap", name: "axis1_hz", unit: hz, field: func(s *Settings) any { return &s.Trap.Axis1Hz }, sample: "{ value = 20.0, err = 0.1 }", low: 1e-3, high: 1e6, required: true, shown: true,
@@ -82,10 +83,10 @@ var keys = []key{
 	{table: "trap", name: "sight_hz", unit: hz, field: func(s *Settings) any { return &s.Trap.SightHz }, sample: "{ value = 120.0, err = 0.5 }", low: 1e-3, high: 1e6, required: true, shown: true,
 		also: []string{"axis3_hz", "fz_hz", "z_hz", "axis_z_hz", "f3_hz", "line_of_sight_hz"},
 		doc:  "Trap frequency along axis 3, the line of sight."},
-	{table: "trap", name: "angle_deg", unit: deg, field: func(s *Settings) any { return &s.Trap.AngleDeg }, def: "0.0", sample: "4.0", low: -180, high: 180, shown: true, unstated: exact,
+	{table: "trap", name: "angle_deg", unit: deg, field: func(s *Settings) any { return &s.Trap.AngleDeg }, def: "0.0", sample: "4.0", low: -180, high: 180, most: 45, shown: true, unstated: exact,
 		also: []string{"rotation_deg"},
 		doc:  "Angle of axis 1 in the picture from +x towards +y: clockwise on the screen, y points down."},
-	{table: "trap", name: "tilt_deg", unit: deg, field: func(s *Settings) any { return &s.Trap.TiltDeg }, def: "0.0", low: -180, high: 180, unstated: exact,
+	{table: "trap", name: "tilt_deg", unit: deg, field: func(s *Settings) any { return &s.Trap.TiltDeg }, def: "0.0", low: -180, high: 180, most: 45, unstated: exact,
 		doc: "An oblique camera: before it is turned by angle_deg, the trap is tilted by this angle out of the picture."},
 	{table: "trap", name: "tilt_about_deg", unit: deg, field: func(s *Settings) any { return &s.Trap.TiltAboutDeg }, def: "0.0", low: -180, high: 180,
 		doc: "Direction in the plane of axes 1 and 2 about which the trap is tilted, from axis 1 towards axis 2: 0 tilts about axis 1, 90 about axis 2."},
@@ -114,13 +115,13 @@ var keys = []key{
 	{table: "camera", name: "bad_pixels", field: func(s *Settings) any { return &s.Camera.BadPixels }, def: "[]", sample: "[[11, 7], [200, 31]]", low: 0, high: 65535,
 		also: []string{"hot_pixels", "dead_pixels"},
 		doc:  "Saved pixels never to be used, each [x, y]."},
-	{table: "camera", name: "resolution_um", unit: um, field: func(s *Settings) any { return &s.Camera.ResolutionUm }, def: "0.0", sample: "{ value = 3.0, err = 0.5 }", low: 0, high: 100, shown: true,
+	{table: "camera", name: "resolution_um", unit: um, field: func(s *Settings) any { return &s.Camera.ResolutionUm }, def: "0.0", sample: "{ value = 3.0, err = 0.5 }", low: 0, high: 100, most: 20, shown: true,
 		also: []string{"psf_um", "blur_um"},
 		doc:  "Optical resolution in the plane of the atoms, rms of the spot (0.21 wavelength/NA at best, Rayleigh distance over 2.9)."},
 
 	{table: "probe", name: "alpha", field: func(s *Settings) any { return &s.Probe.Alpha }, def: "1.0", sample: "{ value = 2.0, err = 0.1 }", low: 0.1, high: 100, shown: true,
 		doc: "Correction of the cross-section for polarisation and level structure: sigma = sigma0/alpha, so that the atom number grows with it."},
-	{table: "probe", name: "detuning_gamma", unit: full, field: func(s *Settings) any { return &s.Probe.DetuningGamma }, def: "0.0", low: -100, high: 100, unstated: exactAtZero,
+	{table: "probe", name: "detuning_gamma", unit: full, field: func(s *Settings) any { return &s.Probe.DetuningGamma }, def: "0.0", low: -100, high: 100, most: 10, unstated: exactAtZero,
 		also: []string{"detuning"},
 		doc:  "Detuning of the probe from resonance."},
 	{table: "probe", name: "counts_per_isat", unit: "counts", field: func(s *Settings) any { return &s.Probe.CountsPerIsat }, sample: "{ value = 9000.0, err = 300.0 }", low: 1e-2, high: 1e12, shown: true,
@@ -129,7 +130,7 @@ var keys = []key{
 	{table: "probe", name: "exposure_us", unit: "us", field: func(s *Settings) any { return &s.Probe.ExposureUs }, sample: "40.0", low: 0.1, high: 1e5, shown: true,
 		also: []string{"pulse_us", "tau_us"},
 		doc:  "Length of the imaging pulse: for the photons scattered per atom and to check counts_per_isat."},
-	{table: "probe", name: "stray_fraction", field: func(s *Settings) any { return &s.Probe.StrayFraction }, def: "0.0", low: 0, high: 0.5, unstated: exactAtZero,
+	{table: "probe", name: "stray_fraction", field: func(s *Settings) any { return &s.Probe.StrayFraction }, def: "0.0", low: 0, high: 0.5, most: 0.2, unstated: exactAtZero,
 		doc: "Fraction of the counted light that atoms cannot absorb; it caps the optical density at about ln(1/fraction)."},
 
 	{table: "flight", name: "fixed_ms", unit: ms, field: func(s *Settings) any { return &s.Clock.FixedMs }, sample: "15.0", low: 0, high: 1e4,
@@ -139,9 +140,9 @@ var keys = []key{
 		doc:  "Name under which a shot's metadata hold its time of flight."},
 	{table: "flight", name: "unit", field: func(s *Settings) any { return &s.Clock.Unit }, def: `"ms"`, words: []string{"ms", "us", "s"}, shown: true,
 		doc: "Unit of the number found under that name."},
-	{table: "flight", name: "zero_ms", unit: ms, field: func(s *Settings) any { return &s.Clock.ZeroMs }, def: "0.0", sample: "{ value = 0.0, err = 0.01 }", low: -1000, high: 1000, shown: true,
+	{table: "flight", name: "zero_ms", unit: ms, field: func(s *Settings) any { return &s.Clock.ZeroMs }, def: "0.0", sample: "{ value = 0.0, err = 0.01 }", low: -100, high: 100, most: 10, shown: true,
 		also: []string{"offset_ms"},
-		doc:  "Added to every time of flight: the delay between the clock's zero and the release."},
+		doc:  "Added to every time of flight: the delay between the clock's zero and the release. A time counted from elsewhere than the release is no flight, and not to be mended here."},
 
 	{table: "shots", name: "layout", field: func(s *Settings) any { return &s.Shots.Layout }, def: `"cube"`, words: []string{"cube", "extensions", "files", "density"}, shown: true, silent: true,
 		doc: "One file with the frames as planes of one array, one with the frames as image extensions, one file a frame, or a ready density image."},

@@ -61,15 +61,20 @@ func (k *key) whenLeftOut() string {
 }
 
 func (k *key) whenUnstated() string {
-	switch {
-	case !k.calibrated():
+	if !k.calibrated() {
 		return ""
-	case k.unstated == exact:
-		return "may carry err, exact without"
-	case k.unstated == exactAtZero:
-		return "may carry err, exact without while it is 0"
 	}
-	return "may carry err"
+	err := "may carry err"
+	if k.most > 0 {
+		err += " up to " + short(k.most)
+	}
+	switch k.unstated {
+	case exact:
+		err += ", exact without"
+	case exactAtZero:
+		err += ", exact without while it is 0"
+	}
+	return err
 }
 
 // wrap makes a comment of a text, in lines of at most 88 characters.
@@ -93,7 +98,7 @@ func Markdown() []byte {
 	out.WriteString("| key | unit | may be | default | err | meaning |\n|---|---|---|---|---|---|\n")
 	for i := range keys {
 		k := &keys[i]
-		err := strings.TrimPrefix(strings.TrimPrefix(k.whenUnstated(), "may carry err"), ", ")
+		err := strings.TrimLeft(strings.TrimPrefix(k.whenUnstated(), "may carry err"), ", ")
 		if k.calibrated() {
 			err = cmp.Or(err, "yes")
 		}

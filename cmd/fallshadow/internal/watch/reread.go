@@ -5,7 +5,6 @@ import (
 	"strings"
 	"time"
 
-	"fallshadow/cmd/fallshadow/internal/report"
 	"fallshadow/cmd/fallshadow/internal/settings"
 )
 
@@ -26,9 +25,7 @@ func (w *Watcher) lookAtSettings() (file string, state fileState, err error) {
 
 // judge reads settings; ok is false where the file changed meanwhile.
 func judge(file string, state fileState) (lab *settings.Settings, ok bool, err error) {
-	if lab, err = settings.Load(file); err == nil {
-		err = report.CheckScan(lab.Shots.Scan)
-	}
+	lab, err = settings.Load(file)
 	after, _ := stateOf(file)
 	return lab, after == state, err
 }
