@@ -11,7 +11,8 @@ import (
 )
 
 // networkMagic names the network file systems by the number that statfs(2) gives
-// (linux/magic.h and statfs(2), "f_type").
+// (linux/magic.h and statfs(2), "f_type"; those of other makers as in the table of coreutils'
+// stat). 9p is the share between a virtual machine and its host.
 var networkMagic = map[uint32]string{
 	0x00006969: "nfs",
 	0x0000517b: "smb",
@@ -25,6 +26,11 @@ var networkMagic = map[uint32]string{
 	0x01161970: "gfs2",
 	0x7461636f: "ocfs2",
 	0x20030528: "orangefs",
+	0x01021997: "9p",
+	0x6b414653: "afs",
+	0x47504653: "gpfs",
+	0x19830326: "beegfs",
+	0xaad7aaea: "panfs",
 }
 
 // fuseMagic covers local and remote file systems alike; the mount table tells which.

@@ -38,6 +38,21 @@ func TestNetworkRefusal(t *testing.T) {
 	}
 }
 
+// The numbers are those of the system's own header, and those of GPFS its letters.
+func TestNetworkNumbers(t *testing.T) {
+	for magic, want := range map[uint32]string{
+		unix.NFS_SUPER_MAGIC: "nfs", unix.SMB_SUPER_MAGIC: "smb", unix.CIFS_SUPER_MAGIC: "cifs", unix.SMB2_SUPER_MAGIC: "smb2",
+		unix.AFS_SUPER_MAGIC: "afs", unix.AFS_FS_MAGIC: "afs", unix.CEPH_SUPER_MAGIC: "ceph", unix.CODA_SUPER_MAGIC: "coda",
+		unix.NCP_SUPER_MAGIC: "ncp", unix.OCFS2_SUPER_MAGIC: "ocfs2", unix.V9FS_MAGIC: "9p",
+		'G'<<24 | 'P'<<16 | 'F'<<8 | 'S': "gpfs", 0x19830326: "beegfs",
+		unix.EXT4_SUPER_MAGIC: "", unix.BTRFS_SUPER_MAGIC: "", unix.XFS_SUPER_MAGIC: "", unix.TMPFS_MAGIC: "", unix.OVERLAYFS_SUPER_MAGIC: "",
+	} {
+		if got := networkMagic[magic]; got != want {
+			t.Errorf("%#x is %q, want %q", magic, got, want)
+		}
+	}
+}
+
 func magicOf(t *testing.T, dir string) uint32 {
 	t.Helper()
 	var fs unix.Statfs_t
