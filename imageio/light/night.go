@@ -43,7 +43,8 @@ const mastered = 3
 // are hot or restless in the dark, the read noise where the camera's is 0 (from
 // differences of successive darks) and the gain where it is 0 (see PhotonTransfer).
 // Memory: 60 bytes per pixel of the region, whatever the number of shots. The shots
-// decide by majority, the earlier at a tie, which size of frame is the night's. It
+// decide by majority, the earlier at a tie, which size of frame is the night's. Of copies,
+// shots of one digest, the first counts: their difference has no noise. It
 // fails when ctx is done, when the camera cannot be, and when gain or read noise are
 // neither given nor can be measured.
 func Prepare(ctx context.Context, camera Camera, raws iter.Seq[*imageio.Raw]) (*Night, error) {
@@ -60,11 +61,13 @@ func gather(ctx context.Context, camera Camera, raws iter.Seq[*imageio.Raw]) (*g
 		return nil, err
 	}
 	var groups []*group
+	seen := map[[32]byte]bool{}
 	for raw := range raws {
 		if err := ctx.Err(); err != nil {
 			return nil, err
 		}
-		if raw != nil {
+		if raw != nil && !seen[raw.Digest] {
+			seen[raw.Digest] = raw.Digest != [32]byte{}
 			groupOf(&groups, camera, raw).add(raw)
 		}
 	}

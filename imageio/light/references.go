@@ -4,6 +4,7 @@ import (
 	"container/list"
 	"context"
 	"fmt"
+	"slices"
 	"sync"
 
 	"fallshadow/imageio"
@@ -179,7 +180,8 @@ func (r *References) Set(ctx context.Context, shot int) ([]int, error) {
 
 // nearest returns the light frames of the k shots nearest to a shot in natural order, the
 // shot itself among them, ties to the earlier, shots without a usable light frame passed
-// over; the nearest stands first.
+// over; the nearest stands first. Of frames of the same pixels, as copies of a shot have, only
+// the nearest is returned: their noise is one, and two of them would be taken for less of it.
 func (r *References) nearest(ctx context.Context, shot int) ([]*lightFrame, error) {
 	shots := r.size()
 	if shot < 0 || shot >= shots {
@@ -200,7 +202,16 @@ func (r *References) nearest(ctx context.Context, shot int) ([]*lightFrame, erro
 			}
 		}
 	}
-	return frames, nil
+	return distinct(frames), nil
+}
+
+func distinct(frames []*lightFrame) (kept []*lightFrame) {
+	for _, f := range frames {
+		if !slices.ContainsFunc(kept, func(g *lightFrame) bool { return f.mean == g.mean && slices.Equal(f.pix, g.pix) }) {
+			kept = append(kept, f)
+		}
+	}
+	return kept
 }
 
 // productsOf returns the sums over tiles of the products of two light frames; they are
