@@ -66,10 +66,7 @@ func (n *Night) pulls(c int) []pull {
 		if !(p.Vector[T] > 0) || !(p.Atoms() > 0) {
 			continue
 		}
-		moved := p.Vector
-		for k, d := range p.Shifts[c] {
-			moved[k] += d
-		}
+		moved := p.shifted(c, p.Vector)
 		t := n.Gas.Reduced(p.Vector[T], p.Atoms())
 		list = append(list, pull{t, math.Log(g.Reduced(moved[T], moved.Atoms()) / t), moved.Fraction() - p.Fraction()})
 	}

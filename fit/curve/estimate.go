@@ -8,6 +8,7 @@ import (
 	"slices"
 	"sync"
 
+	"gonum.org/v1/gonum/floats"
 	"gonum.org/v1/gonum/mat"
 
 	"fallshadow/fit/lm"
@@ -327,12 +328,61 @@ func (p *problem) moved(c int, theta []float64) [][2]float64 {
 		var rest, h [2]float64
 		k, at := p.relation.size, &p.near[i]
 		p.relation.eval(p.points[i], &at.latent, p.gas, theta, rest[:k])
-		v := at.latent
-		for a, d := range p.points[i].Shifts[c] {
-			v[a] += d
-		}
+		v := p.points[i].shifted(c, at.latent)
 		p.relation.eval(p.points[i], &v, gas, theta, h[:k])
 		changes[i] = at.whiten([2]float64{h[0] - rest[0], h[1] - rest[1]})
 	})
 	return changes
+}
+
+// total returns χ² about θ where θ, and the settings whose errors are known, apart from ignored
+// ones, are free: the least |r + Jδ + Dν|² + |ν|² over δ and ν, where D holds the changes of
+// the distances under each. It is asked for after fit or quality.
+func (p *problem) total(theta []float64, ignore []string) float64 {
+	p.parameters = len(theta)
+	m, n := p.Size()
+	r := make([]float64, m)
+	p.Residuals(theta, r)
+	columns := p.columns(theta, ignore)
+	gradient, normal := mat.NewVecDense(len(columns)+1, nil), mat.NewSymDense(len(columns)+1, nil)
+	normal.SetSym(len(columns), len(columns), 1) // of nothing, so that there is a matrix
+	for a, x := range columns {
+		gradient.SetVec(a, floats.Dot(x, r))
+		for b, y := range columns[:a+1] {
+			normal.SetSym(a, b, floats.Dot(x, y))
+		}
+		if a >= n {
+			normal.SetSym(a, a, 1+normal.At(a, a))
+		}
+	}
+	var c mat.Cholesky
+	var step mat.VecDense
+	if !c.Factorize(normal) || c.SolveVecTo(&step, gradient) != nil {
+		return math.NaN()
+	}
+	return floats.Dot(r, r) - mat.Dot(gradient, &step)
+}
+
+// columns returns the changes of the distances with each parameter, then with each setting
+// whose error is known and that is not ignored.
+func (p *problem) columns(theta []float64, ignore []string) (list [][]float64) {
+	m, n := p.Size()
+	if n > 0 {
+		j := mat.NewDense(m, n, nil)
+		p.Jacobian(theta, j)
+		for a := range n {
+			list = append(list, mat.Col(nil, a, j))
+		}
+	}
+	for c, calibration := range p.night.Calibrations {
+		if !calibration.Known || slices.Contains(ignore, calibration.Name) {
+			continue
+		}
+		x := make([]float64, 0, m)
+		for _, d := range p.moved(c, theta) {
+			x = append(x, d[:p.relation.size]...)
+		}
+		list = append(list, x)
+	}
+	return list
 }

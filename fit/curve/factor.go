@@ -8,27 +8,41 @@ import (
 	"fallshadow/model"
 )
 
-// The settings that a number factor is looked for in.
+// The settings that a factor is looked for in.
 const (
-	Alpha         = "alpha"
-	Magnification = "magnification"
+	Alpha            = "alpha"
+	Magnification    = "magnification"
+	ScatteringLength = "scattering_length_a0"
 )
+
+var suspects = []string{Alpha, Magnification, ScatteringLength}
 
 // exponents says with which power of a setting the measured numbers go where no calibration
 // of a point tells it: a cross-section σ0/alpha, and lengths over the magnification.
 var exponents = map[string]Vector{
-	Alpha:         {1, 1, 0, 0},
-	Magnification: {-2, -2, -2, -2},
+	Alpha:            {1, 1, 0, 0},
+	Magnification:    {-2, -2, -2, -2},
+	ScatteringLength: {},
 }
 
 // Factor is a hypothesis on a night: the thermal part follows a law, and one setting is
 // wrong by a factor.
 type Factor struct {
 	Law     string // Ideal: N_thermal is the saturated number; SemiIdeal: it has the excess
-	Setting string // Alpha, Magnification, or empty: no setting is wrong
+	Setting string // one of suspects, or empty: none of them is wrong
 	// Factor is what the setting is to be multiplied with.
 	Factor Estimate
 	Quality
+	// Total is χ² where the other settings whose errors are known, suspects apart, may be off
+	// too, with a standard deviation of each for one of χ².
+	Total float64
+}
+
+// TotalPerDof returns Total over the degrees of freedom.
+func (h *Factor) TotalPerDof() float64 {
+	q := h.Quality
+	q.Chi2 = h.Total
+	return q.PerDof()
 }
 
 // extrapolated is the part of a correction by which it may be off because the powers of
@@ -42,11 +56,12 @@ func (h *Factor) Error() float64 { return math.Hypot(h.Factor.Error(), extrapola
 // Factors are the hypotheses, the best one first, and how well they are told apart.
 type Factors struct {
 	List []Factor
-	// Lead is by how much χ² of the second setting is above that of the best one, each with
-	// its better law, in units of the scatter (the best χ²/dof where that is above 1). Two
-	// settings are told apart where it is above DecisiveLead. NaN where the minimum of one
+	// Lead is by how much Total of the Rival, the second setting, is above that of the best one,
+	// each with its better law, in units of the scatter (the best χ²/dof where that is above 1).
+	// Two settings are told apart where it is above DecisiveLead. NaN where the minimum of one
 	// was not found.
-	Lead float64
+	Lead  float64
+	Rival string
 	// Mu is the mean of μ from the radii over μ from N0, Saturated that of N_thermal over its
 	// number by the law of the best hypothesis, both as measured.
 	Mu, Saturated Estimate
@@ -62,15 +77,17 @@ const leastParameter = 30
 // ErrNoFactor says that a night does not tell a number factor.
 var ErrNoFactor = errors.New("a number factor needs at least three shots with a thermal part and a condensate, T known to a third and not computed from the number, and a repulsive gas whose condensate is large (N0 a over the oscillator length above 30)")
 
-// FindFactor fits one common factor of alpha or of the magnification to the night: with it
+// FindFactor fits one common factor of alpha, of the magnification or of the scattering length
+// to the night: with it
 // μ from the radii and μ from N0 agree, and N_thermal and the number that T lets it have,
 //
 //	ln μ = ln μ_TF(N0),   ln N_thermal = ln N_sat(T) [+ ln(1 + e(μ/kT)) in a semi-ideal gas].
 //
 // N goes with alpha and both lengths squared, T and μ with lengths squared, so that alpha
 // moves the two ratios by powers −2/5 and 1, the magnification by −6/5 and 4: near enough
-// to one another that weak data cannot tell them apart, see Lead. The calibration error
-// leaves out the setting itself.
+// to one another that weak data cannot tell them apart, see Lead. The scattering length moves
+// them by −2/5 and 0; a frequency along the line of sight does what alpha does, and is no
+// hypothesis of its own. The calibration error leaves out the setting itself.
 func (n *Night) FindFactor(ctx context.Context) (Factors, error) {
 	points := n.pick(func(p *Point) bool {
 		return p.comparable() && p.radii() && p.relative(T) < 1./3 &&
@@ -81,7 +98,7 @@ func (n *Night) FindFactor(ctx context.Context) (Factors, error) {
 	}
 	var f Factors
 	for _, law := range []string{Ideal, SemiIdeal} {
-		for _, setting := range []string{"", Alpha, Magnification} {
+		for _, setting := range append([]string{""}, suspects...) {
 			h, err := n.factor(ctx, points, law, setting)
 			if err != nil {
 				return Factors{}, err
@@ -95,10 +112,10 @@ func (n *Night) FindFactor(ctx context.Context) (Factors, error) {
 	return f, err
 }
 
-// insert keeps the list in order of χ², those whose minimum was not found behind.
+// insert keeps the list in order of Total, those whose minimum was not found behind.
 func (f *Factors) insert(h Factor) {
 	at := len(f.List)
-	for at > 0 && !(h.Chi2 >= f.List[at-1].Chi2 || math.IsNaN(h.Chi2)) {
+	for at > 0 && !(h.Total >= f.List[at-1].Total || math.IsNaN(h.Total)) {
 		at--
 	}
 	f.List = append(f.List, Factor{})
@@ -117,7 +134,7 @@ func (f *Factors) lead() {
 	for _, h := range f.List {
 		if h.Setting != best.Setting && h.Setting != "" {
 			scale := best.scale()
-			f.Lead = (h.Chi2 - best.Chi2) / (scale * scale)
+			f.Lead, f.Rival = (h.Total-best.Total)/(scale*scale), h.Setting
 			return
 		}
 	}
@@ -128,10 +145,34 @@ func (n *Night) factor(ctx context.Context, points []*Point, law, setting string
 	if setting == "" {
 		p := n.ratioProblem(points, law, unchanged)
 		h.Quality = p.quality(nil)
+		h.Total = p.total(nil, suspects)
 		return h, nil
 	}
+	p := n.ratioProblem(points, law, n.corrected(points, setting))
+	e, q, err := p.fit(ctx, []float64{0}, setting)
+	if err != nil {
+		return h, err
+	}
+	h.Factor, h.Quality, h.Total = e[0].exp(), q, math.NaN()
+	if e[0].Found() {
+		h.Total = p.total([]float64{e[0].V}, suspects)
+	}
+	return h, nil
+}
+
+// correction returns the numbers of a point as another setting would show them, and the
+// logarithm of the scattering length over that of the settings.
+type correction func(p *Point, theta []float64, v Vector) (Vector, float64)
+
+func unchanged(_ *Point, _ []float64, v Vector) (Vector, float64) { return v, 0 }
+
+// corrected returns the correction by e^θ of a setting.
+func (n *Night) corrected(points []*Point, setting string) correction {
+	if setting == ScatteringLength {
+		return func(_ *Point, theta []float64, v Vector) (Vector, float64) { return v, theta[0] }
+	}
 	power := n.exponents(points, setting)
-	p := n.ratioProblem(points, law, func(p *Point, theta []float64, v Vector) Vector {
+	return func(p *Point, theta []float64, v Vector) (Vector, float64) {
 		for i, k := range power[p] {
 			if setting == Alpha {
 				// σ0 n = alpha ln(I0/I) + (I0−I)/Isat is a straight line in alpha.
@@ -140,26 +181,15 @@ func (n *Night) factor(ctx context.Context, points []*Point, law, setting string
 				v[i] *= math.Exp(theta[0] * k)
 			}
 		}
-		return v
-	})
-	e, q, err := p.fit(ctx, []float64{0}, setting)
-	if err != nil {
-		return h, err
+		return v, 0
 	}
-	h.Factor, h.Quality = e[0].exp(), q
-	return h, nil
 }
-
-// correction returns the numbers of a point as another setting would show them.
-type correction func(p *Point, theta []float64, v Vector) Vector
-
-func unchanged(_ *Point, _ []float64, v Vector) Vector { return v }
 
 // ratioProblem is that of the two relations after a correction of the measured numbers.
 func (n *Night) ratioProblem(points []*Point, law string, correct correction) *problem {
 	return n.problem(points, relation{size: 2, mu: true, eval: func(p *Point, v *Vector, g *scales, theta, h []float64) {
-		c := correct(p, theta, *v)
-		h[0] = math.Log(c[Mu] / g.mu(c[Condensate]))
+		c, length := correct(p, theta, *v)
+		h[0] = math.Log(c[Mu]/g.mu(c[Condensate])) - 0.4*length
 		h[1] = math.Log(c[Thermal]/g.saturated(c[T])) - excessOf(law, &c)
 	}})
 }
@@ -189,7 +219,7 @@ func (n *Night) exponents(points []*Point, setting string) map[*Point]Vector {
 			for i := range own {
 				own[i] = p.Shifts[c][i] / p.Vector[i] / math.Expm1(calibration.Step)
 				if setting == Magnification {
-					own[i] = math.Log1p(p.Shifts[c][i]/p.Vector[i]) / calibration.Step
+					own[i] = p.logChange(c, i) / calibration.Step
 				}
 			}
 			powers[p] = own
@@ -218,11 +248,11 @@ func (n *Night) ratios(ctx context.Context, points []*Point, law string) (mu, sa
 }
 
 // Wrong says that a night asks for a factor: the best hypothesis has one, and it is more
-// than two of its statistical errors from 1.
+// than two of its errors from 1, those of the other calibrations with it.
 func (f *Factors) Wrong() bool {
 	best := f.List[0]
-	return best.Setting != "" && math.Abs(best.Factor.V-1) > 2*best.Factor.Err
+	return best.Setting != "" && math.Abs(best.Factor.V-1) > 2*best.Error()
 }
 
-// Decided says that the setting of the best hypothesis is told from the other one.
+// Decided says that the setting of the best hypothesis is told from the others.
 func (f *Factors) Decided() bool { return f.Lead >= DecisiveLead }

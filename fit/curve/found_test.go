@@ -42,7 +42,7 @@ func TestInsertNotFound(t *testing.T) {
 	for _, order := range [][]float64{{nan, 3, 1, 2}, {3, nan, 1, 2}, {1, 2, 3, nan}, {3, 2, nan, 1}} {
 		var f Factors
 		for i, chi2 := range order {
-			h := Factor{Setting: []string{Alpha, Magnification}[i%2], Factor: Estimate{1, 0, 0}, Quality: Quality{Chi2: chi2}}
+			h := Factor{Setting: []string{Alpha, Magnification}[i%2], Factor: Estimate{1, 0, 0}, Quality: Quality{Chi2: chi2}, Total: chi2}
 			if math.IsNaN(chi2) {
 				h.Factor = notFound()
 			}

@@ -206,13 +206,16 @@ func TestFindFactor(t *testing.T) {
 		law, setting string
 		factor       float64 // of the right setting over the one used
 	}{{Ideal, Alpha, 1.1}, {Ideal, Alpha, 0.9}, {Ideal, Magnification, 1.05}, {Ideal, Magnification, 0.95},
-		{SemiIdeal, Alpha, 1.1}, {SemiIdeal, Magnification, 0.95}} {
+		{SemiIdeal, Alpha, 1.1}, {SemiIdeal, Magnification, 0.95}, {Ideal, ScatteringLength, 1.1}, {SemiIdeal, ScatteringLength, 1.1}} {
 		right, names := pulls{}, 0
 		const nights = 25
 		for seed := range uint64(nights) {
 			n := draw(t, g, th, c.law, scan(40), rand.New(rand.NewPCG(seed, uint64(100*c.factor))))
 			for i := range n.Points {
 				spoil(&n.Points[i], c.setting, 1/c.factor)
+			}
+			if c.setting == ScatteringLength {
+				n.Gas.ScatteringLength /= c.factor
 			}
 			f, err := n.FindFactor(ctx)
 			if err != nil {

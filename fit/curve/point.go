@@ -55,6 +55,30 @@ func (p *Point) radii() bool { return p.Vector[Mu] > 0 && p.Cov[Mu][Mu] > 0 }
 // relative returns the standard deviation of a number over its value.
 func (p *Point) relative(i int) float64 { return math.Sqrt(p.Cov[i][i]) / math.Abs(p.Vector[i]) }
 
+// logChange returns the logarithm of what calibration c makes of a number, over the number. A
+// change that would take more than half of it goes on as its logarithm begins there, since a
+// step that is linear in c may lead below 0.
+func (p *Point) logChange(c, i int) float64 {
+	const half = 0.5
+	if d := p.Shifts[c][i] / p.Vector[i]; d < -half {
+		return math.Log1p(-half) + (d+half)/(1-half)
+	} else {
+		return math.Log1p(d)
+	}
+}
+
+// shifted returns numbers near those of the point as calibration c makes them.
+func (p *Point) shifted(c int, v Vector) Vector {
+	for i := range v {
+		if p.Vector[i] > 0 {
+			v[i] *= math.Exp(p.logChange(c, i))
+		} else {
+			v[i] += p.Shifts[c][i]
+		}
+	}
+	return v
+}
+
 func (p *Point) condensate() float64 { return p.Vector[Condensate] }
 
 // geometricMean returns that of a number of points, NaN of none.

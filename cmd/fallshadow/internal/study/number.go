@@ -12,8 +12,8 @@ import (
 	"fallshadow/fit/curve"
 )
 
-// WriteNumber looks for one common factor of alpha or of the magnification in the chosen
-// shots and words what it finds, with the setting to paste where one is named.
+// WriteNumber looks for one common factor of alpha, of the magnification or of the scattering
+// length in the chosen shots and words what it finds, with the setting to paste where one is named.
 func (n *Night) WriteNumber(ctx context.Context, w io.Writer, c *Chosen) error {
 	night := n.curveNight(c.Rows)
 	tied := aside(night)
@@ -33,22 +33,26 @@ func (n *Night) WriteNumber(ctx context.Context, w io.Writer, c *Chosen) error {
 	fmt.Fprintf(w, "\nas measured: mu from the radii over mu from N0 %s; thermal atoms over what T lets them be, %s: %s\n\n",
 		format(f.Mu), thermalLaw(best.Law), format(f.Saturated))
 	t := tabwriter.NewWriter(w, 0, 0, 2, ' ', 0)
-	fmt.Fprintln(t, "wrong setting\tthermal part\tfactor on the setting\tchi2\tdof")
+	fmt.Fprintln(t, "wrong setting\tthermal part\tfactor on the setting\tchi2\twith calibrations\tdof")
 	for _, h := range f.List {
 		setting, factor := h.Setting, format(h.Factor)
 		if setting == "" {
 			setting, factor = "none", ""
 		}
-		chi2 := ""
-		if !math.IsNaN(h.Chi2) {
-			chi2 = fixed(h.Chi2, 1)
-		}
-		fmt.Fprintf(t, "%s\t%s\t%s\t%s\t%d\n", setting, thermalLaw(h.Law), factor, chi2, h.Dof)
+		fmt.Fprintf(t, "%s\t%s\t%s\t%s\t%s\t%d\n", setting, thermalLaw(h.Law), factor, chi2(h.Chi2), chi2(h.Total), h.Dof)
 	}
 	if err := t.Flush(); err != nil {
 		return err
 	}
 	return n.writeNamed(w, f)
+}
+
+// chi2 writes one, nothing where there is none.
+func chi2(v float64) string {
+	if math.IsNaN(v) {
+		return ""
+	}
+	return fixed(v, 1)
 }
 
 func thermalLaw(law string) string {
@@ -58,9 +62,13 @@ func thermalLaw(law string) string {
 	return "saturated"
 }
 
-// mends is the chi2 over degrees of freedom up to which a factor mends a night: shots scatter
-// somewhat beyond their errors.
-const mends = 3
+// The chi2 over degrees of freedom, with all settings free within their errors, up to which a
+// factor mends a night, as shots scatter somewhat beyond their errors, and up to which the
+// night is told well enough to name a setting.
+const (
+	mends = 3
+	names = 2
+)
 
 // writeUnmended says that a common factor is not what is wrong.
 func (n *Night) writeUnmended(w io.Writer, best *curve.Factor) {
@@ -68,7 +76,7 @@ func (n *Night) writeUnmended(w io.Writer, best *curve.Factor) {
 	if best.Setting != "" {
 		what = best.Setting + " times " + format(best.Factor)
 	}
-	fmt.Fprintf(w, "no single factor mends the night: with the best, %s, chi2 is still %.3g a degree of freedom, where about 1 is expected; look at the ratios that check prints and at the flags\n", what, best.PerDof())
+	fmt.Fprintf(w, "no single factor mends the night: with the best, %s, chi2 is still %.3g a degree of freedom, where about 1 is expected; look at the ratios that check prints and at the flags\n", what, best.TotalPerDof())
 	if n.Settings.Fit.Thermal == "bose" {
 		fmt.Fprintln(w, "the gas repels and its thermal part was fitted as an ideal gas (fit.thermal = \"bose\"): if thermal atoms felt the condensate, T is low and their number above saturation; put thermal = \"semi-ideal\" into [fit], run batch, and calibrate once more")
 	}
@@ -79,28 +87,43 @@ func (n *Night) writeNamed(w io.Writer, f curve.Factors) error {
 	best := f.List[0]
 	fmt.Fprintln(w)
 	switch {
-	case best.PerDof() > mends:
+	case !(best.TotalPerDof() <= mends):
 		n.writeUnmended(w, &best)
-		return nil
 	case !f.Wrong():
-		fmt.Fprintln(w, "no common factor is needed: mu from the radii and from N0 and the thermal numbers agree")
-		return nil
+		fmt.Fprintln(w, "no common factor is needed: mu from the radii and from N0 and the thermal numbers agree within the errors of the shots and of the settings")
+	case math.IsNaN(f.Lead):
+		fmt.Fprintln(w, "something is off by a common factor, but no setting is named: the minimum of a hypothesis above was not found")
 	case !f.Decided():
-		fmt.Fprintf(w, "something is off by a common factor, but alpha and magnification cannot be told apart: either factor above mends the night, and chi2 differs by %.1f of its scatter where %d are asked for; more shots with a good T would tell\n", f.Lead, curve.DecisiveLead)
-		return nil
+		fmt.Fprintf(w, "something is off by a common factor, but %s and %s cannot be told apart: either factor above mends the night, and chi2 differs by %.1f of its scatter where %d are asked for; more shots with a good T would tell\n", best.Setting, f.Rival, f.Lead, curve.DecisiveLead)
+	case !(best.TotalPerDof() <= names):
+		fmt.Fprintf(w, "something is off by a common factor and %s mends it best, but chi2 is %.3g a degree of freedom, where below %d is asked for to name a setting: look at the flags and leave out shots with --without or --where\n", best.Setting, best.TotalPerDof(), names)
+	default:
+		return n.writeSetting(w, &best, &f)
 	}
-	setting, table := n.Settings.Probe.Alpha, "probe"
-	if best.Setting == curve.Magnification {
+	return nil
+}
+
+// writeSetting names the setting, and what would look like it.
+func (n *Night) writeSetting(w io.Writer, best *curve.Factor, f *curve.Factors) error {
+	setting, table, others := n.Settings.Probe.Alpha, "probe", "trap frequencies, flight and scattering length"
+	switch best.Setting {
+	case curve.Magnification:
 		setting, table = n.Settings.Camera.Magnification, "camera"
+	case curve.ScatteringLength:
+		setting, table, others = n.Settings.Atom.ScatteringLengthA0, "atom", "trap frequencies and flight"
 	}
 	note := ""
 	if math.IsNaN(best.Factor.Cal) {
 		note = " # without the settings that have no stated uncertainty"
 	}
+	fmt.Fprintf(w, "%s fits better than %s, by %.1f in chi2: if %s are right, it should be %s times the %s of the settings. The error below has a twentieth of the correction in it for going so far; put it in, run batch, and calibrate once more.\n",
+		best.Setting, f.Rival, f.Lead, others, format(best.Factor), decimal(setting.Value))
+	if best.Setting == curve.Alpha {
+		fmt.Fprintln(w, "A sight_hz that is to be multiplied with the same factor looks just alike.")
+	}
 	value, sigma := setting.Value*best.Factor.V, setting.Value*best.Error()
 	decimals := min(max(1-int(math.Floor(math.Log10(sigma))), 0), 12)
 	number := func(v float64) string { return strconv.FormatFloat(v, 'f', decimals, 64) }
-	_, err := fmt.Fprintf(w, "%s fits better, by %.1f in chi2: it should be %s times the %s of the settings. The error below has a twentieth of the correction in it for going so far; put it in, run batch, and calibrate once more.\n\n[%s]\n%s = { value = %s, err = %s }%s\n",
-		best.Setting, f.Lead, format(best.Factor), decimal(setting.Value), table, best.Setting, number(value), number(sigma), note)
+	_, err := fmt.Fprintf(w, "\n[%s]\n%s = { value = %s, err = %s }%s\n", table, best.Setting, number(value), number(sigma), note)
 	return err
 }

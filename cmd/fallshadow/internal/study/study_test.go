@@ -454,16 +454,22 @@ func TestLoad(t *testing.T) {
 }
 
 // TestWriteNumber: atom numbers a tenth low in all shots are laid to alpha, with the value
-// to paste; the right ones to nothing.
+// to paste; a scattering length that is a tenth low to itself; right numbers to nothing.
 func TestWriteNumber(t *testing.T) {
 	for _, c := range []struct {
-		factor float64
+		factor float64 // on the atom numbers; 0: the scattering length is low instead
 		want   []string
 	}{
 		{1, []string{"no common factor is needed"}},
-		{0.9, []string{"alpha fits better", "[probe]\nalpha = { value = 2.2"}},
+		{0.9, []string{"alpha fits better than ", "if trap frequencies, flight and scattering length are right", "A sight_hz", "[probe]\nalpha = { value = 2.2"}},
+		{0, []string{"scattering_length_a0 fits better than ", "if trap frequencies and flight are right", "[atom]\nscattering_length_a0 = { value = 100."}},
 	} {
 		n := made(t, 120)
+		if c.factor == 0 {
+			c.factor = 1
+			n.lab.Species.ScatteringLength *= 0.9
+			n.Settings.Atom.ScatteringLengthA0.Value *= 0.9
+		}
 		for i := range n.Rows {
 			r := &n.Rows[i]
 			for _, name := range []string{"thermal", "condensate", "thermal_err", "condensate_err"} {
