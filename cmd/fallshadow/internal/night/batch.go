@@ -84,8 +84,8 @@ type batch struct {
 	reference ledger.Digest
 	regions   []ledger.Region
 	preparing sync.Mutex
-	benches   map[image.Rectangle]func() measure // by what regionOf says, and Everything
-	undrawn   onceError                          // of the pictures
+	benches   shelf[func() measure] // by what regionOf says, and Everything
+	undrawn   onceError             // of the pictures
 }
 
 // Batch fits the shots of a night that have no current row and writes the table. It
@@ -179,7 +179,8 @@ func (b *batch) survey(ctx context.Context) error {
 	if complete := len(b.shots) == len(b.scanned.Shots); err != nil && !(complete && f.n == 0) {
 		return fmt.Errorf("prepare %s: %w", b.Dir, err)
 	}
-	b.benches = map[image.Rectangle]func() measure{{}: worker}
+	b.benches = shelf[func() measure]{most: keptBenches}
+	b.benches.put(image.Rectangle{}, worker)
 	b.reference = referenceDigest(b.shots, b.darks)
 	if b.OwnRegion {
 		return nil
@@ -191,7 +192,7 @@ func (b *batch) survey(ctx context.Context) error {
 // firstLook yields the frames of the night and fills in what the batch knows of its shots.
 func (b *batch) firstLook(ctx context.Context, f *frames) iter.Seq[*imageio.Raw] {
 	return func(yield func(*imageio.Raw) bool) {
-		if !b.yieldDarks(ctx, yield) {
+		if !b.yieldDarks(ctx, true, yield) {
 			return
 		}
 		type seen struct {
@@ -216,17 +217,20 @@ func (b *batch) firstLook(ctx context.Context, f *frames) iter.Seq[*imageio.Raw]
 	}
 }
 
-// yieldDarks yields the dark frames that belong to the night and to no shot.
-func (b *batch) yieldDarks(ctx context.Context, yield func(*imageio.Raw) bool) bool {
+// yieldDarks yields the dark frames that belong to the night and to no shot, and at first
+// takes note of them and of files that hold none.
+func (b *batch) yieldDarks(ctx context.Context, first bool, yield func(*imageio.Raw) bool) bool {
 	for _, file := range b.scanned.Darks {
 		list, err := imageio.ReadDark(ctx, b.root, file)
-		if err != nil {
+		if err != nil && first {
 			b.scanned.Strays = append(b.scanned.Strays, imageio.Stray{Path: file.Path, Reason: "not used as dark: " + err.Error()})
 		}
 		for _, frame := range list {
-			raw := new(imageio.Raw)
+			raw := &imageio.Raw{Digest: imageio.Digest(frame)}
 			raw.Frames[imageio.Dark] = frame
-			b.darks = append(b.darks, imageio.Digest(frame))
+			if first {
+				b.darks = append(b.darks, raw.Digest)
+			}
 			if !yield(raw) {
 				return false
 			}

@@ -415,6 +415,52 @@ func TestRegionsDrawnByHand(t *testing.T) {
 	equal(t, "table without", without, plain)
 }
 
+// TestManyRegions: of many drawn regions few are kept ready; the others are made ready again,
+// and the table is that of any number of workers. What is wrong with a dark is said once.
+func TestManyRegions(t *testing.T) {
+	ctx := context.Background()
+	dir := newNight(t, 6)
+	writeShot(t, dir, "dark/a", 90, 91, 92)
+	if err := os.WriteFile(filepath.Join(dir, "dark", "b.fits"), []byte("x"), 0o644); err != nil {
+		t.Fatal(err)
+	}
+	root, err := filepath.EvalSymlinks(dir)
+	if err != nil {
+		t.Fatal(err)
+	}
+	regions := []image.Rectangle{{}}
+	results := filepath.Join(t.TempDir(), "results")
+	l, err := ledger.Open(ctx, results, root, nil)
+	if err != nil {
+		t.Fatal(err)
+	}
+	for i := 1; i <= 6; i++ {
+		if err := l.SetRegion(ctx, ledger.Region{First: fmt.Sprint("shot_", i), X0: 0, Y0: 0, X1: i + 5, Y1: 9}); err != nil {
+			t.Fatal(err)
+		}
+		regions = append(regions, image.Rect(0, 0, i+5, 9))
+	}
+	l.Close()
+
+	var f fake
+	o := Options{Dir: dir, Out: results, Workers: 1, Settings: lab(t, "[shots]\ndark_files = [\"dark/*.fits\"]")}
+	out, want := mustBatch(t, &f, o)
+	backwards := slices.Clone(regions[1:])
+	slices.Reverse(backwards)
+	equal(t, "prepared", f.prepared, slices.Concat(regions[:1], backwards, regions[1+keptBenches:]))
+	equal(t, "strays", len(out.Strays), 1)
+	var widths []float64
+	for _, r := range out.Rows {
+		widths = append(widths, r.Number("x_px"))
+	}
+	equal(t, "width used", widths, []float64{6, 7, 8, 9, 10, 11})
+	o.Workers, o.Again = 3, true
+	out, table := mustBatch(t, &f, o)
+	equal(t, "table of three workers", table, want)
+	equal(t, "strays of three workers", len(out.Strays), 1)
+	equal(t, "fitted again", out.Fitted, 6)
+}
+
 func TestProvisionalRowsAreMadeFinal(t *testing.T) {
 	ctx := context.Background()
 	dir := newNight(t, 2)

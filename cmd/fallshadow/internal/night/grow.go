@@ -39,23 +39,25 @@ func Grow(f *report.Facts, whole func() (*report.Facts, error)) *report.Facts {
 // kit is what one worker has made for the regions it met.
 type kit struct {
 	*batch
-	made map[image.Rectangle]measure
+	made *shelf[measure]
 }
 
-func (k kit) in(ctx context.Context, region image.Rectangle) (measure, error) {
-	if k.made[region] == nil {
-		worker, err := k.bench(ctx, region)
-		if err != nil {
-			return nil, err
-		}
-		k.made[region] = worker()
+func (k *kit) in(ctx context.Context, region image.Rectangle) (measure, error) {
+	if m, ok := k.made.get(region); ok {
+		return m, nil
 	}
-	return k.made[region], nil
+	worker, err := k.bench(ctx, region)
+	if err != nil {
+		return nil, err
+	}
+	m := worker()
+	k.made.put(region, m)
+	return m, nil
 }
 
 // measure measures the shot at a place in its region, or in the whole frame where its cloud is
 // not inside.
-func (k kit) measure(ctx context.Context, at int, raw *imageio.Raw) (*report.Facts, error) {
+func (k *kit) measure(ctx context.Context, at int, raw *imageio.Raw) (*report.Facts, error) {
 	region := k.regionOf(k.readable[at])
 	m, err := k.in(ctx, region)
 	if err != nil {

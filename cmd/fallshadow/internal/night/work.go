@@ -5,6 +5,7 @@ import (
 	"errors"
 	"fmt"
 	"image"
+	"slices"
 	"strings"
 	"sync"
 
@@ -72,9 +73,13 @@ func (b *batch) plan(ctx context.Context) (todo []int, err error) {
 	for at, i := range b.readable {
 		if r := rows[b.shots[i].Name]; b.Again || r == nil || !b.current(i, r) || b.Pictures != nil && r.Reason == "" && !b.Pictures.Has(r) {
 			todo = append(todo, at)
-			if _, err := b.bench(ctx, b.regionOf(i)); err != nil {
-				return nil, fmt.Errorf("prepare the region drawn for %s: %w", b.region(b.shots[i].Name).First, err)
-			}
+		}
+	}
+	// Backwards, so that the benches that are kept are those of the first shots.
+	for _, at := range slices.Backward(todo) {
+		i := b.readable[at]
+		if _, err := b.bench(ctx, b.regionOf(i)); err != nil {
+			return nil, fmt.Errorf("prepare the region drawn for %s: %w", b.region(b.shots[i].Name).First, err)
 		}
 	}
 	return todo, nil
@@ -92,18 +97,18 @@ func (b *batch) rowsByShot(ctx context.Context) (map[string]*ledger.Row, error) 
 	return byShot, nil
 }
 
-// bench returns what makes measures in a region, prepared when it is first asked for.
+// bench returns what makes measures in a region, prepared when it is asked for and not there.
 func (b *batch) bench(ctx context.Context, region image.Rectangle) (func() measure, error) {
 	b.preparing.Lock()
 	defer b.preparing.Unlock()
-	if worker, ok := b.benches[region]; ok {
+	if worker, ok := b.benches.get(region); ok {
 		return worker, nil
 	}
 	worker, err := b.prepare(ctx, b.Settings, region, b.again(ctx))
 	if err != nil {
 		return nil, err
 	}
-	b.benches[region] = worker
+	b.benches.put(region, worker)
 	return worker, nil
 }
 
@@ -111,7 +116,7 @@ func (b *batch) bench(ctx context.Context, region image.Rectangle) (func() measu
 func (b *batch) again(ctx context.Context) *frames {
 	f := &frames{n: len(b.readable), load: b.load}
 	f.all = func(yield func(*imageio.Raw) bool) {
-		if !b.yieldDarks(ctx, yield) {
+		if !b.yieldDarks(ctx, false, yield) {
 			return
 		}
 		for _, raw := range inOrder(len(b.readable), b.Workers, func(at int) *imageio.Raw {
@@ -187,7 +192,7 @@ func (b *batch) fit(ctx context.Context, todo []int, done *int) error {
 
 // worker measures shots until there are none left or ctx is done.
 func (b *batch) worker(ctx context.Context, next <-chan int, rows chan<- *ledger.Row) {
-	k := kit{b, map[image.Rectangle]measure{}}
+	k := kit{b, &shelf[measure]{most: 1}}
 	for at := range next {
 		r, err := b.row(ctx, at, k.measure)
 		if err != nil {
@@ -195,7 +200,7 @@ func (b *batch) worker(ctx context.Context, next <-chan int, rows chan<- *ledger
 				return
 			}
 			r = b.failed(b.readable[at], err)
-			clear(k.made) // a panic may have left its scratch in any state
+			k.made = &shelf[measure]{most: 1} // a panic may have left its scratch in any state
 		}
 		rows <- r
 	}
