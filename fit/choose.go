@@ -206,6 +206,9 @@ func (s *session) choose(c *candidates) (*state, string) {
 	if c.both.used() && c.both.p[pCondensate] > 0 && c.both.p[pThermal] > 0 && chi(c.alone)-chi(c.both) > s.opt.ThermalChi2 && s.outdoes(c.both, chi(c.thermal)) {
 		return c.both, ModelBimodal
 	}
+	if single == nil && c.both.used() { // no single part came near: it is both, be they as they may
+		single, name = c.both, ModelBimodal
+	}
 	if chi(c.none)-chi(single) > s.opt.CloudChi2 {
 		return single, name
 	}

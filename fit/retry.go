@@ -41,7 +41,7 @@ func (s *session) retry(c *candidates) (*candidates, error) {
 		if err != nil {
 			return nil, err
 		}
-		if st.used() && (!c.both.used() || s.doubted(st) < s.doubted(c.both)) {
+		if st.used() && st.p[pCondensate] > 0 && st.p[pThermal] > 0 && (!c.both.used() || s.doubted(st) < s.doubted(c.both)) {
 			c.both = st
 		}
 	}

@@ -63,7 +63,7 @@ func (n *Night) pulls(c int) []pull {
 	g := &n.Calibrations[c].Gas
 	for i := range n.Points {
 		p := &n.Points[i]
-		if !(p.Vector[T] > 0) || !(p.Atoms() > 0) {
+		if !(p.Vector[T] > 0) || !(p.Atoms() > 0) || !p.Shifted() {
 			continue
 		}
 		moved := p.shifted(c, p.Vector)

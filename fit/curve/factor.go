@@ -90,7 +90,7 @@ var ErrNoFactor = errors.New("a number factor needs at least three shots with a 
 // hypothesis of its own. The calibration error leaves out the setting itself.
 func (n *Night) FindFactor(ctx context.Context) (Factors, error) {
 	points := n.pick(func(p *Point) bool {
-		return p.comparable() && p.radii() && p.relative(T) < 1./3 &&
+		return p.Comparable() && p.radii() && p.relative(T) < 1./3 &&
 			p.Vector[Condensate]*n.Gas.ScatteringLength/n.Gas.Trap.Length(n.Gas.Mass) > leastParameter
 	})
 	if len(points) < 3 {

@@ -68,7 +68,7 @@ func TestNarrowRange(t *testing.T) {
 				reduced[i] = 0.7 + span*(float64(i)/19-0.5)
 			}
 			n := draw(t, g, th, SemiIdeal, reduced, rand.New(rand.NewPCG(seed, 33)))
-			s, why, err := n.saturation(ctx, n.condensed())
+			s, why, err := n.Saturate(ctx)
 			if err != nil {
 				t.Fatal(err)
 			}

@@ -47,7 +47,7 @@ func (n *Night) CheckMeanField(ctx context.Context) (*MeanField, error) {
 func (n *Night) large() []*Point {
 	length := n.Gas.Trap.Length(n.Gas.Mass)
 	return n.pick(func(p *Point) bool {
-		return p.radii() && p.Cov[Condensate][Condensate] > 0 &&
+		return p.radii() && p.Shifted() && p.Cov[Condensate][Condensate] > 0 &&
 			p.Vector[Condensate]*n.Gas.ScatteringLength/length > leastParameter
 	})
 }

@@ -28,7 +28,7 @@ type Point struct {
 	// Cov is the statistical covariance in the order of Vector; rows of what is absent are 0.
 	Cov [numMeasured][numMeasured]float64
 	// Shifts holds the change of the numbers when a calibration of the night moves up by one
-	// standard deviation, in the order of Night.Calibrations.
+	// standard deviation, in the order of Night.Calibrations; NaN where it is not known.
 	Shifts []Vector
 	// ByNumber says that T was computed from the number of a saturated thermal part.
 	ByNumber bool
@@ -118,8 +118,21 @@ func (n *Night) pick(want func(*Point) bool) []*Point {
 	return list
 }
 
-// comparable says that the point has both parts, and T and their numbers apart.
-func (p *Point) comparable() bool { return p.Condensed() && p.Independent() }
+// Shifted says that the change of every number under every calibration is known.
+func (p *Point) Shifted() bool {
+	for _, s := range p.Shifts {
+		for _, d := range s {
+			if math.IsNaN(d) {
+				return false
+			}
+		}
+	}
+	return true
+}
+
+// Comparable says that the point has both parts, T and their numbers apart, and that errors
+// which it shares with the night are known.
+func (p *Point) Comparable() bool { return p.Condensed() && p.Independent() && p.Shifted() }
 
 // condensed returns the points with both parts that tell a law.
-func (n *Night) condensed() []*Point { return n.pick((*Point).comparable) }
+func (n *Night) condensed() []*Point { return n.pick((*Point).Comparable) }

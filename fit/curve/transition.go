@@ -38,6 +38,13 @@ type Saturation struct {
 	Quality
 }
 
+// Excessive says that the thermal part grows beyond saturation as that of a semi-ideal gas
+// does: the fit describes the points, and λ is above a half and three of its errors from 0.
+func (s *Saturation) Excessive() bool {
+	const fair = 3 // χ² a degree of freedom
+	return s != nil && s.PerDof() <= fair && s.Excess.V > 0.5 && s.Excess.V > 3*s.Excess.Error()
+}
+
 // Onset is the fit of f = law(t Tc⁰/Tc) to the points of small fraction.
 type Onset struct {
 	Law   Law
@@ -59,7 +66,7 @@ func (n *Night) Locate(ctx context.Context, th *Theory) (Transition, error) {
 	t := Transition{Hottest: math.NaN(), Coldest: math.NaN()}
 	for i := range n.Points {
 		p := &n.Points[i]
-		if !p.Independent() {
+		if !p.Independent() || !(p.Atoms() > 0) {
 			continue
 		}
 		reduced := n.Gas.Reduced(p.Vector[T], p.Atoms())
@@ -72,10 +79,10 @@ func (n *Night) Locate(ctx context.Context, th *Theory) (Transition, error) {
 	}
 	points := n.condensed()
 	var err error
-	if t.Saturation, t.Unsaturated, err = n.saturation(ctx, points); err != nil {
+	if t.Saturation, t.Unsaturated, err = n.Saturate(ctx); err != nil {
 		return t, err
 	}
-	small := n.pick(func(p *Point) bool { return p.comparable() && p.Fraction() < OnsetFraction })
+	small := n.pick(func(p *Point) bool { return p.Comparable() && p.Fraction() < OnsetFraction })
 	if len(small) >= 3 {
 		points = small
 		if t.Onsets, err = n.onsets(ctx, th, small); err != nil {
@@ -97,8 +104,10 @@ const (
 	notSearched = "the minimum was not found"
 )
 
-func (n *Night) saturation(ctx context.Context, points []*Point) (*Saturation, string, error) {
-	start := []float64{1, 0.5}
+// Saturate fits the number of the thermal part at fixed T, or says why the night does not tell
+// it.
+func (n *Night) Saturate(ctx context.Context) (*Saturation, string, error) {
+	points, start := n.condensed(), []float64{1, 0.5}
 	switch {
 	case len(points) < 4:
 		return nil, fewShots, nil
