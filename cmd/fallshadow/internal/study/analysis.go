@@ -2,7 +2,6 @@ package study
 
 import (
 	"context"
-	"errors"
 	"fmt"
 	"math"
 
@@ -19,6 +18,7 @@ type Analysis struct {
 	Theory      *curve.Theory
 	Aside       []LeftOut          // that tell no law and no transition, and why
 	Comparisons []curve.Comparison // none with fewer than three shots of both parts
+	Outliers    Outliers
 	Transition  curve.Transition
 	MeanField   *curve.MeanField
 	Attractive  *Attractive
@@ -32,11 +32,12 @@ func (n *Night) Analyse(ctx context.Context, c *Chosen) (*Analysis, error) {
 	a := &Analysis{Night: n, Chosen: c, Curve: n.curveNight(c.Rows)}
 	low, high := math.Inf(1), 0.0
 	for i := range a.Curve.Points {
-		atoms := a.Curve.Points[i].Atoms()
-		low, high = math.Min(low, atoms), math.Max(high, atoms)
+		if atoms := a.Curve.Points[i].Atoms(); atoms > 0 {
+			low, high = math.Min(low, atoms), math.Max(high, atoms)
+		}
 	}
-	if !(low > 0) {
-		return nil, errors.New("a shot has no atoms: --where atoms=1: leaves it out")
+	if high == 0 {
+		return nil, fmt.Errorf("none of the %s that take part, %s the first, has atoms", count(len(c.Rows), "shot"), c.Rows[0].Shot)
 	}
 	a.Aside = aside(a.Curve)
 	a.Theory = curve.NewTheory(a.Curve.Gas, low, high)
@@ -44,6 +45,7 @@ func (n *Night) Analyse(ctx context.Context, c *Chosen) (*Analysis, error) {
 	if a.Comparisons, err = a.Curve.Compare(ctx, a.Theory); err != nil {
 		return nil, fmt.Errorf("compare with the laws: %w", err)
 	}
+	a.Outliers = a.findOutliers()
 	if a.Transition, err = a.Curve.Locate(ctx, a.Theory); err != nil {
 		return nil, fmt.Errorf("locate the transition: %w", err)
 	}

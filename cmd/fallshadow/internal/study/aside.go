@@ -1,6 +1,7 @@
 package study
 
 import (
+	"math"
 	"strings"
 
 	"fallshadow/cmd/fallshadow/internal/ledger"
@@ -19,15 +20,32 @@ func byNumber(r *ledger.Row) bool {
 	return false
 }
 
-// whyByNumber is why such a row tells no law.
-const whyByNumber = "T was computed from the thermal number (flag temperature_from_number, or fugacity = \"number\" in [fit]): the two agree by themselves and tell nothing of each other"
+// Why shots tell no law.
+const (
+	whyByNumber = "T was computed from the thermal number (flag temperature_from_number, or fugacity = \"number\" in [fit]): the two agree by themselves and tell nothing of each other"
+	whyUnknown  = "any number of condensate atoms could hide where the picture ends"
+	whyShift    = "the fit did not find how its numbers move with a setting that may be off"
+)
+
+// whyAside says why a shot tells no law though it has what laws need, "" where it may.
+func whyAside(p *curve.Point) string {
+	switch {
+	case !p.Independent():
+		return whyByNumber
+	case math.IsNaN(p.Vector[curve.Condensate]):
+		return whyUnknown
+	case !p.Shifted():
+		return whyShift
+	}
+	return ""
+}
 
 // aside returns the shots that stay in trends and figures but take no part where T and atom
 // numbers are held against each other.
 func aside(n *curve.Night) (list []LeftOut) {
 	for i := range n.Points {
-		if p := &n.Points[i]; !p.Independent() {
-			list = append(list, LeftOut{Shot: p.Name, Why: whyByNumber})
+		if why := whyAside(&n.Points[i]); why != "" {
+			list = append(list, LeftOut{Shot: n.Points[i].Name, Why: why})
 		}
 	}
 	return list

@@ -126,7 +126,7 @@ func (a *Analysis) WriteGroups(w io.Writer, by Grouping) error {
 func (a *Analysis) scatterOfLaw(places []int) float64 {
 	sum, n := 0.0, 0.0
 	for _, i := range places {
-		if p := &a.Curve.Points[i]; p.Condensed() && p.Independent() {
+		if p := &a.Curve.Points[i]; p.Comparable() {
 			d := a.Curve.Distance(a.Theory, a.Best(), p)
 			sum, n = sum+d*d, n+1
 		}

@@ -5,6 +5,7 @@ import (
 	"io"
 	"math"
 
+	"fallshadow/cmd/fallshadow/internal/report"
 	"fallshadow/fit/curve"
 )
 
@@ -16,6 +17,7 @@ type summary struct {
 	Aside       []LeftOut    `json:"left_out_of_laws"`
 	Laws        []compared   `json:"laws"`
 	Best        string       `json:"least_chi2"`
+	Outliers    []outlier    `json:"outliers"`
 	Saturation  *located     `json:"saturation"`
 	Unsaturated string       `json:"saturation_not_told,omitempty"`
 	Onsets      []located    `json:"onsets"`
@@ -33,6 +35,14 @@ type compared struct {
 	Chi2      *float64 `json:"chi2"`
 	Deviation *number  `json:"mean_deviation"`
 	Share     *number  `json:"share"`
+}
+
+// outlier is a shot that is far from the law to which most are nearest.
+type outlier struct {
+	Shot   string   `json:"shot"`
+	Law    string   `json:"law"`
+	Sigmas float64  `json:"sigmas"`
+	Flags  []string `json:"flags"`
 }
 
 type located struct {
@@ -69,7 +79,14 @@ func finite(v float64) *float64 {
 // WriteJSON writes the numbers of the analysis as one JSON object.
 func (a *Analysis) WriteJSON(w io.Writer) error {
 	t := &a.Transition
-	v := summary{Night: a.Night.Name, Shots: len(a.Chosen.Rows), LeftOut: a.Chosen.LeftOut, Aside: a.Aside, Best: a.Best().Name, Atoms: finite(t.Atoms)}
+	v := summary{Night: a.Night.Name, Shots: len(a.Chosen.Rows), LeftOut: a.Chosen.LeftOut, Aside: a.Aside, Atoms: finite(t.Atoms)}
+	if a.Describes() {
+		v.Best = a.Best().Name
+	}
+	for k, i := range a.Outliers.Places {
+		r := a.Chosen.Rows[i]
+		v.Outliers = append(v.Outliers, outlier{r.Shot, a.Outliers.Law.Name, a.Outliers.Distances[k], report.Flags(r)})
+	}
 	for _, c := range a.Comparisons {
 		v.Laws = append(v.Laws, compared{c.Law.Name, c.Law.Note, c.Points, finite(c.Chi2), jsonNumber(c.Deviation), jsonNumber(c.Amplitude)})
 	}

@@ -44,7 +44,11 @@ func (n *Night) WriteNumber(ctx context.Context, w io.Writer, c *Chosen) error {
 	if err := t.Flush(); err != nil {
 		return err
 	}
-	return n.writeNamed(w, f)
+	saturation, _, err := night.Saturate(ctx)
+	if err != nil {
+		return err
+	}
+	return n.writeNamed(w, f, saturation.Excessive())
 }
 
 // chi2 writes one, nothing where there is none.
@@ -71,24 +75,24 @@ const (
 )
 
 // writeUnmended says that a common factor is not what is wrong.
-func (n *Night) writeUnmended(w io.Writer, best *curve.Factor) {
+func (n *Night) writeUnmended(w io.Writer, best *curve.Factor, excessive bool) {
 	what := "none"
 	if best.Setting != "" {
 		what = best.Setting + " times " + format(best.Factor)
 	}
 	fmt.Fprintf(w, "no single factor mends the night: with the best, %s, chi2 is still %.3g a degree of freedom, where about 1 is expected; look at the ratios that check prints and at the flags\n", what, best.TotalPerDof())
-	if n.Settings.Fit.Thermal == "bose" {
-		fmt.Fprintln(w, "the gas repels and its thermal part was fitted as an ideal gas (fit.thermal = \"bose\"): if thermal atoms felt the condensate, T is low and their number above saturation; put thermal = \"semi-ideal\" into [fit], run batch, and calibrate once more")
+	if excessive && n.Settings.Fit.Thermal != "semi-ideal" {
+		fmt.Fprintf(w, "the thermal part exceeds saturation as that of a semi-ideal gas does, and was fitted as an ideal one (fit.thermal = %q): if thermal atoms felt the condensate, T is low and their number above saturation; put thermal = \"semi-ideal\" into [fit], run batch, and calibrate once more\n", n.Settings.Fit.Thermal)
 	}
 }
 
 // writeNamed says which setting it is, if it can be told, and what to write.
-func (n *Night) writeNamed(w io.Writer, f curve.Factors) error {
+func (n *Night) writeNamed(w io.Writer, f curve.Factors, excessive bool) error {
 	best := f.List[0]
 	fmt.Fprintln(w)
 	switch {
 	case !(best.TotalPerDof() <= mends):
-		n.writeUnmended(w, &best)
+		n.writeUnmended(w, &best, excessive)
 	case !f.Wrong():
 		fmt.Fprintln(w, "no common factor is needed: mu from the radii and from N0 and the thermal numbers agree within the errors of the shots and of the settings")
 	case math.IsNaN(f.Lead):

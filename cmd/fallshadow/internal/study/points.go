@@ -61,7 +61,7 @@ func calibrations(lab *fit.Lab) []curve.Calibration {
 	return list
 }
 
-// point returns a row as a point.
+// point returns a row as a point. A cloud of one part has 0 atoms in the other, in its row too.
 func point(r *ledger.Row, calibrations []curve.Calibration) curve.Point {
 	p := curve.Point{Name: r.Shot, Flight: r.Number("flight_ms") * 1e-3, ByNumber: byNumber(r)}
 	var sigma curve.Vector
@@ -70,12 +70,6 @@ func point(r *ledger.Row, calibrations []curve.Calibration) curve.Point {
 		if e := r.Number(m.column+"_err") / m.perSI; e > 0 {
 			sigma[i] = e
 			p.Cov[i][i] = e * e
-		}
-	}
-	// A cloud of one part has 0 atoms in the other.
-	for _, i := range []int{curve.Thermal, curve.Condensate} {
-		if math.IsNaN(p.Vector[i]) {
-			p.Vector[i] = 0
 		}
 	}
 	for _, c := range correlations {
@@ -87,7 +81,11 @@ func point(r *ledger.Row, calibrations []curve.Calibration) curve.Point {
 	p.Shifts = make([]curve.Vector, len(calibrations))
 	for k, c := range calibrations {
 		for i, m := range measured {
-			p.Shifts[k][i] = r.Shifts[c.Name].Change[m.number]
+			change, known := r.Shifts[c.Name].Change[m.number]
+			if !known && p.Cov[i][i] > 0 {
+				change = math.NaN()
+			}
+			p.Shifts[k][i] = change
 		}
 	}
 	return p

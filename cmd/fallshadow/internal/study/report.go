@@ -41,7 +41,8 @@ const (
 // page is what the template of the report is filled with.
 type page struct {
 	Night              string
-	Shots, Used, Both  int
+	Shots, Used        int
+	Among              string
 	Facts              [][2]string
 	Curve              template.HTML
 	CurveNote          string
@@ -88,7 +89,7 @@ type thumbnail struct {
 // the numbers, trends, flags, pictures of flagged shots and the settings. The same ledger
 // and folder give the same bytes. drawn is the figure to show as the curve.
 func (a *Analysis) WriteReport(ctx context.Context, w io.Writer, drawn *Drawn) error {
-	p := page{Night: a.Night.Name, Shots: len(a.Night.Rows), Used: len(a.Chosen.Rows), CurveNote: drawn.Note,
+	p := page{Night: a.Night.Name, Shots: len(a.Night.Rows), Used: len(a.Chosen.Rows), Among: a.among(), CurveNote: drawn.Note,
 		Settings: a.Night.Settings.Text(), Unstated: strings.Join(a.Night.Settings.Unstated(), ", ")}
 	var err error
 	if p.Curve, err = inline(drawn.Figure, 96, 74); err != nil {
@@ -130,11 +131,6 @@ func inline(f *figure.Figure, width, height float64) (template.HTML, error) {
 }
 
 func (a *Analysis) fillNumbers(p *page) {
-	for i := range a.Curve.Points {
-		if a.Curve.Points[i].Condensed() {
-			p.Both++
-		}
-	}
 	for _, q := range []struct{ name, head string }{{"atoms", "N"}, {"T_nK", "T (nK)"}, {"fraction", "N0/N"}, {"t_reduced", "T/Tc0"}, {"mu_nK", "mu/k (nK)"}, {"flight_ms", "flight (ms)"}, {"peak_od", "peak OD"}} {
 		if text := a.span(q.name); text != "" {
 			p.Facts = append(p.Facts, [2]string{q.head, text})
@@ -142,7 +138,7 @@ func (a *Analysis) fillNumbers(p *page) {
 	}
 	best := curve.Best(a.Comparisons)
 	for i, c := range a.Comparisons {
-		p.Laws = append(p.Laws, lawLine{c.Law.Title, fmt.Sprintf("%.3g", c.PerDof()), format(c.Deviation), format(c.Amplitude), c.Law.Note, i == best})
+		p.Laws = append(p.Laws, lawLine{c.Law.Title, fmt.Sprintf("%.3g", c.PerDof()), format(c.Deviation), format(c.Amplitude), c.Law.Note, i == best && a.Describes()})
 	}
 	a.fillTransition(p)
 	if m := a.MeanField; m != nil {
@@ -155,6 +151,7 @@ func (a *Analysis) fillNumbers(p *page) {
 	if t := a.Attractive; t != nil {
 		p.Checks = append(p.Checks, fmt.Sprintf("attractive gas: collapse at N0 = %.0f; the largest condensate has %.2f of it", t.Critical, t.Largest))
 	}
+	p.Cautions = a.doubts()
 	for _, c := range causes(a.Aside) {
 		p.Cautions = append(p.Cautions, fmt.Sprintf("%s left out of laws and transition: %s", count(len(c.shots), "shot"), c))
 	}

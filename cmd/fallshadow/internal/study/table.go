@@ -22,8 +22,8 @@ type PointColumn struct {
 var PointColumns = append([]PointColumn{
 	{"shot", "", "path of the shot in the night", func(_ *Analysis, r *ledger.Row, _ *curve.Point) string { return r.Shot }},
 	{"left_out", "", "why the shot takes no part, empty where it does", func(a *Analysis, r *ledger.Row, p *curve.Point) string {
-		if p != nil && !p.Independent() {
-			return "of laws and transition: " + whyByNumber
+		if p != nil && whyAside(p) != "" {
+			return "of laws and transition: " + whyAside(p)
 		}
 		return a.Chosen.why[r.Shot]
 	}},
@@ -46,7 +46,7 @@ func lawColumns() (list []PointColumn) {
 	for _, l := range curve.Laws {
 		list = append(list, PointColumn{"fraction_" + l.Name, "", "condensate fraction by the law at the shot's T/Tc0 and N: " + l.Note,
 			func(a *Analysis, _ *ledger.Row, p *curve.Point) string {
-				if p == nil {
+				if p == nil || !(p.Atoms() > 0) {
 					return ""
 				}
 				return decimal(a.Theory.Fraction(l, a.Curve.Gas.Reduced(p.Vector[curve.T], p.Atoms()), p.Atoms()))
@@ -56,7 +56,7 @@ func lawColumns() (list []PointColumn) {
 }
 
 func distance(a *Analysis, _ *ledger.Row, p *curve.Point) string {
-	if p == nil || !p.Condensed() || !p.Independent() {
+	if p == nil || !p.Comparable() {
 		return ""
 	}
 	return decimal(a.Curve.Distance(a.Theory, a.Best(), p))
@@ -64,7 +64,7 @@ func distance(a *Analysis, _ *ledger.Row, p *curve.Point) string {
 
 func entropy(of func(a *Analysis, t, n float64) float64) func(*Analysis, *ledger.Row, *curve.Point) string {
 	return func(a *Analysis, _ *ledger.Row, p *curve.Point) string {
-		if p == nil {
+		if p == nil || !(p.Atoms() > 0) {
 			return ""
 		}
 		return decimal(of(a, a.Curve.Gas.Reduced(p.Vector[curve.T], p.Atoms()), p.Atoms()))

@@ -35,16 +35,33 @@ func (a *Analysis) unstated() string {
 }
 
 func (a *Analysis) writeShots(w io.Writer) {
-	both := 0
-	for i := range a.Curve.Points {
+	fmt.Fprintf(w, "%s: %s of %d take part, %s\n", a.Night.Name, count(len(a.Chosen.Rows), "shot"), len(a.Night.Rows), a.among())
+	WriteLeftOut(w, "left out", a.Chosen.LeftOut)
+	WriteLeftOut(w, "left out of laws and transition", a.Aside)
+}
+
+// among counts kinds of shots that take part.
+func (a *Analysis) among() string {
+	both, flagged, provisional := 0, 0, 0
+	for i, r := range a.Chosen.Rows {
 		if a.Curve.Points[i].Condensed() {
 			both++
 		}
+		if len(r.Flags) > 0 {
+			flagged++
+		}
+		if r.Provisional {
+			provisional++
+		}
 	}
-	fmt.Fprintf(w, "%s: %s of %d take part, %d of them with thermal part and condensate\n",
-		a.Night.Name, count(len(a.Chosen.Rows), "shot"), len(a.Night.Rows), both)
-	WriteLeftOut(w, "left out", a.Chosen.LeftOut)
-	WriteLeftOut(w, "left out of laws and transition", a.Aside)
+	text := fmt.Sprintf("%d of them with thermal part and condensate", both)
+	if flagged > 0 {
+		text += fmt.Sprintf(", %d flagged", flagged)
+	}
+	if provisional > 0 {
+		text += fmt.Sprintf(", %d provisional until batch has run", provisional)
+	}
+	return text
 }
 
 func (a *Analysis) writeLaws(w io.Writer) {
@@ -58,12 +75,15 @@ func (a *Analysis) writeLaws(w io.Writer) {
 	fmt.Fprintln(t, "law\tchi2/shot\tmean f - law\tshare of the law\t")
 	for i, c := range a.Comparisons {
 		mark := ""
-		if i == best {
+		if i == best && a.Describes() {
 			mark = "least chi2"
 		}
 		fmt.Fprintf(t, "%s\t%.3g\t%s\t%s\t%s\n", c.Law.Title, c.PerDof(), format(c.Deviation), format(c.Amplitude), mark)
 	}
 	t.Flush()
+	for _, line := range a.doubts() {
+		fmt.Fprintln(w, report.Printable(line))
+	}
 	fmt.Fprintln(w, "share: x in f = ideal + x (law - ideal), 0 for the ideal gas and 1 for the law")
 	for _, c := range a.Comparisons {
 		fmt.Fprintf(w, "%s: %s\n", c.Law.Title, c.Law.Note)
@@ -74,15 +94,12 @@ func (a *Analysis) writeLaws(w io.Writer) {
 }
 
 // plainFormCaution goes with plainForm; the figures are those of simulated semi-ideal nights.
-const plainFormCaution = "the fit gave the thermal part its ideal form. Where a condensate keeps thermal atoms out of the middle, that form reads T some 5 to 10 % low, and share and Tc lean on it; thermal = \"semi-ideal\" in [fit] of the settings fits such clouds"
+const plainFormCaution = "the thermal part exceeds saturation as that of a semi-ideal gas does, and the fit gave it its ideal form. Where a condensate keeps thermal atoms out of the middle, that form reads T some 5 to 10 % low, and share and Tc lean on it; thermal = \"semi-ideal\" in [fit] of the settings fits such clouds"
 
-// plainForm says that an interacting law is the best one while thermal parts were fitted
-// without the field of the condensate.
+// plainForm says that thermal parts were fitted without the field of the condensate while
+// they exceed saturation as those that feel it do.
 func (a *Analysis) plainForm() bool {
-	if a.Best().Name == curve.Ideal || a.Best().Name == curve.FiniteSize {
-		return false
-	}
-	return slices.ContainsFunc(a.Chosen.Rows, func(r *ledger.Row) bool {
+	return a.Transition.Saturation.Excessive() && slices.ContainsFunc(a.Chosen.Rows, func(r *ledger.Row) bool {
 		thermal, _, both := strings.Cut(r.Words["form"], "+")
 		return both && (thermal == "bose" || thermal == "gauss")
 	})

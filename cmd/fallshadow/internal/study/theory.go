@@ -130,7 +130,7 @@ func (p *plotting) atomNumbers() (low, mid, high float64) {
 	var list []float64
 	for _, only := range []bool{true, false} {
 		for i := range p.Curve.Points {
-			if pt := &p.Curve.Points[i]; !only || pt.Condensed() {
+			if pt := &p.Curve.Points[i]; pt.Atoms() > 0 && (!only || pt.Condensed()) {
 				list = append(list, pt.Atoms())
 			}
 		}

@@ -50,7 +50,12 @@ func (n *Night) thumbnails(ctx context.Context, names []string) (map[string]temp
 }
 
 // thumbnail draws one shot, nothing where it cannot be read.
-func (n *Night) thumbnail(ctx context.Context, s imageio.Shot, layout imageio.Layout) template.URL {
+func (n *Night) thumbnail(ctx context.Context, s imageio.Shot, layout imageio.Layout) (uri template.URL) {
+	defer func() {
+		if recover() != nil { // a fault in a reader must not cost the report
+			uri = ""
+		}
+	}()
 	raw, err := imageio.Read(ctx, n.Root, s, layout)
 	if err != nil {
 		return ""
@@ -59,11 +64,11 @@ func (n *Night) thumbnail(ctx context.Context, s imageio.Shot, layout imageio.La
 	if img == nil {
 		return ""
 	}
-	uri, err := dataURI(shrunk(img, thumbnailSide))
+	drawn, err := dataURI(shrunk(img, thumbnailSide))
 	if err != nil {
 		return ""
 	}
-	return uri
+	return drawn
 }
 
 // thumbnailSide is the largest side of a thumbnail in pixels.
