@@ -53,8 +53,9 @@ func by(values []float64, key func(float64) float64) []Group {
 // explain the scatter; else values that are small and have small errors for that would draw
 // it down (the random effects of R. DerSimonian, N. Laird, Control. Clin. Trials 7, 177 (1986)).
 type Mean struct {
-	Count  int     // values that have an error
-	V, Err float64 // Err from the errors alone
+	Count int // values that have an error
+	// Err is 1/√Σ1/(err² + Own²): what the values scatter beyond their errors is in it.
+	V, Err float64
 	// Chi2 is the least Σ(v−V)²/err², of Count−1 degrees of freedom: above one each the values
 	// scatter by more than their errors, so that the machine is the limit and not the camera.
 	Chi2 float64
@@ -98,12 +99,12 @@ func MeanOf(values, errs []float64, places []int) Mean {
 	return m
 }
 
-// weighted returns the mean with weights 1/(error² + own) and its error from the errors.
+// weighted returns the mean with weights 1/(error² + own) and its error.
 func weighted(v, squares []float64, own float64) (mean, err float64) {
-	var w, wv, ww float64
+	var w, wv float64
 	for i := range v {
 		k := 1 / (squares[i] + own)
-		w, wv, ww = w+k, wv+k*v[i], ww+k*k*squares[i]
+		w, wv = w+k, wv+k*v[i]
 	}
-	return wv / w, math.Sqrt(ww) / w
+	return wv / w, 1 / math.Sqrt(w)
 }

@@ -109,7 +109,7 @@ func TestMeanOf(t *testing.T) {
 	}{
 		{[]float64{10, 11, 99}, []float64{1, 2, nan}, 10.2, math.Sqrt(0.8), 0.2, math.Sqrt(0.2), 0, 1 / math.Sqrt2},
 		// Own² is 12.5 − 2.5; the weights are 1/11 and 1/14.
-		{[]float64{10, 15, nan}, []float64{1, 2, 1}, (10*14 + 15*11) / 25., math.Sqrt(14*14+11*11*4) / 25, 5, math.Sqrt(5), math.Sqrt(10), 5 / math.Sqrt2},
+		{[]float64{10, 15, nan}, []float64{1, 2, 1}, (10*14 + 15*11) / 25., math.Sqrt(11 * 14 / 25.), 5, math.Sqrt(5), math.Sqrt(10), 5 / math.Sqrt2},
 	} {
 		m := MeanOf(c.values, c.errs, []int{0, 1, 2})
 		within(t, "mean", m.V, c.mean, 1e-12)
@@ -122,6 +122,9 @@ func TestMeanOf(t *testing.T) {
 			t.Errorf("%d values count", m.Count)
 		}
 	}
+	// Of like errors that explain little, it is the spread over √n.
+	m := MeanOf([]float64{90, 100, 110, 120}, []float64{1, 1, 1, 1}, []int{0, 1, 2, 3})
+	within(t, "error by the scatter", m.Err, m.Spread/2, 1e-12)
 	if m := MeanOf([]float64{1}, []float64{0}, []int{0}); m.Count != 0 || !math.IsNaN(m.V) {
 		t.Errorf("mean of nothing: %+v", m)
 	}

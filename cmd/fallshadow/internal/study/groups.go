@@ -55,7 +55,7 @@ func (a *Analysis) Groups(g Grouping) ([]curve.Group, error) {
 
 // mean averages a series over places. Where a value has no error, as the fraction of a shot
 // without a condensate has none, it is the plain mean, so that every shot counts; its error
-// is that of the values that have one, NaN without any.
+// is that of the values that have one and of what all scatter beyond, NaN without either.
 func (s series) mean(places []int) curve.Mean {
 	squares, all := 0.0, true
 	for _, i := range places {
@@ -72,8 +72,12 @@ func (s series) mean(places []int) curve.Mean {
 	ones := slices.Repeat([]float64{1}, len(s.v))
 	m := curve.MeanOf(s.v, ones, places)
 	m.Err, m.Chi2, m.Own = math.NaN(), math.NaN(), math.NaN()
-	if squares > 0 {
-		m.Err = math.Sqrt(squares) / float64(m.Count)
+	variance := squares // of the sum
+	if m.Count > 1 {
+		variance = math.Max(squares, float64(m.Count)*m.Spread*m.Spread)
+	}
+	if variance > 0 {
+		m.Err = math.Sqrt(variance) / float64(m.Count)
 	}
 	return m
 }
@@ -89,7 +93,7 @@ func (a *Analysis) WriteGroups(w io.Writer, by Grouping) error {
 	if err != nil {
 		return err
 	}
-	fmt.Fprintf(w, "\ngroups by %s: weighted means; scatter of the shots over what their errors let expect\n", by)
+	fmt.Fprintf(w, "\ngroups by %s: weighted means, what shots scatter beyond their errors in the error of the mean; scatter of the shots over what their errors let expect\n", by)
 	t := tabwriter.NewWriter(w, 0, 0, 2, ' ', 0)
 	fmt.Fprint(t, "at\tshots\t")
 	var all []series

@@ -164,7 +164,7 @@ func (p *plotting) points() error {
 		pt.Y, pt.YErr = append(pt.Y, y.V), append(pt.YErr, y.Err)
 		pt.YTotal = append(pt.YTotal, y.Spread)
 	}
-	p.drawn.Note = fmt.Sprintf("%s drawn as the means of %s: thick bars are errors of the mean, thin ones the spread of the shots", count(len(p.places), "shot"), count(len(grouping), "group"))
+	p.drawn.Note = fmt.Sprintf("%s drawn as the means of %s: thick bars are errors of the mean, with what the shots scatter beyond their own, thin ones the spread of the shots", count(len(p.places), "shot"), count(len(grouping), "group"))
 	p.figure.Points = append(p.figure.Points, pt)
 	return nil
 }

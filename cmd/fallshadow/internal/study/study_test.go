@@ -365,6 +365,11 @@ func TestGroups(t *testing.T) {
 	if !strings.Contains(b.String(), "N scatters") || !strings.Contains(b.String(), "the machine") {
 		t.Errorf("atom numbers drawn with 10 %% are not laid to the machine:\n%s", &b)
 	}
+	// The plain mean where a value has no error: the larger of errors and scatter.
+	for e, want := range map[float64]float64{0.001: math.Sqrt(0.05/3) / 2, 0.5: 0.5 * math.Sqrt(3) / 4} {
+		s := series{v: []float64{0, 0.1, 0.2, 0.3}, err: []float64{math.NaN(), e, e, e}}
+		within(t, "error of a plain mean", s.mean([]int{0, 1, 2, 3}).Err, want, 1e-12)
+	}
 	for text, want := range map[string]Grouping{"EVAP": {"EVAP", 0}, "t_reduced:0.05": {"t_reduced", 0.05}} {
 		var g Grouping
 		if err := g.UnmarshalText([]byte(text)); err != nil || g != want || g.String() != text {
