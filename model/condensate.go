@@ -59,13 +59,6 @@ func RadiiSquared(mu, mass float64, trap Trap, b [3]float64) (r [3]float64) {
 	return r
 }
 
-// MuFromRadius inverts Radii along one axis of frequency omega (rad/s) after expansion
-// by b: μ = m ω² r²/2b².
-func MuFromRadius(r, omega, b, mass float64) float64 {
-	v := omega * r / b
-	return mass * v * v / 2
-}
-
 // PeakDensity returns the Thomas-Fermi density μ/g in 1/m³ at the centre of the trap.
 func PeakDensity(mu, mass, a float64) (float64, error) {
 	if err := repulsive(a); err != nil {

@@ -31,7 +31,6 @@ func TestCondensateExample(t *testing.T) {
 			near(t, what+" R"+axis, radii[i], row.num(t, "R"+axis+"_um")*1e-6, 1e-8)
 			near(t, what+" b"+axis, b[i], row.num(t, "b"+axis), 1e-8)
 			near(t, what+" R(t)"+axis, math.Sqrt(squared[i]), row.num(t, "R"+axis+"t_um")*1e-6, 1e-8)
-			near(t, what+" mu from R"+axis, MuFromRadius(math.Sqrt(squared[i]), trap.Omega[i], b[i], atom.Mass), mu, 1e-14)
 		}
 		peak := CondensatePeakColumn(n0, Shape{XX: squared[0], YY: squared[1]})
 		near(t, what+" column", peak, row.num(t, "A_per_um2")*1e12, 1e-8)

@@ -21,12 +21,6 @@ func ThermalVariances(t, mass float64, trap Trap, b [3]float64) (v [3]float64) {
 	return v
 }
 
-// TemperatureFromVariance inverts ThermalVariances along one axis of frequency omega
-// (rad/s): T = m σ²(ω/b)²/k in K.
-func TemperatureFromVariance(variance, omega, b, mass float64) float64 {
-	return mass * variance * (omega / b) * (omega / b) / KB
-}
-
 // ThermalNumber returns the number of thermal atoms g_3(e^−alpha)(kT/ħω̄)³; at alpha = 0
 // that is the saturated number.
 func ThermalNumber(t, alpha float64, trap Trap) float64 {
