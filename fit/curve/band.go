@@ -11,9 +11,6 @@ import (
 // deviation each: the law as the wrong settings would show it.
 type Band struct {
 	T, Low, High []float64
-	// Unstated names the calibrations that move the points and whose uncertainty nobody
-	// stated; they are not in the band.
-	Unstated []string
 }
 
 // pull is by how much one calibration moves the points near t.
@@ -24,18 +21,15 @@ const pullPlaces = 40
 
 // CalibrationBand returns the band of a law for n atoms at the given t = T/Tc⁰. Calibration
 // errors are common to a night: alpha moves all t by N^(−1/3), a wrong counts per Isat the
-// fractions too. The law moved by each known one, up and down, departs from the law at
+// fractions too. Those of unknown uncertainty are not in it. The law moved by each known one, up and down, departs from the law at
 // rest; the squares of the departures add up on either side.
 func (n *Night) CalibrationBand(th *Theory, l Law, atoms float64, t []float64) Band {
 	b := Band{T: t, Low: make([]float64, len(t)), High: make([]float64, len(t))}
 	for c, calibration := range n.Calibrations {
-		pulls := n.pulls(c)
 		if !calibration.Known {
-			if slices.ContainsFunc(pulls, func(p pull) bool { return math.Abs(p.logT)+math.Abs(p.fraction) > tolerance }) {
-				b.Unstated = append(b.Unstated, calibration.Name)
-			}
 			continue
 		}
+		pulls := n.pulls(c)
 		for i, x := range t {
 			at, rest := pullAt(pulls, x), th.Fraction(l, x, atoms)
 			for _, sign := range []float64{1, -1} {

@@ -75,8 +75,9 @@ func (q Quality) scale() float64 {
 	return 1
 }
 
-// tolerance is the relative change under a calibration of unknown uncertainty beyond which
-// an estimate has no calibration error (absolute where the estimate should be 0).
+// tolerance is the change under a calibration of unknown uncertainty beyond which an estimate
+// has no calibration error: absolute, since the estimates are logarithms, and ratios and
+// shares of the order of one; relative to those above 1.
 const tolerance = 1e-4
 
 // problem fits the parameters θ of a relation to points; the residuals are the signed
@@ -313,7 +314,7 @@ func (p *problem) calibrate(theta, cov []float64, out []Estimate, ignore []strin
 			for b := range n {
 				change -= cov[a*n+b] * g[b]
 			}
-			sums[a].add(calibration.Known, change, tolerance*math.Abs(out[a].V))
+			sums[a].add(calibration.Known, change, tolerance*math.Max(1, math.Abs(out[a].V)))
 		}
 	}
 	for a := range out {

@@ -191,7 +191,8 @@ func (g *Gas) predictions(n float64) []Prediction {
 		Prediction{"finite size and beyond mean field", "with the measured second order 46(5) (a/lambda)^2 of Smith et al. (2011), a coefficient quoted from memory", 1 + finite + beyond})
 }
 
-// Sigmas returns by how many of its errors a measured ratio is above a predicted one.
+// Sigmas returns by how many of its errors a measured ratio is above a predicted one, of the
+// statistical ones where the others are not known.
 func (p Prediction) Sigmas(measured Estimate) float64 {
 	return (measured.V - p.Ratio) / measured.Error()
 }

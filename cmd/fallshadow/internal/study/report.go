@@ -59,6 +59,7 @@ type page struct {
 	LeftOut            []LeftOut
 	MoreLeftOut        int
 	Settings, Unstated string
+	SigmasOf           string
 }
 
 type lawLine struct {
@@ -174,6 +175,7 @@ func (a *Analysis) fillTransition(p *page) {
 	for _, o := range t.Onsets {
 		p.Transition = append(p.Transition, fmt.Sprintf("by onset as %s: Tc over that of the law %s, chi2/dof %s", o.Law.Title, format(o.Ratio), perDof(o.Quality)))
 	}
+	p.SigmasOf = a.sigmasOf()
 	if m := a.Measured(); m != nil {
 		for _, q := range t.Predictions {
 			p.Predictions = append(p.Predictions, predictionLine{q.Name, fmt.Sprintf("%.4f", q.Ratio), sigmas(q.Sigmas(*m)), q.Note})

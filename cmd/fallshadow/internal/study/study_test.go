@@ -177,6 +177,29 @@ func TestAnalyse(t *testing.T) {
 	}
 }
 
+// TestSigmasOf: where an uncertainty was not stated, Tc is compared in statistical errors, and
+// that is said. A gas that cannot exceed saturation is said nothing of its excess.
+func TestSigmasOf(t *testing.T) {
+	for uncertainty, want := range map[string]string{", err = 0.1": "errors, statistical and of the calibrations", "": "statistical errors only, since"} {
+		n := made(t, 40)
+		n.Settings = lab(t, strings.Replace(laboratory, "value = 20.0"+", err = 0.1", "value = 20.0"+uncertainty, 1))
+		var err error
+		if n.lab, err = labOf(n.Settings); err != nil {
+			t.Fatal(err)
+		}
+		var b bytes.Buffer
+		if err := analysed(t, n).WriteText(&b); err != nil {
+			t.Fatal(err)
+		}
+		if !strings.Contains(b.String(), "above it in its "+want) || !strings.Contains(written(t, n), "Measured above it: in "+want) {
+			t.Errorf("no %q:\n%s", want, &b)
+		}
+	}
+	if text := excess(&curve.Saturation{Excess: curve.Estimate{V: math.NaN()}}); text != "" {
+		t.Errorf("an excess of nothing is %q", text)
+	}
+}
+
 // TestSelect: every shot that takes no part is listed with the reason.
 func TestSelect(t *testing.T) {
 	n := made(t, 12)

@@ -124,7 +124,7 @@ func (a *Analysis) writeTransition(w io.Writer) {
 	if measured == nil {
 		return
 	}
-	fmt.Fprintf(w, "theory for Tc/Tc0 of %.3g atoms, and how far the value by saturation is above it in its errors:\n", t.Atoms)
+	fmt.Fprintf(w, "theory for Tc/Tc0 of %.3g atoms, and how far the value by saturation is above it in its %s:\n", t.Atoms, a.sigmasOf())
 	tab := tabwriter.NewWriter(w, 0, 0, 2, ' ', 0)
 	for _, p := range t.Predictions {
 		fmt.Fprintf(tab, "  %s\t%.4f\t%s\t%s\n", p.Name, p.Ratio, sigmas(p.Sigmas(*measured)), p.Note)
@@ -146,6 +146,14 @@ func (a *Analysis) Measured() *curve.Estimate {
 		return nil
 	}
 	return &a.Transition.Saturation.Ratio
+}
+
+// sigmasOf names the errors in which the measured Tc is compared with theory.
+func (a *Analysis) sigmasOf() string {
+	if m := a.Measured(); m != nil && math.IsNaN(m.Cal) {
+		return "statistical errors only, since settings that move it have no stated uncertainty"
+	}
+	return "errors, statistical and of the calibrations"
 }
 
 func short(v float64) string {
