@@ -4,6 +4,7 @@ import (
 	"context"
 	"errors"
 	"math"
+	"slices"
 
 	"fallshadow/model"
 )
@@ -13,9 +14,20 @@ const (
 	Alpha            = "alpha"
 	Magnification    = "magnification"
 	ScatteringLength = "scattering_length_a0"
+	Sight            = "sight_hz"
 )
 
-var suspects = []string{Alpha, Magnification, ScatteringLength}
+// suspects returns the settings that may be wrong: the frequency along the line of sight only
+// where the points tell what it does to them, since that sets it apart from alpha.
+func (n *Night) suspects() []string {
+	list := []string{Alpha, Magnification, ScatteringLength}
+	for _, c := range n.Calibrations {
+		if c.Name == Sight && c.Step != 0 {
+			list = append(list, Sight)
+		}
+	}
+	return list
+}
 
 // exponents says with which power of a setting the measured numbers go where no calibration
 // of a point tells it: a cross-section σ0/alpha, and lengths over the magnification.
@@ -29,12 +41,12 @@ var exponents = map[string]Vector{
 // wrong by a factor.
 type Factor struct {
 	Law     string // Ideal: N_thermal is the saturated number; SemiIdeal: it has the excess
-	Setting string // one of suspects, or empty: none of them is wrong
+	Setting string // empty: none is wrong
 	// Factor is what the setting is to be multiplied with.
 	Factor Estimate
 	Quality
-	// Total is χ² where the other settings whose errors are known, suspects apart, may be off
-	// too, with a standard deviation of each for one of χ².
+	// Total is χ² where the other settings whose errors are known, alpha and the magnification
+	// apart, may be off too, with a standard deviation of each for one of χ².
 	Total float64
 }
 
@@ -62,6 +74,10 @@ type Factors struct {
 	// was not found.
 	Lead  float64
 	Rival string
+	// Twin is the frequency along the line of sight where alpha is best and the two are not
+	// told apart, as after a long flight; it is no Rival then. Alpha, known less well as a
+	// rule, comes first of them.
+	Twin *Factor
 	// Mu is the mean of μ from the radii over μ from N0, Saturated that of N_thermal over its
 	// number by the law of the best hypothesis, both as measured.
 	Mu, Saturated Estimate
@@ -77,17 +93,16 @@ const leastParameter = 30
 // ErrNoFactor says that a night does not tell a number factor.
 var ErrNoFactor = errors.New("a number factor needs at least three shots with a thermal part and a condensate, T known to a third and not computed from the number, and a repulsive gas whose condensate is large (N0 a over the oscillator length above 30)")
 
-// FindFactor fits one common factor of alpha, of the magnification or of the scattering length
-// to the night: with it
-// μ from the radii and μ from N0 agree, and N_thermal and the number that T lets it have,
+// FindFactor fits one common factor of a setting to the night: with it μ from the radii and μ
+// from N0 agree, and N_thermal and the number that T lets it have,
 //
 //	ln μ = ln μ_TF(N0),   ln N_thermal = ln N_sat(T) [+ ln(1 + e(μ/kT)) in a semi-ideal gas].
 //
 // N goes with alpha and both lengths squared, T and μ with lengths squared, so that alpha
 // moves the two ratios by powers −2/5 and 1, the magnification by −6/5 and 4: near enough
 // to one another that weak data cannot tell them apart, see Lead. The scattering length moves
-// them by −2/5 and 0; a frequency along the line of sight does what alpha does, and is no
-// hypothesis of its own. The calibration error leaves out the setting itself.
+// them by −2/5 and 0, a frequency along the line of sight as alpha does, but for what it does
+// to the expansion in a short flight. The calibration error leaves out the setting itself.
 func (n *Night) FindFactor(ctx context.Context) (Factors, error) {
 	points := n.pick(func(p *Point) bool {
 		return p.Comparable() && p.radii() && p.relative(T) < 1./3 &&
@@ -98,7 +113,7 @@ func (n *Night) FindFactor(ctx context.Context) (Factors, error) {
 	}
 	var f Factors
 	for _, law := range []string{Ideal, SemiIdeal} {
-		for _, setting := range append([]string{""}, suspects...) {
+		for _, setting := range append([]string{""}, n.suspects()...) {
 			h, err := n.factor(ctx, points, law, setting)
 			if err != nil {
 				return Factors{}, err
@@ -123,21 +138,40 @@ func (f *Factors) insert(h Factor) {
 	f.List[at] = h
 }
 
+// lead finds the Twin and the Rival of the best hypothesis.
 func (f *Factors) lead() {
-	best := f.List[0]
 	f.Lead = math.NaN()
 	for _, h := range f.List {
 		if !h.Factor.Found() {
 			return
 		}
 	}
+	f.pair()
+	best := f.List[0]
 	for _, h := range f.List {
-		if h.Setting != best.Setting && h.Setting != "" {
-			scale := best.scale()
-			f.Lead, f.Rival = (h.Total-best.Total)/(scale*scale), h.Setting
+		if h.Setting != best.Setting && h.Setting != "" && (f.Twin == nil || h.Setting != f.Twin.Setting) {
+			f.Lead, f.Rival = (h.Total-best.Total)/best.unit(), h.Setting
 			return
 		}
 	}
+}
+
+// unit is the scatter in which a Lead is told.
+func (q Quality) unit() float64 { return q.scale() * q.scale() }
+
+// pair puts alpha first, with its Twin, where one of the two is best and they are not told
+// apart.
+func (f *Factors) pair() {
+	of := func(setting string) int {
+		return slices.IndexFunc(f.List, func(h Factor) bool { return h.Setting == setting })
+	}
+	alpha, sight := of(Alpha), of(Sight)
+	if min(alpha, sight) != 0 || math.Abs(f.List[alpha].Total-f.List[sight].Total) >= DecisiveLead*f.List[0].unit() {
+		return
+	}
+	h, twin := f.List[alpha], f.List[sight]
+	f.List = slices.Insert(slices.Delete(f.List, alpha, alpha+1), 0, h)
+	f.Twin = &twin
 }
 
 func (n *Night) factor(ctx context.Context, points []*Point, law, setting string) (Factor, error) {
@@ -145,7 +179,7 @@ func (n *Night) factor(ctx context.Context, points []*Point, law, setting string
 	if setting == "" {
 		p := n.ratioProblem(points, law, unchanged)
 		h.Quality = p.quality(nil)
-		h.Total = p.total(nil, suspects)
+		h.Total = p.total(nil, []string{Alpha, Magnification})
 		return h, nil
 	}
 	p := n.ratioProblem(points, law, n.corrected(points, setting))
@@ -155,24 +189,24 @@ func (n *Night) factor(ctx context.Context, points []*Point, law, setting string
 	}
 	h.Factor, h.Quality, h.Total = e[0].exp(), q, math.NaN()
 	if e[0].Found() {
-		h.Total = p.total([]float64{e[0].V}, suspects)
+		h.Total = p.total([]float64{e[0].V}, []string{Alpha, Magnification, setting})
 	}
 	return h, nil
 }
 
 // correction returns the numbers of a point as another setting would show them, and the
-// logarithm of the scattering length over that of the settings.
-type correction func(p *Point, theta []float64, v Vector) (Vector, float64)
+// logarithms of the factors on μ_TF and N_sat.
+type correction func(p *Point, theta []float64, v Vector) (c Vector, mu, saturated float64)
 
-func unchanged(_ *Point, _ []float64, v Vector) (Vector, float64) { return v, 0 }
+func unchanged(_ *Point, _ []float64, v Vector) (Vector, float64, float64) { return v, 0, 0 }
+
+// scaling says with which powers of a setting μ_TF and N_sat go, (N0 a)^(2/5) ω̄^(6/5) and ω̄^−3.
+var scaling = map[string][2]float64{ScatteringLength: {0.4, 0}, Sight: {0.4, -1}}
 
 // corrected returns the correction by e^θ of a setting.
 func (n *Night) corrected(points []*Point, setting string) correction {
-	if setting == ScatteringLength {
-		return func(_ *Point, theta []float64, v Vector) (Vector, float64) { return v, theta[0] }
-	}
-	power := n.exponents(points, setting)
-	return func(p *Point, theta []float64, v Vector) (Vector, float64) {
+	power, by := n.exponents(points, setting), scaling[setting]
+	return func(p *Point, theta []float64, v Vector) (Vector, float64, float64) {
 		for i, k := range power[p] {
 			if setting == Alpha {
 				// σ0 n = alpha ln(I0/I) + (I0−I)/Isat is a straight line in alpha.
@@ -181,16 +215,16 @@ func (n *Night) corrected(points []*Point, setting string) correction {
 				v[i] *= math.Exp(theta[0] * k)
 			}
 		}
-		return v, 0
+		return v, by[0] * theta[0], by[1] * theta[0]
 	}
 }
 
 // ratioProblem is that of the two relations after a correction of the measured numbers.
 func (n *Night) ratioProblem(points []*Point, law string, correct correction) *problem {
 	return n.problem(points, relation{size: 2, mu: true, eval: func(p *Point, v *Vector, g *scales, theta, h []float64) {
-		c, length := correct(p, theta, *v)
-		h[0] = math.Log(c[Mu]/g.mu(c[Condensate])) - 0.4*length
-		h[1] = math.Log(c[Thermal]/g.saturated(c[T])) - excessOf(law, &c)
+		c, mu, saturated := correct(p, theta, *v)
+		h[0] = math.Log(c[Mu]/g.mu(c[Condensate])) - mu
+		h[1] = math.Log(c[Thermal]/g.saturated(c[T])) - saturated - excessOf(law, &c)
 	}})
 }
 
@@ -218,7 +252,7 @@ func (n *Night) exponents(points []*Point, setting string) map[*Point]Vector {
 			var own Vector
 			for i := range own {
 				own[i] = p.Shifts[c][i] / p.Vector[i] / math.Expm1(calibration.Step)
-				if setting == Magnification {
+				if setting != Alpha {
 					own[i] = p.logChange(c, i) / calibration.Step
 				}
 			}

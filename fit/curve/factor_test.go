@@ -25,7 +25,7 @@ func TestTotal(t *testing.T) {
 	}
 	p := n.problem(n.pick(func(*Point) bool { return true }), relation{size: 1, eval: func(_ *Point, v *Vector, _ *scales, _, h []float64) { h[0] = v[Thermal] - level }})
 	within(t, "chi2", p.quality(nil).Chi2, rr, 1e-6)
-	within(t, "total", p.total(nil, suspects), rr-rd*rd/(1+dd), 1e-4)
+	within(t, "total", p.total(nil, []string{Alpha, Magnification}), rr-rd*rd/(1+dd), 1e-4)
 	within(t, "total of none", p.total(nil, []string{"known", Alpha}), rr, 1e-6)
 }
 
@@ -81,4 +81,45 @@ func TestShiftBelowNothing(t *testing.T) {
 	at := p.shifted(0, p.Vector)[0]
 	p.Shifts[0][0] = -50 - 1e-9
 	within(t, "where the halves meet", p.shifted(0, p.Vector)[0], at, 1e-8)
+}
+
+// TestSightFrequency: one that is a tenth high is named where the expansion hangs on it, as in
+// a short flight; after a long one alpha is, and the frequency is told to mend the night too.
+func TestSightFrequency(t *testing.T) {
+	ctx, g := context.Background(), rubidium(t)
+	th := NewTheory(g, 6e4, 1.5e5)
+	for _, power := range []float64{0.3, 0} { // with which mu goes
+		named := 0
+		for seed := range uint64(20) {
+			n := draw(t, g, th, Ideal, scan(40), rand.New(rand.NewPCG(seed, 12)))
+			n.Gas.Trap.Omega[2] *= 1.1
+			const step = 0.01
+			moved := n.Gas
+			moved.Trap.Omega[2] *= math.Exp(step)
+			n.Calibrations = []Calibration{{Name: Sight, Gas: moved, Step: step}}
+			for i := range n.Points {
+				p := &n.Points[i]
+				p.Vector[Mu] *= math.Pow(1.1, power)
+				p.Shifts = []Vector{{Mu: p.Vector[Mu] * math.Expm1(step*power)}}
+			}
+			f, err := n.FindFactor(ctx)
+			if err != nil {
+				t.Fatal(err)
+			}
+			best := f.List[0]
+			want := 1 / 1.1
+			if power == 0 {
+				if best.Setting == Alpha && f.Twin != nil && f.Decided() {
+					named++
+					within(t, "factor of the twin", f.Twin.Factor.V, want, 4*f.Twin.Factor.Err)
+				}
+			} else if best.Setting == Sight && f.Twin == nil && f.Decided() {
+				named++
+				within(t, "factor of the frequency", best.Factor.V, want, 4*best.Factor.Err)
+			}
+		}
+		if named < 18 {
+			t.Errorf("power %g: named in %d of 20 nights", power, named)
+		}
+	}
 }

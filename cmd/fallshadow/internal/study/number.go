@@ -12,8 +12,8 @@ import (
 	"fallshadow/fit/curve"
 )
 
-// WriteNumber looks for one common factor of alpha, of the magnification or of the scattering
-// length in the chosen shots and words what it finds, with the setting to paste where one is named.
+// WriteNumber looks for one common factor of alpha, of the magnification, of the scattering
+// length or of the frequency along the line of sight in the chosen shots and words what it finds, with the setting to paste where one is named.
 func (n *Night) WriteNumber(ctx context.Context, w io.Writer, c *Chosen) error {
 	night := n.curveNight(c.Rows)
 	tied := aside(night)
@@ -75,26 +75,34 @@ const (
 )
 
 // writeUnmended says that a common factor is not what is wrong.
-func (n *Night) writeUnmended(w io.Writer, best *curve.Factor, excessive bool) {
+func writeUnmended(w io.Writer, best *curve.Factor) {
 	what := "none"
 	if best.Setting != "" {
 		what = best.Setting + " times " + format(best.Factor)
 	}
 	fmt.Fprintf(w, "no single factor mends the night: with the best, %s, chi2 is still %.3g a degree of freedom, where about 1 is expected; look at the ratios that check prints and at the flags\n", what, best.TotalPerDof())
-	if excessive && n.Settings.Fit.Thermal != "semi-ideal" {
-		fmt.Fprintf(w, "the thermal part exceeds saturation as that of a semi-ideal gas does, and was fitted as an ideal one (fit.thermal = %q): if thermal atoms felt the condensate, T is low and their number above saturation; put thermal = \"semi-ideal\" into [fit], run batch, and calibrate once more\n", n.Settings.Fit.Thermal)
+}
+
+// scattered says that shots differ by more than their errors, where they do.
+func scattered(best *curve.Factor) string {
+	if best.TotalPerDof() <= names {
+		return ""
 	}
+	return fmt.Sprintf("; but shots differ by more than that, chi2 is %.3g a degree of freedom", best.TotalPerDof())
 }
 
 // writeNamed says which setting it is, if it can be told, and what to write.
 func (n *Night) writeNamed(w io.Writer, f curve.Factors, excessive bool) error {
 	best := f.List[0]
 	fmt.Fprintln(w)
+	if excessive && n.Settings.Fit.Thermal != "semi-ideal" {
+		fmt.Fprintf(w, "the thermal part exceeds saturation as that of a semi-ideal gas does, and was fitted as an ideal one (fit.thermal = %q): if thermal atoms felt the condensate, T is low and their number above saturation; put thermal = \"semi-ideal\" into [fit], run batch, and calibrate once more\n", n.Settings.Fit.Thermal)
+	}
 	switch {
 	case !(best.TotalPerDof() <= mends):
-		n.writeUnmended(w, &best, excessive)
+		writeUnmended(w, &best)
 	case !f.Wrong():
-		fmt.Fprintln(w, "no common factor is needed: mu from the radii and from N0 and the thermal numbers agree within the errors of the shots and of the settings")
+		fmt.Fprintf(w, "no common factor is needed: mu from the radii and from N0 and the thermal numbers agree within the errors of the shots and of the settings%s\n", scattered(&best))
 	case math.IsNaN(f.Lead):
 		fmt.Fprintln(w, "something is off by a common factor, but no setting is named: the minimum of a hypothesis above was not found")
 	case !f.Decided():
@@ -115,6 +123,8 @@ func (n *Night) writeSetting(w io.Writer, best *curve.Factor, f *curve.Factors) 
 		setting, table = n.Settings.Camera.Magnification, "camera"
 	case curve.ScatteringLength:
 		setting, table, others = n.Settings.Atom.ScatteringLengthA0, "atom", "trap frequencies and flight"
+	case curve.Sight:
+		setting, table, others = n.Settings.Trap.SightHz, "trap", "the other trap frequencies, flight and scattering length"
 	}
 	note := ""
 	if math.IsNaN(best.Factor.Cal) {
@@ -122,8 +132,8 @@ func (n *Night) writeSetting(w io.Writer, best *curve.Factor, f *curve.Factors) 
 	}
 	fmt.Fprintf(w, "%s fits better than %s, by %.1f in chi2: if %s are right, it should be %s times the %s of the settings. The error below has a twentieth of the correction in it for going so far; put it in, run batch, and calibrate once more.\n",
 		best.Setting, f.Rival, f.Lead, others, format(best.Factor), decimal(setting.Value))
-	if best.Setting == curve.Alpha {
-		fmt.Fprintln(w, "A sight_hz that is to be multiplied with the same factor looks just alike.")
+	if f.Twin != nil {
+		fmt.Fprintf(w, "%s times %s mends the night as well: make sure of the trap frequencies before you change %s.\n", f.Twin.Setting, format(f.Twin.Factor), best.Setting)
 	}
 	value, sigma := setting.Value*best.Factor.V, setting.Value*best.Error()
 	decimals := min(max(1-int(math.Floor(math.Log10(sigma))), 0), 12)

@@ -55,6 +55,8 @@ func calibrations(lab *fit.Lab) []curve.Calibration {
 			step = math.Log(moved.Optics.Alpha / lab.Optics.Alpha)
 		case curve.Magnification:
 			step = math.Log(lab.Optics.Pixel / moved.Optics.Pixel)
+		case curve.Sight:
+			step = 3 * math.Log(moved.Trap.GeometricMean()/lab.Trap.GeometricMean())
 		}
 		list = append(list, curve.Calibration{Name: c.Name, Known: c.Known, Gas: Gas(&moved), Step: step})
 	}

@@ -489,7 +489,7 @@ func TestWriteNumber(t *testing.T) {
 		want   []string
 	}{
 		{1, []string{"no common factor is needed"}},
-		{0.9, []string{"alpha fits better than ", "if trap frequencies, flight and scattering length are right", "A sight_hz", "[probe]\nalpha = { value = 2.2"}},
+		{0.9, []string{"alpha fits better than ", "if trap frequencies, flight and scattering length are right", "sight_hz times 1.1", "make sure of the trap frequencies", "[probe]\nalpha = { value = 2.2"}},
 		{0, []string{"scattering_length_a0 fits better than ", "if trap frequencies and flight are right", "[atom]\nscattering_length_a0 = { value = 100."}},
 	} {
 		n := made(t, 120)
