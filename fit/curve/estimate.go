@@ -166,6 +166,16 @@ func (p *problem) quality(theta []float64) Quality {
 	return q
 }
 
+// far returns the points more than five errors from the relation, where it was last asked for.
+func (p *problem) far() (list []*Point) {
+	for i := range p.near {
+		if p.near[i].chi2() > 25 {
+			list = append(list, p.points[i])
+		}
+	}
+	return list
+}
+
 // mean returns the mean of the relation's first value at the measured numbers.
 func (p *problem) mean() Estimate {
 	var e Estimate

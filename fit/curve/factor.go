@@ -48,6 +48,8 @@ type Factor struct {
 	// Total is χ² where the other settings whose errors are known, alpha and the magnification
 	// apart, may be off too, with a standard deviation of each for one of χ².
 	Total float64
+	// Far are the points that are more than five errors from the hypothesis.
+	Far []*Point
 }
 
 // TotalPerDof returns Total over the degrees of freedom.
@@ -179,6 +181,7 @@ func (n *Night) factor(ctx context.Context, points []*Point, law, setting string
 	if setting == "" {
 		p := n.ratioProblem(points, law, unchanged)
 		h.Quality = p.quality(nil)
+		h.Far = p.far()
 		h.Total = p.total(nil, []string{Alpha, Magnification})
 		return h, nil
 	}
@@ -189,6 +192,7 @@ func (n *Night) factor(ctx context.Context, points []*Point, law, setting string
 	}
 	h.Factor, h.Quality, h.Total = e[0].exp(), q, math.NaN()
 	if e[0].Found() {
+		h.Far = p.far()
 		h.Total = p.total([]float64{e[0].V}, []string{Alpha, Magnification, setting})
 	}
 	return h, nil

@@ -41,6 +41,13 @@ func TestByNumber(t *testing.T) {
 		t.Errorf("they are drawn as %q, %d of them", last.Legend, len(last.X))
 	}
 
+	if d, err = a.Plot(Axes{X: DefaultX, Y: DefaultY, Group: Grouping{DefaultX, 0.1}}); err != nil || len(d.LeftOut) != 2 {
+		t.Errorf("means of groups leave out %v, %v", d.LeftOut, err)
+	}
+	if d, err = a.Plot(Axes{X: "number", Y: "T_nK", Group: Grouping{"number", 10}}); err != nil || len(d.LeftOut) != 0 {
+		t.Errorf("means of a trend leave out %v, %v", d.LeftOut, err)
+	}
+
 	for i := range n.Rows {
 		n.Rows[i].Words["form"] += ",number"
 	}
@@ -57,7 +64,7 @@ func TestByNumber(t *testing.T) {
 		t.Errorf("a night of them:\n%s", &text)
 	}
 	err = n.WriteNumber(context.Background(), io.Discard, a.Chosen)
-	if !errors.Is(err, curve.ErrNoFactor) || !strings.Contains(err.Error(), `fugacity = "number"`) {
+	if !errors.Is(err, curve.ErrNoFactor) || !strings.HasSuffix(err.Error(), "no shot tells a factor: "+whyByNumber) {
 		t.Errorf("a factor of them gives %v", err)
 	}
 	if page := written(t, n); !strings.Contains(page, "40 shots left out of laws and transition") {

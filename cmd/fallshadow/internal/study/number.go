@@ -9,6 +9,7 @@ import (
 	"strconv"
 	"text/tabwriter"
 
+	"fallshadow/cmd/fallshadow/internal/report"
 	"fallshadow/fit/curve"
 )
 
@@ -19,7 +20,10 @@ func (n *Night) WriteNumber(ctx context.Context, w io.Writer, c *Chosen) error {
 	tied := aside(night)
 	f, err := night.FindFactor(ctx)
 	if err != nil {
-		if len(tied) > 0 {
+		switch {
+		case len(tied) == len(c.Rows) && len(causes(tied)) == 1:
+			return fmt.Errorf("calibrate the number of atoms from %s: %w", n.Name, notApart{tied[0].Why})
+		case len(tied) > 0:
 			err = fmt.Errorf("%w; %s", err, mostLeft(tied))
 		}
 		if len(c.LeftOut) > 0 {
@@ -51,6 +55,12 @@ func (n *Night) WriteNumber(ctx context.Context, w io.Writer, c *Chosen) error {
 	return n.writeNamed(w, f, saturation.Excessive())
 }
 
+// notApart is the error of a night whose every shot is left out for one reason.
+type notApart struct{ why string }
+
+func (e notApart) Error() string { return "no shot tells a factor: " + e.why }
+func (e notApart) Unwrap() error { return curve.ErrNoFactor }
+
 // chi2 writes one, nothing where there is none.
 func chi2(v float64) string {
 	if math.IsNaN(v) {
@@ -81,6 +91,18 @@ func writeUnmended(w io.Writer, best *curve.Factor) {
 		what = best.Setting + " times " + format(best.Factor)
 	}
 	fmt.Fprintf(w, "no single factor mends the night: with the best, %s, chi2 is still %.3g a degree of freedom, where about 1 is expected; look at the ratios that check prints and at the flags\n", what, best.TotalPerDof())
+	if far := len(best.Far); far > 0 && 2*far <= best.Points {
+		const most = 8
+		shown, more := cut(best.Far, most)
+		text := ""
+		for _, p := range shown {
+			text += " " + p.Name
+		}
+		if more > 0 {
+			text += fmt.Sprintf(" and %d more", more)
+		}
+		fmt.Fprintln(w, report.Printable("more than five errors from it:"+text))
+	}
 }
 
 // scattered says that shots differ by more than their errors, where they do.

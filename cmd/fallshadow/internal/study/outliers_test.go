@@ -2,6 +2,7 @@ package study
 
 import (
 	"bytes"
+	"context"
 	"encoding/json"
 	"errors"
 	"math"
@@ -24,9 +25,12 @@ func TestOutlier(t *testing.T) {
 	if a.Describes() || len(a.Outliers.Places) != 1 || a.Outliers.Places[0] != 40 || !(a.Outliers.PerShot < 1.5) {
 		t.Errorf("described %v, %+v", a.Describes(), a.Outliers)
 	}
-	var text, out bytes.Buffer
-	if err := errors.Join(a.WriteText(&text), a.WriteJSON(&out)); err != nil {
+	var text, out, number bytes.Buffer
+	if err := errors.Join(a.WriteText(&text), a.WriteJSON(&out), n.WriteNumber(context.Background(), &number, a.Chosen)); err != nil {
 		t.Fatal(err)
+	}
+	if !strings.Contains(number.String(), "no single factor mends the night") || !strings.Contains(number.String(), "more than five errors from it: made_00041\n") {
+		t.Errorf("calibrate number does not name it:\n%s", &number)
 	}
 	for _, want := range []string{"condensate, 1 flagged, 1 provisional until batch has run\n", "no law describes these shots: the least chi2 a shot is ",
 		"1 shot more than 5 errors from ideal gas, 1 - t^3, to which most are nearest: made_00041 (-", ", misfit); the rest has the least chi2, ", " a shot, from ideal gas, 1 - t^3\n"} {

@@ -190,6 +190,14 @@ func (p *plotting) within(groups []curve.Group) []curve.Group {
 	for _, i := range p.places {
 		drawn[i] = true
 	}
+	if len(p.figure.Curves) > 0 { // a theory of T and N, in whose means no shot may tell its own law
+		for i := range drawn {
+			if drawn[i] && !p.Curve.Points[i].Independent() {
+				drawn[i] = false
+				p.drawn.LeftOut = append(p.drawn.LeftOut, LeftOut{Shot: p.Chosen.Rows[i].Shot, Why: whyByNumber})
+			}
+		}
+	}
 	var list []curve.Group
 	for _, g := range groups {
 		g.Places = slices.DeleteFunc(slices.Clone(g.Places), func(i int) bool { return !drawn[i] })
