@@ -7,6 +7,7 @@ import (
 	"math"
 	"slices"
 	"strconv"
+	"strings"
 	"text/tabwriter"
 
 	"fallshadow/cmd/fallshadow/internal/report"
@@ -84,25 +85,34 @@ const (
 	names = 2
 )
 
-// writeUnmended says that a common factor is not what is wrong.
-func writeUnmended(w io.Writer, best *curve.Factor) {
-	what := "none"
-	if best.Setting != "" {
-		what = best.Setting + " times " + format(best.Factor)
+// writeUnmended says that a common factor is not what is wrong, and which shots are off where
+// most of them agree with a hypothesis: that is not always the one of least chi2.
+func writeUnmended(w io.Writer, f *curve.Factors) {
+	best := &f.List[0]
+	fmt.Fprintf(w, "no single factor mends the night: with the best, %s, chi2 is still %.3g a degree of freedom, where about 1 is expected; look at the ratios that check prints and at the flags\n", wrong(best), best.TotalPerDof())
+	h := slices.MinFunc(f.List, func(a, b curve.Factor) int { return len(a.Far) - len(b.Far) })
+	if len(h.Far) == 0 || 2*len(h.Far) > h.Points {
+		return
 	}
-	fmt.Fprintf(w, "no single factor mends the night: with the best, %s, chi2 is still %.3g a degree of freedom, where about 1 is expected; look at the ratios that check prints and at the flags\n", what, best.TotalPerDof())
-	if far := len(best.Far); far > 0 && 2*far <= best.Points {
-		const most = 8
-		shown, more := cut(best.Far, most)
-		text := ""
-		for _, p := range shown {
-			text += " " + p.Name
-		}
-		if more > 0 {
-			text += fmt.Sprintf(" and %d more", more)
-		}
-		fmt.Fprintln(w, report.Printable("more than five errors from it:"+text))
+	const most = 8
+	shown, more := cut(h.Far, most)
+	var list []string
+	for _, p := range shown {
+		list = append(list, p.Name)
 	}
+	text := strings.Join(list, ", ")
+	if more > 0 {
+		text += fmt.Sprintf(" and %d more", more)
+	}
+	fmt.Fprintln(w, report.Printable(fmt.Sprintf("with %s, %d of %d are more than five errors off: %s", wrong(&h), len(h.Far), h.Points, text)))
+}
+
+// wrong words what a hypothesis takes for wrong.
+func wrong(h *curve.Factor) string {
+	if h.Setting == "" {
+		return "none"
+	}
+	return h.Setting + " times " + format(h.Factor)
 }
 
 // scattered says that shots differ by more than their errors, where they do.
@@ -122,7 +132,7 @@ func (n *Night) writeNamed(w io.Writer, f curve.Factors, excessive bool) error {
 	}
 	switch {
 	case !(best.TotalPerDof() <= mends):
-		writeUnmended(w, &best)
+		writeUnmended(w, &f)
 	case !f.Wrong():
 		fmt.Fprintf(w, "no common factor is needed: mu from the radii and from N0 and the thermal numbers agree within the errors of the shots and of the settings%s\n", scattered(&best))
 	case math.IsNaN(f.Lead):
