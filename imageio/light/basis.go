@@ -18,8 +18,8 @@ const blocksPerFrame = 8
 //
 //	Σ (A/t - Σ c_j R_j)²
 //
-// over means of 4x4 and 8x8 pixels (those count fourfold) in tiles of 16x16 pixels that
-// the mask leaves open, t the transmission, with a small ridge about equal shares. It is taken where, with coefficients from one
+// over means of 4x4 and 8x8 pixels (those count fourfold), in large pictures of 16x16, too
+// (sixteenfold), in tiles of 16x16 pixels that the mask leaves open, t the transmission, with a small ridge about equal shares. It is taken where, with coefficients from one
 // half of a checkerboard of tiles and judged on the other, both ways, it leaves less
 // than the scaled light frame of the shot under the same trial; otherwise that frame is
 // taken, scaled over the open tiles. Reference says which: "basis" or "own".

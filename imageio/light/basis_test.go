@@ -5,6 +5,7 @@ import (
 	"errors"
 	"math"
 	"slices"
+	"strconv"
 	"sync"
 	"testing"
 
@@ -16,7 +17,13 @@ import (
 // TestAgainstLeastSquares holds the coefficients from sums over tiles against a plain
 // least-squares solution, by gonum's QR, of all open blocks written out one by one.
 func TestAgainstLeastSquares(t *testing.T) {
-	const side, k = 150, 7 // tiles at the right and lower edge are not whole
+	for _, k := range []int{7, 3} { // for three frames the picture is a large one
+		t.Run(strconv.Itoa(k), func(t *testing.T) { againstLeastSquares(t, k) })
+	}
+}
+
+func againstLeastSquares(t *testing.T, k int) {
+	const side = 150 // tiles at the right and lower edge are not whole
 	s := newScene(side, side, 51).fringed(6, 0.06)
 	s.jitter, s.power = 0.35, 0.05
 	raws := s.night(k + 2)
@@ -28,6 +35,9 @@ func TestAgainstLeastSquares(t *testing.T) {
 		cloud.Transmission[i] = 1 - 0.3*math.Exp(-float64((i%side-70)*(i%side-70))/900)
 	}
 	refs := NewReferences(n, k, len(raws), loader(raws))
+	if refs.tiles.coarse != (k == 3) {
+		t.Fatal("whole tiles are in the sums, or are not")
+	}
 	frames, err := refs.nearest(context.Background(), 4)
 	if err != nil {
 		t.Fatal(err)
@@ -44,7 +54,7 @@ func TestAgainstLeastSquares(t *testing.T) {
 		row := make([]float64, k)
 		row[a] = math.Sqrt(ridge * all.blocks * eq.noise[a])
 		rows = append(rows, row...)
-		rhs = append(rhs, row[a]*all.sum/all.blocks/k)
+		rhs = append(rhs, row[a]*all.sum/all.blocks/float64(k))
 	}
 	var x mat.VecDense
 	if err := x.SolveVec(mat.NewDense(len(rhs), k, rows), mat.NewVecDense(len(rhs), rhs)); err != nil {
@@ -57,9 +67,14 @@ func TestAgainstLeastSquares(t *testing.T) {
 }
 
 // writtenOut lists light frames (over their means) and the bare atoms frame in means over
-// the 4x4 and, at twice their weight in each of four, the 8x8 blocks of open tiles.
+// the 4x4 and, at twice their weight in each of four, the 8x8 blocks of open tiles, where the picture
+// is large their 16x16, too.
 func writtenOut(frames []*lightFrame, e *imageio.Exposure, cloud Cloud, open []bool, r *References) (rows, rhs []float64) {
-	for _, size := range []int{4, 8} {
+	sizes := []int{4, 8}
+	if r.tiles.coarse {
+		sizes = append(sizes, 16)
+	}
+	for _, size := range sizes {
 		for y := 0; y+size <= e.Height/4*4; y += size {
 			for x := 0; x+size <= e.Width/4*4; x += size {
 				if !open[y/16*r.tiles.across+x/16] {
@@ -113,9 +128,9 @@ func TestMovingFringes(t *testing.T) {
 			if out.Reference != "basis" {
 				t.Errorf("%s, shot %d: reference %s", c.name, i, out.Reference)
 			}
-			got, w := blockPower(out, cloud.Mask, true)
+			got, w := blockPower(out, cloud.Mask, true, 8)
 			basis, white = basis+got, white+w
-			got, w = blockPower(e, cloud.Mask, true)
+			got, w = blockPower(e, cloud.Mask, true, 8)
 			own, ownWhite = own+got, ownWhite+w
 		}
 		b, o := math.Sqrt(basis/white), math.Sqrt(own/ownWhite)
@@ -123,6 +138,35 @@ func TestMovingFringes(t *testing.T) {
 		if !(b < 1.1) || !(o > 2) {
 			t.Errorf("%s: basis %.3f, own %.2f", c.name, b, o)
 		}
+	}
+}
+
+// TestFaintCoarseFringes: in a large picture fringes of less than 1 %, as coarse as a cloud, are taken
+// off to the white noise of blocks of 32x32 pixels under the cloud's place.
+func TestFaintCoarseFringes(t *testing.T) {
+	const side, shots = 400, 24
+	s := newScene(side, side, 57)
+	s.electrons, s.jitter, s.wander, s.power = 1500, 0.35, 1.5, 0.02
+	for k := range 4 {
+		q, a := 2*math.Pi/(40+25*float64(k)), 2.1*float64(k)
+		s.fringes = append(s.fringes, fringe{0.006, q * math.Cos(a), q * math.Sin(a), float64(k)})
+	}
+	raws := s.night(shots)
+	n := prepare(t, s.camera(), raws)
+	refs := NewReferences(n, shots, shots, loader(raws))
+	cloud := disc(side, 200, 190, 100)
+	got, white := 0.0, 0.0
+	for i, raw := range raws {
+		out, err := refs.Apply(context.Background(), i, expose(t, n, raw), cloud)
+		if err != nil {
+			t.Fatal(err)
+		}
+		g, w := blockPower(out, cloud.Mask, true, 32)
+		got, white = got+g, white+w
+	}
+	t.Logf("32x32 blocks over white noise: %.3f", math.Sqrt(got/white))
+	if !(math.Sqrt(got/white) < 1.2) {
+		t.Errorf("32x32 blocks are %.3f of white noise", math.Sqrt(got/white))
 	}
 }
 

@@ -104,7 +104,7 @@ func readNight(t *testing.T, ctx context.Context, dir string) []*imageio.Raw {
 type left struct{ got, white, light float64 }
 
 func leave(e *imageio.Exposure, judged []bool) left {
-	got, white := blockPower(e, judged, true)
+	got, white := blockPower(e, judged, true, 8)
 	l := left{got: got, white: white}
 	count := 0.0
 	for i, j := range judged {

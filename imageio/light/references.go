@@ -45,7 +45,7 @@ type References struct {
 func NewReferences(n *Night, k, shots int, load func(ctx context.Context, shot int) (*imageio.Raw, error)) *References {
 	return &References{
 		night: n, k: k, shots: shots, load: load,
-		tiles:  newTiling(n.win.width/n.win.bin, n.win.height/n.win.bin),
+		tiles:  newTiling(n.win.width/n.win.bin, n.win.height/n.win.bin, k),
 		recent: list.New(), at: map[int]*list.Element{},
 	}
 }
