@@ -23,20 +23,7 @@ func Cloud(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt Opti
 	if err != nil {
 		return nil, err
 	}
-	chosen, model := s.choose(c)
-	if !chosen.used() {
-		return nil, stateError("the fit found no minimum", chosen)
-	}
-	r := &Result{Model: model, Form: s.form(chosen.kind)}
-	err = s.finish(c, chosen, r)
-	if errors.Is(err, errSingular) && model == ModelBimodal { // it is not told by the full picture
-		c.both = nil
-		if chosen, model = s.choose(c); !chosen.used() {
-			return nil, err
-		}
-		r = &Result{Model: model, Form: s.form(chosen.kind)}
-		err = s.finish(c, chosen, r)
-	}
+	chosen, r, err := s.settleOn(c)
 	if err != nil {
 		return nil, err
 	}
@@ -49,8 +36,41 @@ func Cloud(ctx context.Context, pic *Picture, lab *Lab, flight float64, opt Opti
 	return r, nil
 }
 
+// settleOn finishes the model chosen, or a simpler one where the full picture does not tell its
+// parameters or has no minimum for them.
+func (s *session) settleOn(c *candidates) (*state, *Result, error) {
+	for {
+		chosen, model := s.choose(c)
+		r := &Result{Model: model, Form: s.form(chosen.kind)}
+		err := error(nil)
+		if !chosen.used() {
+			err = stateError("the fit found no minimum", chosen)
+		} else {
+			err = s.finish(c, chosen, r)
+		}
+		if !errors.Is(err, errSingular) && !errors.Is(err, errNoMinimum) {
+			return chosen, r, err
+		}
+		faint := c.none.used() && c.none.chi2-chosen.chi2 < faintChi2*s.opt.CloudChi2
+		switch {
+		case model == ModelBimodal && (c.thermal != nil || c.alone != nil):
+			c.both = nil
+		case model != ModelNone && faint:
+			c.thermal, c.both, c.alone = nil, nil, nil
+		default:
+			return nil, nil, err
+		}
+	}
+}
+
+// faintChi2 is up to how many times what any cloud must bring a fit without an end is none of a cloud.
+const faintChi2 = 10
+
 // errSingular says that a model has parameters on which the picture does not depend.
 var errSingular = errors.New("the picture does not determine the parameters")
+
+// errNoMinimum says that a search came to no end.
+var errNoMinimum = errors.New("no minimum")
 
 // finish refines the chosen model on the full picture and fills the result.
 func (s *session) finish(c *candidates, chosen *state, r *Result) error {

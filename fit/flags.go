@@ -64,7 +64,7 @@ var Flags = []Flag{
 	{FlagFlight, "the ratios agree with another flight: check the flight's source and unit, and zero_ms"},
 	{FlagPixel, "the ratios agree with another pixel in the object plane: check pixel_um, binning and magnification"},
 	{FlagNumber, "the ratios agree with another cross-section: check alpha, detuning_gamma and counts_per_isat (a magnification that is off can look alike)"},
-	{FlagForm, "more thermal atoms than the ideal gas holds at this T, all else agrees: thermal atoms may have felt the condensate; compare with fit.thermal = \"semi-ideal\""},
+	{FlagForm, "the number of thermal atoms fits their temperature with the other thermal form, all else agrees: a repulsive condensate may push them aside; compare fit.thermal = \"bose\" with \"semi-ideal\""},
 	{FlagPlain, "so cold a thermal part, or so short a flight, is outside what the semi-ideal form is known for: the ideal one was fitted"},
 	{FlagBlurred, "the blur, with the pixel's width, is above a third of the smallest radius or width: the resolution decides the result"},
 	{FlagAttractive, "the gas is attractive: Thomas-Fermi does not exist; the condensate is a gaussian of the variational width and has no mu from a radius"},

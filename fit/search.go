@@ -2,7 +2,6 @@ package fit
 
 import (
 	"context"
-	"fmt"
 	"math"
 
 	"gonum.org/v1/gonum/mat"
@@ -352,5 +351,12 @@ func (t *template) condensateArea() float64 {
 
 // stateError wraps a minimisation that ended without a minimum.
 func stateError(what string, s *state) error {
-	return fmt.Errorf("%s: %s", what, s.reason.Sentence())
+	return &noMinimumError{what + ": " + s.reason.Sentence()}
 }
+
+// noMinimumError says in words how a search ended.
+type noMinimumError struct{ sentence string }
+
+func (e *noMinimumError) Error() string { return e.sentence }
+
+func (e *noMinimumError) Is(target error) bool { return target == errNoMinimum }

@@ -231,11 +231,15 @@ const (
 	formMost = 3
 )
 
-// formSuspect names the thermal form where it can explain a surplus of thermal atoms: the plain form
-// reads T low where thermal atoms were pushed aside by a repulsive condensate.
+// formSuspect names the thermal form where the other one can explain the number of thermal atoms: the
+// plain form reads T low, and so holds too few, where a repulsive condensate pushed them aside; the
+// semi-ideal form reads T high where none did.
 func (s *session) formSuspect(m *measuredShape) string {
 	sat := m.ratios(s.lab, s.flight, 1)[ratioSat]
-	if s.opt.MeanField || !(s.lab.Species.ScatteringLength > 0) || !(sat > 0 && sat < math.Log(formMost)) {
+	if s.opt.MeanField {
+		sat = -sat
+	}
+	if !(s.lab.Species.ScatteringLength > 0) || !(sat > 0 && sat < math.Log(formMost)) {
 		return ""
 	}
 	return FlagForm

@@ -96,3 +96,21 @@ func TestFlagTable(t *testing.T) {
 		seen[f.Name] = true
 	}
 }
+
+// TestOtherFormIsSuspected: an ideal cloud fitted as a semi-ideal one accuses the form at most, and no
+// setting.
+func TestOtherFormIsSuspected(t *testing.T) {
+	lab := cigarLab(t)
+	for i, n0 := range []float64{2e4, 5e4, 1e5} {
+		sc := &scene{lab: lab, flight: 22e-3, T: 100e-9, condensate: n0, x: 80, y: 76, w: 160, h: 152, electrons: 3000, read: 6, seed: 41 + uint64(i), powerNoise: 0.01}
+		sc.thermal = sc.saturated()
+		r := mustFit(t, sc, sc.draw(t), Options{MeanField: true})
+		for _, f := range r.Flags {
+			switch f {
+			case FlagForm, FlagDense, FlagMisfit:
+			default:
+				t.Errorf("N0 %g: %v", n0, r.Flags)
+			}
+		}
+	}
+}
