@@ -8,6 +8,7 @@ import (
 	"fallshadow/cmd/fallshadow/internal/report"
 	"fallshadow/fit"
 	"fallshadow/imageio"
+	"fallshadow/model/numbers"
 )
 
 // Everything stands for the region that is the whole frame, whatever the settings say.
@@ -15,9 +16,9 @@ var Everything = image.Rect(0, 0, 1<<30, 1<<30)
 
 // Grow looks at the whole frame where the cloud of a shot reaches over the border of a region that
 // a person gave, or there is none in it, and returns the facts to keep, with a flag. Those of the
-// region stand where whole fails, sees no more, or sees another cloud, whose centre is not in the
-// region.
-func Grow(f *report.Facts, whole func() (*report.Facts, error)) *report.Facts {
+// region stand where whole fails, sees no more, or sees another cloud, which does not reach into
+// the region. bin is how many saved pixels a fitted one is wide.
+func Grow(f *report.Facts, bin int, whole func() (*report.Facts, error)) *report.Facts {
 	empty := f.Fit.Model == fit.ModelNone
 	if !empty && !f.Fit.Touches {
 		return f
@@ -26,14 +27,22 @@ func Grow(f *report.Facts, whole func() (*report.Facts, error)) *report.Facts {
 	if err != nil || all.Fit.Model == fit.ModelNone {
 		return f
 	}
-	if !image.Pt(int(all.X), int(all.Y)).In(f.Region) {
-		if empty {
-			f.Notes = append(slices.Clone(f.Notes), report.FlagOutside)
-		}
+	switch inside := image.Pt(int(all.X), int(all.Y)).In(f.Region); {
+	case !inside && empty:
+		return outside(f)
+	case !inside && !Extent(all, bin, 2, 1, 0).Overlaps(f.Region):
 		return f
 	}
 	all.Notes = append(slices.Clone(all.Notes), report.FlagGrown)
 	return all
+}
+
+// outside are the facts of a region that misses its cloud: a limit of the atoms in it says nothing.
+func outside(f *report.Facts) *report.Facts {
+	g, r := *f, *f.Fit
+	r.Numbers = numbers.Nothing()
+	g.Fit, g.Notes = &r, append(slices.Clone(f.Notes), report.FlagOutside)
+	return &g
 }
 
 // kit is what one worker has made for the regions it met.
@@ -67,7 +76,7 @@ func (k *kit) measure(ctx context.Context, at int, raw *imageio.Raw) (*report.Fa
 	if err != nil || region.Empty() && k.Settings.Region.Auto() {
 		return f, err
 	}
-	f = Grow(f, func() (*report.Facts, error) {
+	f = Grow(f, k.Settings.Fit.Rebin, func() (*report.Facts, error) {
 		m, err := k.in(ctx, Everything)
 		if err != nil {
 			return nil, err

@@ -50,23 +50,32 @@ func TestEmptyRegion(t *testing.T) {
 		want   string
 	}{{image.Rect(0, 0, 60, 60), report.FlagOutside}, {image.Rect(50, 0, 120, 60), report.FlagGrown}} {
 		none := &report.Facts{Region: c.region, Fit: &fit.Result{Model: fit.ModelNone}}
-		got := Grow(none, func() (*report.Facts, error) { whole := *all; return &whole, nil })
+		got := Grow(none, 1, func() (*report.Facts, error) { whole := *all; return &whole, nil })
 		if !slices.Equal(got.Notes, []string{c.want}) || (got.Fit.Model == fit.ModelNone) != (c.want == report.FlagOutside) {
 			t.Errorf("in %v: %v, %s", c.region, got.Notes, got.Fit.Model)
 		}
 	}
 }
 
+// A region in the wings of a cloud whose centre it does not hold grows to it.
+func TestRegionInTheWings(t *testing.T) {
+	wings := &report.Facts{Region: image.Rect(40, 50, 140, 150), Fit: &fit.Result{Model: fit.ModelThermal, Touches: true}}
+	all := &report.Facts{X: 90, Y: 230, Pixel: 2e-6, Fit: &fit.Result{Model: fit.ModelThermal, Width: [2]float64{100e-6, 100e-6}}}
+	if got := Grow(wings, 1, func() (*report.Facts, error) { return all, nil }); got != all || !slices.Equal(got.Notes, []string{report.FlagGrown}) {
+		t.Errorf("%+v", got)
+	}
+}
+
 // The first facts stand where the whole frame says nothing better, or of another cloud.
 func TestGrowKeepsWhatItHas(t *testing.T) {
-	other := &report.Facts{X: 300, Y: 290, Fit: &fit.Result{Model: fit.ModelThermal}}
-	cut := &report.Facts{Fit: &fit.Result{Model: fit.ModelThermal, Touches: true}}
+	other := &report.Facts{X: 300, Y: 290, Pixel: 1e-6, Fit: &fit.Result{Model: fit.ModelThermal, Width: [2]float64{40e-6, 40e-6}}}
+	cut := &report.Facts{Region: image.Rect(40, 50, 140, 150), Fit: &fit.Result{Model: fit.ModelThermal, Touches: true}}
 	none := &report.Facts{Fit: &fit.Result{Model: fit.ModelNone}}
 	for _, c := range []struct {
 		whole *report.Facts
 		err   error
 	}{{none, nil}, {other, nil}, {nil, context.DeadlineExceeded}} {
-		if got := Grow(cut, func() (*report.Facts, error) { return c.whole, c.err }); got != cut || len(got.Notes) != 0 {
+		if got := Grow(cut, 1, func() (*report.Facts, error) { return c.whole, c.err }); got != cut || len(got.Notes) != 0 {
 			t.Errorf("%v, %v: got %+v", c.whole, c.err, got)
 		}
 	}

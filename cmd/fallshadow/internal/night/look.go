@@ -123,7 +123,7 @@ func (l *Look) Measure(ctx context.Context, shot int) (_ *report.Facts, err erro
 	if err != nil || l.Settings.Region.Auto() {
 		return f, err
 	}
-	f = Grow(f, func() (*report.Facts, error) {
+	f = Grow(f, l.Settings.Fit.Rebin, func() (*report.Facts, error) {
 		if l.whole == nil {
 			b, err := setUp(ctx, l.batch.Settings, Everything, l.batch.again(ctx))
 			if err != nil {

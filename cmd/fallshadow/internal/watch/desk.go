@@ -110,7 +110,7 @@ func (d *desk) measure(ctx context.Context, lab *settings.Settings, drawn *ledge
 		return f, reference, err
 	}
 	var reference2 ledger.Digest
-	grown := night.Grow(f, func() (whole *report.Facts, err error) {
+	grown := night.Grow(f, lab.Fit.Rebin, func() (whole *report.Facts, err error) {
 		whole, reference2, err = d.measureIn(ctx, key{lab: lab, region: night.Everything, own: true}, arrival, raw, workspace)
 		return whole, err
 	})

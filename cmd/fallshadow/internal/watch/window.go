@@ -5,6 +5,7 @@ import (
 	"math"
 	"slices"
 
+	"fallshadow/cmd/fallshadow/internal/night"
 	"fallshadow/cmd/fallshadow/internal/report"
 	"fallshadow/cmd/fallshadow/internal/settings"
 	"fallshadow/fit"
@@ -69,7 +70,7 @@ func (d *desk) follow(lab *settings.Settings, f *report.Facts, frame image.Point
 	d.mu.Lock()
 	defer d.mu.Unlock()
 	w := &d.window
-	w.recent = append(w.recent, extent(f, lab.Fit.Rebin, 4, 1.8, windowMargin))
+	w.recent = append(w.recent, night.Extent(f, lab.Fit.Rebin, 4, 1.8, windowMargin))
 	w.recent = w.recent[max(0, len(w.recent)-remembered):]
 	if lab != d.lab || w.next != nil {
 		return
@@ -77,7 +78,7 @@ func (d *desk) follow(lab *settings.Settings, f *report.Facts, frame image.Point
 	k := key{lab: lab, region: d.wanted(frame)}
 	if w.now != nil && w.now.lab == lab {
 		now := regionOr(w.now.region, frame)
-		tight := extent(f, lab.Fit.Rebin, 3, 1.4, 8).Intersect(image.Rectangle{Max: frame})
+		tight := night.Extent(f, lab.Fit.Rebin, 3, 1.4, 8).Intersect(image.Rectangle{Max: frame})
 		if *w.now == k || tight.In(now) && area(now) <= 2*area(regionOr(k.region, frame)) {
 			return
 		}
@@ -96,26 +97,6 @@ func (d *desk) wanted(frame image.Point) image.Rectangle {
 		return r
 	}
 	return image.Rectangle{}
-}
-
-// extent is the part of the frame, in saved pixels, within so many widths of the thermal
-// part and radii of the condensate, and a margin.
-func extent(f *report.Facts, bin int, widths, radii, margin float64) image.Rectangle {
-	perMetre := float64(bin) / f.Pixel
-	var a [2]float64
-	for i := range a {
-		a[i] = perMetre * math.Max(orZero(widths*f.Fit.Width[i]), orZero(radii*f.Fit.Radius[i]))
-	}
-	sin, cos := math.Sincos(f.Fit.Angle)
-	dx, dy := math.Hypot(a[0]*cos, a[1]*sin)+margin, math.Hypot(a[0]*sin, a[1]*cos)+margin
-	return image.Rect(int(f.X-dx), int(f.Y-dy), int(f.X+dx)+1, int(f.Y+dy)+1)
-}
-
-func orZero(x float64) float64 {
-	if math.IsNaN(x) {
-		return 0
-	}
-	return x
 }
 
 // onGrid rounds a region outwards to the grid, inside the frame.

@@ -5,6 +5,7 @@ import (
 	"math"
 	"testing"
 
+	"fallshadow/cmd/fallshadow/internal/night"
 	"fallshadow/cmd/fallshadow/internal/report"
 	"fallshadow/fit"
 )
@@ -27,7 +28,7 @@ func TestExtent(t *testing.T) {
 		{clouded(500, 400, 1, 100, 0), image.Rect(500-200-10, 400-2-10, 500+200+11, 400+2+11)},
 	}
 	for _, test := range tests {
-		if got := extent(test.f, 2, 4, 2, 10); got != test.want {
+		if got := night.Extent(test.f, 2, 4, 2, 10); got != test.want {
 			t.Errorf("got %v, want %v", got, test.want)
 		}
 	}
