@@ -44,7 +44,7 @@ const (
 var Flags = []Flag{
 	{FlagNoCloud, "no cloud stands out of the noise; the number of atoms is an upper limit"},
 	{FlagNoThermal, "no thermal wing can be told from the noise; T is an upper limit that assumes a saturated thermal part, and atoms that may hide under the condensate widen N0 downwards"},
-	{FlagDense, "the peak optical density is above 3: multiple scattering and stray light bend the law there; lengthen the flight or detune"},
+	{FlagDense, "the peak optical density (sigma0 n/alpha on resonance) is above 3: multiple scattering and stray light bend the law there; lengthen the flight or detune"},
 	{FlagCeiling, "in the middle of the cloud most of the counted light is the stray light of stray_fraction: the density there follows from its edges; lengthen the flight or detune"},
 	{FlagMisfit, "the residuals under the cloud are above their noise: shape, blur, fringes or a saturated camera do not fit the model"},
 	{FlagNoise, "the residuals of the whole picture do not match the stated noise: check electrons_per_count and read_noise_electrons"},

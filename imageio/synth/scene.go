@@ -11,9 +11,8 @@ import (
 	"math/rand/v2"
 )
 
-// Cloud is σ0 n, the bare optical density, at a point of the picture: x to the right and
-// y downwards in pixels, the centre of the first pixel at (0,0). It must be finite and
-// not negative.
+// Cloud is σ0 n at a point of the picture: x to the right and y downwards in pixels, the
+// centre of the first pixel at (0,0). It must be finite and not negative.
 type Cloud func(x, y float64) float64
 
 // Scene is one shot before the camera.

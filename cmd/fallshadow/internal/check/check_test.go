@@ -393,7 +393,7 @@ func TestDensityImages(t *testing.T) {
 		t.Errorf("%d usable", out.Usable)
 	}
 	says(t, text, "density: one density image a shot, of log_ratio", "3 of 64 x 48 pixels", "flight 14 ms for all shots", "frames none: density images say nothing of saturated",
-		"od_0 1 1 64x48", `peak OD [123]\.\d+ = sigma0 n in od_`, "density_image", "the optics blur light")
+		"od_0 1 1 64x48", `peak sigma0 n [123]\.\d+ in od_\d, optical density \(sigma0 n/alpha\) [01]\.\d+`, "density_image", "the optics blur light")
 }
 
 func sodium(t *testing.T) string {

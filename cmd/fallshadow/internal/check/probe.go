@@ -155,11 +155,11 @@ func (v *visit) writeDensest(s float64) {
 	o := v.look.Lab.Optics
 	law := model.Law{Alpha: o.Alpha, Detuning: o.Detuning, Stray: o.Stray}
 	apparent := -math.Log(law.Transmit(peak, s))
-	text := fmt.Sprintf("%.3g = sigma0 n in %s, where %.2g %% of the light comes through", peak, name, 100*math.Exp(-apparent))
+	text := fmt.Sprintf("%.3g in %s, optical density (sigma0 n/alpha) %.3g, where %.2g %% of the light comes through", peak, name, peak/o.Alpha, 100*math.Exp(-apparent))
 	if o.Stray > 0 {
-		text += fmt.Sprintf("; stray light caps the apparent density at %.3g", law.Ceiling())
+		text += fmt.Sprintf("; stray light caps ln(I0/I) at %.3g", law.Ceiling())
 	}
-	v.page.pair("peak OD", "%s", text)
+	v.page.pair("peak sigma0 n", "%s", text)
 }
 
 func (v *visit) densest() (peak float64, name string) {
@@ -186,8 +186,8 @@ func (v *visit) writeDensity() {
 		return
 	}
 	v.page.title("Density")
-	v.page.pair("peak OD", "%.3g = sigma0 n in %s", peak, name)
 	o := v.look.Lab.Optics
+	v.page.pair("peak sigma0 n", "%.3g in %s, optical density (sigma0 n/alpha) %.3g", peak, name, peak/o.Alpha)
 	smallest := math.Inf(1)
 	for _, f := range v.fitted {
 		for _, size := range slices.Concat(f.facts.Fit.Width[:], f.facts.Fit.Radius[:]) {

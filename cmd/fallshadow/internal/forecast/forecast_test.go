@@ -6,9 +6,11 @@ import (
 	"errors"
 	"io"
 	"math"
+	"slices"
 	"strings"
 	"testing"
 
+	"fallshadow/cmd/fallshadow/internal/figure"
 	"fallshadow/cmd/fallshadow/internal/settings"
 	"fallshadow/fit/predict"
 )
@@ -154,6 +156,26 @@ func TestSparse(t *testing.T) {
 	}
 	if err := f.Plot().Render(io.Discard, "pdf", 86, 150); err != nil {
 		t.Error(err)
+	}
+}
+
+// TestDepthWords: table, advice and axis say by what sigma0 n is divided.
+func TestDepthWords(t *testing.T) {
+	for _, c := range []struct{ alpha, head, name, axis string }{
+		{"alpha = 2.0", "  peak sigma0 n/alpha  ", "optical density (sigma0 n/alpha)", "(*σ*_{0}*n* / *α*)"},
+		{"alpha = 2.0\ndetuning_gamma = 0.5", "  peak sigma0 n/a  ", "optical density (sigma0 n/a, a = alpha (1 + 4 detuning_gamma^2))", "(*σ*_{0}*n* / *α*(1 + 4*δ*^{2}))"},
+	} {
+		f, err := New(context.Background(), lab(t, "alpha = 2.0", c.alpha), usual)
+		if err != nil {
+			t.Fatal(err)
+		}
+		said := text(t, f)
+		if n := strings.Count(said, c.name); n != 2 || strings.Count(said, "optical density") != n || !strings.Contains(said, c.head) || strings.Contains(said, "OD") {
+			t.Errorf("%s:\n%s", c.alpha, said)
+		}
+		if got, want := f.Plot()[1].Y.Label, figure.Markup("peak optical density  "+c.axis); !slices.Equal(got, want) {
+			t.Errorf("%s: the axis is %v", c.alpha, got)
+		}
 	}
 }
 

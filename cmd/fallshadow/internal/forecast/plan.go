@@ -216,7 +216,7 @@ type untoldError struct {
 }
 
 func (e *untoldError) Error() string {
-	return fmt.Sprintf("no picture of these flights tells the numbers of such a cloud: from %.4g to %.4g ms its peak optical density goes from %.2g to %.2g and its half size along axis 1 from %.2g to %.2g pixels; check the number of atoms and the temperature, or take other flights or another picture",
+	return fmt.Sprintf("no picture of these flights tells the numbers of such a cloud: from %.4g to %.4g ms its peak optical density (sigma0 n/alpha on resonance) goes from %.2g to %.2g and its half size along axis 1 from %.2g to %.2g pixels; check the number of atoms and the temperature, or take other flights or another picture",
 		e.first.Flight*1e3, e.last.Flight*1e3, e.first.Depth, e.last.Depth, e.first.Reach[0]/e.pixel, e.last.Reach[0]/e.pixel)
 }
 

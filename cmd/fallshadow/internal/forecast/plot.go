@@ -104,7 +104,8 @@ func (f *Forecast) condensateLegend() string {
 }
 
 func (f *Forecast) depth(x figure.Axis) *figure.Figure {
-	g := &figure.Figure{X: x, Y: figure.Axis{Label: figure.Plain("peak optical density"), Log: true}}
+	name := "peak optical density  (*σ*_{0}*n* / *α*" + f.divided("", "(1 + 4*δ*^{2})") + ")"
+	g := &figure.Figure{X: x, Y: figure.Axis{Label: figure.Markup(name), Log: true}}
 	g.Curves = told(
 		trace(f.Smooth, "", figure.Law2, func(s *predict.Sight) float64 { return s.Depth }),
 		trace(f.Smooth, "as counts show it", figure.Law1, func(s *predict.Sight) float64 { return s.Shown }),

@@ -57,9 +57,9 @@ func (f *Forecast) writeGas(w io.Writer) {
 
 func (f *Forecast) writeFlights(w io.Writer) {
 	px := f.Plan.Experiment.Optics.Pixel
-	fmt.Fprintf(w, "\nthermal rms widths and condensate radii in um, in pixels of %.3g um; least statistical errors of one shot in per cent, of the fraction as it is:\n", px*um)
+	fmt.Fprintf(w, "\nthermal rms widths and condensate radii in um, in pixels of %.3g um; least statistical errors of one shot in per cent, of the fraction as it is; of the peak its %s:\n", px*um, f.depthName())
 	t := tabwriter.NewWriter(w, 0, 0, 2, ' ', tabwriter.AlignRight)
-	fmt.Fprint(t, "flight/ms\twidth1\twidth2\tradius1\tradius2\twidth1/px\tradius1/px\tpeak OD\tN\tN0\tT\tmu\tfraction\t\n")
+	fmt.Fprintf(t, "flight/ms\twidth1\twidth2\tradius1\tradius2\twidth1/px\tradius1/px\tpeak %s\tN\tN0\tT\tmu\tfraction\t\n", f.divided("sigma0 n/alpha", "sigma0 n/a"))
 	for i := range f.Sights {
 		s := &f.Sights[i]
 		e, g := &s.Errors, &f.Gas
@@ -87,7 +87,20 @@ func cell(format string, v float64) string {
 	return fmt.Sprintf(format, v)
 }
 
-// deep is the optical density beyond which pictures are not to be trusted: multiple
+// depthName is what the depth of a sight is called.
+func (f *Forecast) depthName() string {
+	return "optical density (" + f.divided("sigma0 n/alpha", "sigma0 n/a, a = alpha (1 + 4 detuning_gamma^2)") + ")"
+}
+
+// divided chooses between the words for a probe on resonance and those for a detuned one.
+func (f *Forecast) divided(resonant, detuned string) string {
+	if f.Plan.Experiment.Optics.Detuning == 0 {
+		return resonant
+	}
+	return detuned
+}
+
+// deep is the depth of a sight beyond which pictures are not to be trusted: multiple
 // scattering and stray light bend the law (R. Veyron et al., Phys. Rev. Research 4, 033033
 // (2022)).
 const deep = 3
@@ -116,11 +129,11 @@ func (f *Forecast) writeAdvice(w io.Writer) error {
 func (f *Forecast) depthAdvice(thin float64) string {
 	switch {
 	case math.IsNaN(thin):
-		return fmt.Sprintf("the peak optical density stays above %d up to %.3g ms: fly longer or detune the probe", deep, f.request.To*1e3)
+		return fmt.Sprintf("the peak %s stays above %d up to %.3g ms: fly longer or detune the probe", f.depthName(), deep, f.request.To*1e3)
 	case thin <= f.request.From*1.002:
-		return fmt.Sprintf("the peak optical density is below %d at all these flights", deep)
+		return fmt.Sprintf("the peak %s is below %d at all these flights", f.depthName(), deep)
 	}
-	return fmt.Sprintf("the peak optical density falls below %d after %.3g ms", deep, thin*1e3)
+	return fmt.Sprintf("the peak %s falls below %d after %.3g ms", f.depthName(), deep, thin*1e3)
 }
 
 func (f *Forecast) wingAdvice(out float64) string {

@@ -6,7 +6,7 @@ import (
 	"fallshadow/fit"
 )
 
-// Cut is the optical density along a line through the centre of the cloud, averaged over
+// Cut is σ0 n along a line through the centre of the cloud, averaged over
 // Strip pixels across; Total goes through the camera's blur as the data did. Distances
 // are from the centre; NaN where no pixel counts.
 type Cut struct {

@@ -111,7 +111,7 @@ func (c canvas) density(v *View, box [4]float64, in image.Rectangle) {
 	bar := image.Rect(in.Min.X+60, in.Max.Y+14, in.Max.X-40, in.Max.Y+28)
 	c.bar(bar, DensityColors)
 	base := float64(bar.Max.Y) - 1
-	c.text(float64(bar.Min.X)-8, base, "OD 0", 14, regular, ink, 1)
+	c.text(float64(bar.Min.X)-8, base, "σ₀n 0", 14, regular, ink, 1)
 	c.text(float64(bar.Max.X)+8, base, report.Plain(v.Top, 3), 14, regular, ink, 0)
 	for _, part := range []float64{0.25, 0.5, 0.75} { // of the root
 		x := float64(bar.Min.X) + part*float64(bar.Dx())
@@ -120,7 +120,7 @@ func (c canvas) density(v *View, box [4]float64, in image.Rectangle) {
 	}
 	x, y := float64(in.Min.X), float64(in.Max.Y)+76
 	c.text(x, y, "outlines: thermal part (dashed) at 1/e² of its centre, condensate at 2 %", 13, regular, faintInk, 0)
-	c.text(x, y+18, "colours by the root of the optical density", 13, regular, faintInk, 0)
+	c.text(x, y+18, "colours by the root of σ₀n; the optical density of a weak resonant probe is σ₀n/α", 13, regular, faintInk, 0)
 }
 
 // blocks draws a raster, whose pixels may be blocks of the map's.
@@ -214,7 +214,7 @@ func (c canvas) cut(cut Cut, v *View, reach float64, number int, in image.Rectan
 	c.stroke(curve(cut.Total), 1.5, ink, in)
 	c.text(float64(in.Min.X), float64(in.Min.Y)-8, "cut along axis "+strconv.Itoa(number)+": data, thermal part (dashed), sum", 13, regular, faintInk, 0)
 	c.text(float64(in.Max.X), float64(in.Max.Y)+18, "µm", 13, regular, ink, 1)
-	c.text(float64(in.Min.X)-8, float64(in.Min.Y)-8, "OD", 13, regular, ink, 1)
+	c.text(float64(in.Min.X)-8, float64(in.Min.Y)-8, "σ₀n", 13, regular, ink, 1)
 }
 
 func farthest(um []float64) float64 {

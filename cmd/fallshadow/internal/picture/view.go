@@ -17,7 +17,7 @@ type View struct {
 	Width, Height int             // of the maps
 	Region        image.Rectangle // that the maps cover, saved pixels
 	PixelUm       float64         // side of a pixel of the maps in the plane of the atoms
-	Top           float64         // optical density at the upper end of the scale
+	Top           float64         // σ0 n at the upper end of the scale
 	Sigmas        float64         // residual at the upper end of its scale
 	Outlines      []Outline
 	Cuts          []Cut // along axis 1 and axis 2

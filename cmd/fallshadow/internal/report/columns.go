@@ -69,7 +69,7 @@ var Columns = slices.Concat([]Column{
 		number("x_px", "px", "column of the centre, that of the first saved pixel being 0", func(f *Facts) float64 { return f.X }),
 		number("y_px", "px", "row of the centre, downwards, that of the first saved pixel being 0", func(f *Facts) float64 { return f.Y }),
 		number("angle_deg", "deg", "angle of axis 1 from +x towards +y", func(f *Facts) float64 { return f.Fit.Angle * 180 / math.Pi }),
-		number("peak_od", "", "peak optical density of the fit", func(f *Facts) float64 { return f.Fit.PeakOD }),
+		number("peak_od", "", "sigma0 n at the peak of the fit; the optical density of a weak resonant probe is sigma0 n/alpha", func(f *Facts) float64 { return f.Fit.PeakOD }),
 		number("chi2_per_dof", "", "chi2 over degrees of freedom in the whole picture", func(f *Facts) float64 { return f.Fit.ChiPerDof }),
 		number("chi2_cloud", "", "chi2 under the cloud: the worse of the condensate's ellipse and 8x8 blocks", func(f *Facts) float64 { return f.Fit.ChiCloud }),
 		number("thermal_over_saturated", "", "thermal atoms over zeta(3) (kT/hbar w)^3", func(f *Facts) float64 { return f.Fit.Numbers.ThermalOverSaturated.V }),

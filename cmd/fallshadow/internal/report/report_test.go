@@ -298,3 +298,26 @@ func TestMarkdownNamesAll(t *testing.T) {
 		}
 	}
 }
+
+// TestDepthWords: sigma0 n and the optical density of a weak resonant probe, sigma0 n/alpha, are
+// told apart where the one or the other is meant.
+func TestDepthWords(t *testing.T) {
+	found := 0
+	for _, c := range Columns {
+		if c.Name == "peak_od" && strings.HasPrefix(c.Meaning, "sigma0 n at the peak") && strings.Contains(c.Meaning, "sigma0 n/alpha") {
+			found++
+		} else if strings.Contains(c.Meaning, "optical density") {
+			t.Errorf("column %s: %q", c.Name, c.Meaning)
+		}
+	}
+	for _, f := range AllFlags() {
+		if f.Name == fit.FlagDense && strings.Contains(f.Sentence, "optical density (sigma0 n/alpha") {
+			found++
+		} else if strings.Contains(f.Sentence, "optical density") {
+			t.Errorf("flag %s: %q", f.Name, f.Sentence)
+		}
+	}
+	if found != 2 {
+		t.Errorf("%d of column and flag say what they mean", found)
+	}
+}

@@ -131,7 +131,7 @@ var keys = []key{
 		also: []string{"pulse_us", "tau_us"},
 		doc:  "Length of the imaging pulse: for the photons scattered per atom and to check counts_per_isat."},
 	{table: "probe", name: "stray_fraction", field: func(s *Settings) any { return &s.Probe.StrayFraction }, def: "0.0", low: 0, high: 0.5, most: 0.2, unstated: exactAtZero,
-		doc: "Fraction of the counted light that atoms cannot absorb; it caps the optical density at about ln(1/fraction)."},
+		doc: "Fraction of the counted light that atoms cannot absorb; it caps ln(I0/I) at about ln(1/fraction)."},
 
 	{table: "flight", name: "fixed_ms", unit: ms, field: func(s *Settings) any { return &s.Clock.FixedMs }, sample: "15.0", low: 0, high: 1e4,
 		doc: "One time of flight for all shots, instead of from."},

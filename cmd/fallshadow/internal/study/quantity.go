@@ -44,6 +44,7 @@ var labels = map[string]string{
 	"thermal_over_saturated": "*N*_{th} / *N*_{sat}",
 	"mu_over_mu_atoms":       "*μ* from radius / *μ* from *N*_{0}",
 	"flight_ms":              "flight  (ms)",
+	"peak_od":                "peak *σ*_{0}*n*",
 }
 
 // derived are the quantities that are no columns.

@@ -132,7 +132,7 @@ func inline(f *figure.Figure, width, height float64) (template.HTML, error) {
 }
 
 func (a *Analysis) fillNumbers(p *page) {
-	for _, q := range []struct{ name, head string }{{"atoms", "N"}, {"T_nK", "T (nK)"}, {"fraction", "N0/N"}, {"t_reduced", "T/Tc0"}, {"mu_nK", "mu/k (nK)"}, {"flight_ms", "flight (ms)"}, {"peak_od", "peak OD"}} {
+	for _, q := range []struct{ name, head string }{{"atoms", "N"}, {"T_nK", "T (nK)"}, {"fraction", "N0/N"}, {"t_reduced", "T/Tc0"}, {"mu_nK", "mu/k (nK)"}, {"flight_ms", "flight (ms)"}, {"peak_od", "peak sigma0 n"}} {
 		if text := a.span(q.name); text != "" {
 			p.Facts = append(p.Facts, [2]string{q.head, text})
 		}
@@ -204,7 +204,7 @@ func (a *Analysis) span(name string) string {
 func (a *Analysis) trends() (list []trend, err error) {
 	for _, t := range []struct{ name, title, label string }{
 		{"atoms", "atom number", "*N*"}, {"T_nK", "temperature", "*T*  (nK)"}, {"fraction", "condensate fraction", "*N*_{0} / *N*"},
-		{"peak_od", "peak optical density", "peak OD"}, {"x_px", "centre, column", "*x*  (px)"}, {"y_px", "centre, row", "*y*  (px)"},
+		{"peak_od", "peak sigma0 n", "peak *σ*_{0}*n*"}, {"x_px", "centre, column", "*x*  (px)"}, {"y_px", "centre, row", "*y*  (px)"},
 		{"chi2_cloud", "chi2 under the cloud", "*χ*^{2} / dof"}, {"thermal_over_saturated", "thermal atoms over their saturated number", "*N*_{th} / *N*_{sat}"},
 	} {
 		d, err := a.Plot(Axes{X: "number", Y: t.name})

@@ -104,7 +104,7 @@ export class Pictures {
     drawn.push(...ruler(box, v.pixel_um));
     stage.setAttribute("viewBox", box.join(" "));
     stage.replaceChildren(...drawn);
-    $("density-low").textContent = "OD 0";
+    $("density-low").textContent = "σ₀n 0";
     $("density-middle").textContent = Number((this.root ? v.top / 4 : v.top / 2).toPrecision(3));
     $("density-high").textContent = Number(v.top.toPrecision(3));
   }
