@@ -5,7 +5,6 @@ import (
 	"image/color"
 	"image/draw"
 	"math"
-	"strings"
 
 	"golang.org/x/image/font"
 	"golang.org/x/image/font/gofont/gobold"
@@ -132,13 +131,52 @@ func (c canvas) text(x, y float64, text string, size float64, face *opentype.Fon
 		return x
 	}
 	defer f.Close()
-	text = letters.Replace(text)
-	d := font.Drawer{Dst: c, Src: image.NewUniform(ink), Face: f}
-	width := float64(d.MeasureString(text)) / 64
-	d.Dot = fixed.Point26_6{X: fixed.Int26_6((x - align*width) * 64), Y: fixed.Int26_6(y * 64)}
-	d.DrawString(text)
+	raisedFace, err := opentype.NewFace(face, &opentype.FaceOptions{Size: 0.72 * size, DPI: 72, Hinting: font.HintingNone})
+	if err != nil {
+		return x
+	}
+	defer raisedFace.Close()
+	faces := map[bool]font.Face{true: f, false: raisedFace} // by whether a run is level
+	width := 0.0
+	for _, r := range runs(text) {
+		width += float64(font.MeasureString(faces[r.level == 0], r.text)) / 64
+	}
+	d := font.Drawer{Dst: c, Src: image.NewUniform(ink)}
+	d.Dot.X = fixed.Int26_6((x - align*width) * 64)
+	for _, r := range runs(text) {
+		d.Face, d.Dot.Y = faces[r.level == 0], fixed.Int26_6((y-r.level*size)*64)
+		d.DrawString(r.text)
+	}
 	return x + (1-align)*width
 }
 
-// letters replaces what the font has no glyphs for.
-var letters = strings.NewReplacer("₀", "0", "\u2009", "\u00a0", "⁻", "-", "⁰", "0", "⁴", "4", "⁵", "5", "⁶", "6", "⁷", "7", "⁸", "8", "⁹", "9", "×10", "×10^")
+// run is a part of a text that stands so many heights of a letter above the line.
+type run struct {
+	text  string
+	level float64
+}
+
+const raised, lowered = 0.36, -0.16
+
+// small are the letters for which the font has no glyphs, as letters that it has.
+var small = map[rune]run{
+	'⁻': {"−", raised}, '⁰': {"0", raised}, '¹': {"1", raised}, '²': {"2", raised}, '³': {"3", raised}, '⁴': {"4", raised},
+	'⁵': {"5", raised}, '⁶': {"6", raised}, '⁷': {"7", raised}, '⁸': {"8", raised}, '⁹': {"9", raised},
+	'₀': {"0", lowered}, '\u2009': {"\u00a0", 0},
+}
+
+// runs splits a text into parts on one level.
+func runs(text string) (list []run) {
+	for _, letter := range text {
+		r, ok := small[letter]
+		if !ok {
+			r.text = string(letter)
+		}
+		if last := len(list) - 1; last >= 0 && list[last].level == r.level {
+			list[last].text += r.text
+		} else {
+			list = append(list, r)
+		}
+	}
+	return list
+}

@@ -5,9 +5,13 @@ import (
 	"image/png"
 	"os"
 	"path/filepath"
+	"slices"
 	"testing"
 
+	"golang.org/x/image/font/sfnt"
+
 	"fallshadow/cmd/fallshadow/internal/ledger"
+	"fallshadow/cmd/fallshadow/internal/report"
 	"fallshadow/fit"
 )
 
@@ -79,6 +83,47 @@ func TestFolderAtTheEdges(t *testing.T) {
 	}
 	if err := f.Draw(sheetRow("../out"), cloud()); err == nil || f.Has(sheetRow("../out")) {
 		t.Error("a sheet was written outside")
+	}
+}
+
+// TestRuns: powers of ten stand above the line and indices below it, in letters that the fonts have.
+func TestRuns(t *testing.T) {
+	for text, want := range map[string][]run{
+		"1.4×10⁻⁴ nK": {{"1.4×10", 0}, {"−4", raised}, {" nK", 0}},
+		"σ₀n/α":       {{"σ", 0}, {"0", lowered}, {"n/α", 0}},
+		"12\u2009345": {{"12\u00a0345", 0}},
+		"":            nil,
+	} {
+		if got := runs(text); !slices.Equal(got, want) {
+			t.Errorf("%q is %v", text, got)
+		}
+	}
+	var buf sfnt.Buffer
+	for _, r := range runs(report.Plain(1.4e-4, 3) + report.Plain(-2.35e17, 3) + "⁰¹³⁶⁸⁹₀μσα±×−µ\u2009") {
+		for _, letter := range r.text {
+			for _, face := range []*sfnt.Font{regular, bold} {
+				if i, err := face.GlyphIndex(&buf, letter); err != nil || i == 0 {
+					t.Errorf("no glyph for %q", letter)
+				}
+			}
+		}
+	}
+}
+
+// A raised letter is drawn above a level one.
+func TestRaised(t *testing.T) {
+	lowest := func(text string) (y int) {
+		c := newCanvas(60, 60, paper)
+		c.text(10, 40, text, 30, regular, ink, 0)
+		for i := range 60 * 60 {
+			if c.RGBAAt(i%60, i/60) != paper {
+				y = i / 60
+			}
+		}
+		return y
+	}
+	if up, on, down := lowest("⁰"), lowest("0"), lowest("₀"); !(up < on-5 && on < down-2) {
+		t.Errorf("the lowest ink is at %d, %d, %d", up, on, down)
 	}
 }
 
