@@ -28,6 +28,15 @@ func (b *batch) work(ctx context.Context) (*Outcome, error) {
 			out.Cautions = append(out.Cautions, text)
 		}
 	}
+	var flights []float64
+	for _, i := range b.readable {
+		if t, err := b.Settings.Flight(b.shots[i].meta); err == nil {
+			flights = append(flights, t)
+		}
+	}
+	if text := b.Settings.Hasty(flights); text != "" {
+		out.Cautions = append(out.Cautions, text)
+	}
 	unread := 0
 	for i := range b.shots {
 		if b.shots[i].err != nil {

@@ -3,6 +3,7 @@ package settings
 import (
 	"fmt"
 	"math"
+	"slices"
 )
 
 // The electrons a photon that optics and sensors together make plausible (common practice).
@@ -29,7 +30,7 @@ func (s *Settings) Warnings() []string {
 	warn(c.Magnification.Value < 0.05, "magnification = %g is very small: it is the size on the sensor over that of the object; was its inverse %.4g meant?",
 		c.Magnification.Value, 1/c.Magnification.Value)
 	warn(pixel < 0.1 || pixel > 100, "a pixel covers %.4g um of the object: check pixel_um, binning and magnification", pixel)
-	warn(c.ElectronsPerCount.Given && c.ElectronsPerCount.Value < 0.02, "electrons_per_count = %g is very small: was its inverse, counts per electron, entered?", c.ElectronsPerCount.Value)
+	warn(c.ElectronsPerCount.Given && !s.measured && s.Shots.Layout != "density" && c.ElectronsPerCount.Value < 0.02, "electrons_per_count = %g is very small: was its inverse, counts per electron, entered?", c.ElectronsPerCount.Value)
 	warn(!c.ResolutionUm.Given, "resolution_um is not given: the optics are taken as perfect, and small condensates come out too large")
 	warn(spot > 0 && spot < 0.05, "resolution_um = %g is below any optics: it is in um", spot)
 	warn(spot > 15*pixel, "resolution_um = %g is %.0f pixels in the plane of the atoms: it is the rms of the spot there, not on the sensor", spot, spot/pixel)
@@ -63,6 +64,19 @@ func (s *Settings) angular() bool {
 func round(x, rest float64) bool {
 	unit := math.Pow(10, math.Floor(math.Log10(x))-1)
 	return math.Abs(x/unit-math.Round(x/unit)) <= rest*x/unit
+}
+
+// Hasty returns a sentence where the median of flights (s) that frames or names state is too short
+// for an expansion, "" where it is not: images of the trap itself have a flight of 0.
+func (s *Settings) Hasty(flights []float64) string {
+	if s.Clock.FixedMs.Given || len(flights) == 0 {
+		return ""
+	}
+	slices.Sort(flights)
+	if t := flights[len(flights)/2]; t > 0 && t < 0.5e-3 {
+		return fmt.Sprintf("the flights from %s are about %.3g ms, which is very short: they are read in %s; check flight.unit", s.Clock.From, t*1e3, s.Clock.Unit)
+	}
+	return ""
 }
 
 // Misplaced returns a sentence where bad_pixels lists pixels that frames of a size do not
