@@ -359,7 +359,7 @@ func TestSideTableTwice(t *testing.T) {
 func TestStrayLight(t *testing.T) {
 	dir := simulated(t, "rubidium", 7, "exposure_us", "stray_fraction = 0.2\nexposure_us")
 	_, text := look(t, dir, 1)
-	says(t, text, `stray light caps the apparent density at 1.61`, "rubidium_0004: ceiling: in the middle of the cloud most of the counted light is the stray light")
+	says(t, text, `stray light caps ln\(I0/I\) at 1.61`, "rubidium_0004: ceiling: in the middle of the cloud most of the counted light is the stray light")
 	dir = simulated(t, "rubidium", 7, "exposure_us", "stray_fraction = 0.001\nexposure_us")
 	if _, text = look(t, dir, 1); strings.Contains(text, "ceiling:") {
 		t.Errorf("a thousandth of stray light is taken for most of it:\n%s", text)
@@ -394,6 +394,9 @@ func TestDensityImages(t *testing.T) {
 	}
 	says(t, text, "density: one density image a shot, of log_ratio", "3 of 64 x 48 pixels", "flight 14 ms for all shots", "frames none: density images say nothing of saturated",
 		"od_0 1 1 64x48", `peak sigma0 n [123]\.\d+ in od_\d, optical density \(sigma0 n/alpha\) [01]\.\d+`, "density_image", "the optics blur light")
+	if _, text = look(t, dir, 1, "electrons_per_count = ", "# "); strings.Contains(text, "electrons_per_count") {
+		t.Errorf("a gain that is not given is spoken of:\n%s", text)
+	}
 }
 
 func sodium(t *testing.T) string {

@@ -62,6 +62,7 @@ func (s *Settings) LightCamera() light.Camera {
 // filled in what was measured.
 func (s *Settings) WithCamera(c light.Camera) *Settings {
 	filled := *s
+	filled.measured = filled.measured || !s.Camera.ElectronsPerCount.Given
 	filled.Camera.ElectronsPerCount = Number{c.ElectronsPerCount, true}
 	filled.Camera.ReadNoise = Number{c.ReadNoise, true}
 	return &filled

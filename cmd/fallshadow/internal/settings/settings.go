@@ -44,6 +44,8 @@ type Settings struct {
 	Shots  Shots
 	Region Region
 	Fit    Fit
+
+	measured bool // the gain, which the file leaves out
 }
 
 // Atom is the atom and its imaging line. The four numbers hold the species' own where

@@ -3,6 +3,8 @@ package settings
 import (
 	"strings"
 	"testing"
+
+	"fallshadow/imageio/light"
 )
 
 func TestWarnings(t *testing.T) {
@@ -51,6 +53,31 @@ func TestLogRatio(t *testing.T) {
 	}
 	if got := warned("sigma0_n"); strings.Contains(got, "saturation out") {
 		t.Errorf("warned %q", got)
+	}
+}
+
+// TestNoGain: a gain that nobody entered is nobody's slip, whatever was measured in its place;
+// nor is one of the frames that density images do not have.
+func TestNoGain(t *testing.T) {
+	without := strings.Replace(evap, "electrons_per_count = 1.5\n", "", 1)
+	density := evap + "\n[shots]\nlayout = \"density\"\ndensity_unit = \"sigma0_n\"\n"
+	small := strings.Replace(evap, "electrons_per_count = 1.5", "electrons_per_count = 0.01", 1)
+	for _, c := range []struct {
+		text string
+		gain float64
+		want bool
+	}{
+		{without, 0, false}, {without, 0.01, false}, {small, 0.01, true},
+		{strings.Replace(density, "electrons_per_count = 1.5\n", "", 1), 0, false},
+		{strings.Replace(density, "electrons_per_count = 1.5", "electrons_per_count = 0.01", 1), 0.01, false},
+	} {
+		s := parse(t, c.text)
+		once := s.WithCamera(light.Camera{ElectronsPerCount: c.gain})
+		for _, s := range []*Settings{s, once, once.WithCamera(light.Camera{ElectronsPerCount: c.gain})} {
+			if got := strings.Contains(strings.Join(s.Warnings(), "\n"), "was its inverse"); got != c.want {
+				t.Errorf("gain %g, warned: %v, in\n%s", c.gain, got, c.text)
+			}
+		}
 	}
 }
 
