@@ -98,7 +98,7 @@ func TestReadFails(t *testing.T) {
 		{"no such extension", byName, map[string][]byte{"s.fits": fixture(t, "fits/testdata/extensions.fits")}, nil, `s.fits: 0 images named "probe" for the light frame among ["ATOMS" "LIGHT" "DARK"]: correct the layout in the settings`},
 		{"differing sizes", bySuffix, map[string][]byte{"s_a.fits": sized(t, 3, 2, 0, 1), "s_l.fits": sized(t, 2, 3, 0, 1)}, nil, "s: the light frame has 2 x 3 pixels, the atoms frame 3 x 2: frames of a shot have one size"},
 		{"pages of differing sizes", Layout{}, map[string][]byte{"s.tif": fixture(t, "testdata/sizes.tif")}, nil, "s: the light frame has 20 x 16 pixels, the atoms frame 20 x 18: frames of a shot have one size"},
-		{"missing frame", bySuffix, map[string][]byte{"s_a.fits": cube(t, 0, 1)}, nil, `s_a.fits: the light frame is missing: no file with "_l" beside it`},
+		{"missing frame", bySuffix, map[string][]byte{"s_a.fits": cube(t, 0, 1)}, nil, `s: the light frame is missing: no file with "_l" beside s_a.fits`},
 		{"no image", Layout{}, map[string][]byte{"s.fits": fixture(t, "fits/testdata/table.fits")}, fault.Unsupported, "s.fits: not supported: no image inside"},
 		{"tile-compressed", Layout{}, map[string][]byte{"s.fits": fixture(t, "fits/testdata/compressed.fits")}, fault.Unsupported, "s.fits: not supported: the image is tile-compressed (ZIMAGE = T, ZCMPTYPE = RICE_1); uncompress the file first (header-data unit 1)"},
 		{"empty", Layout{}, map[string][]byte{"s.fits": nil}, fault.Truncated, "s.fits: truncated: the file is empty"},

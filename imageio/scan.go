@@ -178,7 +178,7 @@ func (s *search) finish(side *sidecar) Night {
 			}
 			return Natural(a.Path, b.Path)
 		})
-		shot.Problem = s.plan.incomplete(shot.Files)
+		shot.Problem = s.plan.incomplete(shot)
 		shot.Meta = groups(s.plan.pattern, shot.Files[0].Path)
 		s.night.Shots = append(s.night.Shots, *shot)
 	}
@@ -189,8 +189,9 @@ func (s *search) finish(side *sidecar) Night {
 	return s.night
 }
 
-// incomplete says which frame of a shot is missing or there twice. files are sorted.
-func (p *plan) incomplete(files []ShotFile) error {
+// incomplete says which frame of a shot is missing or there twice. Its files are sorted.
+func (p *plan) incomplete(shot *Shot) error {
+	files := shot.Files
 	for i, f := range files[1:] {
 		if f.Role == files[i].Role && f.Role == Unused {
 			return fmt.Errorf("%s and %s have the same name but for the ending: rename one", files[i].Path, f.Path)
@@ -203,7 +204,7 @@ func (p *plan) incomplete(files []ShotFile) error {
 	}
 	for _, r := range p.roles() {
 		if !slices.ContainsFunc(files, func(f ShotFile) bool { return f.Role == r }) {
-			return fmt.Errorf("%s: the %v frame is missing: no file with %q beside it", files[0].Path, r, p.Suffix[r])
+			return fmt.Errorf("%s: the %v frame is missing: no file with %q beside %s", shot.Name, r, p.Suffix[r], files[0].Path)
 		}
 	}
 	return nil
