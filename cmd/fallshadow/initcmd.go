@@ -6,6 +6,7 @@ import (
 	"io"
 	"io/fs"
 	"os"
+	"path/filepath"
 
 	"fallshadow/cmd/fallshadow/internal/settings"
 )
@@ -39,6 +40,9 @@ func writeNew(path string, data []byte) (err error) {
 	f, err := os.OpenFile(path, os.O_WRONLY|os.O_CREATE|os.O_EXCL, 0o644)
 	if errors.Is(err, fs.ErrExist) {
 		return fmt.Errorf("%s is there already and is not written over: give another name, or move it away", path)
+	}
+	if dir := filepath.Dir(path); errors.Is(err, fs.ErrNotExist) {
+		return fmt.Errorf("write settings: there is no folder %s: make it first, or name a file in one that is there (%w)", dir, fs.ErrNotExist)
 	}
 	if err != nil {
 		return fmt.Errorf("write settings: %w", err)
