@@ -113,6 +113,13 @@ func (l *shotLines) Picture(string, *report.Facts, *imageio.Raw) {}
 // Changed is for who shows all rows.
 func (l *shotLines) Changed() {}
 
+// Heard prints what a person said elsewhere.
+func (l *shotLines) Heard(text string) {
+	l.mu.Lock()
+	defer l.mu.Unlock()
+	fmt.Fprintln(l.err, report.Printable(text))
+}
+
 // Notes prints what is new and was not said of late, each line of it on a line.
 func (l *shotLines) Notes(notes []string) {
 	l.mu.Lock()

@@ -51,7 +51,8 @@ func TestShotLines(t *testing.T) {
 	l.Notes(nil)
 	l.Notes([]string{"two are wrong:\none\x07\nother"})
 	l.Notes([]string{"crowded"})
-	if got := errs.String(); got != "waiting\ncrowded\ntwo are wrong:\n  one?\n  other\ncrowded\n" {
+	l.Heard("ramp_4 was marked\x07")
+	if got := errs.String(); got != "waiting\ncrowded\ntwo are wrong:\n  one?\n  other\ncrowded\nramp_4 was marked?\n" {
 		t.Errorf("said %q", got)
 	}
 }

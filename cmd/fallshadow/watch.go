@@ -135,6 +135,12 @@ func (a audience) Changed() {
 	}
 }
 
+func (a audience) Heard(text string) {
+	for _, one := range a {
+		one.Heard(text)
+	}
+}
+
 func (a audience) Notes(notes []string) {
 	for _, one := range a {
 		one.Notes(notes)

@@ -32,6 +32,9 @@ type Night interface {
 	SettingsText() string
 	Notes() []string
 	Region() (now, next *image.Rectangle)
+	// Drawn says how a row stands to the region that a person drew and that is in force for
+	// its shot: "used", "left out", "unknown", or "" where there is none.
+	Drawn(r *ledger.Row) string
 
 	Judge(ctx context.Context, shot, word string) error
 	Draw(region image.Rectangle) error
@@ -84,6 +87,9 @@ func (p *Page) Picture(shot string, f *report.Facts, raw *imageio.Raw) {
 
 // Changed tells the browsers to read all rows again.
 func (p *Page) Changed() { p.stream.send("changed", nil) }
+
+// Heard is for who does not see the page.
+func (p *Page) Heard(string) {}
 
 // Notes tells the browsers what a person should know.
 func (p *Page) Notes(notes []string) { p.stream.send("notes", notes) }

@@ -70,6 +70,12 @@ func (s *still) Notes() []string      { return nil }
 func (s *still) Region() (now, next *image.Rectangle) {
 	return &image.Rectangle{Max: image.Pt(3, 4)}, nil
 }
+func (s *still) Drawn(r *ledger.Row) string {
+	if r.Shot == "shot_2" {
+		return "left out"
+	}
+	return ""
+}
 func (s *still) Judge(_ context.Context, shot, word string) error {
 	s.judged = append(s.judged, shot+": "+word)
 	return nil
@@ -278,7 +284,7 @@ func TestDetail(t *testing.T) {
 	if diff := cmp.Diff(want, d.Cards); diff != "" {
 		t.Error(diff)
 	}
-	if d.Flight != "16 ms" || len(d.Scan) != 1 || d.Numbers["RAMP"] != 2.5 || !slices.Contains(d.Flags, "provisional") {
+	if d.Flight != "16 ms" || len(d.Scan) != 1 || d.Numbers["RAMP"] != 2.5 || d.Region != "left out" || !slices.Contains(d.Flags, "provisional") {
 		t.Errorf("%+v", d)
 	}
 }

@@ -35,7 +35,8 @@ type detail struct {
 	Cards   []report.Card      `json:"cards,omitempty"`
 	Numbers map[string]float64 `json:"numbers"` // cells of the table, and scan variables
 	Words   map[string]string  `json:"words,omitempty"`
-	Same    string             `json:"same,omitempty"` // the first shot with these pixels
+	Region  string             `json:"region,omitempty"` // see Night.Drawn
+	Same    string             `json:"same,omitempty"`   // the first shot with these pixels
 }
 
 type named struct {
@@ -53,7 +54,7 @@ func (p *Page) brief(r *ledger.Row) brief {
 func (p *Page) detail(r *ledger.Row) detail {
 	d := detail{
 		brief: p.brief(r), Files: r.Files, Reason: r.Reason, Numbers: map[string]float64{}, Words: r.Words, Same: r.Duplicate,
-		Cards: report.Cards(r),
+		Cards: report.Cards(r), Region: p.night.Drawn(r),
 	}
 	for name, v := range r.Numbers {
 		d.Numbers[name] = v

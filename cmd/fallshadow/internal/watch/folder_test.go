@@ -197,6 +197,9 @@ func TestRegionHoldsFromTheNextShot(t *testing.T) {
 	if now, next := w.Region(); now != nil || next == nil || *next != region {
 		t.Errorf("regions %v, %v", now, next)
 	}
+	if want := "a region was drawn at the page: x 20 to 140, y 10 to 140; it holds from the next shot on, the first after ramp_0002"; !slices.Equal(h.heard, []string{want}) {
+		t.Errorf("said %q", h.heard)
+	}
 	copyFile(t, shotFile("3"), filepath.Join(dir, "ramp_0001b.fits"))
 	h.until(t, "the late one", h.seen(3))
 	copyFile(t, shotFile("4"), filepath.Join(dir, "ramp_0004.fits"))
@@ -214,6 +217,17 @@ func TestRegionHoldsFromTheNextShot(t *testing.T) {
 		if r.Stale {
 			t.Errorf("%s is stale", r.Shot)
 		}
+		if drawn := w.Drawn(&r); (drawn == "used") != (r.Shot == "ramp_0004") || drawn != "used" && drawn != "" {
+			t.Errorf("%s is %q in the region", r.Shot, drawn)
+		}
+	}
+	if err := w.Draw(image.Rect(0, 0, 50, 50)); err != nil {
+		t.Fatal(err)
+	}
+	w.Undraw()
+	w.Undraw() // there is none any more
+	if n := len(h.heard); n != 3 || h.heard[2] != "the region that waited for the next shot was taken back at the page" {
+		t.Errorf("said %q", h.heard)
 	}
 	stop()
 	l, err := ledger.OpenReader(context.Background(), w.Out)
@@ -224,6 +238,44 @@ func TestRegionHoldsFromTheNextShot(t *testing.T) {
 	regions, err := l.Regions(context.Background())
 	if err != nil || len(regions) != 1 || regions[0] != (ledger.Region{First: "ramp_0004", X0: 20, Y0: 10, X1: 140, Y1: 140}) {
 		t.Errorf("stored %v, %v", regions, err)
+	}
+}
+
+// After a batch that left the drawn regions out a watch says so of its rows, and shows them as
+// they were fitted; of rows of other settings it does not know.
+func TestRegionLeftOut(t *testing.T) {
+	ctx, dir := context.Background(), nightWith(t, "4", "5")
+	h := newHall()
+	w, stop := run(t, Options{Dir: dir}, h)
+	h.until(t, "two", h.seen(2))
+	if err := w.Draw(image.Rect(20, 10, 140, 140)); err != nil {
+		t.Fatal(err)
+	}
+	copyFile(t, shotFile("6"), filepath.Join(dir, "ramp_0006.fits"))
+	h.until(t, "the next", func() bool { return h.pictures["ramp_0006"] != nil })
+	stop()
+	lab, err := settings.Load(filepath.Join(dir, settings.FileName))
+	if err != nil {
+		t.Fatal(err)
+	}
+	if _, err := night.Batch(ctx, night.Options{Dir: dir, Out: w.Out, Settings: lab, Workers: 1, OwnRegion: true}, quiet{}); err != nil {
+		t.Fatal(err)
+	}
+	h = newHall()
+	w, _ = run(t, Options{Dir: dir, Out: w.Out}, h)
+	h.until(t, "the rows", func() bool { r, err := w.Row(ctx, "ramp_0006"); return err == nil && r != nil })
+	r, err := w.Row(ctx, "ramp_0006")
+	if err != nil || w.Drawn(r) != "left out" {
+		t.Fatalf("the region is %q, %v", w.Drawn(r), err)
+	}
+	var f *report.Facts
+	h.until(t, "the shot", func() bool { f, _, err = w.Measure(ctx, "ramp_0006"); return err == nil })
+	if f.Region != image.Rect(0, 0, 160, 144) {
+		t.Errorf("it is shown in %v", f.Region)
+	}
+	r.Currency.Settings[0]++
+	if got := w.Drawn(r); got != "unknown" {
+		t.Errorf("with other settings the region is %q", got)
 	}
 }
 
@@ -247,6 +299,10 @@ func TestVerdict(t *testing.T) {
 		t.Fatal(err)
 	}
 	h.until(t, "the word taken back", bad("ramp_0007", ""))
+	h.until(t, "two lines", func() bool { return len(h.heard) == 2 })
+	if h.heard[0] != "ramp_0002 was marked as bad at the page: laser unlocked" || h.heard[1] != "ramp_0007 is no longer marked as bad, by a person at the page" {
+		t.Errorf("said %q", h.heard)
+	}
 	if err := w.Judge(ctx, "ramp_9999", "x"); err == nil {
 		t.Error("a shot that is not there was judged")
 	}

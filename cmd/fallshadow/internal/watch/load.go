@@ -50,6 +50,10 @@ func (w *Watcher) Measure(ctx context.Context, shot string) (*report.Facts, *ima
 	if err != nil {
 		return nil, nil, err
 	}
-	f, _, err := w.desk.measure(ctx, lab, w.regionOf(shot), arrival, raw, fit.NewWorkspace())
+	region := w.regionOf(shot)
+	if r, err := w.Row(ctx, shot); err == nil && r != nil && w.Drawn(r) == "left out" {
+		region = nil // as its numbers
+	}
+	f, _, err := w.desk.measure(ctx, lab, region, arrival, raw, fit.NewWorkspace())
 	return f, raw, err
 }

@@ -7,6 +7,7 @@ import (
 	"image"
 
 	"fallshadow/cmd/fallshadow/internal/ledger"
+	"fallshadow/cmd/fallshadow/internal/night"
 	"fallshadow/imageio"
 )
 
@@ -29,6 +30,11 @@ func (w *Watcher) Judge(ctx context.Context, shot, word string) error {
 		return err
 	}
 	w.audience.Changed()
+	if word == "" {
+		w.audience.Heard(shot + " is no longer marked as bad, by a person at the page")
+	} else {
+		w.audience.Heard(shot + " was marked as bad at the page: " + word)
+	}
 	w.askTable()
 	return nil
 }
@@ -72,15 +78,21 @@ func (w *Watcher) Draw(region image.Rectangle) error {
 	w.mu.Unlock()
 	w.desk.foresee(w.settings(), region)
 	w.audience.Changed()
+	w.audience.Heard(fmt.Sprintf("a region was drawn at the page: x %d to %d, y %d to %d; it holds from the next shot on, the first after %s",
+		region.Min.X, region.Max.X, region.Min.Y, region.Max.Y, w.roll.newest()))
 	return nil
 }
 
 // Undraw takes back a region that has not held for any shot yet.
 func (w *Watcher) Undraw() {
 	w.mu.Lock()
+	waited := w.drawn != nil
 	w.drawn = nil
 	w.mu.Unlock()
 	w.audience.Changed()
+	if waited {
+		w.audience.Heard("the region that waited for the next shot was taken back at the page")
+	}
 }
 
 // beginRegion stores the region that was drawn with the first new shot behind all that
@@ -122,4 +134,19 @@ func (w *Watcher) regionOf(shot string) *ledger.Region {
 		return &g
 	}
 	return nil
+}
+
+// Drawn says how a row stands to the region that a person drew and that is in force for its
+// shot: "used", "left out", "unknown" where the settings were others, "" where there is none.
+func (w *Watcher) Drawn(r *ledger.Row) string {
+	region, lab := w.regionOf(r.Shot), w.settings()
+	switch {
+	case region == nil:
+		return ""
+	case r.Currency.Settings.Same(night.SettingsDigest(lab, region)):
+		return "used"
+	case r.Currency.Settings.Same(night.SettingsDigest(lab, nil)):
+		return "left out"
+	}
+	return "unknown"
 }

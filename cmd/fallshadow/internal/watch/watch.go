@@ -43,6 +43,8 @@ type Audience interface {
 	Picture(shot string, f *report.Facts, raw *imageio.Raw)
 	// Changed says that rows changed in another way, so that all are to be read again.
 	Changed()
+	// Heard tells what a person said on the page.
+	Heard(text string)
 	// Notes says what a person should know now, nothing where all is well.
 	Notes(notes []string)
 }

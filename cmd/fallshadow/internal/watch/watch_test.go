@@ -25,6 +25,7 @@ type hall struct {
 	order    []string
 	pictures map[string]*report.Facts
 	changed  int
+	heard    []string
 	notes    []string
 	all      []string // every note that ever was
 	news     chan struct{}
@@ -50,7 +51,8 @@ func (h *hall) Row(r *ledger.Row) {
 func (h *hall) Picture(shot string, f *report.Facts, _ *imageio.Raw) {
 	h.tell(func() { h.pictures[shot] = f })
 }
-func (h *hall) Changed() { h.tell(func() { h.changed++ }) }
+func (h *hall) Changed()          { h.tell(func() { h.changed++ }) }
+func (h *hall) Heard(text string) { h.tell(func() { h.heard = append(h.heard, text) }) }
 func (h *hall) Notes(n []string) {
 	h.tell(func() { h.notes = n; h.all = append(h.all, n...) })
 }

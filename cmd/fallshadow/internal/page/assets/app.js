@@ -81,6 +81,7 @@ function showRow(row, shot) {
   if (wanted !== shot) return;
   detail = row;
   showNumbers(row, columns, sentences);
+  sayRegion();
   document.body.dataset.shown = shot;
   showStatus();
 }
@@ -146,8 +147,19 @@ function showNotes(list) {
 function showRegion(now, next) {
   pictures.region = { now, next };
   $("drawing-undo").hidden = !next;
-  $("region-now").textContent = next ? "a region waits for the next shot" : now ? "region drawn by hand" : "";
+  sayRegion();
   pictures.draw();
+}
+
+const regionWords = {
+  used: "region drawn by hand",
+  "left out": "fitted without the region drawn by hand",
+  unknown: "region drawn by hand, numbers of other settings",
+};
+
+// sayRegion says what regions that a person drew have to do with the numbers shown.
+function sayRegion() {
+  $("region-now").textContent = pictures.region.next ? "a region waits for the next shot" : regionWords[detail?.region] ?? "";
 }
 
 function say(text) {
