@@ -6,6 +6,7 @@ import (
 	"bytes"
 	"context"
 	"fmt"
+	"math"
 	"os"
 	"path/filepath"
 	"slices"
@@ -396,6 +397,76 @@ func TestBrowserRegion(t *testing.T) {
 	want := fmt.Sprintf("0 0 %d %d", next.Dx(), next.Dy())
 	until(t, tab, "word that it holds", `document.querySelector('#region-now').textContent === 'region drawn by hand'`)
 	until(t, tab, "the region in the picture", fmt.Sprintf(`document.querySelector('#density').getAttribute('viewBox') === %q`, want))
+}
+
+// On a phone the button brings the picture and what is to be pressed next into sight.
+func TestBrowserRegionOnPhone(t *testing.T) {
+	dir := newNight(t, 4, 5)
+	n := watchNight(t, dir, "127.0.0.1:0")
+	tab := browser(t)
+	do(t, tab, chromedp.EmulateViewport(390, 844), chromedp.Navigate(n.url))
+	shown(t, tab, "ramp_0005")
+	do(t, tab, chromedp.Click("#draw"))
+	until(t, tab, "the whole frame", `document.querySelector('#density image').getAttribute('href').startsWith('/picture/frame')`)
+	inSight := func(id string) {
+		t.Helper()
+		until(t, tab, id+" in sight", fmt.Sprintf(`(() => {
+			const b = document.querySelector(%q).getBoundingClientRect(), top = document.querySelector('header').getBoundingClientRect().bottom;
+			return b.height > 20 && b.top >= top && b.bottom <= innerHeight && document.elementFromPoint(b.x + b.width / 2, b.y + b.height / 2).closest(%q);
+		})()`, id, id))
+	}
+	for _, id := range []string{"#density", "#drawing-take", "#drawing-cancel"} {
+		inSight(id)
+	}
+	box := eval[[]float64](t, tab, `(() => { const b = document.querySelector('#density').getBoundingClientRect(); return [b.x, b.y, b.width, b.height]; })()`)
+	do(t, tab, chromedp.DragAndDropXY(box[0]+0.2*box[2], box[1]+0.2*box[3], box[0]+0.8*box[2], box[1]+0.8*box[3], 5))
+	until(t, tab, "the rectangle", `document.querySelector('#density rect.drag')`)
+	inSight("#drawing-take")
+	screenshot(t, tab, "phone-region")
+	readable(t, tab, "phone-region")
+	do(t, tab, chromedp.Click("#drawing-take"))
+	until(t, tab, "word that it waits", `document.querySelector('#region-now').textContent.includes('waits for the next shot')`)
+	r, err := n.watch.Row(context.Background(), "ramp_0005")
+	if err != nil {
+		t.Fatal(err)
+	}
+	n.watch.Undraw()
+	until(t, tab, "it taken back", `document.querySelector('#region-now').textContent === ''`)
+	if d := n.watch.Drawn(r); d != "" {
+		t.Errorf("the region is %q", d)
+	}
+}
+
+// ringSpan is how far to the left and to the right of its middle the ring about the newest
+// point of the trend is drawn, in CSS px.
+const ringSpan = `(() => {
+	const canvas = document.querySelector('#trend-plot canvas'), over = document.querySelector('#trend-plot .u-over').getBoundingClientRect();
+	const box = canvas.getBoundingClientRect(), scale = canvas.width / box.width;
+	const probe = document.body.appendChild(document.createElement('p'));
+	probe.style.color = 'var(--ink)';
+	const want = getComputedStyle(probe).color.match(/\d+/g).map(Number);
+	probe.remove();
+	const from = Math.round((over.x - box.x) * scale), middle = from + over.width * scale * (0.02 + 0.96 * 1);
+	const { data, width, height } = canvas.getContext('2d').getImageData(from, 0, canvas.width - from, (over.bottom - box.y) * scale);
+	const xs = [];
+	for (let o = 0; o < width * height; o++)
+		if ([0, 1, 2].every((k) => Math.abs(data[4 * o + k] - want[k]) < 60) && data[4 * o + 3] > 150) xs.push(from + o % width);
+	return [(middle - Math.min(...xs)) / scale, (Math.max(...xs) + 1 - middle) / scale];
+})()`
+
+// The ring about the newest point is whole on a narrow screen.
+func TestBrowserRing(t *testing.T) {
+	n := watchNight(t, newNight(t, 1, 2, 3), "127.0.0.1:0")
+	tab := browser(t)
+	do(t, tab, chromedp.EmulateViewport(390, 844), chromedp.Navigate(n.url))
+	shown(t, tab, "ramp_0003")
+	until(t, tab, "the trend", `document.querySelector('#trend-plot .u-over')`)
+	eval[bool](t, tab, `document.querySelector('#trend').scrollIntoView(); true`)
+	time.Sleep(300 * time.Millisecond)
+	screenshot(t, tab, "phone-trend")
+	if got := eval[[]float64](t, tab, ringSpan); len(got) != 2 || !(got[0] > 8 && got[1] > 8 && math.Abs(got[0]-got[1]) < 1.5) {
+		t.Errorf("the ring reaches %.1f px to the left and to the right", got)
+	}
 }
 
 func abs(i int) int { return max(i, -i) }

@@ -35,6 +35,8 @@ export class RegionTool {
     $("drawing").hidden = false;
     $("density").classList.add("draws");
     this.set(null);
+    $("eye").classList.add("draws");
+    reveal($("eye"));
   }
 
   end() {
@@ -43,6 +45,7 @@ export class RegionTool {
     this.pictures.drag = null;
     $("drawing").hidden = true;
     $("density").classList.remove("draws");
+    $("eye").classList.remove("draws");
     this.pictures.choose(this.before);
   }
 
@@ -91,4 +94,14 @@ export class RegionTool {
       this.say(error.message);
     }
   }
+}
+
+// reveal scrolls a part of the page into sight that is not all there, below the header where
+// that stays.
+function reveal(part) {
+  const header = document.querySelector("header"), stays = getComputedStyle(header).position === "sticky";
+  const top = stays ? header.offsetHeight : 0, box = part.getBoundingClientRect();
+  if (box.top >= top && box.bottom <= innerHeight) return;
+  part.style.scrollMarginTop = top + "px";
+  part.scrollIntoView({ block: "start" });
 }

@@ -137,15 +137,23 @@ export class Trend {
       }
       c.stroke();
     }
+    c.restore();
+    this.ring(u);
+  }
+
+  // ring draws that about the shot shown; it may reach over the frame, its middle may not.
+  ring(u) {
+    const c = u.ctx, dot = devicePixelRatio, { x, y } = u.scales, inside = (v, s) => v >= s.min && v <= s.max;
     const now = this.points.find((p) => p.row.shot === this.shots.current);
-    if (now) {
+    if (now && inside(now.x, x) && inside(now.y, y)) {
+      c.save();
       c.strokeStyle = css("--ink");
       c.lineWidth = dot * 2;
       c.beginPath();
       c.arc(u.valToPos(now.x, "x", true), u.valToPos(now.y, "y", true), 8 * dot, 0, 7);
       c.stroke();
+      c.restore();
     }
-    c.restore();
   }
 
   noteZoom(u) {
