@@ -437,6 +437,29 @@ func TestBrowserRegionOnPhone(t *testing.T) {
 	}
 }
 
+// The picture of a shot that was passed by, when it comes late, does not keep away that of the
+// shot shown.
+func TestBrowserLateAnswer(t *testing.T) {
+	n := watchNight(t, newNight(t, 1, 2, 3), "127.0.0.1:0")
+	tab := browser(t)
+	do(t, tab, chromedp.EmulateViewport(1440, 900), chromedp.Navigate(n.url))
+	shown(t, tab, "ramp_0003")
+	eval[bool](t, tab, `(() => {
+		const later = (ms) => new Promise((done) => setTimeout(done, ms)), ask = window.fetch, decode = HTMLImageElement.prototype.decode;
+		window.fetch = async (what, ...rest) => {
+			if (/view.*ramp_0002/.test(what.url ?? what)) await later(400).then(() => { window.late = true; });
+			return ask(what, ...rest);
+		};
+		HTMLImageElement.prototype.decode = async function () { await later(900); return decode.call(this); };
+		return true;
+	})()`)
+	do(t, tab, chromedp.KeyEvent(kb.ArrowLeft), chromedp.KeyEvent(kb.ArrowLeft))
+	shown(t, tab, "ramp_0001")
+	if !eval[bool](t, tab, `window.late === true`) {
+		t.Error("no answer was late")
+	}
+}
+
 // ringSpan is how far to the left and to the right of its middle the ring about the newest
 // point of the trend is drawn, in CSS px.
 const ringSpan = `(() => {

@@ -87,6 +87,7 @@ function showRow(row, shot) {
 }
 
 async function showView(shot, view) {
+  if (wanted !== shot) return; // an answer that comes late must not take the turn of the shot shown
   const mine = ++turn;
   await pictures.load(shot, view);
   if (wanted !== shot || mine !== turn) return;
