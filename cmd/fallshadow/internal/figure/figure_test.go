@@ -13,6 +13,8 @@ import (
 	"strconv"
 	"strings"
 	"testing"
+
+	"gonum.org/v1/plot/vg"
 )
 
 // sample is a figure with everything in it, some of it outside of the axes or NaN.
@@ -263,5 +265,34 @@ func TestLooks(t *testing.T) {
 			t.Errorf("roles %d and %d have the same dashes", role, other)
 		}
 		dashes[key] = role
+	}
+}
+
+// TestLegendHidesNothing: the legend goes where no curve passes, also between the points of one
+// of few points and where all corners are taken.
+func TestLegendHidesNothing(t *testing.T) {
+	axis := Axis{Min: 0, Max: 1}
+	nan := math.NaN()
+	for name, curves := range map[string][]Curve{
+		"none":            nil,
+		"both diagonals":  {{X: []float64{0, 1}, Y: []float64{0, 1}}, {X: []float64{0, 1}, Y: []float64{1, 0}}},
+		"steep from afar": {{X: []float64{0, 0.1, 1}, Y: []float64{90, 0.1, 0.1}}, {X: []float64{0.9, 1}, Y: []float64{-7, 9}}},
+		"broken":          {{X: []float64{0, 0.05, 0.1, 1}, Y: []float64{nan, 0.9, nan, 0.9}}, {X: []float64{0, 1}, Y: []float64{0.1, 0.1}}},
+	} {
+		s := &sheet{Figure: &Figure{X: axis, Y: axis, Curves: curves}, frame: vg.Rectangle{Max: vg.Point{X: 200, Y: 120}}}
+		box := s.freest(vg.Point{X: 50, Y: 30})
+		if box.Min.X < legendInset || box.Min.Y < legendInset || box.Max.X > 200-legendInset+1e-9 || box.Max.Y > 120-legendInset+1e-9 {
+			t.Errorf("%s: the legend %v is not in the frame", name, box)
+		}
+		for _, c := range curves {
+			for k := 1; k < len(c.X); k++ {
+				for part := 0.0; part <= 1; part += 1.0 / 4096 {
+					p := s.at(c.X[k-1]+part*(c.X[k]-c.X[k-1]), c.Y[k-1]+part*(c.Y[k]-c.Y[k-1]))
+					if p.X > box.Min.X && p.X < box.Max.X && p.Y > box.Min.Y && p.Y < box.Max.Y {
+						t.Fatalf("%s: the legend %v hides %v", name, box, p)
+					}
+				}
+			}
+		}
 	}
 }

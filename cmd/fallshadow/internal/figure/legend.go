@@ -1,6 +1,10 @@
 package figure
 
-import "gonum.org/v1/plot/vg"
+import (
+	"math"
+
+	"gonum.org/v1/plot/vg"
+)
 
 // entry is a line of the legend.
 type entry struct {
@@ -46,7 +50,7 @@ func (s *sheet) entries() []entry {
 	return list
 }
 
-// legend draws the legend in the corner that covers least.
+// legend draws the legend where it hides least.
 func (s *sheet) legend() {
 	list := s.entries()
 	if len(list) == 0 {
@@ -57,7 +61,7 @@ func (s *sheet) legend() {
 		wide = max(wide, e.label.width(legendSize))
 	}
 	size := vg.Point{X: sample + gap + wide, Y: vg.Length(len(list)) * lineFeed}
-	box := s.corner(size)
+	box := s.freest(size)
 	s.c.SetColor(white)
 	s.c.Fill(vg.Rectangle{Min: vg.Point{X: box.Min.X - 2, Y: box.Min.Y - 1}, Max: vg.Point{X: box.Max.X + 2, Y: box.Max.Y + 1}}.Path())
 	y := box.Max.Y - lineFeed
@@ -69,45 +73,77 @@ func (s *sheet) legend() {
 	}
 }
 
-// corner returns where a box of the given size covers the fewest points and curves.
-func (s *sheet) corner(size vg.Point) vg.Rectangle {
+// freest returns where a box of the given size hides the fewest points and the least of the
+// curves: a corner, or if all of them hide something any place in the frame.
+func (s *sheet) freest(size vg.Point) vg.Rectangle {
+	const steps = 12
 	f := s.frame
-	left, right := f.Min.X+legendInset, f.Max.X-legendInset-size.X
-	top, bottom := f.Max.Y-legendInset-size.Y, f.Min.Y+legendInset
+	left, bottom := f.Min.X+legendInset, f.Min.Y+legendInset
+	wide, high := f.Max.X-legendInset-size.X-left, f.Max.Y-legendInset-size.Y-bottom
+	drawn := s.drawn()
 	var best vg.Rectangle
 	least := -1.0
-	for _, min := range []vg.Point{{X: right, Y: top}, {X: left, Y: bottom}, {X: left, Y: top}, {X: right, Y: bottom}} {
-		box := vg.Rectangle{Min: min, Max: min.Add(size)}
-		if cost := s.covered(box); least < 0 || cost < least {
+	try := func(x, y vg.Length) {
+		at := vg.Point{X: left + x*wide, Y: bottom + y*high}
+		box := vg.Rectangle{Min: at, Max: at.Add(size)}
+		if cost := hidden(drawn, box); least < 0 || cost < least {
 			best, least = box, cost
+		}
+	}
+	for _, corner := range [][2]vg.Length{{1, 1}, {0, 0}, {0, 1}, {1, 0}} {
+		try(corner[0], corner[1])
+	}
+	for y := steps; y >= 0 && least > 0; y-- {
+		for x := steps; x >= 0; x-- {
+			try(vg.Length(x)/steps, vg.Length(y)/steps)
 		}
 	}
 	return best
 }
 
-// covered counts what lies in a box, a point like ten of the points of a curve.
-func (s *sheet) covered(box vg.Rectangle) float64 {
-	const edge = 3
-	in := func(x, y float64) bool {
-		if !s.X.holds(x) || !s.Y.holds(y) {
-			return false
+// spot is a place of the frame where something is drawn, and what it costs to hide it.
+type spot struct {
+	vg.Point
+	cost float64
+}
+
+// drawn returns the points, and the curves as spots two points (1/72 inch) apart; a point of
+// data costs like 20 points of a curve.
+func (s *sheet) drawn() (list []spot) {
+	f := s.frame
+	add := func(p vg.Point, cost float64) {
+		if p.X >= f.Min.X && p.X <= f.Max.X && p.Y >= f.Min.Y && p.Y <= f.Max.Y {
+			list = append(list, spot{p, cost})
 		}
-		p := s.at(x, y)
-		return p.X > box.Min.X-edge && p.X < box.Max.X+edge && p.Y > box.Min.Y-edge && p.Y < box.Max.Y+edge
 	}
-	cost := 0.0
 	for i := range s.Points {
 		for k, x := range s.Points[i].X {
-			if in(x, s.Points[i].Y[k]) {
-				cost += 10
-			}
+			add(s.at(x, s.Points[i].Y[k]), 10)
 		}
 	}
 	for i := range s.Curves {
-		for k, x := range s.Curves[i].X {
-			if in(x, s.Curves[i].Y[k]) {
-				cost++
+		for k := 1; k < len(s.Curves[i].X); k++ {
+			a, b := s.at(s.Curves[i].X[k-1], s.Curves[i].Y[k-1]), s.at(s.Curves[i].X[k], s.Curves[i].Y[k])
+			length := math.Hypot(float64(b.X-a.X), float64(b.Y-a.Y))
+			if length-length != 0 {
+				continue // NaN breaks a curve
 			}
+			parts := min(int(length/2)+1, 2000)
+			for j := range parts {
+				t := (vg.Length(j) + 0.5) / vg.Length(parts)
+				add(vg.Point{X: a.X + t*(b.X-a.X), Y: a.Y + t*(b.Y-a.Y)}, length/2/float64(parts))
+			}
+		}
+	}
+	return list
+}
+
+// hidden is what it costs to lay a box over what is drawn.
+func hidden(drawn []spot, box vg.Rectangle) (cost float64) {
+	const edge = 3
+	for _, p := range drawn {
+		if p.X > box.Min.X-edge && p.X < box.Max.X+edge && p.Y > box.Min.Y-edge && p.Y < box.Max.Y+edge {
+			cost += p.cost
 		}
 	}
 	return cost
