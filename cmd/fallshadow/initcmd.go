@@ -42,7 +42,7 @@ func writeNew(path string, data []byte) (err error) {
 		return fmt.Errorf("%s is there already and is not written over: give another name, or move it away", path)
 	}
 	if dir := filepath.Dir(path); errors.Is(err, fs.ErrNotExist) {
-		return fmt.Errorf("write settings: there is no folder %s: make it first, or name a file in one that is there (%w)", dir, fs.ErrNotExist)
+		return fmt.Errorf("write settings: there is no folder %s: make it first, or name a file in one that is there", dir)
 	}
 	if err != nil {
 		return fmt.Errorf("write settings: %w", err)

@@ -44,7 +44,7 @@ func TestInitWritesOnce(t *testing.T) {
 	if got, err := os.ReadFile(path); err != nil || string(got) != "mine" {
 		t.Errorf("the file now holds %q, %v", got, err)
 	}
-	if err := (&initCmd{Write: filepath.Join(dir, "none", "x.toml")}).Run(&out); err == nil || !strings.Contains(err.Error(), "there is no folder "+filepath.Join(dir, "none")+": make it first") {
+	if err := (&initCmd{Write: filepath.Join(dir, "none", "x.toml")}).Run(&out); err == nil || !strings.Contains(err.Error(), "there is no folder "+filepath.Join(dir, "none")+": make it first, or name a file in one that is there") {
 		t.Errorf("in a folder that is not there: %v", err)
 	}
 	if entries, err := os.ReadDir(dir); err != nil || len(entries) != 1 {
