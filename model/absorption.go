@@ -21,7 +21,7 @@ type Law struct {
 
 func (l Law) logFactor() float64 { return l.Alpha * (1 + 4*l.Detuning*l.Detuning) }
 
-// Transmit returns the counted fraction of the light at optical density od, which may be
+// Transmit returns the counted fraction of the light at od = σ0 n, which may be
 // negative (more than 1 is counted then) and as large as one likes.
 func (l Law) Transmit(od, s float64) float64 {
 	return (1-l.Stray)*math.Exp(-transmitLog(od, s, l.logFactor())) + l.Stray

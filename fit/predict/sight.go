@@ -90,7 +90,7 @@ func (s *Sight) reach(shape model.Shape) {
 	s.Reach[1] = math.Max(s.Reach[1], math.Sqrt(shape.YY))
 }
 
-// deepen fills in the optical densities of σ0 n at the centre.
+// deepen fills in the depths that σ0 n at the centre has.
 func (p *Plan) deepen(s *Sight, density float64) {
 	o := &p.Experiment.Optics
 	s.Depth = density / (o.Alpha * (1 + 4*o.Detuning*o.Detuning))
