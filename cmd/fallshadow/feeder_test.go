@@ -11,6 +11,7 @@ import (
 	"path/filepath"
 	"slices"
 	"strconv"
+	"strings"
 	"sync"
 	"testing"
 	"time"
@@ -255,7 +256,13 @@ func TestWatchLosesNothing(t *testing.T) {
 	}
 	t.Logf("%d rows after %d kills", len(rows), deaths)
 	if len(rows) != n {
-		t.Fatalf("%d rows of %d shots", len(rows), n)
+		var others []string
+		for _, r := range rows {
+			if !strings.HasPrefix(r.Shot, "feed_") {
+				others = append(others, r.Shot)
+			}
+		}
+		t.Fatalf("%d rows of %d shots, of other names: %v", len(rows), n, others)
 	}
 	allRight(t, rows, shots, true)
 }

@@ -370,3 +370,29 @@ func TestNewestFirst(t *testing.T) {
 	}
 	h.until(t, "word that they waited, and that it is over", func() bool { return said(h, "the newest go first")() && len(h.notes) == 0 })
 }
+
+// A shot that is renamed, and one that is deleted, while nobody watches: the row of the first goes by
+// its new name, that of the second is not of the night.
+func TestRenamedBetweenWatches(t *testing.T) {
+	dir := filepath.Join(t.TempDir(), "night")
+	for _, n := range []string{"1", "2", "3"} {
+		copyFile(t, shotFile(n), filepath.Join(dir, "ramp_000"+n+".fits"))
+	}
+	lab(t, dir)
+	h := newHall()
+	w, stop := run(t, Options{Dir: dir}, h)
+	h.until(t, "three shots", h.seen(3))
+	stop()
+	if err := os.Rename(filepath.Join(dir, "ramp_0002.fits"), filepath.Join(dir, "ramp_0009.fits")); err != nil {
+		t.Fatal(err)
+	}
+	if err := os.Remove(filepath.Join(dir, "ramp_0003.fits")); err != nil {
+		t.Fatal(err)
+	}
+	again := newHall()
+	w, _ = run(t, Options{Dir: dir, Out: w.Out}, again)
+	again.until(t, "the rows of what is there", func() bool { return slices.Equal(names(rowsOf(t, w)), []string{"ramp_0001", "ramp_0009"}) })
+	if len(again.order) > 0 {
+		t.Errorf("%v were fitted again", again.order)
+	}
+}

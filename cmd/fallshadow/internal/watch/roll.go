@@ -36,6 +36,8 @@ type roll struct {
 	mu       sync.Mutex
 	shots    map[string]*entry
 	arrivals []*entry // by arrival; those that are gone too
+	scanned  bool     // once
+	returned bool     // a shot whose row was not of the folder has come back
 }
 
 // known is what the ledger says of a shot.
@@ -84,7 +86,7 @@ func newRoll(root string, rows []ledger.Row, seen map[string]ledger.Sighting) *r
 }
 
 // update takes in what a scan found and returns the shots to be read now, in the order
-// they came, whether shots have left the folder, and whether shots that were there have
+// they came, whether shots have left the folder or returned to it, and whether shots that were there have
 // another place in that order.
 func (r *roll) update(shots []imageio.Shot, now time.Time) (jobs []*job, gone, moved bool) {
 	r.mu.Lock()
@@ -105,6 +107,9 @@ func (r *roll) update(shots []imageio.Shot, now time.Time) (jobs []*job, gone, m
 			gone = true
 		}
 	}
+	// What left while nobody watched has a row still.
+	gone = gone || r.returned || !r.scanned && len(r.rows) > 0
+	r.scanned, r.returned = true, false
 	return jobs, gone, moved
 }
 
@@ -130,7 +135,7 @@ func (r *roll) meet(m met, now time.Time) *job {
 		e = &entry{shot: s, looks: looks, since: now, next: now, arrival: -1, known: r.rows[s.Name]}
 		r.shots[s.Name] = e
 		if r.isCurrent(e) {
-			e.state = done
+			e.state, r.returned = done, r.scanned
 			r.arrive(e)
 		}
 		e.known.meta = nil // has served
@@ -230,18 +235,19 @@ func (r *roll) unchanged(j *job, now time.Time) bool {
 	return false
 }
 
-// finish closes a job whose row stands.
-func (r *roll) finish(j *job, k known) {
+// finish closes a job whose row stands, and reports whether its shot is in the folder still.
+func (r *roll) finish(j *job, k known) bool {
 	r.mu.Lock()
 	defer r.mu.Unlock()
 	e := r.shots[j.Name]
 	if e == nil {
-		return
+		return false
 	}
 	e.known, e.why, e.state = k, nil, done
 	if !slices.Equal(e.looks, j.looks) || !maps.Equal(e.shot.Meta, j.Meta) {
 		e.state = waiting
 	}
+	return true
 }
 
 // knownOf returns what the ledger says of a shot.

@@ -101,7 +101,12 @@ func (w *Watcher) conclude(ctx context.Context, j *job, m measured) error {
 	if err := w.store.Put(ctx, w.row(j, &m), j.looks...); err != nil {
 		return err
 	}
-	w.roll.finish(j, k)
+	if !w.roll.finish(j, k) { // it left the folder meanwhile, which no scan will see again
+		if err := w.store.Reconcile(ctx, w.roll.present()); err != nil {
+			return err
+		}
+		w.audience.Changed()
+	}
 	w.noteBacklog()
 	if m.err == nil {
 		w.notes.set("bench", "")
