@@ -8,40 +8,10 @@ import (
 	"os"
 	"path/filepath"
 	"strconv"
-	"strings"
 	"testing"
 
 	"fallshadow/cmd/fallshadow/internal/settings"
 )
-
-// evapSettings describe the night of raw shots that testdata/reference/evap_truth.csv belongs
-// to: made by a generator written apart from this program.
-const evapSettings = `
-[atom]
-species = "87Rb"
-[trap]
-axis1_hz = { value = 20.0, err = 0.0 }
-axis2_hz = { value = 120.0, err = 0.0 }
-sight_hz = { value = 120.0, err = 0.0 }
-angle_deg = 4.0
-[camera]
-pixel_um = 6.45
-magnification = { value = 2.0, err = 0.0 }
-electrons_per_count = 1.0
-read_noise_electrons = 6.0
-resolution_um = { value = 3.0, err = 0.0 }
-[probe]
-alpha = { value = 2.0, err = 0.0 }
-counts_per_isat = { value = 9000.0, err = 0.0 }
-[flight]
-from = "TOF"
-zero_ms = { value = 0.0, err = 0.0 }
-[shots]
-planes = ["atoms", "light", "dark"]
-scan = ["EVAP"]
-[fit]
-reference = "REFERENCE"
-`
 
 // quietProgress shows nothing.
 type quietProgress struct{}
@@ -91,7 +61,12 @@ func evapTables(t *testing.T, reference string) (got, truth, bound []row) {
 	if dir == "" {
 		t.Skip("FALLSHADOW_NIGHT_EVAP does not name the folder of the night")
 	}
-	s, err := settings.Parse([]byte(strings.Replace(evapSettings, "REFERENCE", reference, 1)), "evap")
+	ref := filepath.Join("..", "..", "..", "..", "testdata", "reference")
+	text, err := os.ReadFile(filepath.Join(ref, "evap_settings.toml"))
+	if err != nil {
+		t.Fatal(err)
+	}
+	s, err := settings.Parse(fmt.Appendf(text, "[fit]\nreference = %q\n", reference), "evap_settings.toml")
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -99,7 +74,6 @@ func evapTables(t *testing.T, reference string) (got, truth, bound []row) {
 	if _, err := Batch(context.Background(), Options{Dir: dir, Out: out, Settings: s}, quietProgress{}); err != nil {
 		t.Fatal(err)
 	}
-	ref := filepath.Join("..", "..", "..", "..", "testdata", "reference")
 	got = readTable(t, filepath.Join(out, "results.csv"))
 	truth, bound = readTable(t, filepath.Join(ref, "evap_truth.csv")), readTable(t, filepath.Join(ref, "evap_bound.csv"))
 	if len(got) != 16 || len(truth) != 16 {

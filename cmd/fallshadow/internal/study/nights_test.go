@@ -40,36 +40,17 @@ func fitted(t *testing.T, dir, text string) (*Night, *Analysis) {
 	return n, analysed(t, n)
 }
 
-const evapSettings = `[atom]
-species = "87Rb"
-[trap]
-axis1_hz = { value = 20.0, err = 0.0 }
-axis2_hz = { value = 120.0, err = 0.0 }
-sight_hz = { value = 120.0, err = 0.0 }
-angle_deg = 4.0
-[camera]
-pixel_um = 6.45
-magnification = { value = 2.0, err = 0.0 }
-electrons_per_count = 1.0
-read_noise_electrons = 6.0
-resolution_um = { value = 3.0, err = 0.0 }
-[probe]
-alpha = { value = 2.0, err = 0.0 }
-counts_per_isat = { value = 9000.0, err = 0.0 }
-[flight]
-from = "TOF"
-zero_ms = { value = 0.0, err = 0.0 }
-[shots]
-scan = ["EVAP"]
-`
-
 // TestEvapNight: a night that another program drew condenses by 1 − t³ at Tc0.
 func TestEvapNight(t *testing.T) {
 	dir := os.Getenv("FALLSHADOW_NIGHT_EVAP")
 	if dir == "" {
 		t.Skip("FALLSHADOW_NIGHT_EVAP does not name the folder of the night")
 	}
-	_, a := fitted(t, dir, evapSettings)
+	text, err := os.ReadFile(filepath.Join("..", "..", "..", "..", "testdata", "reference", "evap_settings.toml"))
+	if err != nil {
+		t.Fatal(err)
+	}
+	_, a := fitted(t, dir, string(text))
 	c := a.Comparisons[0]
 	t.Logf("chi2 a point %.3f, Tc/Tc0 %s", c.PerDof(), format(*a.Measured()))
 	if c.Law.Name != curve.Ideal || !(c.PerDof() >= 0.5 && c.PerDof() <= 2) {
