@@ -6,7 +6,6 @@ import (
 	"bytes"
 	"context"
 	"fmt"
-	"math"
 	"os"
 	"path/filepath"
 	"slices"
@@ -29,7 +28,7 @@ import (
 const demoNight = "../../../../testdata/night"
 
 // browser starts a Chromium of its own; a tab is made of what it returns.
-func browser(t *testing.T) context.Context { return tabFor(t, 2*time.Minute) }
+func browser(t *testing.T) context.Context { return tabFor(t, 6*time.Minute) }
 
 // longTab is a tab for a long test.
 func longTab(t *testing.T) context.Context { return tabFor(t, time.Hour) }
@@ -68,16 +67,46 @@ func eval[T any](t *testing.T, tab context.Context, script string) (v T) {
 	return v
 }
 
+// patience is how long a page may take for what is looked for.
+const patience = time.Minute
+
 // until waits until a script is true.
 func until(t *testing.T, tab context.Context, what, script string) {
 	t.Helper()
-	for end := time.Now().Add(40 * time.Second); time.Now().Before(end); time.Sleep(50 * time.Millisecond) {
+	for end := time.Now().Add(patience); time.Now().Before(end); time.Sleep(50 * time.Millisecond) {
 		if eval[bool](t, tab, "!!("+script+")") {
 			return
 		}
 	}
 	screenshot(t, tab, "failed")
 	t.Fatalf("waited in vain for: %s; the page says %q", what, eval[string](t, tab, "document.body.innerText.slice(0, 600)"))
+}
+
+// trendBox is where points of the trend are, in CSS px: left, top, width and height.
+const trendBox = `(() => { const b = document.querySelector('#trend-plot .u-over').getBoundingClientRect(); return [b.x, b.y, b.width, b.height]; })()`
+
+// inTrend returns the place at a part of the trend's width, half-way up.
+func inTrend(t *testing.T, tab context.Context, part float64) (x, y float64) {
+	t.Helper()
+	box := eval[[]float64](t, tab, trendBox)
+	return box[0] + part*box[2], box[1] + box[3]/2
+}
+
+// hover moves the mouse to and fro at a part of the trend's width, which may be drawn anew
+// meanwhile, until it reads what a script tests as r; it returns where the mouse is.
+func hover(t *testing.T, tab context.Context, part float64, what, script string) (x, y float64) {
+	t.Helper()
+	for end, k := time.Now().Add(patience), 0.0; time.Now().Before(end); k = 1 - k {
+		x, y = inTrend(t, tab, part)
+		y += k
+		do(t, tab, chromedp.MouseEvent(input.DispatchMouseEventTypeMouseMoved, x, y))
+		if eval[bool](t, tab, `(() => { const r = document.querySelector('#trend-read').textContent; return !!(`+script+`); })()`) {
+			return x, y
+		}
+		time.Sleep(50 * time.Millisecond)
+	}
+	t.Fatalf("the trend does not read %s but %q", what, eval[string](t, tab, `document.querySelector('#trend-read').textContent`))
+	return 0, 0
 }
 
 // screenshot keeps what the window shows, if anybody wants it.
@@ -485,11 +514,8 @@ func TestBrowserRing(t *testing.T) {
 	shown(t, tab, "ramp_0003")
 	until(t, tab, "the trend", `document.querySelector('#trend-plot .u-over')`)
 	eval[bool](t, tab, `document.querySelector('#trend').scrollIntoView(); true`)
-	time.Sleep(300 * time.Millisecond)
+	until(t, tab, "a whole ring", `(([left, right]) => left > 8 && right > 8 && Math.abs(left - right) < 1.5)(`+ringSpan+`)`)
 	screenshot(t, tab, "phone-trend")
-	if got := eval[[]float64](t, tab, ringSpan); len(got) != 2 || !(got[0] > 8 && got[1] > 8 && math.Abs(got[0]-got[1]) < 1.5) {
-		t.Errorf("the ring reaches %.1f px to the left and to the right", got)
-	}
 }
 
 func abs(i int) int { return max(i, -i) }
@@ -526,36 +552,81 @@ func TestBrowserTrend(t *testing.T) {
 	do(t, tab, chromedp.EmulateViewport(1440, 900), chromedp.Navigate(n.url))
 	until(t, tab, "seven shots", fmt.Sprintf(countIs, 7))
 	choose := func(id, value string) {
+		t.Helper()
+		until(t, tab, value+" on offer", fmt.Sprintf(`[...document.querySelector(%q).options].some((o) => o.value === %q)`, id, value))
 		eval[bool](t, tab, fmt.Sprintf(`(() => { const s = document.querySelector(%q); s.value = %q; s.dispatchEvent(new Event('change')); return true; })()`, id, value))
 	}
 	choose("#trend-y", "fraction")
 	choose("#trend-x", "RAMPEND")
-	until(t, tab, "the trend", `document.querySelector('#trend-plot .u-over') && document.querySelector('#trend-x').value === 'RAMPEND'`)
-	box := eval[[]float64](t, tab, `(() => { const b = document.querySelector('#trend-plot .u-over').getBoundingClientRect(); return [b.x, b.y, b.width, b.height]; })()`)
-	time.Sleep(300 * time.Millisecond)
-	at := func(part float64) (float64, float64) { return box[0] + part*box[2], box[1] + box[3]/2 }
-	x, y := at(0.18)
-	do(t, tab, chromedp.MouseEvent(input.DispatchMouseEventTypeMouseMoved, x, y))
-	until(t, tab, "the value", `/^ramp_0006: 0\.(69|7).* at RAMPEND 260/.test(document.querySelector('#trend-read').textContent)`)
+	until(t, tab, "the trend", `document.querySelector('#trend-plot .u-over')`)
+	x, y := hover(t, tab, 0.18, "a value", `/^ramp_0006: 0\.(69|7).* at RAMPEND 260/.test(r)`)
 	do(t, tab, chromedp.MouseClickXY(x, y))
 	shown(t, tab, "ramp_0006")
-	limit, _ := at(0.82)
-	do(t, tab, chromedp.MouseEvent(input.DispatchMouseEventTypeMouseMoved, limit, y))
-	until(t, tab, "a limit", `/^ramp_0002: < 0\.00.* at RAMPEND 300/.test(document.querySelector('#trend-read').textContent)`)
+	x, y = hover(t, tab, 0.82, "a limit", `/^ramp_0002: < 0\.00.* at RAMPEND 300/.test(r)`)
 	screenshot(t, tab, "trend-limits")
-	do(t, tab, chromedp.MouseClickXY(limit, y))
+	do(t, tab, chromedp.MouseClickXY(x, y))
 	shown(t, tab, "ramp_0002")
 	until(t, tab, "the limit among all numbers", `[...document.querySelectorAll('#all tr')].some((r) => /^fraction< 0\.00/.test(r.textContent))`)
 	do(t, tab, chromedp.KeyEvent(kb.End), chromedp.KeyEvent(kb.ArrowLeft))
 	shown(t, tab, "ramp_0006")
-	x0, y0 := at(0.4)
-	x1, y1 := at(0.9)
+	x0, y0 := inTrend(t, tab, 0.4)
+	x1, y1 := inTrend(t, tab, 0.9)
 	do(t, tab, chromedp.DragAndDropXY(x0, y0, x1, y1, 5))
 	until(t, tab, "the zoom", `!document.querySelector('#trend-all').hidden`)
 	screenshot(t, tab, "trend")
 	do(t, tab, chromedp.Click("#trend-all"))
 	until(t, tab, "all of it", `document.querySelector('#trend-all').hidden`)
 	shown(t, tab, "ramp_0006") // dragging was no click
+}
+
+// Who looks before there are settings is shown what they say once they are there.
+func TestBrowserBeforeSettings(t *testing.T) {
+	dir := filepath.Join(t.TempDir(), "night")
+	n := watchNight(t, dir, "127.0.0.1:0")
+	tab := browser(t)
+	do(t, tab, chromedp.EmulateViewport(1440, 900), chromedp.Navigate(n.url))
+	until(t, tab, "the connection", isLive)
+	until(t, tab, "no scan variables", `document.querySelector('#trend-x').options.length === 1`)
+	addFile(t, filepath.Join(demoNight, "fallshadow.toml"), filepath.Join(dir, "fallshadow.toml"))
+	until(t, tab, "scan variables", `[...document.querySelector('#trend-x').options].some((o) => o.value === 'RAMPEND')`)
+	until(t, tab, "settings", `document.querySelector('#settings-text').textContent.includes('[trap]')`)
+}
+
+// A shot that comes while the night is being read again stays.
+func TestBrowserShotWhileReading(t *testing.T) {
+	dir := newNight(t, 1, 2, 3)
+	n := watchNight(t, dir, "127.0.0.1:0")
+	tab := browser(t)
+	do(t, tab, chromedp.EmulateViewport(1440, 900), chromedp.Navigate(n.url))
+	shown(t, tab, "ramp_0003")
+	until(t, tab, "the connection", isLive)
+	eval[bool](t, tab, `(() => {
+		const ask = window.fetch;
+		window.held = { night: 0, column: 0 }, window.free = {}, window.passed = {};
+		window.fetch = async (what, ...rest) => {
+			const answer = await ask(what, ...rest), kind = /api.(night|column)/.exec(what)?.[1];
+			if (kind) for (window.held[kind]++; !window.free[kind];) await new Promise((done) => setTimeout(done, 20));
+			if (kind) window.passed[kind] = true;
+			return answer;
+		};
+		return true;
+	})()`)
+	for i, kind := range []string{"night", "column"} {
+		name := fmt.Sprintf("ramp_%04d", i+4)
+		if i == 0 {
+			n.page.Changed()
+		}
+		until(t, tab, "the answer", fmt.Sprintf(`window.held[%q] > 0`, kind))
+		addShot(t, dir, i+4, name)
+		until(t, tab, name, fmt.Sprintf(countIs, i+4))
+		eval[bool](t, tab, fmt.Sprintf(`window.free[%q] = true`, kind))
+		until(t, tab, "the answer read", fmt.Sprintf(`window.passed[%q]`, kind))
+	}
+	until(t, tab, "all shots", fmt.Sprintf(countIs, 5))
+	for i := range 5 {
+		name := fmt.Sprintf("ramp_%04d", i+1)
+		hover(t, tab, 0.02+0.96*float64(i)/4, name, fmt.Sprintf(`r.startsWith(%q)`, name+": "))
+	}
 }
 
 // Two series in one night: shots stand, follow one another and are drawn as they came, not
@@ -582,11 +653,8 @@ func TestBrowserTwoSeries(t *testing.T) {
 		if !slices.Equal(list, shots[:n]) {
 			t.Errorf("the list is %v", list)
 		}
-		box := eval[[]float64](t, tab, `(() => { const b = document.querySelector('#trend-plot .u-over').getBoundingClientRect(); return [b.x, b.y, b.width, b.height]; })()`)
 		for i, name := range shots[:n] {
-			x := box[0] + box[2]*(0.02+0.96*float64(i)/float64(n-1))
-			do(t, tab, chromedp.MouseEvent(input.DispatchMouseEventTypeMouseMoved, x, box[1]+box[3]/2))
-			until(t, tab, name+" in the trend", fmt.Sprintf(`document.querySelector('#trend-read').textContent.startsWith(%q)`, name+":"))
+			hover(t, tab, 0.02+0.96*float64(i)/float64(n-1), name, fmt.Sprintf(`r.startsWith(%q)`, name+":"))
 		}
 	}
 	inOrder(4)
@@ -634,9 +702,7 @@ func TestBrowserSettingsChange(t *testing.T) {
 	notes := func(part string) {
 		t.Helper()
 		until(t, tab, part, fmt.Sprintf(`document.querySelector('#notes').checkVisibility() && document.querySelector('#notes').textContent.includes(%q)`, part))
-		if got, want := eval[string](t, tab, `document.querySelector('#notes').textContent`), strings.Join(n.watch.Notes(), "\n"); got != want {
-			t.Errorf("the page says %q, the watch %q", got, want)
-		}
+		until(t, tab, "what the watch says", fmt.Sprintf(`document.querySelector('#notes').textContent === %q`, strings.Join(n.watch.Notes(), "\n")))
 	}
 	save("alpha = { value = 1.5,", "alhpa = { value = 1.5,")
 	notes("the settings were changed and are wrong, the old ones hold")

@@ -107,6 +107,7 @@ func (w *Watcher) Run(ctx context.Context) (err error) {
 		return err
 	}
 	close(w.ready)
+	w.audience.Changed() // who looked before saw neither settings nor earlier rows
 	wake := w.wakes(ctx)
 	var all sync.WaitGroup
 	all.Go(func() { w.writeTables(ctx) })

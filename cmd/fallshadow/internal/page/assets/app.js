@@ -17,6 +17,8 @@ const region = new RegionTool(pictures, (text) => say(text));
 
 let columns = [], sentences = {};
 let following = true, connected = false;
+let loads = 0;          // counts readings of the night: the last one asked for stays
+let late = null;        // rows that came since it was asked for, as long as it is on its way
 let turn = 0;           // counts views: the last one asked for stays
 let latestAt = null;    // when the last shot came
 let wanted = null;      // the shot that is being shown
@@ -24,9 +26,12 @@ let detail = null;      // its row
 let judged = null;      // the row that a person is asked about
 let notes = [], trouble = ""; // what the program says, and what went wrong here
 
-// load reads everything but the numbers of single shots.
+// load reads everything but the numbers of single shots. The answer may be older than a row
+// that comes while it is on its way, and than what is read after it.
 async function load() {
-  const night = await get("/api/night");
+  const mine = ++loads, meanwhile = late = [];
+  const night = await get("/api/night").finally(() => { if (mine === loads) late = null; });
+  if (mine !== loads) return night.event;
   columns = night.columns;
   sentences = night.flags;
   document.title = night.night + " · fallshadow";
@@ -36,6 +41,7 @@ async function load() {
   showRegion(night.region, night.drawn);
   pictures.scales(night.scales);
   shots.reset(night.rows || []);
+  for (const row of meanwhile) shots.put(row);
   trend.offer([...columns, ...(night.scan || []).map((name) => ({ name, meaning: "scan variable" }))], night.scan || []);
   const stays = wanted !== null && shots.has(wanted) && !following;
   const shot = stays ? wanted : shots.last();
@@ -48,6 +54,12 @@ async function load() {
   }
   await trend.load();
   return night.event;
+}
+
+// reload is load until it succeeds, or another begins.
+function reload() {
+  const mine = loads + 1;
+  load().catch(() => setTimeout(() => mine === loads && reload(), 1000));
 }
 
 // show shows a shot: its numbers, and its picture as soon as there is one. Where the row is
@@ -110,6 +122,7 @@ function follow() {
 
 const live = new Live({
   row(row) {
+    late?.push(row);
     shots.put(row);
     trend.put(row);
     latestAt = Date.now();
@@ -119,8 +132,8 @@ const live = new Live({
   picture(shot) {
     if (wanted === shot) get("/api/view", { shot }).then((view) => showView(shot, view)).catch((error) => say(error.message));
   },
-  changed: () => load().catch(() => {}),
-  begin: () => load().catch(() => {}),
+  changed: reload,
+  begin: reload,
   notes: showNotes,
 }, (is) => { connected = is; showStatus(); });
 

@@ -14,6 +14,8 @@ export class Trend {
     this.shots = shots;
     this.choose = choose;
     this.values = { x: new Map(), y: new Map() };
+    this.loads = 0;   // counts readings of the columns
+    this.late = null; // rows that came since the last one was asked for, as long as it is on its way
     this.points = [];
     $("trend-y").addEventListener("change", () => this.load());
     $("trend-x").addEventListener("change", () => this.load());
@@ -31,24 +33,33 @@ export class Trend {
     fill($("trend-x"), [order, ...scan], new Map());
   }
 
-  // load reads both columns for all shots.
+  // load reads both columns for all shots. The answer may be older than a row that comes
+  // while it is on its way, and than what is read after it.
   async load() {
     const [x, y] = [this.x, this.y];
     if (!y) return;
-    const [ys, xs] = await Promise.all([get("/api/column", { name: y }), x === order ? null : get("/api/column", { name: x })]);
-    if (x !== this.x || y !== this.y) return;
+    const mine = ++this.loads, meanwhile = this.late = [];
+    const [ys, xs] = await Promise.all([get("/api/column", { name: y }), x === order ? null : get("/api/column", { name: x })])
+      .finally(() => { if (mine === this.loads) this.late = null; });
+    if (mine !== this.loads) return;
     this.values = {
       y: new Map(ys.shots.map((n, i) => [n, reading(ys.values[i], ys.errors[i], ys.lows[i], ys.highs[i])])),
       x: new Map(xs?.shots.map((n, i) => [n, xs.values[i]])),
     };
+    for (const row of meanwhile) this.take(row);
     this.build();
   }
 
-  // put takes in the numbers of one shot.
+  // put takes in the numbers of one shot, and draws them.
   put(row) {
+    this.late?.push(row);
+    this.take(row);
+    this.refresh();
+  }
+
+  take(row) {
     this.values.y.set(row.shot, readingOf(row, this.y));
     if (this.x !== order) this.values.x.set(row.shot, row.numbers[this.x] ?? null);
-    this.refresh();
   }
 
   data() {
