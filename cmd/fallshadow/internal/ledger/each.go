@@ -30,7 +30,7 @@ func (r *Reader) each(ctx context.Context, yield func(*Row) bool) error {
 	if err != nil {
 		return err
 	}
-	words, err := r.verdicts(ctx)
+	words, err := verdicts(ctx, tx)
 	if err != nil {
 		return err
 	}

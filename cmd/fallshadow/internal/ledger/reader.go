@@ -85,7 +85,7 @@ func (r *Reader) Rows(ctx context.Context) ([]Row, error) {
 	}
 	slices.SortFunc(list, func(a, b Row) int { return imageio.Natural(a.Shot, b.Shot) })
 	markDuplicates(list)
-	words, err := r.verdicts(ctx)
+	words, err := verdicts(ctx, r.read)
 	if err != nil {
 		return nil, wrap("read the verdicts", err)
 	}

@@ -2,7 +2,10 @@ package ledger
 
 import (
 	"context"
+	"fmt"
+	"sync"
 	"testing"
+	"time"
 
 	"github.com/google/go-cmp/cmp"
 )
@@ -84,6 +87,31 @@ func TestEach(t *testing.T) {
 			t.Errorf("after a stop: %v, %v", r, err)
 		}
 	}
+}
+
+// Many may look at a night at the same time: none waits for what another holds.
+func TestEachByMany(t *testing.T) {
+	ctx, cancel := context.WithTimeout(context.Background(), time.Minute)
+	defer cancel()
+	l := open0(t, t.TempDir())
+	for i := range 100 {
+		put(t, l, row(fmt.Sprintf("shot_%d", i), byte(i)))
+	}
+	var all sync.WaitGroup
+	for range 32 {
+		all.Go(func() {
+			n := 0
+			for _, err := range l.Each(ctx) {
+				if n++; err != nil {
+					t.Error(err)
+				}
+			}
+			if n != 100 {
+				t.Errorf("%d rows", n)
+			}
+		})
+	}
+	all.Wait()
 }
 
 // A row whose shot has left the folder is found by its pixels; one that is there is not.

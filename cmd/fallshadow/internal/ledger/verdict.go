@@ -1,6 +1,9 @@
 package ledger
 
-import "context"
+import (
+	"context"
+	"database/sql"
+)
 
 // Judge stores a person's word against the shot with the given content; an empty word
 // takes it back. It holds for the pixels under whatever name they stand.
@@ -13,8 +16,13 @@ func (l *Ledger) Judge(ctx context.Context, content Digest, word string) error {
 	return wrap("store the verdict", err)
 }
 
-func (r *Reader) verdicts(ctx context.Context) (map[Digest]string, error) {
-	rows, err := r.read.QueryContext(ctx, "SELECT content, word FROM verdict")
+// asker is a pool of connections, or a transaction that holds one.
+type asker interface {
+	QueryContext(ctx context.Context, query string, args ...any) (*sql.Rows, error)
+}
+
+func verdicts(ctx context.Context, from asker) (map[Digest]string, error) {
+	rows, err := from.QueryContext(ctx, "SELECT content, word FROM verdict")
 	if err != nil {
 		return nil, err
 	}
