@@ -419,9 +419,9 @@ func TestViews(t *testing.T) {
 		measured++
 		return s.Measure(ctx, shot)
 	})
-	ctx := context.Background()
+	ctx, none := context.Background(), ledger.Digest{}
 	for i := range 3 * remembered {
-		if _, err := v.get(ctx, fmt.Sprint(i%(2*remembered))); err != nil {
+		if _, err := v.get(ctx, fmt.Sprint(i%(2*remembered)), none); err != nil {
 			t.Fatal(err)
 		}
 	}
@@ -429,12 +429,43 @@ func TestViews(t *testing.T) {
 		t.Errorf("%d views are kept", v.recent.Len())
 	}
 	before := measured
-	got, err := v.get(ctx, fmt.Sprint(remembered-1))
+	got, err := v.get(ctx, fmt.Sprint(remembered-1), none)
 	if err != nil || measured != before || got.Frame != [2]int{8, 6} || got.Region != [4]int{2, 2, 6, 5} || got.pictures["residual"] == nil {
 		t.Errorf("%+v, %v, measured %d times more", got, err, measured-before)
 	}
-	if _, err := v.get(ctx, "unread"); err == nil {
+	if _, err := v.get(ctx, "unread", none); err == nil {
 		t.Error("there is a view of what cannot be read")
+	}
+}
+
+// A view serves the pixels it was drawn from: not others that stand under the same name now,
+// as after a shot was deleted and another renamed, and not a file that cannot be read.
+func TestViewOfOtherPixels(t *testing.T) {
+	p, s, url := newServer(t, "")
+	view := func() string {
+		_, body := ask(t, "GET", url+"/api/view?shot=shot_2", "")
+		var v struct{ Mark string }
+		if err := json.Unmarshal([]byte(body), &v); err != nil {
+			t.Fatalf("%v, %s", err, body)
+		}
+		return v.Mark
+	}
+	f, raw, _ := s.Measure(context.Background(), "shot_2")
+	s.rows[0].Content = ledger.Digest{1}
+	raw.Digest = s.rows[0].Content
+	p.Picture("shot_2", f, raw)
+	first := view()
+	if again := view(); again != first {
+		t.Error("a view was not kept")
+	}
+	s.rows[0].Content = ledger.Digest{2}
+	if other := view(); other == first {
+		t.Error("other pixels are shown by the view of the first")
+	}
+	s.rows[1].Content = ledger.Digest{3}
+	p.Picture("unread", f, raw)
+	if status, body := ask(t, "GET", url+"/api/view?shot=unread", ""); status == 200 {
+		t.Errorf("what cannot be read is shown by the view of before: %s", body)
 	}
 }
 

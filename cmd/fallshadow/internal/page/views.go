@@ -8,6 +8,7 @@ import (
 	"math"
 	"sync"
 
+	"fallshadow/cmd/fallshadow/internal/ledger"
 	"fallshadow/cmd/fallshadow/internal/picture"
 	"fallshadow/cmd/fallshadow/internal/report"
 	"fallshadow/imageio"
@@ -115,11 +116,17 @@ type views struct {
 
 	mu     sync.Mutex
 	recent *list.List // of *kept, the latest first
-	at     map[string]*list.Element
+	at     map[seen]*list.Element
+}
+
+// seen is what a view was drawn from: a shot with these pixels.
+type seen struct {
+	shot    string
+	content ledger.Digest
 }
 
 type kept struct {
-	shot string
+	seen
 	view *view
 }
 
@@ -127,29 +134,32 @@ type kept struct {
 const remembered = 48
 
 func newViews(measure func(context.Context, string) (*report.Facts, *imageio.Raw, error)) *views {
-	return &views{measure: measure, one: make(chan struct{}, 1), recent: list.New(), at: map[string]*list.Element{}}
+	return &views{measure: measure, one: make(chan struct{}, 1), recent: list.New(), at: map[seen]*list.Element{}}
 }
 
 func (s *views) put(shot string, f *report.Facts, raw *imageio.Raw) *view {
-	v := newView(f, raw)
+	v, of := newView(f, raw), seen{shot: shot}
+	if raw != nil {
+		of.content = raw.Digest
+	}
 	s.mu.Lock()
 	defer s.mu.Unlock()
-	if e, ok := s.at[shot]; ok {
+	if e, ok := s.at[of]; ok {
 		s.recent.Remove(e)
 	}
-	s.at[shot] = s.recent.PushFront(&kept{shot, v})
+	s.at[of] = s.recent.PushFront(&kept{of, v})
 	for s.recent.Len() > remembered {
 		last := s.recent.Back()
-		delete(s.at, last.Value.(*kept).shot)
+		delete(s.at, last.Value.(*kept).seen)
 		s.recent.Remove(last)
 	}
 	return v
 }
 
-func (s *views) find(shot string) *view {
+func (s *views) find(of seen) *view {
 	s.mu.Lock()
 	defer s.mu.Unlock()
-	e, ok := s.at[shot]
+	e, ok := s.at[of]
 	if !ok {
 		return nil
 	}
@@ -157,9 +167,10 @@ func (s *views) find(shot string) *view {
 	return e.Value.(*kept).view
 }
 
-// get returns the view of a shot, measured now where it is not kept.
-func (s *views) get(ctx context.Context, shot string) (*view, error) {
-	if v := s.find(shot); v != nil {
+// get returns the view of a shot with the given pixels, measured now where it is not kept.
+func (s *views) get(ctx context.Context, shot string, content ledger.Digest) (*view, error) {
+	of := seen{shot, content}
+	if v := s.find(of); v != nil {
 		return v, nil
 	}
 	select {
@@ -168,7 +179,7 @@ func (s *views) get(ctx context.Context, shot string) (*view, error) {
 	case <-ctx.Done():
 		return nil, ctx.Err()
 	}
-	if v := s.find(shot); v != nil {
+	if v := s.find(of); v != nil {
 		return v, nil
 	}
 	f, raw, err := s.measure(ctx, shot)
