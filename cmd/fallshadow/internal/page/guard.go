@@ -24,7 +24,9 @@ type guard struct {
 	hosts   []string
 }
 
-const cookie = "fallshadow"
+// cookie is the name under which a browser keeps the token. The port is part of it: a browser
+// sends the cookies of a machine to all its ports, and there may be a page at several.
+func (g *guard) cookie() string { return "fallshadow" + strconv.Itoa(g.address.Port) }
 
 // newGuard makes the guard of an address. Without a token one is made up where it is
 // needed.
@@ -112,12 +114,12 @@ func (g *guard) admit(w http.ResponseWriter, r *http.Request) {
 		http.Error(w, "the token is not the one that the program printed", http.StatusForbidden)
 		return
 	}
-	http.SetCookie(w, &http.Cookie{Name: cookie, Value: g.token, Path: "/", HttpOnly: true, SameSite: http.SameSiteStrictMode})
+	http.SetCookie(w, &http.Cookie{Name: g.cookie(), Value: g.token, Path: "/", HttpOnly: true, SameSite: http.SameSiteStrictMode})
 	http.Redirect(w, r, "/", http.StatusSeeOther)
 }
 
 func (g *guard) admitted(r *http.Request) bool {
-	c, err := r.Cookie(cookie)
+	c, err := r.Cookie(g.cookie())
 	return err == nil && same(c.Value, g.token)
 }
 

@@ -11,6 +11,7 @@ import (
 	"iter"
 	"net"
 	"net/http"
+	"net/http/cookiejar"
 	"net/http/httptest"
 	"slices"
 	"strings"
@@ -223,11 +224,34 @@ func TestToken(t *testing.T) {
 			t.Errorf("%s: status %d, want %d", path, status, want)
 		}
 	}
-	if status, _ := ask(t, "GET", base+"/api/night", "", "Cookie", "fallshadow=sesame"); status != 200 {
+	name := "fallshadow" + base[strings.LastIndex(base, ":")+1:]
+	if status, _ := ask(t, "GET", base+"/api/night", "", "Cookie", name+"=sesame"); status != 200 {
 		t.Errorf("with the cookie: status %d", status)
 	}
-	if status, _ := ask(t, "GET", base+"/api/night", "", "Cookie", "fallshadow=other"); status != 403 {
+	if status, _ := ask(t, "GET", base+"/api/night", "", "Cookie", name+"=other"); status != 403 {
 		t.Errorf("with another cookie: status %d", status)
+	}
+}
+
+// One browser may look at two pages of a machine: cookies are the same for all its ports, so
+// that each needs one of its own.
+func TestTwoPagesInOneBrowser(t *testing.T) {
+	jar, err := cookiejar.New(nil)
+	if err != nil {
+		t.Fatal(err)
+	}
+	client := http.Client{Jar: jar}
+	_, _, one := newServer(t, "sesame")
+	_, _, two := newServer(t, "thyme")
+	for _, url := range []string{one, two, strings.TrimSuffix(one, "?token=sesame"), strings.TrimSuffix(two, "?token=thyme")} {
+		r, err := client.Get(url)
+		if err != nil {
+			t.Fatal(err)
+		}
+		r.Body.Close()
+		if r.StatusCode != 200 {
+			t.Errorf("%s: status %d", url, r.StatusCode)
+		}
 	}
 }
 
