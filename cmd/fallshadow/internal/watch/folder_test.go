@@ -3,6 +3,7 @@ package watch
 import (
 	"bytes"
 	"context"
+	"database/sql"
 	"fmt"
 	"image"
 	"os"
@@ -395,4 +396,33 @@ func TestRenamedBetweenWatches(t *testing.T) {
 	if len(again.order) > 0 {
 		t.Errorf("%v were fitted again", again.order)
 	}
+}
+
+// A shot that left the folder while the ledger could not be written leaves the table once it
+// can, and the note goes with its cause.
+func TestLedgerInLineLater(t *testing.T) {
+	dir := nightWith(t, "1", "2")
+	h := newHall()
+	w, _ := run(t, Options{Dir: dir}, h)
+	h.until(t, "two", h.seen(2))
+	db, err := sql.Open("sqlite", filepath.Join(w.Out, ledger.Name))
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer db.Close()
+	change := func(query string) {
+		t.Helper()
+		if _, err := db.Exec(query); err != nil {
+			t.Fatal(err)
+		}
+	}
+	change("CREATE TRIGGER full BEFORE UPDATE ON row BEGIN SELECT RAISE(ABORT, 'the disk is full'); END")
+	if err := os.Remove(filepath.Join(dir, "ramp_0001.fits")); err != nil {
+		t.Fatal(err)
+	}
+	h.until(t, "word of it", said(h, "the disk is full"))
+	change("DROP TRIGGER full")
+	h.until(t, "one row and no note", func() bool {
+		return slices.Equal(names(rowsOf(t, w)), []string{"ramp_0002"}) && len(h.notes) == 0
+	})
 }

@@ -117,9 +117,10 @@ func (w *Watcher) beginRegion(ctx context.Context, jobs []*job, last string) boo
 			regions, err = w.store.Regions(ctx)
 		}
 		if err != nil {
-			w.notes.set("ledger", err.Error())
+			w.notes.set("region", err.Error())
 			return false
 		}
+		w.notes.set("region", "")
 		w.regions, w.drawn = regions, nil
 		return true
 	}

@@ -56,6 +56,7 @@ type entry struct {
 	tries   int
 	next    time.Time // for the next look
 	why     error     // it waits
+	held    error     // why it was put back
 	arrival int       // -1 before it was whole
 	known   known     // of its row; zero where it has none
 }
@@ -211,12 +212,25 @@ func (r *roll) refused(j *job, err error, now time.Time) (givenUp bool) {
 }
 
 // hold puts a job back for a while, without limit.
-func (r *roll) hold(j *job, now time.Time) {
+func (r *roll) hold(j *job, why error, now time.Time) {
 	r.mu.Lock()
 	defer r.mu.Unlock()
 	if e := r.shots[j.Name]; e != nil {
-		e.state, e.next = waiting, now.Add(late)
+		e.state, e.held, e.next = waiting, why, now.Add(late)
 	}
+}
+
+// holdup returns why the latest of the shots that were put back was, nil where there is none.
+func (r *roll) holdup() error {
+	r.mu.Lock()
+	defer r.mu.Unlock()
+	latest := &entry{arrival: -1}
+	for _, e := range r.shots {
+		if e.held != nil && e.arrival > latest.arrival {
+			latest = e
+		}
+	}
+	return latest.held
 }
 
 // unchanged reports whether the files of a job look as they did when it was made; where
@@ -243,7 +257,7 @@ func (r *roll) finish(j *job, k known) bool {
 	if e == nil {
 		return false
 	}
-	e.known, e.why, e.state = k, nil, done
+	e.known, e.why, e.held, e.state = k, nil, nil, done
 	if !slices.Equal(e.looks, j.looks) || !maps.Equal(e.shot.Meta, j.Meta) {
 		e.state = waiting
 	}

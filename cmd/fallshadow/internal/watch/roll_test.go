@@ -151,7 +151,7 @@ func TestRollReadsAgain(t *testing.T) {
 		t.Error("the change is not seen")
 	}
 	j = a.expect(time.Second, 1)[0]
-	a.roll.hold(j, a.now)
+	a.roll.hold(j, errors.New("no bench"), a.now)
 	a.expect(late/2, 0)
 	j = a.expect(late, 1)[0]
 	if a.roll.refused(j, errors.New("read half of it"), a.now) != true {

@@ -66,19 +66,29 @@ func (w *Watcher) scanOnce(ctx context.Context) {
 	last := w.roll.last()
 	jobs, gone, moved := w.roll.update(scanned.Shots, time.Now())
 	w.noteStrays(scanned)
-	if gone {
-		if err := w.store.Reconcile(context.WithoutCancel(ctx), w.roll.present()); err != nil {
-			w.notes.set("ledger", err.Error())
-		}
-		w.audience.Changed()
-		w.askTable()
+	if gone || w.owed {
+		w.reconcile(ctx)
 	}
 	if w.beginRegion(ctx, jobs, last) || moved {
 		w.audience.Changed()
 	}
 	w.queue.push(jobs...)
 	w.noteBacklog()
+	w.noteHoldup()
 	w.noteWaiting()
+}
+
+// reconcile brings the ledger in line with the folder, and notes where that failed: the next
+// scan tries again.
+func (w *Watcher) reconcile(ctx context.Context) {
+	err := w.store.Reconcile(context.WithoutCancel(ctx), w.roll.present())
+	if w.owed = err != nil; w.owed {
+		w.notes.set("ledger", err.Error())
+		return
+	}
+	w.notes.set("ledger", "")
+	w.audience.Changed()
+	w.askTable()
 }
 
 // noteStrays says that there are files but no shots: a layout that does not fit the files
@@ -101,6 +111,15 @@ func (w *Watcher) noteBacklog() {
 		text = "there are more shots than can be fitted at once: the newest go first, the others follow"
 	}
 	w.notes.set("backlog", text)
+}
+
+// noteHoldup says why shots are not fitted yet that were read.
+func (w *Watcher) noteHoldup() {
+	text := ""
+	if why := w.roll.holdup(); why != nil {
+		text = "waiting with the fit: " + why.Error()
+	}
+	w.notes.set("bench", text)
 }
 
 // noteWaiting says which shot is waited for, once that has lasted.

@@ -21,7 +21,8 @@ func (w *Watcher) askTable() {
 	}
 }
 
-// writeTables writes the table when it is asked for, but not all the time.
+// writeTables writes the table when it is asked for, but not all the time, and again where
+// that failed.
 func (w *Watcher) writeTables(ctx context.Context) {
 	for {
 		select {
@@ -32,6 +33,7 @@ func (w *Watcher) writeTables(ctx context.Context) {
 		text := ""
 		if err := w.writeTable(context.WithoutCancel(ctx)); err != nil {
 			text = err.Error()
+			w.askTable()
 		}
 		w.notes.set("table", text)
 		if !pause(ctx, tableEvery) {

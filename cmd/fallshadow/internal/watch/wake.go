@@ -21,7 +21,7 @@ func (w *Watcher) wakes(ctx context.Context) <-chan struct{} {
 	if !w.NoEvents {
 		var err error
 		if watcher, err = fsnotify.NewWatcher(); err != nil {
-			w.notes.set("events", "the system sends no events, new shots are found by polling: "+err.Error())
+			w.noteEvents(err)
 		} else {
 			events, faults = watcher.Events, watcher.Errors
 			w.follow(watcher)
@@ -56,6 +56,15 @@ func (w *Watcher) wakes(ctx context.Context) <-chan struct{} {
 	return wake
 }
 
+// noteEvents says why the system sends no events, with no error that it does.
+func (w *Watcher) noteEvents(err error) {
+	text := ""
+	if err != nil {
+		text = "the system sends no events, new shots are found by polling: " + err.Error()
+	}
+	w.notes.set("events", text)
+}
+
 // follow asks for the events of all folders of the night; it is repeated, because folders
 // come, go and come again.
 func (w *Watcher) follow(watcher *fsnotify.Watcher) { w.followBelow(watcher, w.root) }
@@ -68,8 +77,8 @@ func (w *Watcher) followBelow(watcher *fsnotify.Watcher, path string) {
 		if path != w.root && (strings.HasPrefix(d.Name(), ".") || path == filepath.Join(w.root, "results")) {
 			return fs.SkipDir
 		}
-		if err := watcher.Add(path); err != nil && path == w.root {
-			w.notes.set("events", "the system sends no events, new shots are found by polling: "+err.Error())
+		if err := watcher.Add(path); path == w.root {
+			w.noteEvents(err)
 		}
 		return nil
 	})

@@ -64,9 +64,10 @@ type Watcher struct {
 	table chan struct{} // asks for the table to be written
 	notes notes
 
-	sheet    sheet     // this and the next two belong to who scans
+	sheet    sheet     // this and the next three belong to who scans
 	taken    time.Time // when settings were put in force, as long as a note says so
 	objected bool      // a note says that settings are wrong or gone
+	owed     bool      // the ledger is not in line with the folder yet
 
 	mu      sync.Mutex
 	lab     *settings.Settings
@@ -108,6 +109,7 @@ func (w *Watcher) Run(ctx context.Context) (err error) {
 	}
 	close(w.ready)
 	w.audience.Changed() // who looked before saw neither settings nor earlier rows
+	w.askTable()         // the last watch may have been killed before it wrote it
 	wake := w.wakes(ctx)
 	var all sync.WaitGroup
 	all.Go(func() { w.writeTables(ctx) })

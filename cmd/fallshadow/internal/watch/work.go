@@ -77,8 +77,8 @@ func (w *Watcher) conclude(ctx context.Context, j *job, m measured) error {
 	var early *notReadyError
 	switch {
 	case errors.As(m.err, &early):
-		w.notes.set("bench", "waiting with the fit: "+early.Error())
-		w.roll.hold(j, time.Now())
+		w.roll.hold(j, early, time.Now())
+		w.noteHoldup()
 		return nil
 	case m.unread && !w.roll.refused(j, m.err, time.Now()):
 		return nil
@@ -108,9 +108,7 @@ func (w *Watcher) conclude(ctx context.Context, j *job, m measured) error {
 		w.audience.Changed()
 	}
 	w.noteBacklog()
-	if m.err == nil {
-		w.notes.set("bench", "")
-	}
+	w.noteHoldup()
 	w.askTable()
 	return w.tell(ctx, j, &m)
 }
