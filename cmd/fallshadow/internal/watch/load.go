@@ -3,6 +3,7 @@ package watch
 import (
 	"context"
 	"fmt"
+	"time"
 
 	"fallshadow/cmd/fallshadow/internal/ledger"
 	"fallshadow/cmd/fallshadow/internal/night"
@@ -25,13 +26,18 @@ func (w *Watcher) darks(ctx context.Context, file imageio.ShotFile) ([]*imageio.
 }
 
 // recall fits the last shot once more where its row stands, as after a restart: it can be
-// seen at once, and the next one finds all prepared.
+// seen at once, and the next one finds all prepared. Other frames than its row was made of
+// mean that the layout changed while nobody watched.
 func (w *Watcher) recall(ctx context.Context) {
 	last := w.roll.newest()
-	if w.roll.knownOf(last).content == (ledger.Digest{}) {
+	content := w.roll.knownOf(last).content
+	if content == (ledger.Digest{}) {
 		return
 	}
-	if f, raw, err := w.Measure(ctx, last); err == nil {
+	f, raw, err := w.Measure(ctx, last)
+	if raw != nil && !content.Same(raw.Digest) {
+		w.roll.again(time.Now())
+	} else if err == nil {
 		w.audience.Picture(last, f, raw)
 	}
 }

@@ -2,10 +2,13 @@ package watch
 
 import (
 	"fmt"
+	"maps"
+	"slices"
 	"strings"
 	"time"
 
 	"fallshadow/cmd/fallshadow/internal/settings"
+	"fallshadow/imageio"
 )
 
 // shownFor is for how long a note says that settings were taken.
@@ -98,7 +101,7 @@ func (w *Watcher) object(now time.Time, what string, err error) {
 // resettle puts settings in force and says what is new in them, and from when on.
 func (w *Watcher) resettle(lab *settings.Settings, now time.Time) {
 	w.mu.Lock()
-	changed := changes(w.lab, lab)
+	changed, layout := changes(w.lab, lab), w.lab.Layout()
 	w.lab = lab
 	w.mu.Unlock()
 	start := "the settings changed"
@@ -107,8 +110,13 @@ func (w *Watcher) resettle(lab *settings.Settings, now time.Time) {
 	}
 	switch {
 	case changed != "":
-		w.noteSettings(now, start+": "+changed+"; "+w.fromWhenOn())
+		since := w.fromWhenOn()
 		w.desk.resettle(lab)
+		if !sameFrames(layout, lab.Layout()) {
+			since = "all shots are read again"
+			w.roll.again(now)
+		}
+		w.noteSettings(now, start+": "+changed+"; "+since)
 		w.audience.Changed()
 		w.askTable()
 	case w.objected:
@@ -117,6 +125,11 @@ func (w *Watcher) resettle(lab *settings.Settings, now time.Time) {
 		return
 	}
 	w.objected, w.taken = false, now
+}
+
+// sameFrames reports whether two layouts take the same for the frames of a shot.
+func sameFrames(a, b imageio.Layout) bool {
+	return a.Kind == b.Kind && slices.Equal(a.Planes, b.Planes) && maps.Equal(a.Suffix, b.Suffix)
 }
 
 // fromWhenOn says for which shots settings hold that were just taken.

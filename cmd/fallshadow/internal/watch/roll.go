@@ -36,6 +36,7 @@ type roll struct {
 	mu       sync.Mutex
 	shots    map[string]*entry
 	arrivals []*entry // by arrival; those that are gone too
+	layout   int      // counts layouts of the frames
 	scanned  bool     // once
 	returned bool     // a shot whose row was not of the folder has come back
 }
@@ -75,6 +76,7 @@ type job struct {
 	looks   []ledger.Sighting
 	since   time.Time
 	arrival int
+	layout  int
 	isNew   bool // no job was made of it before
 }
 
@@ -148,6 +150,9 @@ func (r *roll) meet(m met, now time.Time) *job {
 		}
 	}
 	e.moment = m.moment
+	if e.state == waiting {
+		e.shot = s // what its frames are may be another
+	}
 	if e.state != waiting || now.Before(e.next) {
 		return nil
 	}
@@ -184,7 +189,7 @@ func (r *roll) take(e *entry) *job {
 	isNew := e.arrival < 0
 	r.arrive(e)
 	e.state = taken
-	return &job{Shot: e.shot, looks: e.looks, since: e.since, arrival: e.arrival, isNew: isNew}
+	return &job{Shot: e.shot, looks: e.looks, since: e.since, arrival: e.arrival, layout: r.layout, isNew: isNew}
 }
 
 // fails notes why a shot cannot be read yet, and reports whether to give it up.
@@ -258,10 +263,23 @@ func (r *roll) finish(j *job, k known) bool {
 		return false
 	}
 	e.known, e.why, e.held, e.state = k, nil, nil, done
-	if !slices.Equal(e.looks, j.looks) || !maps.Equal(e.shot.Meta, j.Meta) {
+	if !slices.Equal(e.looks, j.looks) || !maps.Equal(e.shot.Meta, j.Meta) || j.layout != r.layout {
 		e.state = waiting
 	}
 	return true
+}
+
+// again has all shots read once more, whatever their files look like: the layout that says
+// what their frames are is another now.
+func (r *roll) again(now time.Time) {
+	r.mu.Lock()
+	defer r.mu.Unlock()
+	r.layout++
+	for _, e := range r.shots {
+		if e.state == done {
+			e.state, e.next, e.tries = waiting, now, 0
+		}
+	}
 }
 
 // knownOf returns what the ledger says of a shot.
