@@ -248,7 +248,7 @@ func TestWatchLosesNothing(t *testing.T) {
 	close(next)
 	writers.Wait()
 	var rows []ledger.Row
-	for end := time.Now().Add(60*time.Second + time.Duration(n)*500*time.Millisecond); time.Now().Before(end); time.Sleep(500 * time.Millisecond) {
+	for end := time.Now().Add(4*time.Minute + time.Duration(n)*time.Second); time.Now().Before(end); time.Sleep(500 * time.Millisecond) {
 		rows = ledgerRows(out)
 		if len(rows) == n && allRight(t, rows, shots, false) {
 			break

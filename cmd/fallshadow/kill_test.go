@@ -2,9 +2,9 @@ package main
 
 import (
 	"bufio"
-	"bytes"
 	"context"
 	"encoding/csv"
+	"io"
 	"math/rand/v2"
 	"os"
 	"os/exec"
@@ -13,7 +13,6 @@ import (
 	"strconv"
 	"strings"
 	"sync"
-	"syscall"
 	"testing"
 	"time"
 
@@ -181,14 +180,19 @@ func TestInterruptedBatchKeepsWhatIsDone(t *testing.T) {
 	if _, code := program(t, "batch", night, "--out", undisturbed); code != 0 {
 		t.Fatalf("batch ended with %d", code)
 	}
-	cmd := exec.Command("fallshadow", "batch", night, "--out", results, "--workers", "1")
-	said := &interrupter{cmd: cmd}
-	cmd.Stderr = said
-	if code := exitCode(cmd.Run()); code != exitInterrupted {
-		t.Fatalf("exit code %d, want %d; it said\n%s", code, exitInterrupted, said.text.String())
+	cmd, pipe := startHeld(t, "[1/", "batch", night, "--out", results, "--workers", "1")
+	if err := cmd.Process.Signal(os.Interrupt); err != nil {
+		t.Fatal(err)
 	}
-	if !strings.Contains(said.text.String(), "run the same command again") {
-		t.Errorf("it said\n%s", said.text.String())
+	said, err := io.ReadAll(pipe)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if code := exitCode(cmd.Wait()); code != exitInterrupted {
+		t.Fatalf("exit code %d, want %d; it said\n%s", code, exitInterrupted, said)
+	}
+	if !strings.Contains(string(said), "run the same command again") {
+		t.Errorf("it said\n%s", said)
 	}
 	if n := len(lines(t, tableOf(t, results))) - 1; n < 1 || n > 4 {
 		t.Errorf("%d rows in the table after the interrupt", n)
@@ -201,38 +205,10 @@ func TestInterruptedBatchKeepsWhatIsDone(t *testing.T) {
 	}
 }
 
-// interrupter interrupts a program when it tells of its first shot.
-type interrupter struct {
-	cmd  *exec.Cmd
-	text bytes.Buffer
-	sent bool
-}
-
-func (i *interrupter) Write(p []byte) (int, error) {
-	i.text.Write(p)
-	if !i.sent && strings.Contains(i.text.String(), "[1/") {
-		i.sent = true
-		i.cmd.Process.Signal(syscall.SIGINT)
-	}
-	return len(p), nil
-}
-
 // A second batch on the same results stops at once and names the process that writes.
 func TestSecondBatchStops(t *testing.T) {
-	night, results := smallNight(t, 5), filepath.Join(t.TempDir(), "r")
-	first := exec.Command("fallshadow", "batch", night, "--out", results, "--workers", "1")
-	pipe, err := first.StderrPipe()
-	if err != nil {
-		t.Fatal(err)
-	}
-	if err := first.Start(); err != nil {
-		t.Fatal(err)
-	}
-	defer first.Wait()
-	defer first.Process.Kill()
-	if _, err := pipe.Read(make([]byte, 1)); err != nil { // it is past the lock when it says something
-		t.Fatal(err)
-	}
+	night, results := smallNight(t, 1), filepath.Join(t.TempDir(), "r")
+	first, _ := startHeld(t, "reading", "batch", night, "--out", results)
 	second := exec.Command("fallshadow", "batch", night, "--out", results)
 	said, err := second.CombinedOutput()
 	if code := exitCode(err); code != exitError || !strings.Contains(string(said), "process "+strconv.Itoa(first.Process.Pid)+" is writing") {

@@ -10,9 +10,9 @@ import (
 	"github.com/rogpeppe/go-internal/testscript"
 )
 
-// TestMain makes this test binary the program wherever a test runs "fallshadow".
+// TestMain makes this test binary the program wherever a test runs "fallshadow" or "held".
 func TestMain(m *testing.M) {
-	testscript.Main(m, map[string]func(){"fallshadow": main})
+	testscript.Main(m, map[string]func(){"fallshadow": main, "held": held})
 }
 
 func TestScripts(t *testing.T) {
