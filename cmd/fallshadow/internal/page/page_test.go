@@ -313,10 +313,10 @@ func TestDetail(t *testing.T) {
 	}
 }
 
-// events reads the kinds of events that come within a moment.
+// events reads the kinds of the next n events.
 func events(t *testing.T, url, after string, n int) (kinds []string, last string) {
 	t.Helper()
-	ctx, cancel := context.WithTimeout(context.Background(), 5*time.Second)
+	ctx, cancel := context.WithTimeout(context.Background(), time.Minute)
 	defer cancel()
 	r, err := http.NewRequestWithContext(ctx, "GET", url+"/events", nil)
 	if err != nil {
