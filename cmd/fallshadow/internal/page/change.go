@@ -48,7 +48,7 @@ func (p *Page) serveView(r *http.Request) (any, error) {
 	if err != nil {
 		return nil, err
 	}
-	return p.views.get(r.Context(), row.Shot, row.Content)
+	return p.views.get(r.Context(), row)
 }
 
 // servePicture sends a picture of a shot: density, residual or frame.
@@ -56,7 +56,7 @@ func (p *Page) servePicture(w http.ResponseWriter, r *http.Request) {
 	row, err := p.shot(r, r.URL.Query().Get("shot"))
 	var v *view
 	if err == nil {
-		v, err = p.views.get(r.Context(), row.Shot, row.Content)
+		v, err = p.views.get(r.Context(), row)
 	}
 	if err != nil || v.pictures[r.PathValue("kind")] == nil {
 		http.Error(w, "there is no such picture", http.StatusNotFound)

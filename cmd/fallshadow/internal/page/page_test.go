@@ -443,9 +443,9 @@ func TestViews(t *testing.T) {
 		measured++
 		return s.Measure(ctx, shot)
 	})
-	ctx, none := context.Background(), ledger.Digest{}
+	ctx := context.Background()
 	for i := range 3 * remembered {
-		if _, err := v.get(ctx, fmt.Sprint(i%(2*remembered)), none); err != nil {
+		if _, err := v.get(ctx, &ledger.Row{Shot: fmt.Sprint(i % (2 * remembered))}); err != nil {
 			t.Fatal(err)
 		}
 	}
@@ -453,11 +453,11 @@ func TestViews(t *testing.T) {
 		t.Errorf("%d views are kept", v.recent.Len())
 	}
 	before := measured
-	got, err := v.get(ctx, fmt.Sprint(remembered-1), none)
+	got, err := v.get(ctx, &ledger.Row{Shot: fmt.Sprint(remembered - 1)})
 	if err != nil || measured != before || got.Frame != [2]int{8, 6} || got.Region != [4]int{2, 2, 6, 5} || got.pictures["residual"] == nil {
 		t.Errorf("%+v, %v, measured %d times more", got, err, measured-before)
 	}
-	if _, err := v.get(ctx, "unread", none); err == nil {
+	if _, err := v.get(ctx, &ledger.Row{Shot: "unread"}); err == nil {
 		t.Error("there is a view of what cannot be read")
 	}
 }

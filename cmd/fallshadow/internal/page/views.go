@@ -167,9 +167,10 @@ func (s *views) find(of seen) *view {
 	return e.Value.(*kept).view
 }
 
-// get returns the view of a shot with the given pixels, measured now where it is not kept.
-func (s *views) get(ctx context.Context, shot string, content ledger.Digest) (*view, error) {
-	of := seen{shot, content}
+// get returns the view of the shot of a row, measured now where it is not kept. One that
+// cannot be fitted shows its frame.
+func (s *views) get(ctx context.Context, row *ledger.Row) (*view, error) {
+	of := seen{row.Shot, row.Content}
 	if v := s.find(of); v != nil {
 		return v, nil
 	}
@@ -182,9 +183,14 @@ func (s *views) get(ctx context.Context, shot string, content ledger.Digest) (*v
 	if v := s.find(of); v != nil {
 		return v, nil
 	}
-	f, raw, err := s.measure(ctx, shot)
-	if raw == nil {
+	f, raw, err := s.measure(ctx, row.Shot)
+	switch {
+	case ctx.Err() != nil: // who asked has left, and a fit was cut short
+		return nil, ctx.Err()
+	case raw == nil:
 		return nil, err
+	case err != nil && row.Reason == "": // it was fitted before, so will be again
+		return newView(nil, raw), nil
 	}
-	return s.put(shot, f, raw), nil // a shot that cannot be fitted shows its frame
+	return s.put(row.Shot, f, raw), nil
 }
