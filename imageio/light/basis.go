@@ -19,10 +19,11 @@ const blocksPerFrame = 8
 //	Σ (A/t - Σ c_j R_j)²
 //
 // over means of 4x4 and 8x8 pixels (those count fourfold), in large pictures of 16x16, too
-// (sixteenfold), in tiles of 16x16 pixels that the mask leaves open, t the transmission, with a small ridge about equal shares. It is taken where, with coefficients from one
-// half of a checkerboard of tiles and judged on the other, both ways, it leaves less
-// than the scaled light frame of the shot under the same trial; otherwise that frame is
-// taken, scaled over the open tiles. Reference says which: "basis" or "own".
+// (sixteenfold), in tiles of 16x16 pixels that the mask leaves open, t the transmission,
+// with a small ridge about equal shares. It is taken where, with coefficients from one half
+// of a checkerboard of tiles and judged on the other, both ways, it leaves less than the
+// scaled light frame of the shot under the same trial; otherwise that frame is taken,
+// scaled over the open tiles. Reference says which: "basis" or "own".
 //
 // The shot noise of the combination has the variance Σ c_j² R_j, which is LightShot =
 // Σ c_j² m_j / Σ c_j m_j per electron of it, m the mean of a frame: (own scale) for one
@@ -30,8 +31,8 @@ const blocksPerFrame = 8
 // darks of their own the frames' dark noise goes with their read noise, and Dark is 0.
 //
 // There are at most as many frames as eighths of the open blocks. A cloud without a mask,
-// an exposure or a shot without light, or no open tile leave the exposure as it is. It fails when ctx is done, or when mask
-// or transmission are not of the exposure's size.
+// an exposure or a shot without light, or no open tile leave the exposure as it is. It fails
+// when ctx is done, or when mask or transmission are not of the exposure's size.
 func (r *References) Apply(ctx context.Context, shot int, e *imageio.Exposure, cloud Cloud) (*imageio.Exposure, error) {
 	for _, n := range []int{len(cloud.Mask), len(cloud.Transmission)} {
 		if n != 0 && n != len(e.Light) {

@@ -69,6 +69,7 @@ func setUp(ctx context.Context, s *settings.Settings, region image.Rectangle, f 
 	if err != nil {
 		return nil, err
 	}
+	spareMemory(shared.Camera.Region)
 	b := &bench{settings: s.WithCamera(shared.Camera), night: shared, options: s.Options(), finds: finds}
 	if b.lab, err = b.settings.Lab(); err != nil {
 		return nil, err
