@@ -1,6 +1,7 @@
 package watch
 
 import (
+	"context"
 	"os"
 	"path/filepath"
 	"slices"
@@ -111,23 +112,23 @@ func TestSettingsAreSaid(t *testing.T) {
 		}
 		want = append(want, got)
 	}
-	write(t, file, []byte(good+"# a word more\n"))
-	write(t, file, []byte(other))
+	save(t, file, []byte(good+"# a word more\n"))
+	save(t, file, []byte(other))
 	next("the settings changed: probe.alpha 1.5 ± 0.04 -> 3.0 ± 0.04; they hold from the next shot on, the first after ramp_0001", "")
-	write(t, file, []byte(strings.Replace(strings.Replace(good, "magnification", "magnificence", 1), "binning", "bining", 1)))
+	save(t, file, []byte(strings.Replace(strings.Replace(good, "magnification", "magnificence", 1), "binning", "bining", 1)))
 	next("the settings were changed and are wrong, the old ones hold:\n", "")
 	if !strings.Contains(want[1], "magnificence") || strings.Count(want[1], "\n") < 2 {
 		t.Errorf("said %q", want[1])
 	}
-	write(t, file, []byte(other))
+	save(t, file, []byte(other))
 	next("the settings are right again, and as they were before", "")
 	if err := os.Remove(file); err != nil {
 		t.Fatal(err)
 	}
 	next("the settings are gone, the old ones hold: ", "")
-	write(t, file, []byte(good))
+	save(t, file, []byte(good))
 	next("the settings are right again: probe.alpha 3.0 ± 0.04 -> 1.5 ± 0.04; they hold from the next shot on, the first after ramp_0001", "")
-	write(t, file, []byte(other))
+	save(t, file, []byte(other))
 	next("the settings changed: probe.alpha 1.5 ± 0.04 -> 3.0 ± 0.04; they hold from the next shot on, the first after ramp_0001", "")
 	time.Sleep(2 * composed)
 	if got := h.ofSettings(); !slices.Equal(got, want) {
@@ -138,29 +139,51 @@ func TestSettingsAreSaid(t *testing.T) {
 // A file that is emptied and filled slowly, as by an editor or a copy, is judged when it is
 // whole, at the start of a watch too.
 func TestHalfWrittenSettings(t *testing.T) {
-	dir := nightWith(t, "1")
+	dir := nightWith(t)
 	file := filepath.Join(dir, settings.FileName)
 	good := read(t, file)
-	slowly := func(data []byte) {
-		for at := 0; at <= len(data); at += 1 + len(data)/5 {
-			write(t, file, data[:at])
-			time.Sleep(composed / 3)
-		}
-		write(t, file, data)
-	}
-	write(t, file, nil)
 	h := newHall()
-	w, _ := run(t, Options{Dir: dir, Poll: composed / 10}, h)
-	slowly(good)
-	h.until(t, "the first", h.seen(1))
-	slowly([]byte(strings.Replace(string(good), "alpha = { value = 1.5", "alpha = { value = 2", 1)))
-	h.until(t, "word of the change", said(h, "-> 2.0"))
-	slowly([]byte(strings.Replace(string(good), "alpha", "alhpa", 1)))
-	h.until(t, "word of the error", said(h, "alhpa"))
-	time.Sleep(2 * composed)
-	h.mu.Lock()
-	defer h.mu.Unlock()
-	if got := h.ofSettings(); len(got) != 2 {
+	w, err := New(Options{Dir: dir, Out: t.TempDir()}, h)
+	if err != nil {
+		t.Fatal(err)
+	}
+	w.desk, w.roll = newDesk(context.Background(), nil, w.load, w.darks), newRoll(dir, nil, nil)
+	now := time.Now()
+	const step = composed / 5
+	slowly := func(data []byte, look func() bool) {
+		t.Helper()
+		for at := 0; at < len(data)+len(data)/5; at += 1 + len(data)/5 {
+			write(t, file, data[:min(at, len(data))])
+			for range 5 {
+				if now = now.Add(step); look() {
+					t.Fatalf("%d of %d bytes were judged before they rested", min(at, len(data)), len(data))
+				}
+			}
+		}
+		if now = now.Add(step); !look() {
+			t.Fatal("they are not judged when they have rested")
+		}
+	}
+	slowly(good, func() bool {
+		done, err := w.firstSettings(now)
+		if err != nil {
+			t.Error(err)
+		}
+		return done
+	})
+	again := func() bool {
+		n := len(h.ofSettings())
+		w.rereadSettings(now)
+		return len(h.ofSettings()) > n
+	}
+	slowly([]byte(strings.Replace(string(good), "alpha = { value = 1.5", "alpha = { value = 2", 1)), again)
+	slowly([]byte(strings.Replace(string(good), "alpha", "alhpa", 1)), again)
+	for range 5 {
+		now = now.Add(composed)
+		again()
+	}
+	got := h.ofSettings()
+	if len(got) != 2 || !strings.Contains(got[0], "-> 2.0") || !strings.Contains(got[1], "alhpa") {
 		t.Errorf("said %q", got)
 	}
 	if w.settings().Probe.Alpha.Value != 2 {

@@ -80,10 +80,24 @@ func (h *hall) until(t *testing.T, what string, ok func() bool) {
 // seen reports whether rows of so many shots were told.
 func (h *hall) seen(n int) func() bool { return func() bool { return len(h.rows) >= n } }
 
-// lab writes the demo's settings into a folder.
+// lab puts the demo's settings into a folder.
 func lab(t *testing.T, dir string) {
 	t.Helper()
-	copyFile(t, filepath.Join(demo, "fallshadow.toml"), filepath.Join(dir, "fallshadow.toml"))
+	save(t, filepath.Join(dir, "fallshadow.toml"), read(t, filepath.Join(demo, "fallshadow.toml")))
+}
+
+// save puts a file in its place whole: settings that are written there could be judged by
+// their half where this machine pauses.
+func save(t *testing.T, to string, data []byte) {
+	t.Helper()
+	whole := filepath.Join(t.TempDir(), "whole")
+	write(t, whole, data)
+	if err := os.MkdirAll(filepath.Dir(to), 0o755); err != nil {
+		t.Fatal(err)
+	}
+	if err := os.Rename(whole, to); err != nil {
+		t.Fatal(err)
+	}
 }
 
 func copyFile(t *testing.T, from, to string) {
