@@ -148,6 +148,19 @@ func TestInteracting(t *testing.T) {
 	}
 }
 
+// TestNumberOff: a cross-section too little off for the flags of a single shot is seen where
+// all fits agree on it, and the right one is not.
+func TestNumberOff(t *testing.T) {
+	dir := simulated(t, "rubidium", 9)
+	for alpha, cautions := range map[string]int{"1.7": 1, "2.0": 0, "2.35": 1} {
+		_, text := look(t, dir, 3, "alpha = { value = 2.0,", "alpha = { value = "+alpha+",", "[shots]", "[fit]\nrebin = 2\n[shots]")
+		text = strings.Join(strings.Fields(text), " ")
+		if n := len(regexp.MustCompile(`mu\(R\)/mu\(N0\) is (1\.0[6-9]|0\.9[0-4])\d in the median of \d trial fits .*calibrate number`).FindAllString(text, -1)); n != cautions {
+			t.Errorf("alpha %s: %d cautions, want %d, in\n%s", alpha, n, cautions, text)
+		}
+	}
+}
+
 // listing tells of the files below a folder, with size and time.
 func listing(t *testing.T, dir string) string {
 	t.Helper()

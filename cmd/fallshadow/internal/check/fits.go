@@ -108,6 +108,7 @@ func (v *visit) judgeFits() {
 		if v.judgeSaturation() {
 			others = withoutForm(others)
 		}
+		v.judgeMeanField()
 		for _, f := range slices.Concat(suspects, others) {
 			v.trouble.cautions = append(v.trouble.cautions, matter{f.Name + ": " + f.Sentence, f.where})
 		}

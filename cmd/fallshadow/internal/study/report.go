@@ -159,6 +159,9 @@ func (a *Analysis) fillNumbers(p *page) {
 	if a.plainForm() {
 		p.Cautions = append(p.Cautions, plainFormCaution)
 	}
+	if text := a.numberOff(); text != "" {
+		p.Cautions = append(p.Cautions, text)
+	}
 }
 
 func (a *Analysis) fillTransition(p *page) {

@@ -174,6 +174,9 @@ func (a *Analysis) writeMeanField(w io.Writer) {
 		fmt.Fprintf(w, "  release energy from %d flights: %.4g nK (E/k) for %.3g atoms, over (2/7) mu(N0): %s\n",
 			r.Flights, r.Energy.V/model.KB*1e9, r.Atoms, format(r.Ratio))
 	}
+	if text := a.numberOff(); text != "" {
+		fmt.Fprintln(w, "  caution: "+text)
+	}
 }
 
 func (a *Analysis) writeAttractive(w io.Writer) {
