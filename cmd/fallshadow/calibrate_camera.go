@@ -80,26 +80,27 @@ func (f *lightFrames) skip(err error) {
 	}
 }
 
-// each yields the shots that can be read. Shots without a dark of their own are lent the
-// night's, each of them once, so that no two differences are the same.
+// each yields the night's darks, each a shot of nothing else, then the shots that can be read.
 func (f *lightFrames) each() iter.Seq[*imageio.Raw] {
 	return func(yield func(*imageio.Raw) bool) {
-		var darks []*imageio.Frame
 		for _, file := range f.night.Darks {
 			list, err := imageio.ReadDark(f.ctx, f.dir, file)
 			if err != nil {
 				f.skip(err)
 			}
-			darks = append(darks, list...)
+			for _, frame := range list {
+				raw := &imageio.Raw{Digest: imageio.Digest(frame)}
+				raw.Frames[imageio.Dark] = frame
+				if !yield(raw) {
+					return
+				}
+			}
 		}
 		for _, s := range f.night.Shots {
 			raw, err := imageio.Read(f.ctx, f.dir, s, f.layout)
 			if err != nil {
 				f.skip(err)
 				continue
-			}
-			if raw.Frames[imageio.Dark] == nil && len(darks) > 0 {
-				raw.Frames[imageio.Dark], darks = darks[0], darks[1:]
 			}
 			if !yield(raw) {
 				return

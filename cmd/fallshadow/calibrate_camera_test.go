@@ -86,15 +86,21 @@ sight_hz = 120.0
 fixed_ms = 20.0
 `
 
-// TestCalibrateCameraFromDarkFiles lends the night's darks to shots without their own.
+// TestCalibrateCameraFromDarkFiles lends the night's darks, of one for each shot or fewer, to
+// shots without their own.
 func TestCalibrateCameraFromDarkFiles(t *testing.T) {
-	out, err := camera(t, 1, 6, 6, `planes = ["atoms", "light", "dark"]`, "planes = [\"atoms\", \"light\"]\ndark_files = [\"*_000[1234]_d.fits\"]", `"_l", "_d"]`, `"_l"]`)
+	planes := func(darks string) []string {
+		return []string{`planes = ["atoms", "light", "dark"]`, "planes = [\"atoms\", \"light\"]\ndark_files = [\"" + darks + "\"]", `"_l", "_d"]`, `"_l"]`}
+	}
+	out, err := camera(t, 1, 6, 6, planes("*_000[1234]_d.fits")...)
 	if err == nil || !strings.Contains(err.Error(), "needs two shots") {
 		t.Errorf("no dark file is found: %v\n%s", err, out)
 	}
-	out, err = camera(t, 1, 6, 6, `planes = ["atoms", "light", "dark"]`, "planes = [\"atoms\", \"light\"]\ndark_files = [\"*_d.fits\"]", `"_l", "_d"]`, `"_l"]`)
-	if err != nil || !strings.Contains(out, "over 5 pairs") {
-		t.Errorf("%v\n%s", err, out)
+	for _, darks := range []string{"*_d.fits", "*_000?_d.fits"} {
+		out, err = camera(t, 1, 6, 12, planes(darks)...)
+		if err != nil || !strings.Contains(out, "over 11 pairs") {
+			t.Errorf("%s: %v\n%s", darks, err, out)
+		}
 	}
 }
 

@@ -177,7 +177,7 @@ func (n *Night) measure(g *group) error {
 	if n.Camera.ElectronsPerCount == 0 {
 		t, err := g.transfer.fit()
 		if err != nil {
-			return fmt.Errorf("electrons per count is neither given nor can it be measured: %w", err)
+			return fmt.Errorf("electrons per count is neither given nor can it be measured: %w; state it (electrons_per_count), and the read noise", err)
 		}
 		n.Transfer, n.Camera.ElectronsPerCount = t, t.ElectronsPerCount
 	}

@@ -40,8 +40,10 @@ func (t *Transfer) Variance(p TransferPoint) (v, err float64) {
 // the ratio of powers; likewise the darks. Squares are averaged over tiles of 16x16
 // pixels, values beyond five spreads left out, and gathered by level in eighths of an
 // octave. A straight line, weighted by its own prediction, goes through the levels, the
-// darks at zero. The method is common practice (photon transfer). It fails with fewer
-// than two usable shots, or where the light spans too little to give a slope.
+// darks at zero. Shots without a dark of their own take the night's: those that come
+// before them, each a Raw that holds nothing else; of these at least two are needed. The
+// method is common practice (photon transfer). It fails with fewer than two usable shots,
+// or where the light spans too little to give a slope.
 func PhotonTransfer(ctx context.Context, camera Camera, raws iter.Seq[*imageio.Raw]) (*Transfer, error) {
 	camera.ElectronsPerCount = 0
 	g, err := gather(ctx, camera, raws)
@@ -70,29 +72,45 @@ type transferSums struct {
 	fullScale   float64
 	light, dark []float64 // of the shot before, counts
 	mean        float64   // of the light before, above its dark
+	lone        []float64 // the last of the night's darks
 	pairs       int
 	bins        [transferBins]TransferPoint
-	darks       TransferPoint
+	darks       TransferPoint // of successive shots
+	lones       TransferPoint // of the night's
 }
 
 func newTransferSums(w window, fullScale float64) *transferSums {
 	return &transferSums{win: w, fullScale: fullScale}
 }
 
-// add takes in a shot that has a light and a dark frame.
+// add takes in a shot that has a light and a dark frame, or one of the night's darks.
 func (t *transferSums) add(raw *imageio.Raw) {
 	l, d := raw.Frames[imageio.Light], raw.Frames[imageio.DarkOfLight]
 	if d == nil {
 		d = raw.Frames[imageio.Dark]
 	}
-	if !fits(l, t.win) || !fits(d, t.win) {
+	var dark []float64
+	switch {
+	case fits(d, t.win):
+		dark = t.win.crop(d)
+	case d == nil && l != nil:
+		dark = t.lone
+	}
+	if dark == nil || !usableDark(dark, t.fullScale) {
 		return
 	}
-	light, dark := t.win.crop(l), t.win.crop(d)
+	if l == nil {
+		t.addLone(dark)
+		return
+	}
+	if !fits(l, t.win) {
+		return
+	}
+	light := t.win.crop(l)
 	level, _, _ := clipped(dark)
 	bright, _, _ := clipped(light)
 	mean := bright - level
-	if !usableDark(dark, t.fullScale) || !(mean > 0) {
+	if !(mean > 0) {
 		return
 	}
 	if t.light != nil {
@@ -100,6 +118,33 @@ func (t *transferSums) add(raw *imageio.Raw) {
 		t.pairs++
 	}
 	t.light, t.dark, t.mean = light, dark, mean
+}
+
+// addLone takes in the difference between this one of the night's darks and the one before.
+func (t *transferSums) addLone(dark []float64) {
+	if t.lone != nil {
+		darks := make([]float64, len(dark))
+		for i, v := range dark {
+			darks[i] = v - t.lone[i]
+		}
+		for x, y := range t.tiles() {
+			t.lones.take(0, 2, darks, t.win.width, x, y)
+		}
+	}
+	t.lone = dark
+}
+
+// tiles yields the corners of the tiles.
+func (t *transferSums) tiles() iter.Seq2[int, int] {
+	return func(yield func(x, y int) bool) {
+		for y := 1; y+transferSide < t.win.height; y += transferSide {
+			for x := 1; x+transferSide < t.win.width; x += transferSide {
+				if !yield(x, y) {
+					return
+				}
+			}
+		}
+	}
 }
 
 // pair takes in the difference between this shot and power times the one before. The
@@ -116,10 +161,10 @@ func (t *transferSums) pair(light, dark []float64, power float64) {
 	}
 	both := 1 + power*power
 	width := t.win.width
-	for y := 1; y+transferSide < t.win.height; y += transferSide {
-		for x := 1; x+transferSide < width; x += transferSide {
-			now, before := tileMean(light, dark, width, x, y), tileMean(t.light, t.dark, width, x, y)
-			t.level((now+power*power*before)/both).take((now+power*power*before)/both, both, lights, width, x, y)
+	for x, y := range t.tiles() {
+		now, before := tileMean(light, dark, width, x, y), tileMean(t.light, t.dark, width, x, y)
+		t.level((now+power*power*before)/both).take((now+power*power*before)/both, both, lights, width, x, y)
+		if &dark[0] != &t.dark[0] {
 			t.darks.take(0, 2, darks, width, x, y)
 		}
 	}
@@ -179,11 +224,15 @@ func second(d []float64, i int) float64 { return d[i-1] - 2*d[i] + d[i+1] }
 
 // fit draws the straight line.
 func (t *transferSums) fit() (*Transfer, error) {
-	if t.pairs == 0 {
-		return nil, fmt.Errorf("photon transfer needs two shots with light and dark frames: there are fewer")
+	darks := t.darks
+	if darks.N == 0 {
+		darks = t.lones
+	}
+	if t.pairs == 0 || darks.N == 0 {
+		return nil, fmt.Errorf("photon transfer needs two shots with light frames and two dark frames, theirs or the night's: there are fewer")
 	}
 	var points []TransferPoint
-	for _, p := range append([]TransferPoint{t.darks}, t.bins[:]...) {
+	for _, p := range append([]TransferPoint{darks}, t.bins[:]...) {
 		if p.N > 0 {
 			points = append(points, TransferPoint{p.Mean / p.N, p.Variance / p.N, p.N})
 		}

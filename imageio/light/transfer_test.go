@@ -3,6 +3,7 @@ package light
 import (
 	"context"
 	"math"
+	"slices"
 	"testing"
 
 	"fallshadow/imageio"
@@ -33,6 +34,38 @@ func TestPhotonTransfer(t *testing.T) {
 		n := prepare(t, Camera{FullScale: 65535}, raws)
 		within(t, "gain of the night", n.Camera.ElectronsPerCount, m.ElectronsPerCount, 0)
 		within(t, "read noise of the night", n.Camera.ReadNoise, read, 0.1*read)
+	}
+}
+
+// TestTransferFromDarksOfTheNight measures the same camera from shots without darks of their
+// own after three or more of the night's, and refuses where there is but one, or one twice.
+func TestTransferFromDarksOfTheNight(t *testing.T) {
+	s := newScene(128, 128, 73).patterned()
+	s.gain, s.read, s.electrons, s.power, s.waist = 2.3, 12, 20000, 0.05, 120
+	shots := s.night(10)
+	var darks []*imageio.Raw
+	for i, raw := range shots {
+		lone := &imageio.Raw{}
+		lone.Frames[imageio.Dark], raw.Frames[imageio.Dark] = raw.Frames[imageio.Dark], nil
+		lone.Digest[0] = byte(i + 1)
+		darks = append(darks, lone)
+	}
+	read := math.Hypot(s.read, s.gain/math.Sqrt(12))
+	for _, most := range []int{3, 10} {
+		m, err := PhotonTransfer(context.Background(), Camera{FullScale: 65535}, each(append(slices.Clone(darks[:most]), shots...)))
+		if err != nil {
+			t.Fatal(err)
+		}
+		within(t, "gain", m.ElectronsPerCount, s.gain, min(0.02*s.gain, 4*m.ElectronsPerCountErr))
+		within(t, "read noise", m.ReadNoise, read, min(0.1*read, 4*m.ReadNoiseErr))
+		if m.Pairs != 9 {
+			t.Errorf("%d pairs", m.Pairs)
+		}
+	}
+	for _, few := range [][]*imageio.Raw{nil, darks[:1], {darks[0], darks[0]}} {
+		if m, err := PhotonTransfer(context.Background(), Camera{FullScale: 65535}, each(append(slices.Clone(few), shots...))); err == nil {
+			t.Errorf("%d darks: %+v", len(few), m)
+		}
 	}
 }
 

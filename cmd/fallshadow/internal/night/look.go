@@ -145,9 +145,13 @@ func (l *Look) Expose(ctx context.Context, shot int) (e Exposed) {
 	return l.expose(ctx, at)
 }
 
-// Frames yields the frames of the first readable shots, at most so many.
+// Frames yields the dark frames of the night, then those of the first readable shots, at most
+// so many.
 func (l *Look) Frames(ctx context.Context, most int) iter.Seq[*imageio.Raw] {
 	return func(yield func(*imageio.Raw) bool) {
+		if !l.batch.yieldDarks(ctx, false, yield) {
+			return
+		}
 		for at := range min(most, len(l.batch.readable)) {
 			raw, err := l.batch.load(ctx, at)
 			if err == nil && !yield(raw) {
