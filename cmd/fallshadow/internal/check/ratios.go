@@ -15,9 +15,14 @@ func (v *visit) writeRatios() {
 	}
 	v.page.title("Trial fits: ratios that are 1 when all settings are right")
 	lines := [][]string{{"shot", "model", "T1/T2", "mu1/mu2", "mu(R)/mu(N0)", "Nth/Nsat", "aspect", "predicted"}}
+	var names []string
+	for _, f := range v.fitted {
+		names = append(names, v.look.Shots[f.shot].Name)
+	}
+	names = brief(names, 16)
 	for i := range v.fitted {
 		f := &v.fitted[i]
-		row := []string{name(v.look.Shots[f.shot], 16), f.facts.Fit.Model}
+		row := []string{names[i], f.facts.Fit.Model}
 		for _, c := range []string{"T_axes_ratio", "mu_axes_ratio", "mu_over_mu_atoms"} {
 			row = append(row, report.Concise(&f.row, c))
 		}

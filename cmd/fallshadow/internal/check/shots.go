@@ -9,7 +9,6 @@ import (
 	"strconv"
 	"strings"
 
-	"fallshadow/cmd/fallshadow/internal/night"
 	"fallshadow/cmd/fallshadow/internal/report"
 	"fallshadow/imageio/fits"
 )
@@ -164,7 +163,7 @@ func (v *visit) lines() [][]string {
 			skipped, failed = 0, 0
 		}
 	}
-	shown := v.shown()
+	shown, names := v.shown(), brief(v.names(), 28)
 	for i := range v.shots {
 		if !shown[i] {
 			skipped++
@@ -174,7 +173,7 @@ func (v *visit) lines() [][]string {
 			continue
 		}
 		flush()
-		lines = append(lines, v.row(i))
+		lines = append(lines, v.row(i, names[i]))
 	}
 	return lines
 }
@@ -200,9 +199,16 @@ func (v *visit) shown() []bool {
 	return list
 }
 
-func (v *visit) row(i int) []string {
+func (v *visit) names() (list []string) {
+	for _, s := range v.look.Shots {
+		list = append(list, s.Name)
+	}
+	return list
+}
+
+func (v *visit) row(i int, name string) []string {
 	s, seen := &v.shots[i], v.look.Shots[i]
-	row := []string{name(seen, 28), strconv.Itoa(len(seen.Files)), "", "", ""}
+	row := []string{name, strconv.Itoa(len(seen.Files)), "", "", ""}
 	if s.frames > 0 {
 		row[2] = strconv.Itoa(s.frames)
 		row[3] = fmt.Sprintf("%dx%d", s.size.X, s.size.Y)
@@ -221,15 +227,6 @@ func (v *visit) row(i int) []string {
 		row = append(row, text)
 	}
 	return append(row, strings.Join(s.remarks, " "))
-}
-
-// name is that of a shot, of a long one its end.
-func name(s night.Seen, most int) string {
-	r := []rune(report.Printable(s.Name))
-	if len(r) > most {
-		return "~" + string(r[len(r)-most+1:])
-	}
-	return string(r)
 }
 
 // tidy shortens a number to six digits and a text to twelve characters.
