@@ -36,7 +36,7 @@ func longTab(t *testing.T) context.Context { return tabFor(t, time.Hour) }
 func tabFor(t *testing.T, limit time.Duration) context.Context {
 	t.Helper()
 	options := append(slices.Clone(chromedp.DefaultExecAllocatorOptions[:]),
-		chromedp.NoSandbox, chromedp.DisableGPU, chromedp.NoFirstRun, chromedp.UserDataDir(t.TempDir()),
+		chromedp.WSURLReadTimeout(limit), chromedp.NoSandbox, chromedp.DisableGPU, chromedp.NoFirstRun, chromedp.UserDataDir(t.TempDir()),
 		chromedp.Flag("disable-quic", true), chromedp.Flag("disable-background-networking", true),
 		chromedp.Flag("disable-component-update", true), chromedp.Flag("disable-sync", true),
 		chromedp.Flag("enable-precise-memory-info", true), chromedp.Flag("js-flags", "--expose-gc"))
@@ -183,11 +183,22 @@ func addShot(t *testing.T, dir string, n int, name string) {
 func addFile(t *testing.T, from, to string) {
 	t.Helper()
 	data, err := os.ReadFile(from)
+	if err != nil {
+		t.Fatal(err)
+	}
+	saveFile(t, to, data)
+}
+
+// saveFile puts a file in its place whole, however long this machine pauses.
+func saveFile(t *testing.T, to string, data []byte) {
+	t.Helper()
+	whole := filepath.Join(t.TempDir(), "whole")
+	err := os.WriteFile(whole, data, 0o644)
 	if err == nil {
 		err = os.MkdirAll(filepath.Dir(to), 0o755)
 	}
 	if err == nil {
-		err = os.WriteFile(to, data, 0o644)
+		err = os.Rename(whole, to)
 	}
 	if err != nil {
 		t.Fatal(err)
@@ -412,6 +423,7 @@ func TestBrowserRegion(t *testing.T) {
 	if next == nil || abs(next.Min.X-30) > 1 || abs(next.Min.Y-20) > 1 || abs(next.Max.X-130) > 1 || abs(next.Max.Y-125) > 1 {
 		t.Fatalf("the region is %v", next)
 	}
+	until(t, tab, "the tool put away", `document.querySelector('#drawing').hidden`)
 	do(t, tab, chromedp.KeyEvent("r"), chromedp.Click("#drawing-undo"))
 	until(t, tab, "it taken back", `document.querySelector('#region-now').textContent === ''`)
 	if _, next := n.watch.Region(); next != nil {
@@ -649,10 +661,7 @@ func TestBrowserTwoSeries(t *testing.T) {
 	shown(t, tab, "bec_0002")
 	inOrder := func(n int) {
 		t.Helper()
-		list := eval[[]string](t, tab, `[...document.querySelectorAll('.item .name')].map((e) => e.textContent).reverse()`)
-		if !slices.Equal(list, shots[:n]) {
-			t.Errorf("the list is %v", list)
-		}
+		until(t, tab, "the list in order", fmt.Sprintf(`[...document.querySelectorAll('.item .name')].map((e) => e.textContent).reverse().join() === %q`, strings.Join(shots[:n], ",")))
 		for i, name := range shots[:n] {
 			hover(t, tab, 0.02+0.96*float64(i)/float64(n-1), name, fmt.Sprintf(`r.startsWith(%q)`, name+":"))
 		}
@@ -695,9 +704,7 @@ func TestBrowserSettingsChange(t *testing.T) {
 		if !bytes.Contains(text, []byte(old)) {
 			t.Fatalf("there is no %q in the settings", old)
 		}
-		if err := os.WriteFile(file, bytes.Replace(text, []byte(old), []byte(new), 1), 0o644); err != nil {
-			t.Fatal(err)
-		}
+		saveFile(t, file, bytes.Replace(text, []byte(old), []byte(new), 1))
 	}
 	notes := func(part string) {
 		t.Helper()
@@ -780,7 +787,6 @@ func TestBrowserMarks(t *testing.T) {
 	until(t, tab, "the first", fmt.Sprintf(shownIs, "ramp_0001", "ramp_0001"))
 	for _, theme := range []string{"light", "dark"} {
 		eval[bool](t, tab, fmt.Sprintf(`document.documentElement.dataset.theme === %q || document.querySelector('#theme').click(); true`, theme))
-		time.Sleep(100 * time.Millisecond)
 		for i, m := range []struct {
 			colour               string
 			least, most, in, out float64
@@ -791,11 +797,9 @@ func TestBrowserMarks(t *testing.T) {
 			{"--muted", 0.4, 0.72, 0.35, 0.65, 1},
 			{"--muted", 0.1, 0.6, 0.3, 0.7, 0},
 		} {
-			got := eval[[]float64](t, tab, fmt.Sprintf(markShape, float64(i)/3, m.colour))
-			t.Logf("%s, shot %d: %.2f", theme, i+1, got)
-			if !(got[0] >= m.least && got[0] <= m.most && got[1] >= m.in && got[1] <= m.out && got[2] == m.middle) {
-				t.Errorf("%s: the mark of shot %d fills %.2f of its box, is widest at %.2f, middle %g", theme, i+1, got[0], got[1], got[2])
-			}
+			until(t, tab, fmt.Sprintf("the mark of shot %d, %s", i+1, theme), fmt.Sprintf(
+				`(([fills, widest, middle]) => fills >= %g && fills <= %g && widest >= %g && widest <= %g && middle === %g)(`+markShape+`)`,
+				m.least, m.most, m.in, m.out, m.middle, float64(i)/3, m.colour))
 		}
 		screenshot(t, tab, "marks-"+theme)
 		readable(t, tab, "marks-"+theme)
