@@ -52,15 +52,22 @@ export class Shots {
 
   // put takes in what the list shows of a row; all of it would make a long night heavy.
   put({ shot, at, model, flags, bad, failed, atoms }) {
-    if (this.has(shot)) this.rows.splice(this.place(shot), 1);
+    const list = $("list"), had = this.has(shot);
+    if (had) this.rows.splice(this.place(shot), 1);
     this.came.set(shot, at);
     this.rows.splice(this.place(shot), 0, { shot, at, model, flags, bad, failed, atoms });
     this.draw();
+    if (!had && this.top(shot) < list.scrollTop) list.scrollTop += height; // what a person looks at stays
+  }
+
+  // top is how far down a shot is drawn.
+  top(shot) {
+    return (this.rows.length - 1 - this.place(shot)) * height;
   }
 
   select(shot) {
     this.current = shot;
-    const list = $("list"), top = (this.rows.length - 1 - this.place(shot)) * height;
+    const list = $("list"), top = this.top(shot);
     if (top < list.scrollTop) list.scrollTop = top;
     if (top + height > list.scrollTop + list.clientHeight) list.scrollTop = top + height - list.clientHeight;
     this.draw();
