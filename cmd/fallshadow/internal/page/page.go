@@ -12,6 +12,7 @@ import (
 	"iter"
 	"net"
 	"net/http"
+	"sync/atomic"
 	"time"
 
 	"fallshadow/cmd/fallshadow/internal/ledger"
@@ -48,6 +49,7 @@ type Page struct {
 	guard  guard
 	stream *stream
 	views  *views
+	told   atomic.Int64 // when browsers were told of a row, ms since 1970; 0 before the first
 }
 
 //go:embed assets
@@ -77,7 +79,12 @@ func (p *Page) measure(ctx context.Context, shot string) (*report.Facts, *imagei
 }
 
 // Row tells the browsers of a stored row.
-func (p *Page) Row(r *ledger.Row) { p.stream.send("row", p.detail(r)) }
+func (p *Page) Row(r *ledger.Row) {
+	d := p.detail(r)
+	d.Told = time.Now().UnixMilli()
+	p.told.Store(d.Told)
+	p.stream.send("row", d)
+}
 
 // Picture draws a shot and tells the browsers that it can be seen.
 func (p *Page) Picture(shot string, f *report.Facts, raw *imageio.Raw) {

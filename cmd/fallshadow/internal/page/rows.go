@@ -7,6 +7,7 @@ import (
 	"slices"
 	"strconv"
 	"strings"
+	"time"
 
 	"fallshadow/cmd/fallshadow/internal/ledger"
 	"fallshadow/cmd/fallshadow/internal/picture"
@@ -37,6 +38,7 @@ type detail struct {
 	Words   map[string]string  `json:"words,omitempty"`
 	Region  string             `json:"region,omitempty"` // see Night.Drawn
 	Same    string             `json:"same,omitempty"`   // the first shot with these pixels
+	Told    int64              `json:"told,omitempty"`   // when browsers were told of it, ms since 1970
 }
 
 type named struct {
@@ -121,7 +123,7 @@ func (p *Page) serveNight(r *http.Request) (any, error) {
 	slices.SortStableFunc(list, func(a, b brief) int { return cmp.Compare(a.At, b.At) })
 	now, next := p.night.Region()
 	answer := map[string]any{
-		"night": p.name, "event": last,
+		"night": p.name, "event": last, "now": time.Now().UnixMilli(), "told": p.told.Load(),
 		"rows": list, "columns": columns(), "scan": p.night.Scan(), "flags": flagSentences(),
 		"settings": p.night.SettingsText(), "notes": p.night.Notes(),
 		"region": corners(now), "drawn": corners(next),

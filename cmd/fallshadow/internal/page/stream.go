@@ -34,7 +34,7 @@ const (
 	// pending is how many events may wait for one browser; a slower one is cut off and
 	// catches up when it comes back.
 	pending = 64
-	// beat is how often a silent stream shows that it lives.
+	// beat is how often a silent stream shows that it lives; live.js counts on it.
 	beat = 10 * time.Second
 	// patience is how long a browser may take to accept an event.
 	patience = 10 * time.Second
@@ -122,7 +122,7 @@ func (s *stream) serve(w http.ResponseWriter, r *http.Request) {
 	alive := time.NewTicker(beat)
 	defer alive.Stop()
 	for {
-		text := ": alive\n\n"
+		text := "event: beat\ndata: null\n\n"
 		select {
 		case e, ok := <-c:
 			if !ok {

@@ -5,8 +5,9 @@ async function checked(response) {
   return response.status === 204 ? null : response.json();
 }
 
-export async function get(path, parameters = {}) {
-  return checked(await fetch(path + "?" + new URLSearchParams(parameters)));
+// get asks until a signal comes, which ends it; without one until a connection must have died.
+export async function get(path, parameters = {}, signal = AbortSignal.timeout(60000)) {
+  return checked(await fetch(path + "?" + new URLSearchParams(parameters), { signal }));
 }
 
 export async function post(path, body) {

@@ -17,67 +17,83 @@ const region = new RegionTool(pictures, (text) => say(text));
 
 let columns = [], sentences = {};
 let following = true, connected = false;
-let loads = 0;          // counts readings of the night: the last one asked for stays
-let late = null;        // rows that came since it was asked for, as long as it is on its way
+let late = null;        // rows and notes that came since the night was asked for, as long as it is on its way
+let reading = false, changed = false; // the night is being read again; it is to be after that
+let asked = 0;          // counts showings: the row of the last one stays
+let passed = new AbortController(); // ends what is asked for the shot shown, once another is
 let turn = 0;           // counts views: the last one asked for stays
+let skew = 0;           // of the clock here against that of the program, ms
 let latestAt = null;    // when the last shot came
 let wanted = null;      // the shot that is being shown
 let detail = null;      // its row
 let judged = null;      // the row that a person is asked about
 let notes = [], trouble = ""; // what the program says, and what went wrong here
 
-// load reads everything but the numbers of single shots. The answer may be older than a row
-// that comes while it is on its way, and than what is read after it.
+// load reads everything but the numbers of single shots. The answer may be older than what
+// comes while it is on its way.
 async function load() {
-  const mine = ++loads, meanwhile = late = [];
-  const night = await get("/api/night").finally(() => { if (mine === loads) late = null; });
-  if (mine !== loads) return night.event;
+  const meanwhile = late = { rows: [], notes: null };
+  const night = await get("/api/night").finally(() => { late = null; });
   columns = night.columns;
   sentences = night.flags;
+  skew = Date.now() - night.now;
+  if (night.told) latestAt = night.told + skew;
   document.title = night.night + " · fallshadow";
   $("night").textContent = night.night;
   $("settings-text").textContent = night.settings;
-  showNotes(night.notes);
+  showNotes(meanwhile.notes ?? night.notes);
   showRegion(night.region, night.drawn);
   pictures.scales(night.scales);
   shots.reset(night.rows || []);
-  for (const row of meanwhile) shots.put(row);
+  for (const row of meanwhile.rows) shots.put(row);
   trend.offer([...columns, ...(night.scan || []).map((name) => ({ name, meaning: "scan variable" }))], night.scan || []);
-  const stays = wanted !== null && shots.has(wanted) && !following;
-  const shot = stays ? wanted : shots.last();
-  if (shot === undefined) {
-    wanted = null;
-    $("shot").textContent = "no shots yet";
-    pictures.clear();
-  } else {
-    show(shot, night.last?.shot === shot ? night.last : undefined, true);
-  }
+  following ||= !shots.has(wanted);
+  const shot = following ? shots.last() : wanted;
+  if (shot === undefined) showNoShot();
+  else show(shot, [night.last, ...meanwhile.rows].findLast((row) => row?.shot === shot), true);
   await trend.load();
   return night.event;
 }
 
-// reload is load until it succeeds, or another begins.
-function reload() {
-  const mine = loads + 1;
-  load().catch(() => setTimeout(() => mine === loads && reload(), 1000));
+// reload reads the night until that succeeds. What changes while it is on its way is read
+// after it, once.
+async function reload() {
+  changed = true;
+  if (reading) return;
+  reading = true;
+  while (changed) {
+    changed = false;
+    try {
+      await load();
+    } catch {
+      changed = true;
+      await new Promise((done) => setTimeout(done, 1000));
+    }
+  }
+  reading = false;
 }
 
 // show shows a shot: its numbers, and its picture as soon as there is one. Where the row is
 // at hand it is given; look says that the picture is there too.
 async function show(shot, row, look = row === undefined) {
+  const mine = ++asked, seen = look ? ++turn : 0;
+  passed.abort();
+  passed = new AbortController();
   wanted = shot;
   shots.select(shot);
   pictures.wait();
   trend.plot?.redraw(false);
   try {
-    const view = look ? get("/api/view", { shot }) : null;
+    const view = look ? get("/api/view", { shot }, passed.signal) : null;
     view?.catch(() => {}); // the row says why
-    showRow(row ?? await get("/api/row", { shot }), shot);
+    row ??= await get("/api/row", { shot });
+    if (mine !== asked) return;
+    showRow(row);
     say("");
-    if (view) await showView(shot, await view);
+    if (view) await showView(shot, await view, seen);
     else if (row.failed) showNothing();
   } catch (error) {
-    if (wanted !== shot) return;
+    if (mine !== asked) return;
     if (detail?.shot === shot && detail.failed) showNothing();
     else say(error.message);
   }
@@ -85,24 +101,33 @@ async function show(shot, row, look = row === undefined) {
 
 // showNothing stands for a picture that there is none of.
 function showNothing() {
+  turn++;
   pictures.clear();
   cuts.show(null);
 }
 
-function showRow(row, shot) {
-  if (wanted !== shot) return;
+function showNoShot() {
+  asked++;
+  wanted = detail = null;
+  showNumbers({ shot: "no shots yet", numbers: {} }, columns, sentences);
+  showNothing();
+  sayRegion();
+  showStatus();
+  say("");
+}
+
+function showRow(row) {
   detail = row;
   showNumbers(row, columns, sentences);
   sayRegion();
-  document.body.dataset.shown = shot;
+  document.body.dataset.shown = row.shot;
   showStatus();
 }
 
-async function showView(shot, view) {
-  if (wanted !== shot) return; // an answer that comes late must not take the turn of the shot shown
-  const mine = ++turn;
+async function showView(shot, view, seen) {
+  if (wanted !== shot || seen !== turn) return;
   await pictures.load(shot, view);
-  if (wanted !== shot || mine !== turn) return;
+  if (wanted !== shot || seen !== turn) return;
   pictures.show(shot, view);
   showCuts();
   document.body.dataset.seen = shot;
@@ -122,23 +147,32 @@ function follow() {
 
 const live = new Live({
   row(row) {
-    late?.push(row);
+    late?.rows.push(row);
     shots.put(row);
     trend.put(row);
-    latestAt = Date.now();
+    latestAt = row.told + skew;
     if (following && row.shot === shots.last() || wanted === row.shot) show(row.shot, row);
     showStatus();
   },
   picture(shot) {
-    if (wanted === shot) get("/api/view", { shot }).then((view) => showView(shot, view)).catch((error) => say(error.message));
+    if (wanted !== shot) return;
+    const seen = ++turn;
+    get("/api/view", { shot }).then((view) => showView(shot, view, seen)).catch((error) => seen === turn && wanted === shot && say(error.message));
   },
   changed: reload,
   begin: reload,
-  notes: showNotes,
-}, (is) => { connected = is; showStatus(); });
+  notes(list) {
+    if (late) late.notes = list ?? [];
+    showNotes(list);
+  },
+}, (is, why) => {
+  connected = is;
+  if (why) say(why);
+  showStatus();
+});
 
 function showStatus() {
-  const age = latestAt === null ? "" : "last shot " + ago(Date.now() - latestAt);
+  const age = latestAt === null ? "" : "last shot " + ago(Math.max(0, Date.now() - latestAt));
   const status = $("status");
   status.className = !connected ? "lost" : following ? "" : "held";
   status.textContent = !connected ? "connection lost, trying again" : following ? age || "live" : "looking back" + (age && " · " + age);

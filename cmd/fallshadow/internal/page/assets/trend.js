@@ -14,11 +14,12 @@ export class Trend {
     this.shots = shots;
     this.choose = choose;
     this.values = { x: new Map(), y: new Map() };
+    this.shown = "";  // the columns that are drawn
     this.loads = 0;   // counts readings of the columns
     this.late = null; // rows that came since the last one was asked for, as long as it is on its way
     this.points = [];
-    $("trend-y").addEventListener("change", () => this.load());
-    $("trend-x").addEventListener("change", () => this.load());
+    $("trend-y").addEventListener("change", () => this.reload());
+    $("trend-x").addEventListener("change", () => this.reload());
     $("trend-all").addEventListener("click", () => this.zoomOut());
     new ResizeObserver(() => this.fit()).observe($("trend-plot"));
   }
@@ -47,7 +48,22 @@ export class Trend {
       x: new Map(xs?.shots.map((n, i) => [n, xs.values[i]])),
     };
     for (const row of meanwhile) this.take(row);
-    this.build();
+    const same = this.shown === x + "/" + y;
+    this.shown = x + "/" + y;
+    if (same) this.refresh();
+    else this.build();
+  }
+
+  // reload reads columns that a person chose, until that succeeds or another begins; others
+  // are not drawn in their place.
+  reload() {
+    const mine = this.loads + 1;
+    this.load().catch(() => {
+      if (mine !== this.loads) return;
+      this.values = { x: new Map(), y: new Map() };
+      this.build();
+      setTimeout(() => mine === this.loads && this.reload(), 1000);
+    });
   }
 
   // put takes in the numbers of one shot, and draws them.
