@@ -38,10 +38,23 @@ func (m Metadata) Number(key string) (float64, error) {
 		return 0, fmt.Errorf("no %s in the header, the file name or the side table", key)
 	}
 	v, err := fits.ParseNumber(text)
-	if err != nil {
+	switch {
+	case err != nil && DecimalComma(text):
+		return 0, fmt.Errorf("%s is %q: the decimal sign is a point", key, text)
+	case err != nil:
 		return 0, fmt.Errorf("%s is %q, not a number", key, text)
 	}
 	return v, nil
+}
+
+// DecimalComma reports whether a text would be a number if its only comma were a point. Since
+// a comma may also part thousands, it is not read as one.
+func DecimalComma(text string) bool {
+	if strings.Count(text, ",") != 1 {
+		return false
+	}
+	_, err := fits.ParseNumber(strings.Replace(text, ",", ".", 1))
+	return err == nil
 }
 
 // under adds what other has and m has not.

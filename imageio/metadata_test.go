@@ -58,6 +58,14 @@ func TestMetadataNumber(t *testing.T) {
 	}
 }
 
+func TestDecimalComma(t *testing.T) {
+	for text, want := range map[string]bool{"6,750": true, "-1,5e3": true, " 0,5 ": true, "6.75": false, "1,000,000": false, "1,000.5": false, "a,b": false, ",": false, "": false, "3": false} {
+		if got := DecimalComma(text); got != want {
+			t.Errorf("%q: %v", text, got)
+		}
+	}
+}
+
 func TestMetadataOfHeaders(t *testing.T) {
 	dir := night(t, map[string][]byte{
 		"a.fits": fixture(t, "fits/testdata/longheader.fits"),

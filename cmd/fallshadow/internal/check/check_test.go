@@ -347,6 +347,19 @@ func TestSideTable(t *testing.T) {
 	says(t, text, "other.csv names no shot", "such as rubidium_0001", "other.csv has rows that fit no shot: run7")
 }
 
+// TestDecimalComma: a table of a country that writes one is told of, scan variable and flight.
+func TestDecimalComma(t *testing.T) {
+	dir := simulated(t, "rubidium", 3)
+	if err := os.WriteFile(filepath.Join(dir, "log.csv"), []byte("nr;late;power\n1;24,0;0,5\n2;24,0;0,6\n3;24,0;0,7\n"), 0o644); err != nil {
+		t.Fatal(err)
+	}
+	const table = "[shots]\nside_table = \"log.csv\"\nscan = [\"power\"]"
+	_, text := look(t, dir, 0, "[shots]", table)
+	says(t, text, "scan: power holds 0,5, from log.csv, which is no number but text: the decimal sign is a point", "No problems found")
+	_, text = look(t, dir, 0, "[shots]", table, `from = "TOF"`, `from = "late"`)
+	says(t, text, `time of flight: late is "24,0": the decimal sign is a point`)
+}
+
 // TestSideTableTwice: a row that fits two shots serves none.
 func TestSideTableTwice(t *testing.T) {
 	dir := simulated(t, "rubidium", 3)

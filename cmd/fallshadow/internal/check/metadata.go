@@ -173,6 +173,9 @@ func (v *visit) scanSource(name string) string {
 		v.trouble.caution("", "scan: %s is in no header, file name or side table: its column stays empty", name)
 		return name + " is nowhere"
 	}
+	if i := slices.IndexFunc(e.values, imageio.DecimalComma); i >= 0 {
+		v.trouble.caution("", "scan: %s holds %s, from %s, which is no number but text: the decimal sign is a point", e.key, e.values[i], e.source())
+	}
 	return fmt.Sprintf("%s: %s, from %s", e.key, e.span(), e.source())
 }
 
