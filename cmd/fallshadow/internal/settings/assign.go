@@ -108,6 +108,10 @@ func (b *binder) uncertainty(k *key, v value) (float64, bool) {
 // text reads one of the key's words, or any printable text.
 func (b *binder) text(k *key, v value) (string, bool) {
 	unprintable := func(r rune) bool { return !unicode.IsPrint(r) }
+	bare := v.text
+	if k.ends {
+		bare = strings.TrimLeft(bare, " ")
+	}
 	switch {
 	case v.kind != kindText:
 		b.wrong(v.offset, "%s: expected %s, found %s", k.name, k.expected(), v.found())
@@ -117,7 +121,7 @@ func (b *binder) text(k *key, v value) (string, bool) {
 			near = "; nearest: " + strconv.Quote(near)
 		}
 		b.wrong(v.offset, "%s = %s: expected %s%s", k.name, strconv.Quote(clip(v.text)), orList(k.words), near)
-	case strings.IndexFunc(v.text, unprintable) >= 0 || strings.TrimSpace(v.text) != v.text:
+	case strings.IndexFunc(v.text, unprintable) >= 0 || strings.TrimSpace(v.text) != bare:
 		b.wrong(v.offset, "%s = %s: expected text on one line, with no space at its ends", k.name, strconv.Quote(clip(v.text)))
 	default:
 		return v.text, true
@@ -137,7 +141,7 @@ func (b *binder) texts(k *key, v value, p *[]string) {
 		switch {
 		case !ok:
 			continue
-		case t == "":
+		case strings.TrimSpace(t) == "":
 			b.wrong(item.offset, "%s: expected %s, found an empty text", k.name, k.expected())
 		case slices.Contains(out, t):
 			b.wrong(item.offset, "%s: %s stands twice", k.name, strconv.Quote(t))

@@ -23,6 +23,7 @@ type key struct {
 	also        []string // names that others give it
 	doc         string
 	required    bool
+	ends        bool      // of names, so that a space before them is part of the text
 	shown       bool      // stands uncommented in the template
 	silent      bool      // changes no number of a given shot: not in the digest
 	unstated    certainty // what a missing uncertainty means
@@ -149,7 +150,7 @@ var keys = []key{
 	{table: "shots", name: "planes", field: func(s *Settings) any { return &s.Shots.Planes }, def: `["atoms", "light", "dark"]`, words: []string{"atoms", "light", "dark", "dark_of_light", "unused"}, shown: true, silent: true,
 		also: []string{"frames", "order"},
 		doc:  "Order of the frames in the file. Without dark the night's dark_files are used; dark_of_light is a second dark taken beside the light frame; unused skips a plane."},
-	{table: "shots", name: "suffixes", field: func(s *Settings) any { return &s.Shots.Suffixes }, def: "[]", sample: `["_atoms", "_light", "_dark"]`, silent: true,
+	{table: "shots", name: "suffixes", field: func(s *Settings) any { return &s.Shots.Suffixes }, def: "[]", sample: `["_atoms", "_light", "_dark"]`, silent: true, ends: true,
 		also: []string{"suffix", "endings"},
 		doc:  "One for each of planes. For layout files: the end of the file name before its ending; or a folder, where it ends in /. For layout extensions, where given: the names of the extensions, whatever their order."},
 	{table: "shots", name: "pattern", field: func(s *Settings) any { return &s.Shots.Pattern }, def: `""`, sample: `'scan_(?P<run>\d+)_tof(?P<tof>[\d.]+)ms'`, silent: true,

@@ -59,6 +59,7 @@ func TestLayoutsAreTaken(t *testing.T) {
 	}{
 		{"", []string{"a1.fits", "a2.fits"}, []string{"a1", "a2"}, 0},
 		{"layout = 'files'\nsuffixes = ['_a', '_l', '_d']\n", []string{"x_a.fits", "x_l.fits", "x_d.fits"}, []string{"x"}, 0},
+		{"layout = 'files'\nsuffixes = [' atoms', ' light', ' dark']\n", []string{"run 1 ä atoms.fits", "run 1 ä light.fits", "run 1 ä dark.fits"}, []string{"run 1 ä"}, 0},
 		{"layout = 'files'\nplanes = ['atoms', 'light']\nsuffixes = ['atoms/', 'light/']\ndark_files = ['dark/*.fits', 'd?.fits']\n",
 			[]string{"atoms/1.fits", "light/1.fits", "dark/7.fits", "d1.fits"}, []string{"1"}, 2},
 		{"layout = 'extensions'\nsuffixes = ['A', 'L', 'D']\n", []string{"1.fits"}, []string{"1"}, 0},

@@ -98,6 +98,7 @@ var wrongs = []wrong{
 	{"no dark frame", "", "[shots]\nplanes = [\"atoms\", \"light\"]\n"},
 	{"second dark alone", "", "[shots]\nplanes = [\"atoms\", \"light\", \"dark_of_light\"]\n"},
 	{"files without suffixes", "", "[shots]\nlayout = \"files\"\nsuffixes = [\"_a\"]\n"},
+	{"space behind a suffix, and nothing else", "", "[shots]\nlayout = \"files\"\nsuffixes = [\" a \", \" \", \"d\"]\n"},
 	{"suffixes of a cube", "", "[shots]\nsuffixes = [\"_a\", \"_l\", \"_d\"]\n"},
 	{"unused plane among names", "", "[shots]\nlayout = \"extensions\"\nplanes = [\"atoms\", \"light\", \"dark\", \"unused\"]\nsuffixes = [\"A\", \"L\", \"D\", \"U\"]\n"},
 	{"density without a unit", "", "[shots]\nlayout = \"density\"\nplanes = [\"atoms\"]\n"},
