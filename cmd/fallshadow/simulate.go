@@ -38,8 +38,12 @@ func (c *simulateCmd) Run(ctx context.Context, out io.Writer) error {
 	if err := night.Write(ctx, c.Folder, runtime.GOMAXPROCS(0), nil); err != nil {
 		return err
 	}
-	_, err = fmt.Fprintf(out, "%d simulated shots in %s: %s\nwhat they show: %s\n",
-		night.Scenario.Shots, c.Folder, night.Scenario.About, simulate.TruthFile)
+	lab := ""
+	if c.Settings != "" {
+		lab = ", drawn with the atom, trap and camera of " + c.Settings
+	}
+	_, err = fmt.Fprintf(out, "%d simulated shots in %s: %s%s\nwhat they show: %s\n",
+		night.Scenario.Shots, c.Folder, night.Scenario.About, lab, simulate.TruthFile)
 	return err
 }
 

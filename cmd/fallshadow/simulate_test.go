@@ -28,6 +28,9 @@ func TestSimulateCommand(t *testing.T) {
 	if err := again.Run(context.Background(), &out); err != nil {
 		t.Fatal(err)
 	}
+	if !strings.Contains(out.String(), ", drawn with the atom, trap and camera of "+again.Settings+"\n") {
+		t.Errorf("said %q", out.String())
+	}
 	for _, name := range []string{"ramp_0001.fits", "truth.csv", "simulated.toml", "fallshadow.toml"} {
 		a, err := os.ReadFile(filepath.Join(dir, name))
 		if err != nil {

@@ -133,10 +133,10 @@ func (n *Night) cards(i int, t Truth) []fits.Card {
 	if f := n.Settings.Clock; f.From != "" {
 		unit := map[string]float64{"ms": 1e-3, "us": 1e-6, "s": 1}[f.Unit]
 		clock := t.Flight - f.ZeroMs.Value*1e-3
-		cards = append(cards, fits.Number(f.From, tidy(clock/unit), "["+f.Unit+"] time of flight"))
+		cards = append(cards, fits.Number(strings.ToUpper(f.From), tidy(clock/unit), "["+f.Unit+"] time of flight"))
 	}
 	if scan := n.Settings.Shots.Scan; len(scan) > 0 {
-		cards = append(cards, fits.Number(scan[0], tidy(t.Scan), "scan variable"))
+		cards = append(cards, fits.Number(strings.ToUpper(scan[0]), tidy(t.Scan), "scan variable"))
 	}
 	return cards
 }

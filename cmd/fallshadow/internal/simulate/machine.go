@@ -105,7 +105,7 @@ func (n *Night) writable() error {
 	case !n.Settings.Clock.FixedMs.Given && len(n.Scenario.Flight.Ms) == 0:
 		return errors.New("the scenario gives no flight.ms")
 	}
-	return nil
+	return n.readable()
 }
 
 func (n *Night) camera() (synth.Camera, error) {

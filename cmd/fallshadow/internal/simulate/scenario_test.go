@@ -46,6 +46,11 @@ func TestScenarioRefusesNonsense(t *testing.T) {
 	for _, c := range []struct{ old, new, want string }{
 		{`layout = "cube"`, `layout = "extensions"`, "not written by simulate"},
 		{`planes = ["atoms", "light", "dark"]`, `planes = ["atoms", "light"]`, "dark"},
+		{"[shots]", "[shots]\nside_table = \"log.csv\"", "no side table"},
+		{"[shots]", "[shots]\npattern = 'tof(\\d+)'", "does not match ramp_0001.fits"},
+		{`"FLIGHT"`, `"flight (ms)"`, "1 to 8 letters"},
+		{`"RAMPEND"`, `"evaporation"`, "1 to 8 letters"},
+		{`"dark"]`, `"dark", "unused"]`, "unused"},
 		{"counts_per_isat", "#", "intensity_isat needs"},
 		{"electrons_per_count", "#", "electrons_per_count"},
 	} {
@@ -56,6 +61,28 @@ func TestScenarioRefusesNonsense(t *testing.T) {
 	}
 	if _, _, err := Preset("nothing"); err == nil || !strings.Contains(err.Error(), "demo") {
 		t.Errorf("an unknown preset: %v", err)
+	}
+}
+
+// TestNamesInLowerCase: what the settings call by other letters than a header may hold is
+// found there.
+func TestNamesInLowerCase(t *testing.T) {
+	s, lab, err := Preset("demo")
+	if err != nil {
+		t.Fatal(err)
+	}
+	lab = bytes.Replace(lab, []byte(`"FLIGHT"`), []byte(`"tof"`), 1)
+	lab = bytes.Replace(lab, []byte(`"RAMPEND"`), []byte(`"evap_MHz"`), 1)
+	lab = bytes.Replace(lab, []byte("[shots]"), []byte("[shots]\npattern = '^ramp_(?P<nr>\\d+)'"), 1)
+	n, err := New(s.WithShots(1), lab, "lab.toml")
+	if err != nil {
+		t.Fatal(err)
+	}
+	file := write(t, n, 1)["ramp_0001.fits"]
+	for _, want := range []string{"TOF     =                 16.0 /", "EVAP_MHZ=                310.0 /"} {
+		if !bytes.Contains(file, []byte(want)) {
+			t.Errorf("no %q in the header: %.1000s", want, file)
+		}
 	}
 }
 

@@ -28,12 +28,15 @@ type Truth struct {
 	Damage string     // how the shot was broken, empty where it was not
 }
 
+// shotName is that of shot i, counted from 0.
+func (s *Scenario) shotName(i int) string { return fmt.Sprintf("%s_%04d", s.Name, i+1) }
+
 // Truth returns what shot i shows, counted from 0, but for PeakOD, which Draw adds. It
 // follows from settings, scenario and i alone.
 func (n *Night) Truth(i int) (Truth, error) {
 	s, m := n.Scenario, n.machine
 	rng := s.cloudRandom(i)
-	t := Truth{Shot: fmt.Sprintf("%s_%04d", s.Name, i+1), Angle: m.angle, Damage: s.Damage.of(i + 1)}
+	t := Truth{Shot: s.shotName(i), Angle: m.angle, Damage: s.Damage.of(i + 1)}
 	t.Flight = n.flight(i)
 	along := 0.0
 	if s.Shots > 1 {
