@@ -17,10 +17,11 @@ type excess struct {
 }
 
 // The grid of an excess: u from −4.5 to 4.5 widths, v from 0 (the cloud looks the same from
-// behind), in steps of 1/4.
+// behind), in steps of 1/16: the atoms that fly slowly from the condensate's edge in the trap draw
+// it into the picture, a ridge of 0.05 to 0.3 widths.
 const (
 	excessReach = 4.5
-	excessStep  = 0.25
+	excessStep  = 1. / 16
 	excessW     = int(2*excessReach/excessStep) + 1
 	excessH     = int(excessReach/excessStep) + 1
 )
@@ -46,15 +47,21 @@ func newExcess(lab *Lab, flight, T, mu float64) (*excess, error) {
 	}
 	c, s := math.Cos(axes.angle), math.Sin(axes.angle)
 	s1, s2 := math.Sqrt(axes.square[0]), math.Sqrt(axes.square[1])
+	place := func(u, v float64) (x, y float64) { return c*u*s1 - s*v*s2, s*u*s1 + c*v*s2 }
+	var nodes excessNodes
+	nodes.fill(func(u, v float64) float64 {
+		x, y := place(u, v)
+		return cloud.Column(x, y) / model.ThermalColumn(n, 0, shape, x, y)
+	})
 	e := &excess{values: make([]float64, excessW*excessH), surplus: mix.Thermal / n}
 	var with, without float64
 	for j := range excessH {
 		for i := range excessW {
-			u, v := (float64(i)*excessStep-excessReach)*s1, float64(j)*excessStep*s2
-			x, y := c*u-s*v, s*u+c*v
-			plain := model.ThermalColumn(n, 0, shape, x, y)
-			r := cloud.Column(x, y) / plain
+			u, v := float64(i)*excessStep-excessReach, float64(j)*excessStep
+			r := nodes.at(u, v)
 			e.values[j*excessW+i] = r
+			x, y := place(u, v)
+			plain := model.ThermalColumn(n, 0, shape, x, y)
 			if j > 0 {
 				plain *= 2 // the other half
 			}
@@ -66,6 +73,53 @@ func newExcess(lab *Lab, flight, T, mu float64) (*excess, error) {
 		e.values[i] *= without / with
 	}
 	return e, nil
+}
+
+// excessNodes holds an excess where it is worked out: at nodeUnit sinh(k nodeStep) widths, so that
+// nodes stand close together at the centre only. Row 0 is that before the centre's, a mirror image.
+type excessNodes [nodesH + 1][nodesW]float64
+
+const (
+	nodesH   = 19
+	nodesW   = 2*nodesH - 1
+	nodeUnit = 0.25
+)
+
+var nodeStep = math.Asinh(excessReach/nodeUnit) / (nodesH - 1)
+
+// fill works out f, which is the same at u, v and at −u, −v.
+func (n *excessNodes) fill(f func(u, v float64) float64) {
+	place := func(k int) float64 { return nodeUnit * math.Sinh(float64(k)*nodeStep) }
+	for j := range nodesH {
+		for i := range nodesW {
+			n[j+1][i] = f(place(i-nodesH+1), place(j))
+		}
+	}
+	for i := range nodesW {
+		n[0][i] = n[2][nodesW-1-i]
+	}
+}
+
+// at interpolates by cubics through four nodes in both directions, for v from 0.
+func (n *excessNodes) at(u, v float64) float64 {
+	i, across := stencil(u, nodesH-1, nodesW)
+	j, down := stencil(v, 1, nodesH+1)
+	sum := 0.0
+	for k, f := range down {
+		row := n[j+k][i:]
+		sum += f * (across[0]*row[0] + across[1]*row[1] + across[2]*row[2] + across[3]*row[3])
+	}
+	return sum
+}
+
+// stencil returns the first of the four nodes about x widths, among n of which that of the centre
+// is given, and their weights.
+func stencil(x float64, centre, n int) (first int, weights [4]float64) {
+	t := math.Asinh(x/nodeUnit)/nodeStep + float64(centre)
+	first = min(max(int(t)-1, 0), n-4)
+	t -= float64(first)
+	a, b, c, d := t, t-1, t-2, t-3
+	return first, [4]float64{-b * c * d / 6, a * c * d / 2, -a * b * d / 2, a * b * c / 6}
 }
 
 // number is the surplus, 1 for a nil excess.

@@ -239,7 +239,7 @@ func TestNormalOfLightAlone(t *testing.T) {
 func testExcess() *excess {
 	e := &excess{values: make([]float64, excessW*excessH)}
 	for i := range e.values {
-		e.values[i] = 1.3 - 0.01*float64(i%excessW)
+		e.values[i] = 1.3 - 0.04*excessStep*float64(i%excessW)
 	}
 	return e
 }
