@@ -113,16 +113,16 @@ func (s *session) finish(c *candidates, chosen *state, r *Result) error {
 	return s.limits(c, full, r)
 }
 
-// impossible says that the widths of a thermal part do not belong to its number: even at the high end
-// of its interval of T, or three errors above it, the trap could not hold two thirds of its atoms,
-// semi-ideal ones included.
+// impossible says that the widths of a thermal part do not belong to its number: even three errors
+// above its T, or at the high end of the interval of a poor one, the trap could not hold two thirds
+// of its atoms, semi-ideal ones included.
 func (s *session) impossible(r *Result) bool {
 	n := &r.Numbers
 	if s.tmpl.gaussian {
 		return false
 	}
 	high := n.T.High
-	if math.IsNaN(high) {
+	if math.IsNaN(high) || n.T.Err <= poor*n.T.V {
 		high = n.T.V + 3*n.T.Err
 	}
 	most := model.ThermalNumber(high, 0, s.lab.Trap)

@@ -8,8 +8,12 @@ import (
 	"fallshadow/model/numbers"
 )
 
-// poor is the ratio of error to value beyond which an interval by profile likelihood takes
-// the place of a symmetric error.
+// lopsided is the ratio of error to value beyond which an interval by profile likelihood takes
+// the place of a symmetric error. For the T of a nearly pure condensate the upper side is a fifth
+// longer there than the lower one: values that came out low would have too small an error.
+const lopsided = 0.1
+
+// poor is the ratio beyond which a temperature is flagged.
 const poor = 0.2
 
 // The places of numbers in a Measured.
@@ -122,7 +126,7 @@ func (s *session) perSum() float64 { return s.lab.perSum() }
 // error, too.
 func (s *session) interval(full *state, at int, v *numbers.Value, unit float64) error {
 	ended := full.ended()
-	if !(v.Err > poor*math.Abs(v.V) || ended) || full.cov == nil {
+	if !(v.Err > lopsided*math.Abs(v.V) || ended) || full.cov == nil {
 		return nil
 	}
 	rest, err := s.runFull(full.kind, full.p, 1e-3)
