@@ -4,6 +4,7 @@ import (
 	"context"
 	"fmt"
 	"io"
+	"slices"
 
 	"fallshadow/cmd/fallshadow/internal/ledger"
 	"fallshadow/cmd/fallshadow/internal/report"
@@ -13,7 +14,7 @@ import (
 // exportCmd writes the table of a fitted night for other programs.
 type exportCmd struct {
 	nightArgs
-	Files []exportFile `arg:"" name:"output" optional:"" help:"New files to write the table to, not shots to read: .csv, .fits or .jsonl says the form. Without any, CSV goes to the terminal."`
+	Files []exportFile `arg:"" name:"output" optional:"" help:"Files to write the table to, in place of what they held, not shots to read: .csv, .fits or .jsonl says the form. Without any, CSV goes to the terminal."`
 	Good  bool         `help:"Leave out shots that failed, that a person gave a word against, and those that are not of the settings of now; so does --where and --without."`
 }
 
@@ -44,6 +45,7 @@ func (c *exportCmd) Run(ctx context.Context, t terminal) error {
 		}
 		study.WriteLeftOut(t.err, "left out", chosen.LeftOut)
 	}
+	warnUnsettled(t.err, rows)
 	if c.Files == nil {
 		return report.Exports[0].Write(t.out, rows, scan)
 	}
@@ -59,4 +61,19 @@ func (c *exportCmd) Run(ctx context.Context, t terminal) error {
 		fmt.Fprintf(t.out, "%s: %s\n", f, shots(len(rows)))
 	}
 	return nil
+}
+
+// warnUnsettled says how many rows are not what batch would make of their shots now.
+func warnUnsettled(w io.Writer, rows []ledger.Row) {
+	for _, f := range report.AllFlags() {
+		n := 0
+		for i := range rows {
+			if slices.Contains(report.Flags(&rows[i]), f.Name) {
+				n++
+			}
+		}
+		if n > 0 && (f.Name == report.FlagStale || f.Name == report.FlagProvisional) {
+			fmt.Fprintf(w, "caution: %d of %s flagged %s: %s\n", n, shots(len(rows)), f.Name, f.Sentence)
+		}
+	}
 }
