@@ -11,6 +11,7 @@ import (
 	"io/fs"
 	"os"
 	"path/filepath"
+	"strings"
 )
 
 // FileName is the name under which a night's folder holds its settings.
@@ -130,6 +131,14 @@ type Fit struct {
 	BasisSize      int
 }
 
+// typed is a path as it can be put into a command line.
+func typed(path string) string {
+	if strings.ContainsAny(path, " &()") {
+		return `"` + path + `"`
+	}
+	return path
+}
+
 // Find returns the path of the settings in a night's folder.
 func Find(nightDir string) (string, error) {
 	path := filepath.Join(nightDir, FileName)
@@ -137,7 +146,7 @@ func Find(nightDir string) (string, error) {
 	switch {
 	case errors.Is(err, fs.ErrNotExist):
 		return "", fmt.Errorf("no %s in %s: write one with `fallshadow init --write %s`, or name another with --settings",
-			FileName, nightDir, path)
+			FileName, nightDir, typed(path))
 	case err != nil:
 		return "", fmt.Errorf("look for settings: %w", err)
 	case info.IsDir():

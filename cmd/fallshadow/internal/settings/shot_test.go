@@ -125,6 +125,10 @@ func TestFindAndLoad(t *testing.T) {
 	if _, err := Find(dir); err == nil || !strings.Contains(err.Error(), "fallshadow init --write") {
 		t.Errorf("no settings: %v", err)
 	}
+	spaced := filepath.Join(dir, "30 Nov")
+	if _, err := Find(spaced); err == nil || !strings.Contains(err.Error(), `--write "`+filepath.Join(spaced, FileName)+"\"`") {
+		t.Errorf("a command that a shell takes apart: %v", err)
+	}
 	path := filepath.Join(dir, FileName)
 	if err := os.WriteFile(path, Template(), 0o644); err != nil {
 		t.Fatal(err)
