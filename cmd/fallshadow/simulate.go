@@ -17,7 +17,7 @@ type simulateCmd struct {
 	Folder   string     `arg:"" optional:"" help:"New folder for the night."`
 	Preset   string     `default:"demo" help:"Scenario that comes with the program, with the settings of its laboratory; --list names them."`
 	Scenario string     `placeholder:"FILE" help:"Scenario of your own instead of the preset's, such as the simulated.toml of a simulated night."`
-	Settings string     `placeholder:"FILE" help:"Settings of your own laboratory instead of the preset's."`
+	Settings string     `placeholder:"FILE" help:"Settings of your own laboratory instead of the preset's; FITS is written, in layout cube or files, with a dark frame for each shot."`
 	Shots    atLeastOne `placeholder:"N" help:"Number of shots instead of the scenario's."`
 	Seed     *uint64    `help:"Seed instead of the scenario's. The same seed gives the same bytes."`
 	List     bool       `help:"List the presets and stop."`
