@@ -404,6 +404,50 @@ func TestRenamedBetweenWatches(t *testing.T) {
 	}
 }
 
+// Shots that leave and come back as they were, as with a share that is away for a moment, keep
+// their rows, while the watch runs and over a restart.
+func TestShotsComeBack(t *testing.T) {
+	for name, restart := range map[string]bool{"running": false, "restarted": true} {
+		t.Run(name, func(t *testing.T) {
+			dir := nightWith(t, "1", "2", "3", "4", "5")
+			h := newHall()
+			w, stop := run(t, Options{Dir: dir}, h)
+			h.until(t, "five", h.seen(5))
+			move := func(from, to string) {
+				t.Helper()
+				files, err := filepath.Glob(filepath.Join(from, "*.fits"))
+				if err != nil || len(files) != 5 {
+					t.Fatalf("%v, %v", files, err)
+				}
+				for _, f := range files {
+					if err := os.Rename(f, filepath.Join(to, filepath.Base(f))); err != nil {
+						t.Fatal(err)
+					}
+				}
+			}
+			away := t.TempDir()
+			move(dir, away)
+			h.until(t, "no row", func() bool { return len(rowsOf(t, w)) == 0 })
+			if restart {
+				stop()
+				w, _ = run(t, Options{Dir: dir, Out: w.Out}, h)
+				h.until(t, "the start", w.isReady)
+			}
+			move(away, dir)
+			h.until(t, "five rows", func() bool { return len(rowsOf(t, w)) == 5 })
+			copyFile(t, shotFile("6"), filepath.Join(dir, "ramp_0006.fits"))
+			h.until(t, "the next", h.seen(6))
+			h.until(t, "rest", func() bool {
+				_, waits, _ := w.roll.patience()
+				return waits+w.queue.waiting()+w.roll.inWork() == 0
+			})
+			if len(h.order) != 6 {
+				t.Errorf("fitted were %v", h.order)
+			}
+		})
+	}
+}
+
 // A shot that left the folder while the ledger could not be written leaves the table once it
 // can, and the note goes with its cause.
 func TestLedgerInLineLater(t *testing.T) {

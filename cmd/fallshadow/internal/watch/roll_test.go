@@ -170,3 +170,15 @@ func TestRollReadsAgain(t *testing.T) {
 		t.Error("the frames of a shot that left are offered")
 	}
 }
+
+// inWork is how many shots jobs have that are not done.
+func (r *roll) inWork() (n int) {
+	r.mu.Lock()
+	defer r.mu.Unlock()
+	for _, e := range r.shots {
+		if e.state == taken {
+			n++
+		}
+	}
+	return n
+}

@@ -60,11 +60,7 @@ func (w *Watcher) measure(ctx context.Context, j *job, workspace *fit.Workspace)
 		return m, nil
 	}
 	m.content, m.frames = night.Contents(w.root, j.Shot, m.raw)
-	if k := w.roll.knownOf(j.Name); k.content.Same(m.content) && k.frames.Same(m.frames) {
-		m.stands = true
-		return m, nil
-	}
-	if m.stands, err = w.renamed(ctx, j, &m); m.stands || err != nil {
+	if m.stands, err = w.stored(ctx, j, &m); m.stands || err != nil {
 		return m, err
 	}
 	m.region = w.regionOf(j.Name)
@@ -146,6 +142,17 @@ func (w *Watcher) tell(ctx context.Context, j *job, m *measured) error {
 		w.audience.Picture(j.Name, m.facts, m.raw)
 	}
 	return nil
+}
+
+// stored reports whether the row of a job is in the ledger: that of a shot that left and came
+// back too, and of one that was renamed. Rows of shots that left are looked for first, since
+// another worker may bring them back meanwhile.
+func (w *Watcher) stored(ctx context.Context, j *job, m *measured) (bool, error) {
+	if is, err := w.renamed(ctx, j, m); is || err != nil {
+		return is, err
+	}
+	r, err := w.store.Row(ctx, j.Name)
+	return r != nil && r.Content.Same(m.content) && r.Currency.Frames.Same(m.frames), err
 }
 
 // renamed reports whether the frames of a job are those of a row whose shot has left the
