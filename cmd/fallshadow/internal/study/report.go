@@ -169,7 +169,7 @@ func (a *Analysis) fillTransition(p *page) {
 	if math.IsNaN(t.Hottest) && math.IsNaN(t.Coldest) {
 		return
 	}
-	p.Transition = append(p.Transition, fmt.Sprintf("condensates up to T/Tc0 = %s, none found from %s on", short(t.Hottest), short(t.Coldest)))
+	p.Transition = append(p.Transition, a.found())
 	if s := t.Saturation; s != nil {
 		p.Transition = append(p.Transition, fmt.Sprintf("by saturation at fixed T: Tc/Tc0 = %s%s", format(s.Ratio), excess(s)))
 	} else {

@@ -110,7 +110,7 @@ func (a *Analysis) writeTransition(w io.Writer) {
 	if math.IsNaN(t.Hottest) && math.IsNaN(t.Coldest) {
 		return // no shot tells T/Tc0
 	}
-	fmt.Fprintf(w, "\ntransition: condensates up to T/Tc0 = %s, none found from %s on\n", short(t.Hottest), short(t.Coldest))
+	fmt.Fprintln(w, "\ntransition: "+a.found())
 	if s := t.Saturation; s != nil {
 		fmt.Fprintf(w, "  by saturation at fixed T: Tc/Tc0 = %s%s (chi2/dof %s, %s)\n", format(s.Ratio), excess(s), perDof(s.Quality), count(s.Points, "shot"))
 	} else {
@@ -156,11 +156,16 @@ func (a *Analysis) sigmasOf() string {
 	return "errors, statistical and of the calibrations"
 }
 
-func short(v float64) string {
-	if math.IsNaN(v) {
-		return "nowhere"
+// found says at which T/Tc0 condensates were found.
+func (a *Analysis) found() string {
+	switch t := &a.Transition; {
+	case math.IsNaN(t.Hottest):
+		return fmt.Sprintf("no condensate found, down to T/Tc0 = %.3f", t.Coldest)
+	case math.IsNaN(t.Coldest):
+		return fmt.Sprintf("condensates in every shot, up to T/Tc0 = %.3f", t.Hottest)
+	default:
+		return fmt.Sprintf("condensates up to T/Tc0 = %.3f, none found from %.3f on", t.Hottest, t.Coldest)
 	}
-	return fmt.Sprintf("%.3f", v)
 }
 
 func (a *Analysis) writeMeanField(w io.Writer) {
