@@ -235,20 +235,20 @@ func TestSummary(t *testing.T) {
 	good := ledger.Row{Shot: "shot_1"}
 	Fill(&good, facts())
 	good.Flags = []string{"dense"}
-	bad := ledger.Row{Shot: "b\x1b[2J", Reason: "b.fits: truncated"}
+	bad := ledger.Row{Shot: "b\x1b[2J", Reason: "b.fits: truncated", Duplicate: "shot_1"}
 	var out bytes.Buffer
 	if err := Summary(&out, []ledger.Row{good, bad}); err != nil {
 		t.Fatal(err)
 	}
 	want := `shot    flight/ms            N           N0    fraction  T/nK      mu/nK  T/Tc0  flags
 shot_1         15  3.000(30)e5  1.000(10)e5  0.3333(33)  >190  50.00(50)         dense
-b?[2J                                                                            failed: b.fits: truncated
+b?[2J                                                                            duplicate failed: b.fits: truncated
 `
 	table, legend, _ := strings.Cut(out.String(), "\n\n")
 	if diff := cmp.Diff(want, table+"\n"); diff != "" {
 		t.Error(diff)
 	}
-	if !strings.HasPrefix(legend, "dense (1): ") || strings.Count(legend, "\n") != 1 {
+	if !strings.HasPrefix(legend, "dense (1): ") || !strings.Contains(legend, "\nduplicate (1): ") || strings.Count(legend, "\n") != 2 {
 		t.Errorf("the legend is %q", legend)
 	}
 }

@@ -46,7 +46,7 @@ func Summary(w io.Writer, rows []ledger.Row) error {
 		}
 		last := strings.Join(Flags(r), " ")
 		if r.Reason != "" {
-			last = strings.TrimSpace("failed: " + Printable(r.Reason) + " " + last)
+			last = strings.TrimSpace(last + " failed: " + Printable(r.Reason))
 		}
 		lines = append(lines, append(line, last))
 	}
