@@ -27,6 +27,11 @@ func TestCameraFromDarksOfTheNight(t *testing.T) {
 	}
 	_, text := look(t, dir, 0, edits("*_0001_d.fits", "electrons_per_count = 1.0", "", "read_noise_electrons = 6.0", "")...)
 	says(t, text, "two dark frames, theirs or the night's: there are fewer; state it", "electrons_per_count")
+	if strings.Contains(text, "no file in the folder") {
+		t.Errorf("a dark file that is there is missed:\n%s", text)
+	}
+	_, none := look(t, dir, 0, edits("darks/*.fits")...)
+	says(t, none, `dark_files: no file in the folder is called darks/\*\.fits`)
 	if !strings.Contains(text, "none of which a batch can fit") {
 		t.Errorf("goes on:\n%s", text)
 	}

@@ -44,6 +44,9 @@ func (v *visit) judgeNight() {
 		}
 	}
 	v.judgeStrays()
+	if names := v.Settings.Shots.DarkFiles; len(names) > 0 && len(v.look.DarkFiles) == 0 {
+		v.trouble.caution("", "dark_files: no file in the folder is called %s", strings.Join(names, ", "))
+	}
 	if v.stopped != nil {
 		v.trouble.problem("", "%v", v.stopped)
 	}
