@@ -296,3 +296,21 @@ func TestLegendHidesNothing(t *testing.T) {
 		}
 	}
 }
+
+// TestLegendHidesNoBar: error bars reach where their points do not.
+func TestLegendHidesNoBar(t *testing.T) {
+	axis := Axis{Min: 0, Max: 1}
+	points := []Points{
+		{X: []float64{0.9}, Y: []float64{0.5}, YErr: []float64{0.3}, YTotal: []float64{0.45}},
+		{X: []float64{0.5}, Y: []float64{0.1}, XErr: []float64{0.45}},
+	}
+	s := &sheet{Figure: &Figure{X: axis, Y: axis, Points: points}, frame: vg.Rectangle{Max: vg.Point{X: 200, Y: 120}}}
+	box := s.freest(vg.Point{X: 50, Y: 30})
+	if box.Max.X > 0.9*200 || box.Min.Y < 0.1*120 {
+		t.Errorf("the legend %v hides a bar", box)
+	}
+	points[0].Plain, points[1].Plain = true, true
+	if box := s.freest(vg.Point{X: 50, Y: 30}); box.Max.X < 0.9*200 {
+		t.Errorf("the legend %v leaves room for bars that are not drawn", box)
+	}
+}

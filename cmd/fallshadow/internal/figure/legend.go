@@ -107,8 +107,8 @@ type spot struct {
 	cost float64
 }
 
-// drawn returns the points, and the curves as spots two points (1/72 inch) apart; a point of
-// data costs like 20 points of a curve.
+// drawn returns the points, and curves and error bars as spots two points (1/72 inch) apart; a
+// point of data costs like 20 points of a curve.
 func (s *sheet) drawn() (list []spot) {
 	f := s.frame
 	add := func(p vg.Point, cost float64) {
@@ -116,23 +116,32 @@ func (s *sheet) drawn() (list []spot) {
 			list = append(list, spot{p, cost})
 		}
 	}
+	stretch := func(a, b vg.Point) {
+		length := math.Hypot(float64(b.X-a.X), float64(b.Y-a.Y))
+		if length-length != 0 {
+			return // NaN breaks a curve
+		}
+		parts := min(int(length/2)+1, 2000)
+		for j := range parts {
+			t := (vg.Length(j) + 0.5) / vg.Length(parts)
+			add(vg.Point{X: a.X + t*(b.X-a.X), Y: a.Y + t*(b.Y-a.Y)}, length/2/float64(parts))
+		}
+	}
 	for i := range s.Points {
-		for k, x := range s.Points[i].X {
-			add(s.at(x, s.Points[i].Y[k]), 10)
+		p := &s.Points[i]
+		for k, x := range p.X {
+			add(s.at(x, p.Y[k]), 10)
+			if !p.Plain && s.X.holds(x) && s.Y.holds(p.Y[k]) {
+				for _, b := range s.bars(p, k) {
+					stretch(b.from, b.to)
+				}
+			}
 		}
 	}
 	for i := range s.Curves {
-		for k := 1; k < len(s.Curves[i].X); k++ {
-			a, b := s.at(s.Curves[i].X[k-1], s.Curves[i].Y[k-1]), s.at(s.Curves[i].X[k], s.Curves[i].Y[k])
-			length := math.Hypot(float64(b.X-a.X), float64(b.Y-a.Y))
-			if length-length != 0 {
-				continue // NaN breaks a curve
-			}
-			parts := min(int(length/2)+1, 2000)
-			for j := range parts {
-				t := (vg.Length(j) + 0.5) / vg.Length(parts)
-				add(vg.Point{X: a.X + t*(b.X-a.X), Y: a.Y + t*(b.Y-a.Y)}, length/2/float64(parts))
-			}
+		c := &s.Curves[i]
+		for k := 1; k < len(c.X); k++ {
+			stretch(s.at(c.X[k-1], c.Y[k-1]), s.at(c.X[k], c.Y[k]))
 		}
 	}
 	return list

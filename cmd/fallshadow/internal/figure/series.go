@@ -1,7 +1,6 @@
 package figure
 
 import (
-	"image/color"
 	"math"
 
 	"gonum.org/v1/plot/vg"
@@ -117,7 +116,9 @@ func (s *sheet) points(p *Points) {
 	c := looks[p.Role].color
 	for i := range p.X {
 		if !p.Plain && s.X.holds(p.X[i]) && s.Y.holds(p.Y[i]) {
-			s.bars(p, i, c)
+			for _, b := range s.bars(p, i) {
+				s.stroke(c, b.width, nil, b.from, b.to)
+			}
 		}
 	}
 	size := vg.Length(markSize)
@@ -131,33 +132,40 @@ func (s *sheet) points(p *Points) {
 	}
 }
 
-// bars draws the error bars of a point: both errors thin, the statistical one thick.
-func (s *sheet) bars(p *Points, i int, c color.Color) {
+// bar is an error bar as it is drawn.
+type bar struct {
+	from, to vg.Point
+	width    float64
+}
+
+// bars returns the error bars of a point: both errors thin, the statistical one thick.
+func (s *sheet) bars(p *Points, i int) (list []bar) {
 	pick := func(list []float64) float64 {
 		if i < len(list) && list[i] > 0 {
 			return list[i]
 		}
 		return 0
 	}
-	s.bar(p.X[i], p.Y[i], pick(p.XTotal), pick(p.XTotal), false, thinBar, c)
-	s.bar(p.X[i], p.Y[i], pick(p.YTotal), pick(p.YTotal), true, thinBar, c)
+	x, y := p.X[i], p.Y[i]
+	across := func(low, high, width float64) {
+		if low+high > 0 {
+			list = append(list, bar{s.at(s.X.clamp(x-low), y), s.at(s.X.clamp(x+high), y), width})
+		}
+	}
+	upright := func(err, width float64) {
+		if err > 0 {
+			list = append(list, bar{s.at(x, s.Y.clamp(y-err)), s.at(x, s.Y.clamp(y+err)), width})
+		}
+	}
+	across(pick(p.XTotal), pick(p.XTotal), thinBar)
+	upright(pick(p.YTotal), thinBar)
 	low, high := pick(p.XErr), pick(p.XErr)
 	if i < len(p.XLow) && p.XHigh[i]-p.XLow[i] > 0 {
-		low, high = p.X[i]-p.XLow[i], p.XHigh[i]-p.X[i]
+		low, high = x-p.XLow[i], p.XHigh[i]-x
 	}
-	s.bar(p.X[i], p.Y[i], low, high, false, thickBar, c)
-	s.bar(p.X[i], p.Y[i], pick(p.YErr), pick(p.YErr), true, thickBar, c)
-}
-
-func (s *sheet) bar(x, y, low, high float64, upright bool, width float64, c color.Color) {
-	if !(low+high > 0) {
-		return
-	}
-	a, b := s.at(s.X.clamp(x-low), y), s.at(s.X.clamp(x+high), y)
-	if upright {
-		a, b = s.at(x, s.Y.clamp(y-low)), s.at(x, s.Y.clamp(y+high))
-	}
-	s.stroke(c, width, nil, a, b)
+	across(low, high, thickBar)
+	upright(pick(p.YErr), thickBar)
+	return list
 }
 
 // mark draws the shape of a role: a disc, a square, a triangle; an open one is white inside.
