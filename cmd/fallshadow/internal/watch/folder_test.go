@@ -209,6 +209,8 @@ func TestRegionHoldsFromTheNextShot(t *testing.T) {
 	}
 	copyFile(t, shotFile("3"), filepath.Join(dir, "ramp_0001b.fits"))
 	h.until(t, "the late one", h.seen(3))
+	const waits = "the region drawn at the page waits for a shot whose name sorts behind ramp_0002, as that of ramp_0001b does not"
+	h.until(t, "word that it waits still", func() bool { return slices.Equal(h.notes, []string{waits}) })
 	copyFile(t, shotFile("4"), filepath.Join(dir, "ramp_0004.fits"))
 	h.until(t, "the next", func() bool { return h.pictures["ramp_0004"] != nil && h.pictures["ramp_0001b"] != nil })
 	if r := h.pictures["ramp_0001b"].Region; r != image.Rect(0, 0, 160, 144) {
@@ -220,6 +222,7 @@ func TestRegionHoldsFromTheNextShot(t *testing.T) {
 	if now, next := w.Region(); now == nil || *now != region || next != nil {
 		t.Errorf("regions %v, %v", now, next)
 	}
+	h.until(t, "no word of it any more", func() bool { return len(h.notes) == 0 })
 	for _, r := range rowsOf(t, w) {
 		if r.Stale {
 			t.Errorf("%s is stale", r.Shot)

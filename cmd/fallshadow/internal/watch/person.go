@@ -76,6 +76,7 @@ func (w *Watcher) Draw(region image.Rectangle) error {
 	w.mu.Lock()
 	w.drawn = &drawing{region}
 	w.mu.Unlock()
+	w.notes.set("region", "")
 	w.desk.foresee(w.settings(), region)
 	w.audience.Changed()
 	w.audience.Heard(fmt.Sprintf("a region was drawn at the page: x %d to %d, y %d to %d; it holds from the next shot on, the first after %s",
@@ -89,6 +90,7 @@ func (w *Watcher) Undraw() {
 	waited := w.drawn != nil
 	w.drawn = nil
 	w.mu.Unlock()
+	w.notes.set("region", "")
 	w.audience.Changed()
 	if waited {
 		w.audience.Heard("the region that waited for the next shot was taken back at the page")
@@ -96,8 +98,8 @@ func (w *Watcher) Undraw() {
 }
 
 // beginRegion stores the region that was drawn with the first new shot behind all that
-// were there, and reports whether there was one. Shots that come late but belong before
-// them keep what held then.
+// were there, by name as in a batch, and reports whether there was one. Shots that come late
+// but belong before them keep what held then, and a note says that the region waits still.
 func (w *Watcher) beginRegion(ctx context.Context, jobs []*job, last string) bool {
 	w.mu.Lock()
 	defer w.mu.Unlock()
@@ -105,7 +107,11 @@ func (w *Watcher) beginRegion(ctx context.Context, jobs []*job, last string) boo
 		return false
 	}
 	for _, j := range jobs {
-		if !j.isNew || last != "" && imageio.Natural(j.Name, last) <= 0 {
+		if !j.isNew {
+			continue
+		}
+		if last != "" && imageio.Natural(j.Name, last) <= 0 {
+			w.notes.set("region", fmt.Sprintf("the region drawn at the page waits for a shot whose name sorts behind %s, as that of %s does not", last, j.Name))
 			continue
 		}
 		r := w.drawn.region
