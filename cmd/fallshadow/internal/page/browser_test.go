@@ -28,12 +28,12 @@ import (
 const demoNight = "../../../../testdata/night"
 
 // browser starts a Chromium of its own; a tab is made of what it returns.
-func browser(t *testing.T) context.Context { return tabFor(t, 6*time.Minute) }
+func browser(t testing.TB) context.Context { return tabFor(t, 6*time.Minute) }
 
 // longTab is a tab for a long test.
-func longTab(t *testing.T) context.Context { return tabFor(t, time.Hour) }
+func longTab(t testing.TB) context.Context { return tabFor(t, time.Hour) }
 
-func tabFor(t *testing.T, limit time.Duration) context.Context {
+func tabFor(t testing.TB, limit time.Duration) context.Context {
 	t.Helper()
 	options := append(slices.Clone(chromedp.DefaultExecAllocatorOptions[:]),
 		chromedp.WSURLReadTimeout(limit), chromedp.NoSandbox, chromedp.DisableGPU, chromedp.NoFirstRun, chromedp.UserDataDir(t.TempDir()),
@@ -50,7 +50,7 @@ func tabFor(t *testing.T, limit time.Duration) context.Context {
 }
 
 // do takes steps in the tab.
-func do(t *testing.T, tab context.Context, steps ...chromedp.Action[chromedp.Void]) {
+func do(t testing.TB, tab context.Context, steps ...chromedp.Action[chromedp.Void]) {
 	t.Helper()
 	if err := chromedp.Do(tab, steps...); err != nil {
 		t.Fatal(err)
@@ -58,7 +58,7 @@ func do(t *testing.T, tab context.Context, steps ...chromedp.Action[chromedp.Voi
 }
 
 // eval returns the value of a script.
-func eval[T any](t *testing.T, tab context.Context, script string) (v T) {
+func eval[T any](t testing.TB, tab context.Context, script string) (v T) {
 	t.Helper()
 	v, err := chromedp.Run(tab, chromedp.Evaluate[T](script))
 	if err != nil {
@@ -71,7 +71,7 @@ func eval[T any](t *testing.T, tab context.Context, script string) (v T) {
 const patience = time.Minute
 
 // until waits until a script is true.
-func until(t *testing.T, tab context.Context, what, script string) {
+func until(t testing.TB, tab context.Context, what, script string) {
 	t.Helper()
 	for end := time.Now().Add(patience); time.Now().Before(end); time.Sleep(50 * time.Millisecond) {
 		if eval[bool](t, tab, "!!("+script+")") {
@@ -110,7 +110,7 @@ func hover(t *testing.T, tab context.Context, part float64, what, script string)
 }
 
 // screenshot keeps what the window shows, if anybody wants it.
-func screenshot(t *testing.T, tab context.Context, name string) {
+func screenshot(t testing.TB, tab context.Context, name string) {
 	t.Helper()
 	dir := os.Getenv("FALLSHADOW_SCREENS")
 	if dir == "" {
@@ -135,7 +135,7 @@ type watched struct {
 }
 
 // watchNight watches a night and shows it at an address.
-func watchNight(t *testing.T, dir, address string) *watched {
+func watchNight(t testing.TB, dir, address string) *watched {
 	t.Helper()
 	p := page.New(filepath.Base(dir))
 	w, err := watch.New(watch.Options{Dir: dir, Out: filepath.Join(filepath.Dir(dir), "results"), Poll: 500 * time.Millisecond}, p)
@@ -213,7 +213,7 @@ const (
 	fontSize = `parseFloat(getComputedStyle(document.querySelector('.card[data-name=atoms] .value')).fontSize)`
 )
 
-func shown(t *testing.T, tab context.Context, shot string) {
+func shown(t testing.TB, tab context.Context, shot string) {
 	t.Helper()
 	until(t, tab, "numbers of "+shot, fmt.Sprintf(shownIs, shot, shot))
 	until(t, tab, "picture of "+shot, fmt.Sprintf(seenIs, shot, shot))

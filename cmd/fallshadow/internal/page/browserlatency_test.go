@@ -12,36 +12,41 @@ import (
 	"github.com/chromedp/chromedp"
 )
 
-// The time from the last byte of a 1024x1024 cube to its numbers, and its picture, in the
-// document of a browser. It is told, not judged: machines differ.
-func TestBrowserLatency(t *testing.T) {
-	if testing.Short() {
-		t.Skip("it draws large frames")
-	}
-	dir, shots := largeShots(t)
-	n := watchNight(t, dir, "127.0.0.1:0")
-	tab := browser(t)
-	do(t, tab, chromedp.EmulateViewport(1440, 900), chromedp.Navigate(n.url))
-	eval[bool](t, tab, `window.came = {}, new MutationObserver(() => {
+// BenchmarkBrowserLatency is the time from the last byte of a 1024x1024 cube to its numbers,
+// and its picture, in the document of a browser; an iteration is a shot.
+func BenchmarkBrowserLatency(b *testing.B) {
+	dir, shots := largeShots(b)
+	n := watchNight(b, dir, "127.0.0.1:0")
+	tab := longTab(b)
+	do(b, tab, chromedp.EmulateViewport(1440, 900), chromedp.Navigate(n.url))
+	eval[bool](b, tab, `window.came = {}, new MutationObserver(() => {
 		for (const [what, shot] of Object.entries(document.body.dataset)) window.came[what + shot] ??= Date.now();
 	}).observe(document.body, { attributes: true }), true`)
-	var numbers, pictures []int
-	const young, old = 20, 20
-	for i := range young + old {
+	var numbers, pictures []float64
+	measure := func(i int) {
 		name := fmt.Sprintf("large_%04d", i)
-		last := slowly(t, filepath.Join(dir, name+".fits"), another(shots, i))
-		shown(t, tab, name)
-		if i < young {
-			continue
-		}
-		since := func(what string) int {
-			return int(eval[float64](t, tab, fmt.Sprintf(`window.came[%q]`, what+name)) - float64(last.UnixMilli()))
+		last := slowly(b, filepath.Join(dir, name+".fits"), another(shots, i))
+		shown(b, tab, name)
+		since := func(what string) float64 {
+			return eval[float64](b, tab, fmt.Sprintf(`window.came[%q]`, what+name)) - float64(last.UnixMilli())
 		}
 		numbers, pictures = append(numbers, since("shown")), append(pictures, since("seen"))
-		time.Sleep(300 * time.Millisecond)
+		time.Sleep(300 * time.Millisecond) // no machine takes shots faster than that
 	}
+	const young = 20 // shots until the night has its lights
+	for i := range young {
+		measure(i)
+	}
+	numbers, pictures = nil, nil
+	b.ResetTimer()
+	for i := range b.N {
+		measure(young + i)
+	}
+	b.StopTimer()
 	slices.Sort(numbers)
 	slices.Sort(pictures)
-	t.Logf("numbers after %d ms in the median, %d ms in 95 of 100; pictures after %d ms", numbers[old/2], numbers[old*95/100], pictures[old/2])
-	t.Logf("numbers: %v", numbers)
+	b.Logf("numbers, ms: %v", numbers)
+	b.ReportMetric(numbers[len(numbers)/2], "ms-median")
+	b.ReportMetric(numbers[len(numbers)*95/100], "ms-95%")
+	b.ReportMetric(pictures[len(pictures)/2], "ms-picture")
 }
