@@ -21,8 +21,10 @@ const pullPlaces = 40
 
 // CalibrationBand returns the band of a law for n atoms at the given t = T/Tc⁰. Calibration
 // errors are common to a night: alpha moves all t by N^(−1/3), a wrong counts per Isat the
-// fractions too. Those of unknown uncertainty are not in it. The law moved by each known one, up and down, departs from the law at
-// rest; the squares of the departures add up on either side.
+// fractions too. Those of unknown uncertainty are not in it, nor are points whose T is known
+// to worse than a third, which stand at a t that is not theirs. The law moved by each known
+// one, up and down, departs from the law at rest; the squares of the departures add up on
+// either side.
 func (n *Night) CalibrationBand(th *Theory, l Law, atoms float64, t []float64) Band {
 	b := Band{T: t, Low: make([]float64, len(t)), High: make([]float64, len(t))}
 	for c, calibration := range n.Calibrations {
@@ -57,7 +59,7 @@ func (n *Night) pulls(c int) []pull {
 	g := &n.Calibrations[c].Gas
 	for i := range n.Points {
 		p := &n.Points[i]
-		if !(p.Vector[T] > 0) || !(p.Atoms() > 0) || !p.Shifted() {
+		if !(p.Vector[T] > 0) || !(p.Atoms() > 0) || !p.Shifted() || p.relative(T) > 1./3 {
 			continue
 		}
 		moved := p.shifted(c, p.Vector)

@@ -308,6 +308,13 @@ func TestCalibrationBand(t *testing.T) {
 	within(t, "lower end", b.Low[0], 1-math.Pow(0.7*math.Pow(1+d, 1./3), 3), 1e-6)
 	within(t, "lower end near Tc", b.Low[1], 0, 1e-9)
 	within(t, "upper end above Tc", b.High[2], 0, 1e-9)
+
+	astray := n.Points[0]
+	astray.Vector[T] *= 0.7 / g.Reduced(astray.Vector[T], astray.Atoms())
+	astray.Cov[T][T] = math.Pow(0.4*astray.Vector[T], 2)
+	astray.Shifts = []Vector{{0, 0, 0.4 * astray.Vector[T], 0}, {}}
+	n.Points = append(n.Points, astray)
+	within(t, "upper end beside a T that nobody knows", n.CalibrationBand(th, ideal, 1e5, []float64{0.7}).High[0], b.High[0], 1e-9)
 }
 
 // TestRelease gives flights whose radii are those of μ 21 % above that of N0.
