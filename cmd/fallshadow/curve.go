@@ -110,7 +110,7 @@ type curveCmd struct {
 	X      string         `default:"t_reduced" help:"What to draw along: a column, a scan variable, or number, that of the shot."`
 	Y      string         `default:"fraction" help:"What to draw against it."`
 	XUnit  string         `placeholder:"UNIT" help:"Unit of a scan variable on the axis."`
-	Law    []string       `placeholder:"LAW" enum:"ideal,finite-size,interacting,semi-ideal,hartree-fock" help:"Laws to draw, of ${enum}."`
+	Law    []string       `placeholder:"LAW" enum:"ideal,finite-size,interacting,semi-ideal,hartree-fock" help:"Laws to draw, of ${enum}; ideal, semi-ideal, hartree-fock and that of the least chi2 if left out."`
 	Group  study.Grouping `placeholder:"NAME[:WIDTH]" help:"Draw and list means of shots with equal NAME, or of bins of it."`
 	Report pageFile       `placeholder:"FILE" help:"Write the night as one HTML page that needs no other file: curve, trends, flags, pictures of flagged shots, settings."`
 	figureArgs

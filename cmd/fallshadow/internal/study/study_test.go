@@ -16,6 +16,7 @@ import (
 	"strings"
 	"testing"
 
+	"fallshadow/cmd/fallshadow/internal/figure"
 	"fallshadow/cmd/fallshadow/internal/ledger"
 	"fallshadow/cmd/fallshadow/internal/night"
 	"fallshadow/cmd/fallshadow/internal/report"
@@ -357,6 +358,44 @@ func TestPlot(t *testing.T) {
 	for _, axes := range []Axes{{X: "nonsense", Y: DefaultY}, {X: DefaultX, Y: "nonsense"}, {X: DefaultX, Y: DefaultY, Laws: []string{"nonsense"}}, {X: "collapse", Y: DefaultY}} {
 		if _, err := a.Plot(axes); err == nil {
 			t.Errorf("%+v is drawn", axes)
+		}
+	}
+}
+
+// TestBestLawIsDrawn: a curve of its own goes through the middle of the calibration band, be
+// the best law among the usual ones or not, or left out by a choice of laws.
+func TestBestLawIsDrawn(t *testing.T) {
+	a := analysed(t, made(t, 30))
+	usual := a.Best().Name
+	for _, c := range []struct {
+		best   string
+		laws   []string
+		curves int
+		of     string
+	}{
+		{usual, nil, 3, usual},
+		{curve.FiniteSize, nil, 4, curve.FiniteSize},
+		{curve.FiniteSize, []string{curve.Ideal}, 1, curve.Ideal},
+	} {
+		for i := range a.Comparisons {
+			a.Comparisons[i].Chi2 = 50
+			if a.Comparisons[i].Law.Name == c.best {
+				a.Comparisons[i].Chi2 = 1
+			}
+		}
+		d, err := a.Plot(Axes{X: DefaultX, Y: DefaultY, Laws: c.laws})
+		if err != nil {
+			t.Fatal(err)
+		}
+		if len(d.Figure.Curves) != c.curves {
+			t.Errorf("%+v: %d curves", c, len(d.Figure.Curves))
+		}
+		band := d.Figure.Bands[slices.IndexFunc(d.Figure.Bands, func(b figure.Band) bool { return b.Legend == "calibration, 1 *σ*" })]
+		at := slices.IndexFunc(d.Figure.Curves, func(f figure.Curve) bool { return f.Role == roles[c.of] })
+		for i, y := range d.Figure.Curves[at].Y {
+			if !(y >= band.Low[i]-1e-12 && y <= band.High[i]+1e-12) {
+				t.Fatalf("%+v: at %g the band goes from %g to %g, the law is at %g", c, band.X[i], band.Low[i], band.High[i], y)
+			}
 		}
 	}
 }

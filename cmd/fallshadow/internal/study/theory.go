@@ -16,6 +16,9 @@ func (p *plotting) laws() error {
 	names := p.axes.Laws
 	if names == nil {
 		names = usualLaws
+		if best := p.Best().Name; p.banded() && !slices.Contains(names, best) {
+			names = append(slices.Clone(names), best)
+		}
 	}
 	for _, name := range names {
 		l, ok := curve.Find(name)
@@ -80,7 +83,7 @@ func (p *plotting) across() []float64 {
 }
 
 // fractions draws f against t or T, at the middle N of the condensed shots, with a band
-// from the least to the largest N, and the calibration band about the best law.
+// from the least to the largest N, and the calibration band about the best law drawn.
 func (p *plotting) fractions(laws []curve.Law) {
 	low, mid, high := p.atomNumbers()
 	reduced := func(x, n float64) float64 {
@@ -91,7 +94,7 @@ func (p *plotting) fractions(laws []curve.Law) {
 	}
 	x := p.across()
 	if p.banded() {
-		p.calibration()
+		p.calibration(laws)
 	}
 	named := false
 	for _, l := range laws {
@@ -142,13 +145,25 @@ func (p *plotting) atomNumbers() (low, mid, high float64) {
 	return list[0], list[len(list)/2], list[len(list)-1]
 }
 
-// calibration draws how far errors that are common to all shots may have moved the best law.
-func (p *plotting) calibration() {
+// calibration draws how far errors that are common to all shots may have moved the best of the
+// laws that are drawn.
+func (p *plotting) calibration(drawn []curve.Law) {
 	_, mid, _ := p.atomNumbers()
-	b := p.Curve.CalibrationBand(p.Theory, p.Best(), mid, p.across())
+	b := p.Curve.CalibrationBand(p.Theory, p.bestOf(drawn), mid, p.across())
 	if !slices.Equal(b.Low, b.High) {
 		p.figure.Bands = append(p.figure.Bands, figure.Band{Legend: "calibration, 1 *σ*", Role: figure.Data, X: b.T, Low: b.Low, High: b.High})
 	}
+}
+
+// bestOf returns the law with the least χ² of some, the best of all where none was compared.
+func (p *plotting) bestOf(laws []curve.Law) curve.Law {
+	list := slices.DeleteFunc(slices.Clone(p.Comparisons), func(c curve.Comparison) bool {
+		return !slices.ContainsFunc(laws, func(l curve.Law) bool { return l.Name == c.Law.Name })
+	})
+	if i := curve.Best(list); i >= 0 {
+		return list[i].Law
+	}
+	return p.Best()
 }
 
 func (p *plotting) entropies() {
