@@ -10,6 +10,7 @@ import (
 	"os"
 	"path/filepath"
 	"regexp"
+	"strconv"
 	"strings"
 	"testing"
 
@@ -345,6 +346,22 @@ func TestSideTable(t *testing.T) {
 		t.Errorf("%d problems", out.Problems)
 	}
 	says(t, text, "other.csv names no shot", "such as rubidium_0001", "other.csv has rows that fit no shot: run7")
+}
+
+// TestDetunedDensity: the optical density is that at the detuning, alpha (1 + 4 0.5^2) below
+// sigma0 n.
+func TestDetunedDensity(t *testing.T) {
+	dir := simulated(t, "rubidium", 5, "exposure_us", "detuning_gamma = 0.5\nexposure_us")
+	_, text := look(t, dir, 1)
+	found := regexp.MustCompile(`peak sigma0 n\s+(\S+) in \S+\s+optical\s+density\s+\(sigma0\s+n/a,\s+a\s+=\s+alpha\s+\(1\s+\+\s+4\s+detuning_gamma\^2\)\)\s+(\S+),`).FindStringSubmatch(text)
+	if found == nil {
+		t.Fatalf("no optical density in\n%s", text)
+	}
+	peak, err := strconv.ParseFloat(found[1], 64)
+	density, err2 := strconv.ParseFloat(found[2], 64)
+	if err != nil || err2 != nil || !(math.Abs(density/peak*4-1) <= 0.01) {
+		t.Errorf("sigma0 n is %s, the optical density %s", found[1], found[2])
+	}
 }
 
 // TestDecimalComma: a table of a country that writes one is told of, scan variable and flight.

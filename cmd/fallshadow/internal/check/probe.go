@@ -155,11 +155,20 @@ func (v *visit) writeDensest(s float64) {
 	o := v.look.Lab.Optics
 	law := model.Law{Alpha: o.Alpha, Detuning: o.Detuning, Stray: o.Stray}
 	apparent := -math.Log(law.Transmit(peak, s))
-	text := fmt.Sprintf("%.3g in %s, optical density (sigma0 n/alpha) %.3g, where %.2g %% of the light comes through", peak, name, peak/o.Alpha, 100*math.Exp(-apparent))
+	text := fmt.Sprintf("%.3g in %s, %s, where %.2g %% of the light comes through", peak, name, v.opticalDensity(peak), 100*math.Exp(-apparent))
 	if o.Stray > 0 {
 		text += fmt.Sprintf("; stray light caps ln(I0/I) at %.3g", law.Ceiling())
 	}
 	v.page.pair("peak sigma0 n", "%s", text)
+}
+
+// opticalDensity tells what a weak probe at its detuning would see of a peak of sigma0 n.
+func (v *visit) opticalDensity(peak float64) string {
+	o := v.look.Lab.Optics
+	if o.Detuning == 0 {
+		return fmt.Sprintf("optical density (sigma0 n/alpha) %.3g", peak/o.Alpha)
+	}
+	return fmt.Sprintf("optical density (sigma0 n/a, a = alpha (1 + 4 detuning_gamma^2)) %.3g", peak/(o.Alpha*(1+4*o.Detuning*o.Detuning)))
 }
 
 func (v *visit) densest() (peak float64, name string) {
@@ -187,7 +196,7 @@ func (v *visit) writeDensity() {
 	}
 	v.page.title("Density")
 	o := v.look.Lab.Optics
-	v.page.pair("peak sigma0 n", "%.3g in %s, optical density (sigma0 n/alpha) %.3g", peak, name, peak/o.Alpha)
+	v.page.pair("peak sigma0 n", "%.3g in %s, %s", peak, name, v.opticalDensity(peak))
 	smallest := math.Inf(1)
 	for _, f := range v.fitted {
 		for _, size := range slices.Concat(f.facts.Fit.Width[:], f.facts.Fit.Radius[:]) {
