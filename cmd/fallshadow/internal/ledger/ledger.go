@@ -212,8 +212,11 @@ func wrap(what string, err error) error {
 
 // unreadable says what to do about a ledger that cannot be opened for writing.
 func unreadable(file string, err error) error {
-	if isFull(err) {
+	switch {
+	case isFull(err):
 		return fmt.Errorf("open %s: %w (free space on the disk, and run again)", file, err)
+	case isForbidden(err):
+		return fmt.Errorf("open %s: %w (get leave to write the file and its folder, or name another folder with --out)", file, err)
 	}
 	return fmt.Errorf("open %s: %w (move the file away to start a new ledger)", file, err)
 }

@@ -368,7 +368,8 @@ func TestReaderWithoutLedger(t *testing.T) {
 	}
 }
 
-// TestFullDisk: a ledger without room is not to be moved away, a broken one is.
+// TestFullDisk: a ledger without room, or leave to write it, is not to be moved away, a broken
+// one is.
 func TestFullDisk(t *testing.T) {
 	db, err := open(filepath.Join(t.TempDir(), Name), "")
 	if err != nil {
@@ -382,6 +383,19 @@ func TestFullDisk(t *testing.T) {
 	err = migrate(context.Background(), db)
 	if got := unreadable(Name, err).Error(); !strings.Contains(got, "free space") || strings.Contains(got, "move the file") {
 		t.Errorf("a full disk: %s", got)
+	}
+	file := filepath.Join(t.TempDir(), Name)
+	if err := os.WriteFile(file, nil, 0o644); err != nil {
+		t.Fatal(err)
+	}
+	shut, err := open(file, "mode=ro")
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer shut.Close()
+	err = migrate(context.Background(), shut)
+	if got := unreadable(Name, err).Error(); !strings.Contains(got, "leave to write") || strings.Contains(got, "move the file") {
+		t.Errorf("a file that may not be written: %s", got)
 	}
 	if got := unreadable(Name, errors.New("file is not a database")).Error(); !strings.Contains(got, "move the file away") {
 		t.Errorf("a broken file: %s", got)

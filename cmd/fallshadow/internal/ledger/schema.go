@@ -7,6 +7,7 @@ import (
 	"fmt"
 	"net/url"
 	"path/filepath"
+	"slices"
 	"strings"
 
 	"modernc.org/sqlite" // the driver, seen by this package alone
@@ -140,8 +141,13 @@ func versionOf(ctx context.Context, db *sql.DB) (int, error) {
 }
 
 // isFull reports whether the disk has no room for what SQLite wanted to write.
-func isFull(err error) bool {
-	const full, primary = 13, 0xff // SQLITE_FULL, and the part of a code that all its kinds share
+func isFull(err error) bool { return hasCode(err, 13) } // SQLITE_FULL
+
+// isForbidden reports whether the file or its folder may not be written.
+func isForbidden(err error) bool { return hasCode(err, 3, 8, 14) } // SQLITE_PERM, _READONLY, _CANTOPEN
+
+func hasCode(err error, codes ...int) bool {
+	const primary = 0xff // the part of a code that all its kinds share
 	var e *sqlite.Error
-	return errors.As(err, &e) && e.Code()&primary == full
+	return errors.As(err, &e) && slices.Contains(codes, e.Code()&primary)
 }
