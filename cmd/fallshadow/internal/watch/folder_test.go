@@ -407,6 +407,34 @@ func TestRenamedBetweenWatches(t *testing.T) {
 	}
 }
 
+// Pixels that come a second time, under a name that sorts before the first, make the first shot
+// the duplicate; other pixels under one of the names make it none. Who shows it is told.
+func TestDuplicateComesBefore(t *testing.T) {
+	dir := nightWith(t, "1", "5")
+	h := newHall()
+	w, _ := run(t, Options{Dir: dir}, h)
+	h.until(t, "two", h.seen(2))
+	changed := 0
+	duplicate := func(of string) func() bool {
+		return func() bool {
+			r, err := w.Row(context.Background(), "ramp_0005")
+			return err == nil && r.Duplicate == of && h.changed > changed
+		}
+	}
+	h.until(t, "the start", duplicate(""))
+	time.Sleep(2 * settle)
+	h.mu.Lock()
+	changed = h.changed
+	h.mu.Unlock()
+	copyFile(t, shotFile("5"), filepath.Join(dir, "ramp_0003.fits"))
+	h.until(t, "a duplicate, and word of it", duplicate("ramp_0003"))
+	h.mu.Lock()
+	changed = h.changed
+	h.mu.Unlock()
+	copyFile(t, shotFile("6"), filepath.Join(dir, "ramp_0003.fits"))
+	h.until(t, "none, and word of it", duplicate(""))
+}
+
 // Shots that leave and come back as they were, as with a share that is away for a moment, keep
 // their rows, while the watch runs and over a restart.
 func TestShotsComeBack(t *testing.T) {

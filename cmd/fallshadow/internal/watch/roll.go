@@ -292,6 +292,19 @@ func (r *roll) knownOf(name string) known {
 	return known{}
 }
 
+// twin reports whether a shot shares pixels with another, the first of which makes the others
+// duplicates.
+func (r *roll) twin(name string, content ledger.Digest) bool {
+	r.mu.Lock()
+	defer r.mu.Unlock()
+	for other, e := range r.shots {
+		if other != name && e.known.content.Same(content) {
+			return true
+		}
+	}
+	return false
+}
+
 // present lists the shots that are there and were read, for the ledger.
 func (r *roll) present() (list []ledger.Present) {
 	r.mu.Lock()

@@ -88,7 +88,11 @@ func (w *Watcher) conclude(ctx context.Context, j *job, m measured) error {
 	if m.unread {
 		m.content, m.frames = night.Contents(w.root, j.Shot, nil)
 	}
-	ctx = context.WithoutCancel(ctx)
+	return w.keep(context.WithoutCancel(ctx), j, m)
+}
+
+// keep stores the row of a job and tells of it.
+func (w *Watcher) keep(ctx context.Context, j *job, m measured) error {
 	k := known{content: m.content, frames: m.frames}
 	if m.stands {
 		w.roll.finish(j, k)
@@ -97,6 +101,7 @@ func (w *Watcher) conclude(ctx context.Context, j *job, m measured) error {
 	if err := w.store.Put(ctx, w.row(j, &m), j.looks...); err != nil {
 		return err
 	}
+	before := w.roll.knownOf(j.Name).content
 	if !w.roll.finish(j, k) { // it left the folder meanwhile, which no scan will see again
 		if err := w.store.Reconcile(ctx, w.roll.present()); err != nil {
 			return err
@@ -106,7 +111,13 @@ func (w *Watcher) conclude(ctx context.Context, j *job, m measured) error {
 	w.noteBacklog()
 	w.noteHoldup()
 	w.askTable()
-	return w.tell(ctx, j, &m)
+	if err := w.tell(ctx, j, &m); err != nil {
+		return err
+	}
+	if w.roll.twin(j.Name, before) || w.roll.twin(j.Name, k.content) {
+		w.audience.Changed() // the other may be a duplicate now, or none any more
+	}
+	return nil
 }
 
 // row makes the row of a job.
