@@ -134,8 +134,8 @@ func (s *session) impossible(r *Result) bool {
 }
 
 // secondThoughts looks again at a condensed cloud whose thermal part the widths alone do not
-// tell: in equilibrium it is saturated, so that one number, T, says both how wide and how many.
-// The answer is kept where it sees thermal atoms.
+// tell, or tell so poorly that its number is lost in the light: in equilibrium it is saturated, so
+// that one number, T, says both how wide and how many. The answer is kept where it sees thermal atoms.
 func (s *session) secondThoughts(c *candidates, chosen *state, r *Result) (*Result, error) {
 	if s.opt.Fugacity != FugacityModel || s.tmpl.gaussian {
 		return r, nil
@@ -145,6 +145,8 @@ func (s *session) secondThoughts(c *candidates, chosen *state, r *Result) (*Resu
 	case r.Model == ModelBimodal && s.impossible(r):
 		m, _ := s.tmpl.measured(&st.p, st.kind)
 		s.saturate(&st.p, templateT*math.Cbrt(m.ThermalSum*s.perSum()/model.ThermalNumber(templateT, 0, s.lab.Trap)))
+	case r.Model == ModelBimodal && !(r.Numbers.Thermal.V > 2*r.Numbers.Thermal.Err):
+		s.saturate(&st.p, 0.5*model.CriticalTemperature(r.Numbers.Condensate.V, s.lab.Trap))
 	case r.Model == ModelCondensate && r.Numbers.T.High > 0:
 		st.kind = s.both()
 		s.saturate(&st.p, 0.8*r.Numbers.T.High)

@@ -304,6 +304,20 @@ func TestFindsTheCloud(t *testing.T) {
 	}
 }
 
+// TestLostThermalPart: a faint thermal part that noise has made so wide that its number is lost in
+// the light is tied to its number.
+func TestLostThermalPart(t *testing.T) {
+	sc := standardScene(t, 100e-9, 9e4, 905)
+	sc.electrons, sc.read = 40, 6
+	r := mustFit(t, sc, sc.draw(t), Options{})
+	n := r.Numbers.Atoms
+	if r.Form != "bose+tf,number" || !slices.Contains(r.Flags, FlagByNumber) || !(n.Err < 0.1*n.V) {
+		t.Errorf("form %s, N %.4g ± %.2g, flags %v", r.Form, n.V, n.Err, r.Flags)
+	}
+	within(t, "N", n.V, sc.thermal+sc.condensate, 4*n.Err)
+	within(t, "T", r.Numbers.T.V, sc.T, 4*r.Numbers.T.Err)
+}
+
 // TestEmptyPicture has no cloud and says how many atoms could hide.
 func TestEmptyPicture(t *testing.T) {
 	sc := standardScene(t, 200e-9, 0, 5)
