@@ -99,7 +99,10 @@ func (s *session) limits(c *candidates, full *state, r *Result) error {
 		if err := s.interval(full, atT, &n.T, 1); err != nil {
 			return err
 		}
-		return s.interval(full, atCondensate, &n.Condensate, s.perSum())
+		if err := s.interval(full, atCondensate, &n.Condensate, s.perSum()); err != nil {
+			return err
+		}
+		return s.interval(full, atMu, &n.Mu, 1)
 	case ModelThermal:
 		if err := s.interval(full, atT, &n.T, 1); err != nil {
 			return err
@@ -126,7 +129,7 @@ func (s *session) perSum() float64 { return s.lab.perSum() }
 // error, too.
 func (s *session) interval(full *state, at int, v *numbers.Value, unit float64) error {
 	ended := full.ended()
-	if !(v.Err > lopsided*math.Abs(v.V) || ended) || full.cov == nil {
+	if !(v.Err > lopsided*math.Abs(v.V) || ended && v.Err > 0) || full.cov == nil {
 		return nil
 	}
 	rest, err := s.runFull(full.kind, full.p, 1e-3)

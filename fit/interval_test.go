@@ -3,6 +3,9 @@ package fit
 import (
 	"math"
 	"testing"
+
+	"fallshadow/model"
+	"fallshadow/model/numbers"
 )
 
 // TestColdInterval: the T of a nearly pure condensate has an interval where its error is above a
@@ -30,14 +33,58 @@ func TestColdInterval(t *testing.T) {
 		if !(down > 0 && up > 1.05*down) {
 			t.Errorf("shot %d: T is %.3g ± %.2g with the interval %.3g to %.3g", i, v.V, v.Err, v.Low, v.High)
 		}
-		side := down
-		if sc.T > v.V {
-			side = up
-		}
-		sum += math.Pow((v.V-sc.T)/side, 2)
+		sum += math.Pow(far(v, sc.T), 2)
 	}
 	if with < 5 || without < 5 {
 		t.Errorf("%g shots with an interval and %d without: the scene tests nothing", with, without)
 	}
 	within(t, "rms pull", math.Sqrt(sum/with), 1, 0.5)
+}
+
+// faintScene is a faint picture of a gas just below its transition, or just above without n0.
+func faintScene(t *testing.T, n0 float64, seed uint64) *scene {
+	sc := standardScene(t, 250e-9, n0, seed)
+	sc.electrons, sc.read = 40, 6
+	if n0 == 0 {
+		sc.alpha = 0.05
+		sc.thermal = model.ThermalNumber(sc.T, sc.alpha, sc.lab.Trap)
+	}
+	return sc
+}
+
+// far is how many errors a value is from the truth: in sides of its interval, if it has one.
+func far(v numbers.Value, truth float64) float64 {
+	switch up := truth > v.V; {
+	case up && !math.IsNaN(v.High):
+		return (v.V - truth) / (v.High - v.V)
+	case !up && !math.IsNaN(v.Low):
+		return (v.V - truth) / (v.V - v.Low)
+	}
+	return (v.V - truth) / v.Err
+}
+
+// TestMuInterval: mu of a condensate that is just seen has an interval that says how far it is off.
+func TestMuInterval(t *testing.T) {
+	seen, sum := 0.0, 0.0
+	for i := range uint64(24) {
+		sc := faintScene(t, 8000, 2000+i)
+		r := mustFit(t, sc, sc.draw(t), Options{})
+		v := r.Numbers.Mu
+		if r.Model != ModelBimodal || !(v.Err > lopsided*v.V) {
+			continue
+		}
+		if !(v.Low < v.V && v.V < v.High) {
+			t.Errorf("shot %d: mu is %.3g ± %.2g with the interval %.3g to %.3g", i, v.V, v.Err, v.Low, v.High)
+		}
+		seen++
+		mu, err := model.Mu(sc.condensate, sc.lab.Species.Mass, sc.lab.Species.ScatteringLength, sc.lab.Trap)
+		if err != nil {
+			t.Fatal(err)
+		}
+		sum += math.Pow(far(v, mu), 2)
+	}
+	if seen < 15 {
+		t.Errorf("%g shots have a poorly known mu: the scene tests nothing", seen)
+	}
+	within(t, "rms pull", math.Sqrt(sum/seen), 1, 0.4)
 }
