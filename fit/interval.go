@@ -108,6 +108,7 @@ func (s *session) limits(c *candidates, full *state, r *Result) error {
 			return err
 		}
 		s.limitCondensate(c.thermal, n, &r.Checks)
+		s.undecided(c, n)
 		return nil
 	case ModelCondensate:
 		return s.limitThermal(c.alone, n)
@@ -241,6 +242,35 @@ func (s *session) limitCondensate(st *state, n *numbers.Result, c *Checks) {
 	n.Condensate.High = limit
 	n.Fraction.High = limit / (limit + n.Thermal.V)
 	c.CondensateDetected = s.raise(st, k, set, s.opt.CondensateChi2, limit, n.Thermal.V)
+}
+
+// undecidedGain is the decrease of χ² by two numbers that chance exceeds in one of twenty.
+const undecidedGain = 5.99
+
+// undecided widens T, N_th and N of a thermal cloud where a condensate gains less than is asked of one
+// but more than chance gives: if there is one, the thermal form has taken it for a peak of colder atoms.
+// The intervals reach from the lower end of both answers to the upper one.
+func (s *session) undecided(c *candidates, n *numbers.Result) {
+	if !c.both.used() || c.both.cov == nil || c.thermal.chi2-c.both.chi2 < undecidedGain*s.doubt(c.both) {
+		return
+	}
+	without, _ := s.tmpl.measured(&c.thermal.p, c.thermal.kind)
+	with, j := s.tmpl.measured(&c.both.p, c.both.kind)
+	cov, unit := c.both.spread(j[:]), s.perSum()
+	thermal, condensate := cov[atThermal][atThermal], cov[atCondensate][atCondensate]
+	stretch(&n.T, with.T-without.T, math.Sqrt(cov[atT][atT]))
+	stretch(&n.Thermal, unit*(with.ThermalSum-without.ThermalSum), unit*math.Sqrt(thermal))
+	stretch(&n.Atoms, unit*(with.ThermalSum+with.CondensateSum-without.ThermalSum),
+		unit*math.Sqrt(thermal+condensate+2*cov[atThermal][atCondensate]))
+}
+
+// stretch makes the interval of a value, or its error if it has none, reach over another answer that is
+// by step away and has the error err; an end that is open stays so.
+func stretch(v *numbers.Value, step, err float64) {
+	if math.IsNaN(v.Low) && math.IsNaN(v.High) {
+		v.Low, v.High = v.V-v.Err, v.V+v.Err
+	}
+	v.Low, v.High = math.Min(v.Low, v.V+step-err), math.Max(v.High, v.V+step+err)
 }
 
 // groundState is the product of the rms sizes (px²) in the picture of atoms that do not interact, in

@@ -88,3 +88,34 @@ func TestMuInterval(t *testing.T) {
 	}
 	within(t, "rms pull", math.Sqrt(sum/seen), 1, 0.4)
 }
+
+// TestUndecided: a condensate too faint to be believed makes a thermal cloud look colder than it
+// is; the interval of T knows that. Without a condensate N has no interval.
+func TestUndecided(t *testing.T) {
+	hidden, plain, told := 0.0, 0.0, 0.0
+	for i := range uint64(30) {
+		sc := faintScene(t, 4500, 2000+i)
+		r := mustFit(t, sc, sc.draw(t), Options{})
+		if r.Model != ModelThermal {
+			continue
+		}
+		v := r.Numbers.T
+		hidden++
+		plain += math.Pow((v.V-sc.T)/v.Err, 2)
+		told += math.Pow(far(v, sc.T), 2)
+	}
+	if hidden < 8 || !(math.Sqrt(plain/hidden) > 1.4) {
+		t.Errorf("%g thermal clouds with pulls of T of rms %.2f: the scene tests nothing", hidden, math.Sqrt(plain/hidden))
+	}
+	within(t, "rms pull", math.Sqrt(told/hidden), 1, 0.4)
+	wide := 0
+	for i := range uint64(10) {
+		sc := faintScene(t, 0, 2000+i)
+		if r := mustFit(t, sc, sc.draw(t), Options{}); !math.IsNaN(r.Numbers.Atoms.High) {
+			wide++
+		}
+	}
+	if wide > 1 {
+		t.Errorf("%d of 10 clouds without a condensate have an interval of N", wide)
+	}
+}
