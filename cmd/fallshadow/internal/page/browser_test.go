@@ -331,6 +331,27 @@ func TestBrowserHostileNames(t *testing.T) {
 	screenshot(t, tab, "hostile")
 }
 
+// Long names are shortened in the list where that keeps them apart.
+func TestBrowserLongNames(t *testing.T) {
+	dir := newNight(t)
+	tab := browser(t)
+	for n := 1; n <= 3; n++ {
+		addShot(t, dir, n, fmt.Sprintf("run %d tof=22000us cooled", n))
+	}
+	n := watchNight(t, dir, "127.0.0.1:0")
+	do(t, tab, chromedp.EmulateViewport(1440, 900), chromedp.Navigate(n.url))
+	until(t, tab, "three shots", fmt.Sprintf(countIs, 3))
+	const names = `[...document.querySelectorAll('.item')].map((i) => [...i.querySelectorAll('.name span')].map((s) => s.className + ':' + s.textContent).join('|')).sort().join()`
+	if got, want := eval[string](t, tab, names), "head:run 1 tof=22000us cooled,head:run 2 tof=22000us cooled,head:run 3 tof=22000us cooled"; got != want {
+		t.Errorf("the list has %q, want %q", got, want)
+	}
+	for k := 4; k <= 7; k++ {
+		addShot(t, dir, k, fmt.Sprintf("run 1 tof=22000us cooled %d", k))
+	}
+	until(t, tab, "seven shots", fmt.Sprintf(countIs, 7))
+	until(t, tab, "ends that differ", names+`.includes('head:run 1 tof=220|tail:00us cooled 7')`)
+}
+
 // A shot is marked bad with a word, which can be taken back.
 func TestBrowserVerdict(t *testing.T) {
 	ctx := context.Background()

@@ -353,3 +353,34 @@ func TestBrowserPassedBy(t *testing.T) {
 		t.Error("it is still asked for")
 	}
 }
+
+// A picture that is drawn by other settings than the numbers are of says so, as after settings
+// changed while nobody watched, until it is so no longer.
+func TestBrowserStalePicture(t *testing.T) {
+	dir, n, tab := liveNight(t, 4, 5)
+	n.stop()
+	file := filepath.Join(dir, "fallshadow.toml")
+	text, err := os.ReadFile(file)
+	if err != nil {
+		t.Fatal(err)
+	}
+	alpha := func(value string) {
+		t.Helper()
+		changed := strings.Replace(string(text), "alpha = { value = 1.5,", "alpha = { value = "+value+",", 1)
+		if err := os.WriteFile(file, []byte(changed), 0o644); err != nil {
+			t.Fatal(err)
+		}
+	}
+	alpha("3.0")
+	watchNight(t, dir, strings.TrimSuffix(strings.TrimPrefix(n.url, "http://"), "/"))
+	const said = `document.querySelector('#region-now').textContent === 'picture by the settings of now'`
+	until(t, tab, "word of it", said)
+	do(t, tab, chromedp.EmulateViewport(390, 844))
+	screenshot(t, tab, "stale-picture-phone")
+	readable(t, tab, "stale-picture-phone")
+	do(t, tab, chromedp.EmulateViewport(1440, 900))
+	screenshot(t, tab, "stale-picture")
+	alpha("1.5")
+	until(t, tab, "no word of it", `document.querySelector('#region-now').textContent === ''`)
+	shown(t, tab, "ramp_0005")
+}

@@ -5,6 +5,8 @@ import (
 	"net/http"
 	"strings"
 	"unicode/utf8"
+
+	"fallshadow/cmd/fallshadow/internal/ledger"
 )
 
 // longest is the number of letters that a word against a shot may have.
@@ -48,7 +50,13 @@ func (p *Page) serveView(r *http.Request) (any, error) {
 	if err != nil {
 		return nil, err
 	}
-	return p.views.get(r.Context(), row)
+	return p.view(r, row)
+}
+
+// view returns the view of a row. One that was fitted without the region drawn by hand is stale,
+// but measured without it too.
+func (p *Page) view(r *http.Request, row *ledger.Row) (*view, error) {
+	return p.views.get(r.Context(), row, row.Stale && p.night.Drawn(row) != "left out")
 }
 
 // servePicture sends a picture of a shot: density, residual or frame.
@@ -56,7 +64,7 @@ func (p *Page) servePicture(w http.ResponseWriter, r *http.Request) {
 	row, err := p.shot(r, r.URL.Query().Get("shot"))
 	var v *view
 	if err == nil {
-		v, err = p.views.get(r.Context(), row)
+		v, err = p.view(r, row)
 	}
 	if err != nil || v.pictures[r.PathValue("kind")] == nil {
 		http.Error(w, "there is no such picture", http.StatusNotFound)

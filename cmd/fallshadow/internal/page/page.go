@@ -88,12 +88,15 @@ func (p *Page) Row(r *ledger.Row) {
 
 // Picture draws a shot and tells the browsers that it can be seen.
 func (p *Page) Picture(shot string, f *report.Facts, raw *imageio.Raw) {
-	p.views.put(shot, f, raw)
+	p.views.put(shot, newView(f, raw), raw)
 	p.stream.send("picture", shot)
 }
 
 // Changed tells the browsers to read all rows again.
-func (p *Page) Changed() { p.stream.send("changed", nil) }
+func (p *Page) Changed() {
+	p.views.forgetStale()
+	p.stream.send("changed", nil)
+}
 
 // Heard is for who does not see the page.
 func (p *Page) Heard(string) {}

@@ -28,11 +28,12 @@ import (
 
 // still is a night of fixed rows that notes what is done to it.
 type still struct {
-	rows   []ledger.Row
-	judged []string
-	drawn  image.Rectangle
-	undone bool
-	came   map[string]time.Time
+	rows           []ledger.Row
+	judged         []string
+	drawn          image.Rectangle
+	undone         bool
+	drawnOtherwise bool
+	came           map[string]time.Time
 }
 
 func (s *still) Each(context.Context) iter.Seq2[*ledger.Row, error] {
@@ -72,7 +73,7 @@ func (s *still) Region() (now, next *image.Rectangle) {
 	return &image.Rectangle{Max: image.Pt(3, 4)}, nil
 }
 func (s *still) Drawn(r *ledger.Row) string {
-	if r.Shot == "shot_2" {
+	if r.Shot == "shot_2" && !s.drawnOtherwise {
 		return "left out"
 	}
 	return ""
@@ -445,7 +446,7 @@ func TestViews(t *testing.T) {
 	})
 	ctx := context.Background()
 	for i := range 3 * remembered {
-		if _, err := v.get(ctx, &ledger.Row{Shot: fmt.Sprint(i % (2 * remembered))}); err != nil {
+		if _, err := v.get(ctx, &ledger.Row{Shot: fmt.Sprint(i % (2 * remembered))}, false); err != nil {
 			t.Fatal(err)
 		}
 	}
@@ -453,11 +454,11 @@ func TestViews(t *testing.T) {
 		t.Errorf("%d views are kept", v.recent.Len())
 	}
 	before := measured
-	got, err := v.get(ctx, &ledger.Row{Shot: fmt.Sprint(remembered - 1)})
+	got, err := v.get(ctx, &ledger.Row{Shot: fmt.Sprint(remembered - 1)}, false)
 	if err != nil || measured != before || got.Frame != [2]int{8, 6} || got.Region != [4]int{2, 2, 6, 5} || got.pictures["residual"] == nil {
 		t.Errorf("%+v, %v, measured %d times more", got, err, measured-before)
 	}
-	if _, err := v.get(ctx, &ledger.Row{Shot: "unread"}); err == nil {
+	if _, err := v.get(ctx, &ledger.Row{Shot: "unread"}, false); err == nil {
 		t.Error("there is a view of what cannot be read")
 	}
 }

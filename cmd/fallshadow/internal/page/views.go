@@ -20,8 +20,9 @@ type view struct {
 	Mark     string        `json:"mark"` // tells it from other views, also of the same shot
 	Width    int           `json:"width"`
 	Height   int           `json:"height"`
-	Region   [4]int        `json:"region"` // x0, y0, x1, y1 of the saved frame
-	Frame    [2]int        `json:"frame"`  // size of the saved frame
+	Region   [4]int        `json:"region"`          // x0, y0, x1, y1 of the saved frame
+	Frame    [2]int        `json:"frame"`           // size of the saved frame
+	Stale    bool          `json:"stale,omitempty"` // drawn with other settings than the numbers are of
 	PixelUm  float64       `json:"pixel_um"`
 	Top      float64       `json:"top"`
 	Sigmas   float64       `json:"sigmas"`
@@ -137,8 +138,9 @@ func newViews(measure func(context.Context, string) (*report.Facts, *imageio.Raw
 	return &views{measure: measure, one: make(chan struct{}, 1), recent: list.New(), at: map[seen]*list.Element{}}
 }
 
-func (s *views) put(shot string, f *report.Facts, raw *imageio.Raw) *view {
-	v, of := newView(f, raw), seen{shot: shot}
+// put keeps the view of a shot.
+func (s *views) put(shot string, v *view, raw *imageio.Raw) *view {
+	of := seen{shot: shot}
 	if raw != nil {
 		of.content = raw.Digest
 	}
@@ -156,6 +158,19 @@ func (s *views) put(shot string, f *report.Facts, raw *imageio.Raw) *view {
 	return v
 }
 
+// forgetStale drops the views that were drawn with other settings than the numbers are of: the
+// settings may have changed again.
+func (s *views) forgetStale() {
+	s.mu.Lock()
+	defer s.mu.Unlock()
+	for of, e := range s.at {
+		if e.Value.(*kept).view.Stale {
+			delete(s.at, of)
+			s.recent.Remove(e)
+		}
+	}
+}
+
 func (s *views) find(of seen) *view {
 	s.mu.Lock()
 	defer s.mu.Unlock()
@@ -167,9 +182,9 @@ func (s *views) find(of seen) *view {
 	return e.Value.(*kept).view
 }
 
-// get returns the view of the shot of a row, measured now where it is not kept. One that
-// cannot be fitted shows its frame.
-func (s *views) get(ctx context.Context, row *ledger.Row) (*view, error) {
+// get returns the view of the shot of a row, measured now where it is not kept: by settings
+// that its numbers are not of if they are stale. One that cannot be fitted shows its frame.
+func (s *views) get(ctx context.Context, row *ledger.Row, stale bool) (*view, error) {
 	of := seen{row.Shot, row.Content}
 	if v := s.find(of); v != nil {
 		return v, nil
@@ -192,5 +207,7 @@ func (s *views) get(ctx context.Context, row *ledger.Row) (*view, error) {
 	case err != nil && row.Reason == "": // it was fitted before, so will be again
 		return newView(nil, raw), nil
 	}
-	return s.put(row.Shot, f, raw), nil
+	v := newView(f, raw)
+	v.Stale = stale
+	return s.put(row.Shot, v, raw), nil
 }

@@ -37,7 +37,7 @@ func (w *Watcher) recall(ctx context.Context) {
 	f, raw, err := w.Measure(ctx, last)
 	if raw != nil && !content.Same(raw.Digest) {
 		w.roll.again(time.Now())
-	} else if err == nil {
+	} else if r, _ := w.Row(ctx, last); err == nil && r != nil && !r.Stale { // else it is not of its numbers
 		w.audience.Picture(last, f, raw)
 	}
 }

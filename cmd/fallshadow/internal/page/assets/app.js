@@ -103,6 +103,7 @@ async function show(shot, row, look = row === undefined) {
 function showNothing() {
   turn++;
   pictures.clear();
+  sayRegion();
   cuts.show(null);
 }
 
@@ -111,7 +112,6 @@ function showNoShot() {
   wanted = detail = null;
   showNumbers({ shot: "no shots yet", numbers: {} }, columns, sentences);
   showNothing();
-  sayRegion();
   showStatus();
   say("");
 }
@@ -129,6 +129,7 @@ async function showView(shot, view, seen) {
   await pictures.load(shot, view);
   if (wanted !== shot || seen !== turn) return;
   pictures.show(shot, view);
+  sayRegion();
   showCuts();
   document.body.dataset.seen = shot;
 }
@@ -205,9 +206,12 @@ const regionWords = {
   unknown: "region drawn by hand, numbers of other settings",
 };
 
-// sayRegion says what regions that a person drew have to do with the numbers shown.
+// sayRegion says what regions that a person drew, and other settings, have to do with the
+// numbers shown.
 function sayRegion() {
-  $("region-now").textContent = pictures.region.next ? "a region waits for the next shot" : regionWords[detail?.region] ?? "";
+  const region = pictures.region.next ? "a region waits for the next shot" : regionWords[detail?.region];
+  const other = pictures.view?.stale && "picture by the settings of now";
+  $("region-now").textContent = [region, other].filter(Boolean).join(" · ");
 }
 
 function say(text) {

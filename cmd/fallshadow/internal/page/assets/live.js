@@ -34,7 +34,7 @@ export class Live {
 
   // listen opens a connection anew that died without a word, as that of a phone that slept.
   listen() {
-    if ((this.source?.readyState ?? EventSource.CLOSED) === EventSource.CLOSED || Date.now() - this.heard < silence) return;
+    if (!this.source || Date.now() - this.heard < silence) return;
     this.state(false);
     this.open(this.after);
   }

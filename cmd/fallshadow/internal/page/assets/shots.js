@@ -8,10 +8,16 @@ const height = 30;
 const signs = { good: "", flagged: "▲", stale: "◆", bad: "✕" };
 const tail = 12; // letters at the end of a name that stay in sight
 
-// parts cuts a long name in two: its end tells shots apart, its beginning may give way.
-function parts(name) {
+// endsDiffer says that the ends of long names tell shots apart, and not their beginnings only.
+function endsDiffer(names) {
+  const kinds = (cut) => new Set(names.map((n) => cut([...n]).join(""))).size;
+  return kinds((n) => n.slice(-tail)) >= kinds((n) => n.slice(0, tail));
+}
+
+// parts cuts a long name in two where its end tells shots apart and its beginning may give way.
+function parts(name, ends) {
   const letters = [...name], at = Math.max(0, letters.length - tail);
-  const cut = at < 4 ? 0 : at;
+  const cut = at < 4 || !ends ? 0 : at;
   return [
     cut ? el("span", { class: "head" }, letters.slice(0, cut).join("")) : null,
     el("span", { class: cut ? "tail" : "head" }, letters.slice(cut).join("")),
@@ -89,12 +95,12 @@ export class Shots {
     all.style.height = n * height + "px";
     const from = Math.max(0, Math.floor(list.scrollTop / height) - 4);
     const to = Math.min(n, from + Math.ceil(list.clientHeight / height) + 8);
-    const items = [];
-    for (let k = from; k < to; k++) items.push(this.item(this.rows[n - 1 - k], k * height));
+    const seen = this.rows.slice(n - to, n - from).reverse(), ends = endsDiffer(seen.map((r) => r.shot));
+    const items = seen.map((row, i) => this.item(row, (from + i) * height, ends));
     all.replaceChildren(...items);
   }
 
-  item(row, top) {
+  item(row, top, ends) {
     const flags = (row.flags || []).filter((f) => f !== "provisional");
     const node = el("button", {
       class: "item" + (row.bad ? " bad" : "") + (row.failed ? " failed" : ""),
@@ -102,7 +108,7 @@ export class Shots {
       "aria-current": row.shot === this.current,
     },
     el("span", { class: "dot" }, row.failed ? signs.bad : signs[kind(row)]),
-    el("span", { class: "name" }, ...parts(row.shot)),
+    el("span", { class: "name" }, ...parts(row.shot, ends)),
     el("span", { class: "what" }, row.failed ? "failed" : row.model === "none" ? "none" : row.atoms || ""));
     node.style.top = top + "px";
     node.addEventListener("click", () => this.choose(row.shot));
