@@ -96,6 +96,33 @@ func TestHalfWrittenFiles(t *testing.T) {
 	}
 }
 
+// A file system that knows seconds alone gives a file that is filled in pieces the same time twice:
+// the shot is read once more when that time is over.
+func TestCoarseTimes(t *testing.T) {
+	dir := nightWith(t)
+	h := newHall()
+	w, _ := run(t, Options{Dir: dir}, h)
+	now := time.Now().Truncate(time.Second)
+	for _, n := range []string{"2", "5"} {
+		file := filepath.Join(t.TempDir(), "x")
+		copyFile(t, shotFile(n), file)
+		if err := os.Chtimes(file, now, now); err != nil {
+			t.Fatal(err)
+		}
+		if err := os.Rename(file, filepath.Join(dir, "ramp_0001.fits")); err != nil {
+			t.Fatal(err)
+		}
+		h.until(t, "shot "+n, func() bool {
+			r, err := w.Row(context.Background(), "ramp_0001")
+			return err == nil && r != nil && (r.Number("fraction") > 0.3) == (n == "5")
+		})
+	}
+	h.until(t, "rest", func() bool { _, waits, _ := w.roll.patience(); return waits+w.queue.waiting()+w.roll.inWork() == 0 })
+	if n := len(h.rows["ramp_0001"]); n != 2 {
+		t.Errorf("it was stored %d times", n)
+	}
+}
+
 // A file that contradicts its format is waited for, then reported; when it is written
 // anew its row is a good one.
 func TestBrokenFileIsReported(t *testing.T) {

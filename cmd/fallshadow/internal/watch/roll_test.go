@@ -99,7 +99,7 @@ func TestRollGivesUp(t *testing.T) {
 	if !a.roll.refused(j, j.Problem, a.now) {
 		t.Error("the shot is not given up")
 	}
-	a.roll.finish(j, known{})
+	a.roll.finish(j, known{}, a.now)
 	a.expect(time.Hour, 0)
 	a.frame("x_dark", 0)
 	if j := a.expect(time.Second, 1)[0]; j.isNew || j.Problem != nil {

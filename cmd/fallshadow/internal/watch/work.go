@@ -95,14 +95,14 @@ func (w *Watcher) conclude(ctx context.Context, j *job, m measured) error {
 func (w *Watcher) keep(ctx context.Context, j *job, m measured) error {
 	k := known{content: m.content, frames: m.frames}
 	if m.stands {
-		w.roll.finish(j, k)
+		w.roll.finish(j, k, time.Now())
 		return w.store.See(ctx, j.looks...)
 	}
 	if err := w.store.Put(ctx, w.row(j, &m), j.looks...); err != nil {
 		return err
 	}
 	before := w.roll.knownOf(j.Name).content
-	if !w.roll.finish(j, k) { // it left the folder meanwhile, which no scan will see again
+	if !w.roll.finish(j, k, time.Now()) { // it left the folder meanwhile, which no scan will see again
 		if err := w.store.Reconcile(ctx, w.roll.present()); err != nil {
 			return err
 		}
@@ -173,7 +173,7 @@ func (w *Watcher) renamed(ctx context.Context, j *job, m *measured) (bool, error
 	if err != nil || old == nil || !old.Currency.Frames.Same(m.frames) {
 		return false, err
 	}
-	w.roll.finish(j, known{content: m.content, frames: m.frames})
+	w.roll.finish(j, known{content: m.content, frames: m.frames}, time.Now())
 	if err := w.store.Reconcile(context.WithoutCancel(ctx), w.roll.present()); err != nil {
 		return false, err
 	}
