@@ -349,7 +349,7 @@ func TestBrowserLongNames(t *testing.T) {
 		addShot(t, dir, k, fmt.Sprintf("run 1 tof=22000us cooled %d", k))
 	}
 	until(t, tab, "seven shots", fmt.Sprintf(countIs, 7))
-	until(t, tab, "ends that differ", names+`.includes('head:run 1 tof=220|tail:00us cooled 7')`)
+	until(t, tab, "ends that differ", names+`.includes('head:run 1 tof=2200|tail:0us cooled 7')`)
 }
 
 // A shot is marked bad with a word, which can be taken back.

@@ -93,7 +93,7 @@ export class Shots {
     $("count").textContent = this.rows.length;
     const list = $("list"), all = $("list-all"), n = this.rows.length;
     all.style.height = n * height + "px";
-    const from = Math.max(0, Math.floor(list.scrollTop / height) - 4);
+    const from = Math.min(n, Math.max(0, Math.floor(list.scrollTop / height) - 4));
     const to = Math.min(n, from + Math.ceil(list.clientHeight / height) + 8);
     const seen = this.rows.slice(n - to, n - from).reverse(), ends = endsDiffer(seen.map((r) => r.shot));
     const items = seen.map((row, i) => this.item(row, (from + i) * height, ends));
