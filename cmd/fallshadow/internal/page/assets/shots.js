@@ -71,11 +71,12 @@ export class Shots {
     return (this.rows.length - 1 - this.place(shot)) * height;
   }
 
+  // select marks the shot that is shown, and brings another than before into sight.
   select(shot) {
+    const list = $("list"), top = this.top(shot), other = shot !== this.current;
     this.current = shot;
-    const list = $("list"), top = this.top(shot);
-    if (top < list.scrollTop) list.scrollTop = top;
-    if (top + height > list.scrollTop + list.clientHeight) list.scrollTop = top + height - list.clientHeight;
+    if (other && top < list.scrollTop) list.scrollTop = top;
+    if (other && top + height > list.scrollTop + list.clientHeight) list.scrollTop = top + height - list.clientHeight;
     this.draw();
   }
 
