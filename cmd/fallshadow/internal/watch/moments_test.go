@@ -47,7 +47,7 @@ func TestMoments(t *testing.T) {
 			t.Errorf("%d jobs, moved %v, want %d, %v", len(jobs), did, n, moved)
 		}
 		for _, j := range jobs {
-			a.roll.finish(j, known{}, a.now)
+			a.roll.finish(j, known{}, a.now.Add(tick))
 		}
 		if got := strings.Join(a.roll.came(), " "); got != want {
 			t.Errorf("they came as %s, want %s", got, want)

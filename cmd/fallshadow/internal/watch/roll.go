@@ -18,9 +18,11 @@ const (
 	// settle is for how long a file must have looked the same before what was read of it
 	// is believed: a camera program may make the file in its final size and fill it then.
 	settle = 150 * time.Millisecond
-	// tick is how long a file system that knows seconds alone, or every other one, may give a
-	// file that is written to the same time.
-	tick = 2500 * time.Millisecond
+	// tick is how long a file system may give a file that is written to the same time: the
+	// clocks of systems go in steps of up to 16 ms.
+	tick = 20 * time.Millisecond
+	// coarseTick is the same for one that knows seconds alone, or every other one.
+	coarseTick = 2500 * time.Millisecond
 	// unfinished is how long after its last change a shot with a file cut short or a frame
 	// missing is waited for before that is reported.
 	unfinished = 20 * time.Second
@@ -258,8 +260,8 @@ func (r *roll) unchanged(j *job, now time.Time) bool {
 }
 
 // finish closes a job whose row stands, and reports whether its shot is in the folder still. A
-// shot whose files may change unseen is read once more.
-func (r *roll) finish(j *job, k known, now time.Time) bool {
+// shot that was read so soon that its files may have changed unseen is read once more.
+func (r *roll) finish(j *job, k known, read time.Time) bool {
 	r.mu.Lock()
 	defer r.mu.Unlock()
 	e := r.shots[j.Name]
@@ -269,15 +271,18 @@ func (r *roll) finish(j *job, k known, now time.Time) bool {
 	e.known, e.why, e.held, e.state = k, nil, nil, done
 	if !slices.Equal(e.looks, j.looks) || !maps.Equal(e.shot.Meta, j.Meta) || j.layout != r.layout {
 		e.state = waiting
-	} else if end := e.since.Add(tick); coarse(j.looks) && now.Before(end) {
+	} else if end := e.since.Add(tickOf(j.looks)); read.Before(end) {
 		e.state, e.next, e.tries = waiting, end, 0
 	}
 	return true
 }
 
-// coarse reports whether files have times of whole seconds alone.
-func coarse(looks []ledger.Sighting) bool {
-	return !slices.ContainsFunc(looks, func(l ledger.Sighting) bool { return l.Modified%int64(time.Second) != 0 })
+// tickOf is the tick of the file system that files are on, told by their times.
+func tickOf(looks []ledger.Sighting) time.Duration {
+	if slices.ContainsFunc(looks, func(l ledger.Sighting) bool { return l.Modified%int64(time.Second) != 0 }) {
+		return tick
+	}
+	return coarseTick
 }
 
 // again has all shots read once more, whatever their files look like: the layout that says

@@ -99,7 +99,7 @@ func TestRollGivesUp(t *testing.T) {
 	if !a.roll.refused(j, j.Problem, a.now) {
 		t.Error("the shot is not given up")
 	}
-	a.roll.finish(j, known{}, a.now)
+	a.roll.finish(j, known{}, a.now.Add(tick))
 	a.expect(time.Hour, 0)
 	a.frame("x_dark", 0)
 	if j := a.expect(time.Second, 1)[0]; j.isNew || j.Problem != nil {
@@ -181,4 +181,32 @@ func (r *roll) inWork() (n int) {
 		}
 	}
 	return n
+}
+
+// A shot that was read while its files could still change within a tick of the clock of their
+// file system is read once more when that is over, however long its fit took.
+func TestRollReadsOnceMore(t *testing.T) {
+	second := time.Now().Truncate(time.Second)
+	for _, test := range []struct {
+		written time.Time
+		tick    time.Duration
+	}{{second, coarseTick}, {second.Add(time.Millisecond), tick}} {
+		a := newAlbum(t, imageio.Layout{})
+		a.frame("x", 0)
+		date(t, filepath.Join(a.dir, "x.fits"), test.written)
+		j := a.expect(0, 1)[0]
+		early := a.now.Add(test.tick - 1)
+		a.now = a.now.Add(test.tick - 2)
+		a.roll.finish(j, known{}, early)
+		a.expect(1, 0)
+		j = a.expect(1, 1)[0]
+		a.roll.finish(j, known{}, a.now)
+		a.expect(time.Hour, 0)
+		date(t, filepath.Join(a.dir, "x.fits"), test.written.Add(time.Minute))
+		j = a.expect(0, 1)[0]
+		read := a.now
+		a.now = a.now.Add(time.Hour) // of fitting
+		a.roll.finish(j, known{}, read)
+		a.expect(0, 1)
+	}
 }

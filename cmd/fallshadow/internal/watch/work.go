@@ -40,6 +40,7 @@ func (w *Watcher) work(ctx context.Context) error {
 
 // measured is what became of a job.
 type measured struct {
+	read            time.Time // when that began
 	raw             *imageio.Raw
 	content, frames ledger.Digest
 	lab             *settings.Settings
@@ -53,7 +54,7 @@ type measured struct {
 
 // measure reads and fits a shot, unless its row stands. It fails where the ledger does.
 func (w *Watcher) measure(ctx context.Context, j *job, workspace *fit.Workspace) (m measured, err error) {
-	m.lab = w.settings()
+	m.lab, m.read = w.settings(), time.Now()
 	m.raw, m.err = night.ReadShot(ctx, w.root, j.Shot, m.lab.Layout())
 	if m.err != nil {
 		m.raw, m.unread = nil, true
@@ -95,14 +96,14 @@ func (w *Watcher) conclude(ctx context.Context, j *job, m measured) error {
 func (w *Watcher) keep(ctx context.Context, j *job, m measured) error {
 	k := known{content: m.content, frames: m.frames}
 	if m.stands {
-		w.roll.finish(j, k, time.Now())
+		w.roll.finish(j, k, m.read)
 		return w.store.See(ctx, j.looks...)
 	}
 	if err := w.store.Put(ctx, w.row(j, &m), j.looks...); err != nil {
 		return err
 	}
 	before := w.roll.knownOf(j.Name).content
-	if !w.roll.finish(j, k, time.Now()) { // it left the folder meanwhile, which no scan will see again
+	if !w.roll.finish(j, k, m.read) { // it left the folder meanwhile, which no scan will see again
 		if err := w.store.Reconcile(ctx, w.roll.present()); err != nil {
 			return err
 		}
@@ -173,7 +174,7 @@ func (w *Watcher) renamed(ctx context.Context, j *job, m *measured) (bool, error
 	if err != nil || old == nil || !old.Currency.Frames.Same(m.frames) {
 		return false, err
 	}
-	w.roll.finish(j, known{content: m.content, frames: m.frames}, time.Now())
+	w.roll.finish(j, known{content: m.content, frames: m.frames}, m.read)
 	if err := w.store.Reconcile(context.WithoutCancel(ctx), w.roll.present()); err != nil {
 		return false, err
 	}
