@@ -384,3 +384,19 @@ func TestBrowserStalePicture(t *testing.T) {
 	until(t, tab, "no word of it", `document.querySelector('#region-now').textContent === ''`)
 	shown(t, tab, "ramp_0005")
 }
+
+// A picture that there is none of for a moment, as of a file that is being written, is shown when
+// there is one, and what went wrong is not said any longer.
+func TestBrowserPictureLater(t *testing.T) {
+	_, _, tab := liveNight(t, 1, 2, 3)
+	eval[bool](t, tab, `(() => {
+		const ask = window.fetch;
+		window.fetch = async (what, ...rest) => /view.*ramp_0002/.test(what) && !window.whole ? new Response('ramp_0002.fits: truncated', { status: 500 }) : ask(what, ...rest);
+		return true;
+	})()`)
+	do(t, tab, chromedp.KeyEvent(kb.ArrowLeft))
+	until(t, tab, "what went wrong", `document.querySelector('#notes').textContent === 'ramp_0002.fits: truncated'`)
+	eval[bool](t, tab, `window.whole = true`)
+	shown(t, tab, "ramp_0002")
+	until(t, tab, "no word of it", `document.querySelector('#notes').hidden`)
+}

@@ -89,13 +89,17 @@ async function show(shot, row, look = row === undefined) {
     row ??= await get("/api/row", { shot });
     if (mine !== asked) return;
     showRow(row);
-    say("");
     if (view) await showView(shot, await view, seen);
     else if (row.failed) showNothing();
+    if (mine === asked) say("");
   } catch (error) {
     if (mine !== asked) return;
-    if (detail?.shot === shot && detail.failed) showNothing();
-    else say(error.message);
+    if (detail?.shot === shot && detail.failed) {
+      showNothing();
+      return say("");
+    }
+    say(error.message);
+    setTimeout(() => mine === asked && show(shot), 3000); // a file may be half written, or away for a moment
   }
 }
 
@@ -158,7 +162,7 @@ const live = new Live({
   picture(shot) {
     if (wanted !== shot) return;
     const seen = ++turn;
-    get("/api/view", { shot }).then((view) => showView(shot, view, seen)).catch((error) => seen === turn && wanted === shot && say(error.message));
+    get("/api/view", { shot }).then((view) => showView(shot, view, seen)).catch(() => seen === turn && wanted === shot && show(shot));
   },
   changed: reload,
   begin: reload,
