@@ -7,6 +7,7 @@ import (
 	"path/filepath"
 	"slices"
 	"sync"
+	"syscall"
 	"time"
 
 	"fallshadow/cmd/fallshadow/internal/ledger"
@@ -24,7 +25,8 @@ const (
 	// coarseTick is the same for one that knows seconds alone, or every other one.
 	coarseTick = 2500 * time.Millisecond
 	// unfinished is how long after its last change a shot with a file cut short or a frame
-	// missing is waited for before that is reported.
+	// missing is waited for before that is reported, and how long one that the system refuses
+	// is after the first refusal.
 	unfinished = 20 * time.Second
 	// broken is the same for a file that contradicts its format.
 	broken = 2 * time.Second
@@ -60,6 +62,7 @@ type entry struct {
 	moment  int64             // when it came, see moments
 	state   state
 	tries   int
+	failing time.Time // since when looks fail
 	next    time.Time // for the next look
 	why     error     // it waits
 	held    error     // why it was put back
@@ -199,12 +202,18 @@ func (r *roll) take(e *entry) *job {
 
 // fails notes why a shot cannot be read yet, and reports whether to give it up.
 func (r *roll) fails(e *entry, err error, now time.Time) (givenUp bool) {
-	patience := broken
-	if errors.Is(err, fault.Truncated) || e.shot.Problem != nil {
+	if e.tries == 0 {
+		e.failing = now
+	}
+	since, patience := e.since, broken
+	switch errno := syscall.Errno(0); {
+	case errors.As(err, &errno): // another program holds the file, or a share is away
+		since, patience = e.failing, unfinished
+	case errors.Is(err, fault.Truncated) || e.shot.Problem != nil:
 		patience = unfinished
 	}
 	e.why = err
-	if now.Sub(e.since) >= patience {
+	if now.Sub(since) >= patience {
 		return true
 	}
 	e.state = waiting

@@ -3,8 +3,10 @@ package watch
 import (
 	"context"
 	"errors"
+	"io/fs"
 	"os"
 	"path/filepath"
+	"syscall"
 	"testing"
 	"time"
 
@@ -104,6 +106,27 @@ func TestRollGivesUp(t *testing.T) {
 	a.frame("x_dark", 0)
 	if j := a.expect(time.Second, 1)[0]; j.isNew || j.Problem != nil {
 		t.Errorf("%+v", j)
+	}
+}
+
+// What the system refuses, as while another program holds a file or a share is away, is waited for
+// from the first refusal on, however old the file is.
+func TestRollWaitsForTheSystem(t *testing.T) {
+	a := newAlbum(t, imageio.Layout{})
+	a.frame("x", 0)
+	j := a.expect(0, 1)[0]
+	refused := &fs.PathError{Op: "read", Path: "x.fits", Err: syscall.EIO}
+	a.now = a.now.Add(time.Hour)
+	if a.roll.refused(j, refused, a.now) {
+		t.Fatal("the shot is given up at once")
+	}
+	j = a.expect(broken+time.Second, 1)[0]
+	if a.roll.refused(j, refused, a.now) {
+		t.Fatal("the shot is given up soon")
+	}
+	j = a.expect(unfinished, 1)[0]
+	if !a.roll.refused(j, refused, a.now) {
+		t.Error("the shot is not given up")
 	}
 }
 
