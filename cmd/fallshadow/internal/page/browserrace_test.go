@@ -110,6 +110,8 @@ func TestBrowserManyChanges(t *testing.T) {
 	_, n, tab := liveNight(t, 1, 2)
 	eval[bool](t, tab, holding)
 	eval[bool](t, tab, `window.hold = /api.night/, window.asked = 0, (() => { const ask = window.fetch; window.fetch = (what, ...rest) => { window.asked += /api.night/.test(what); return ask(what, ...rest); }; })(), true`)
+	n.page.Changed()
+	until(t, tab, "the answer", `window.held === 1`)
 	for range 20 {
 		n.page.Changed()
 	}
@@ -328,9 +330,9 @@ func TestBrowserSleeps(t *testing.T) {
 	if eval[bool](t, tab, fmt.Sprintf(countIs, 3)) {
 		t.Fatal("the gate is not shut")
 	}
-	eval[bool](t, tab, `(() => { const now = Date.now; Date.now = () => now() + 100000; return true; })()`)
+	eval[bool](t, tab, `(() => { const now = Date.now; Date.now = () => now() + 1e8; return true; })()`)
 	shown(t, tab, "ramp_0003")
-	until(t, tab, "the age of the shot", `document.querySelector('#status').textContent === 'last shot 2 min ago'`)
+	until(t, tab, "the age of the shot", `document.querySelector('#status').textContent === 'last shot 28 h ago'`)
 	screenshot(t, tab, "woke")
 	do(t, tab, chromedp.Navigate("http://"+at))
 	until(t, tab, "the age after loading", `/^last shot \d+ s ago$/.test(document.querySelector('#status').textContent)`)
