@@ -305,6 +305,32 @@ func through(to, from net.Conn, shut chan struct{}) {
 	}
 }
 
+// What was asked on a connection that died is asked again.
+func TestBrowserAsksAgain(t *testing.T) {
+	n := watchNight(t, newNight(t, 1, 2), "127.0.0.2:0")
+	address := strings.TrimSuffix(strings.TrimPrefix(n.url, "http://"), "/")
+	at := strings.Replace(address, "127.0.0.2", "127.0.0.1", 1)
+	g := openGate(t, at, address)
+	tab := browser(t)
+	do(t, tab, chromedp.EmulateViewport(1440, 900), chromedp.Navigate("http://"+at))
+	shown(t, tab, "ramp_0002")
+	until(t, tab, "the connection", isLive)
+	eval[bool](t, tab, `(() => {
+		const ask = window.fetch;
+		window.fetch = (what, init, ...rest) => {
+			if (window.dead || !/view.*ramp_0001/.test(what)) return ask(what, init, ...rest);
+			window.dead = true;
+			return new Promise((_, fail) => init?.signal?.addEventListener('abort', () => fail(init.signal.reason)));
+		};
+		return true;
+	})()`)
+	do(t, tab, chromedp.KeyEvent(kb.ArrowLeft))
+	until(t, tab, "the picture asked for", `window.dead`)
+	g.shut()
+	eval[bool](t, tab, `(() => { const now = Date.now; Date.now = () => now() + 100000; return true; })()`)
+	shown(t, tab, "ramp_0001")
+}
+
 // A connection that died without a word, as on a phone that slept, is noticed; what was missed
 // is shown, and the age of the last shot is that of the shot.
 func TestBrowserSleeps(t *testing.T) {

@@ -5,10 +5,27 @@ async function checked(response) {
   return response.status === 204 ? null : response.json();
 }
 
-// get asks until a signal comes, which ends it; without one until a connection must have died.
-export async function get(path, parameters = {}, signal = AbortSignal.timeout(60000)) {
-  return checked(await fetch(path + "?" + new URLSearchParams(parameters), { signal }));
+const asking = new Set(); // ends what is being asked
+
+// get asks until a signal comes, a connection must have died, or giveUp ends it.
+export async function get(path, parameters = {}, signal) {
+  const end = new AbortController(), timer = setTimeout(() => end.abort(lost()), 60000);
+  signal?.addEventListener("abort", () => end.abort(signal.reason));
+  asking.add(end);
+  try {
+    return await checked(await fetch(path + "?" + new URLSearchParams(parameters), { signal: end.signal }));
+  } finally {
+    clearTimeout(timer);
+    asking.delete(end);
+  }
 }
+
+// giveUp ends all that is being asked: the connection was lost, and no answer may come any more.
+export function giveUp() {
+  for (const end of asking) end.abort(lost());
+}
+
+const lost = () => new Error("the connection was lost");
 
 export async function post(path, body) {
   return checked(await fetch(path, {

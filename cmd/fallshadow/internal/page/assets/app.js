@@ -1,6 +1,6 @@
 // The page: what is shown, and what keys and buttons do.
 import { $, el } from "./dom.js";
-import { get, post } from "./api.js";
+import { get, giveUp, post } from "./api.js";
 import { Shots } from "./shots.js";
 import { showNumbers } from "./numbers.js";
 import { Pictures, parts } from "./picture.js";
@@ -171,6 +171,7 @@ const live = new Live({
     showNotes(list);
   },
 }, (is, why) => {
+  if (!is) giveUp();
   connected = is;
   if (why) say(why);
   showStatus();
