@@ -505,6 +505,7 @@ func TestBrowserLateAnswer(t *testing.T) {
 	n := watchNight(t, newNight(t, 1, 2, 3), "127.0.0.1:0")
 	tab := browser(t)
 	do(t, tab, chromedp.EmulateViewport(1440, 900), chromedp.Navigate(n.url))
+	until(t, tab, "three shots", fmt.Sprintf(countIs, 3))
 	shown(t, tab, "ramp_0003")
 	eval[bool](t, tab, `(() => {
 		const later = (ms) => new Promise((done) => setTimeout(done, ms)), ask = window.fetch, decode = HTMLImageElement.prototype.decode;
