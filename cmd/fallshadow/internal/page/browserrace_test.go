@@ -215,6 +215,11 @@ func TestBrowserListStays(t *testing.T) {
 	if after := eval[string](t, tab, there); after != before {
 		t.Errorf("%q stands where %q stood", after, before)
 	}
+	do(t, tab, chromedp.KeyEvent(kb.End))
+	shown(t, tab, "ramp_0041")
+	eval[bool](t, tab, `document.querySelector('#list').scrollTop = 305, true`)
+	do(t, tab, chromedp.KeyEvent(kb.End))
+	until(t, tab, "the last shot in sight", `document.querySelector('#list').scrollTop === 0`)
 }
 
 // A page that is left open over a restart says why the program does not let it in any more.

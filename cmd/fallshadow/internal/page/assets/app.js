@@ -147,7 +147,9 @@ function choose(shot) {
 
 function follow() {
   following = true;
-  if (shots.last() !== undefined) show(shots.last());
+  if (shots.last() === undefined) return;
+  show(shots.last());
+  shots.reveal(shots.last());
 }
 
 const live = new Live({

@@ -73,11 +73,17 @@ export class Shots {
 
   // select marks the shot that is shown, and brings another than before into sight.
   select(shot) {
-    const list = $("list"), top = this.top(shot), other = shot !== this.current;
+    const other = shot !== this.current;
     this.current = shot;
-    if (other && top < list.scrollTop) list.scrollTop = top;
-    if (other && top + height > list.scrollTop + list.clientHeight) list.scrollTop = top + height - list.clientHeight;
+    if (other) this.reveal(shot);
     this.draw();
+  }
+
+  // reveal brings a shot into sight.
+  reveal(shot) {
+    const list = $("list"), top = this.top(shot);
+    if (top < list.scrollTop) list.scrollTop = top;
+    if (top + height > list.scrollTop + list.clientHeight) list.scrollTop = top + height - list.clientHeight;
   }
 
   // beside returns the shot so many steps newer than the current one, if there is one.
