@@ -127,7 +127,7 @@ func (w *Watcher) noteWaiting() {
 	next, n, why := w.roll.patience()
 	text := ""
 	if n > 0 && why != nil && time.Until(next) > late/2 {
-		text = fmt.Sprintf("waiting for %d unfinished shots: %v", n, why)
+		text = fmt.Sprintf("waiting for unfinished shots (%d): %v", n, why)
 	}
 	w.notes.set("unfinished", text)
 }
