@@ -9,9 +9,9 @@ import (
 
 // Lines as proc_pid_mountinfo(5) describes them.
 const mounts = `36 35 98:0 /mnt1 /mnt2 rw,noatime master:1 - ext3 /dev/root rw,errors=continue
-40 35 0:50 / /mnt/share rw,nosuid,nodev,relatime shared:30 - fuse.sshfs host:/data rw,user_id=0
-41 35 0:51 / /mnt/usb rw - fuse.ntfs-3g /dev/sdb1 rw
-42 35 0:52 / /mnt/odd rw master:1 shared:2 - fuse.rclone remote: rw
+40 35 0:50 / /media/share rw,nosuid,nodev,relatime shared:30 - fuse.sshfs host:/data rw,user_id=0
+41 35 0:51 / /media/usb rw - fuse.ntfs-3g /dev/sdb1 rw
+42 35 0:52 / /media/odd rw master:1 shared:2 - fuse.rclone remote: rw
 short
 `
 
