@@ -7,39 +7,41 @@ import (
 	"math"
 )
 
-// Digest returns the SHA-256 of frames in the order given, absent ones (nil) included. A
-// frame enters with its size and its pixels: as 16-bit numbers where all of them are
-// whole counts from 0 to 65535, else as float32, little-endian. So the digest belongs to
-// the pixels, whatever file format brought them.
-func Digest(frames ...*Frame) [32]byte {
-	// Nearly all frames are whole counts: they are looked at while they are hashed.
-	if sum, ok := digest(frames, func(*Frame) bool { return true }); ok {
-		return sum
+// Digest returns the SHA-256 of a frame, zero for an absent one (nil): of its size and its
+// pixels, as 16-bit numbers where all of them are whole counts from 0 to 65535, else as
+// float32, little-endian. So the digest belongs to the pixels, whatever file format brought
+// them.
+func Digest(f *Frame) [32]byte {
+	if f == nil {
+		return [32]byte{}
 	}
-	sum, _ := digest(frames, func(f *Frame) bool { return put16(nil, f.Pix) })
+	// Nearly all frames are whole counts: they are looked at while they are hashed.
+	sum, ok := f.digest('u')
+	if !ok {
+		sum, _ = f.digest('f')
+	}
 	return sum
 }
 
-// digest is Digest with the frames of 16-bit numbers told; ok is false where one is not.
-func digest(frames []*Frame, short func(*Frame) bool) (sum [32]byte, ok bool) {
+// digest is Digest for pixels of the kind told, 'u' or 'f'; ok is false where one is not.
+func (f *Frame) digest(kind byte) (sum [32]byte, ok bool) {
 	h := sha256.New()
-	buf := make([]byte, 1<<15)
-	for _, f := range frames {
-		if f == nil {
-			h.Write([]byte{'-'})
-			continue
-		}
-		kind := byte('f')
-		if short(f) {
-			kind = 'u'
-		}
-		head := binary.LittleEndian.AppendUint64([]byte{kind}, uint64(f.Width))
-		h.Write(binary.LittleEndian.AppendUint64(head, uint64(f.Height)))
-		if !hashPixels(h, buf, f.Pix, kind == 'u') {
-			return sum, false
-		}
+	head := binary.LittleEndian.AppendUint64([]byte{kind}, uint64(f.Width))
+	h.Write(binary.LittleEndian.AppendUint64(head, uint64(f.Height)))
+	if !hashPixels(h, make([]byte, 1<<15), f.Pix, kind == 'u') {
+		return sum, false
 	}
 	return [32]byte(h.Sum(nil)), true
+}
+
+// sign fills in the digests.
+func (raw *Raw) sign() {
+	h := sha256.New()
+	for r, f := range raw.Frames {
+		raw.Digests[r] = Digest(f)
+		h.Write(raw.Digests[r][:])
+	}
+	raw.Digest = [32]byte(h.Sum(nil))
 }
 
 func hashPixels(h hash.Hash, buf []byte, pix []float32, short bool) bool {

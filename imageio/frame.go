@@ -31,8 +31,10 @@ type Frame struct {
 type Raw struct {
 	Frames [numRoles]*Frame
 	Meta   Metadata
-	// Digest is the SHA-256 of the frames' sizes and pixels in the order of their roles.
-	Digest [32]byte
+	// Digests are those of the frames by role, zero for absent ones; Digest is the SHA-256 of
+	// them all in the order of their roles.
+	Digests [numRoles][32]byte
+	Digest  [32]byte
 }
 
 // Shot is one cycle of the machine as found in a night's folder. Name is its path in

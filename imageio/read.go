@@ -10,19 +10,19 @@ import (
 )
 
 // Read reads one shot of the night in folder dir as Scan found it: its frames by role,
-// its metadata and its digest. Nothing is judged but that the frames are all there and of
+// its metadata and its digests. Nothing is judged but that the frames are all there and of
 // one size. Errors name the file, the cause and where it helps the way out, and wrap
 // fault.Truncated, fault.Broken or fault.Unsupported where the file is at fault. No more
 // than fault.MaxPixels pixels are held.
 func Read(ctx context.Context, dir string, shot Shot, layout Layout) (*Raw, error) {
 	raw, err := ReadAgain(ctx, dir, shot, layout)
 	if err == nil {
-		raw.Digest = Digest(raw.Frames[:]...)
+		raw.sign()
 	}
 	return raw, err
 }
 
-// ReadAgain is Read for a shot whose digest is known: it leaves Digest zero, which is a good part
+// ReadAgain is Read for a shot whose digests are known: it leaves them zero, which is a good part
 // of the time. Whether the frames are the same still is seen by Raw.Sum.
 func ReadAgain(ctx context.Context, dir string, shot Shot, layout Layout) (*Raw, error) {
 	p, err := layout.plan()

@@ -217,7 +217,15 @@ func TestDigest(t *testing.T) {
 	f := &Frame{Width: 2, Height: 1, Pix: []float32{1, 2}}
 	g := &Frame{Width: 1, Height: 2, Pix: []float32{1, 2}}
 	h := &Frame{Width: 2, Height: 1, Pix: []float32{1, 2.5}}
-	all := [][32]byte{Digest(f), Digest(g), Digest(h), Digest(f, nil), Digest(nil, f), Digest(f, f), Digest(f, g), Digest(g, f)}
+	shot := func(atoms, light *Frame) [32]byte {
+		raw := &Raw{Frames: [numRoles]*Frame{Atoms: atoms, Light: light}}
+		raw.sign()
+		if raw.Digests[Atoms] != Digest(atoms) || raw.Digests[Light] != Digest(light) || raw.Digests[Dark] != [32]byte{} {
+			t.Errorf("digests %x", raw.Digests)
+		}
+		return raw.Digest
+	}
+	all := [][32]byte{Digest(nil), Digest(f), Digest(g), Digest(h), shot(nil, nil), shot(f, nil), shot(nil, f), shot(f, f), shot(f, g), shot(g, f)}
 	for i := range all {
 		for j := range i {
 			if all[i] == all[j] {
@@ -235,15 +243,19 @@ func TestDigest(t *testing.T) {
 	}
 }
 
-// The digest of whole counts before and after a frame that holds none, byte by byte.
+// The digest of whole counts, and of pixels that are none, byte by byte.
 func TestDigestBytes(t *testing.T) {
-	counts := &Frame{Width: 3, Height: 2, Pix: []float32{0, 1, 255, 256, 65535, 7}}
-	other := &Frame{Width: 1, Height: 1, Pix: []float32{0.5}}
 	size := func(w, h byte) []byte { return []byte{w, 0, 0, 0, 0, 0, 0, 0, h, 0, 0, 0, 0, 0, 0, 0} }
-	whole := slices.Concat([]byte{'u'}, size(3, 2), []byte{0, 0, 1, 0, 255, 0, 0, 1, 255, 255, 7, 0})
-	half := slices.Concat([]byte{'f'}, size(1, 1), []byte{0, 0, 0, 0x3f})
-	if got := Digest(counts, nil, other, counts); got != sha256.Sum256(slices.Concat(whole, []byte{'-'}, half, whole)) {
-		t.Errorf("digest %x", got)
+	for _, c := range []struct {
+		f     *Frame
+		bytes []byte
+	}{
+		{&Frame{Width: 3, Height: 2, Pix: []float32{0, 1, 255, 256, 65535, 7}}, slices.Concat([]byte{'u'}, size(3, 2), []byte{0, 0, 1, 0, 255, 0, 0, 1, 255, 255, 7, 0})},
+		{&Frame{Width: 1, Height: 1, Pix: []float32{0.5}}, slices.Concat([]byte{'f'}, size(1, 1), []byte{0, 0, 0, 0x3f})},
+	} {
+		if got := Digest(c.f); got != sha256.Sum256(c.bytes) {
+			t.Errorf("digest of %v: %x", c.f.Pix, got)
+		}
 	}
 }
 

@@ -57,8 +57,9 @@ func referenceDigest(shots []shot, darks []ledger.Digest) ledger.Digest {
 	for _, s := range shots {
 		if s.err == nil {
 			fmt.Fprintf(h, "%d %d ", s.size[0], s.size[1])
-			h.Write(s.dark[:])
-			h.Write(s.light[:])
+			for _, d := range s.lights {
+				h.Write(d[:])
+			}
 		}
 	}
 	h.Write([]byte("darks"))

@@ -15,11 +15,10 @@ import (
 // shot is a shot of the frozen list and what a first look at its frames told.
 type shot struct {
 	imageio.Shot
-	content ledger.Digest // zero: not even the bytes could be read
-	sum     uint64        // of the frames, to see whether they are the same when read again
-	frames  ledger.Digest // content and metadata
-	light   ledger.Digest
-	dark    ledger.Digest
+	content ledger.Digest    // zero: not even the bytes could be read
+	sum     uint64           // of the frames, to see whether they are the same when read again
+	frames  ledger.Digest    // content and metadata
+	lights  [3]ledger.Digest // dark, dark of the light frame, light
 	meta    imageio.Metadata
 	size    [2]int
 	err     error // why the frames cannot be used
@@ -54,8 +53,7 @@ func (b *batch) look(ctx context.Context, s imageio.Shot) (shot, *imageio.Raw) {
 		return shot{Shot: s, content: content, frames: framesDigest(content, s.Meta), meta: s.Meta, err: err}, nil
 	}
 	seen := shot{Shot: s, content: raw.Digest, sum: raw.Sum(), frames: framesDigest(raw.Digest, raw.Meta), meta: raw.Meta}
-	seen.light = imageio.Digest(raw.Frames[imageio.Light])
-	seen.dark = imageio.Digest(raw.Frames[imageio.Dark], raw.Frames[imageio.DarkOfLight])
+	seen.lights = [...]ledger.Digest{raw.Digests[imageio.Dark], raw.Digests[imageio.DarkOfLight], raw.Digests[imageio.Light]}
 	for _, f := range raw.Frames {
 		if f != nil {
 			seen.size = [2]int{f.Width, f.Height}
