@@ -88,9 +88,9 @@ type Factors struct {
 // DecisiveLead is the Lead from which on a setting is named: two standard deviations.
 const DecisiveLead = 4
 
-// leastParameter is the N0 a/ā from which on a condensate is Thomas-Fermi enough, to a few
+// LeastParameter is the N0 a/ā from which on a condensate is Thomas-Fermi enough, to a few
 // percent of μ (tf_vs_gp.csv in testdata/reference).
-const leastParameter = 30
+const LeastParameter = 30
 
 // ErrNoFactor says that a night does not tell a number factor.
 var ErrNoFactor = errors.New("a number factor needs at least three shots with a thermal part and a condensate, T known to a third and not computed from the number, and a repulsive gas whose condensate is large (N0 a over the oscillator length above 30)")
@@ -108,7 +108,7 @@ var ErrNoFactor = errors.New("a number factor needs at least three shots with a 
 func (n *Night) FindFactor(ctx context.Context) (Factors, error) {
 	points := n.pick(func(p *Point) bool {
 		return p.Comparable() && p.radii() && p.relative(T) < 1./3 &&
-			p.Vector[Condensate]*n.Gas.ScatteringLength/n.Gas.Trap.Length(n.Gas.Mass) > leastParameter
+			p.Vector[Condensate]*n.Gas.ScatteringLength/n.Gas.Trap.Length(n.Gas.Mass) > LeastParameter
 	})
 	if len(points) < 3 {
 		return Factors{}, ErrNoFactor

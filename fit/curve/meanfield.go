@@ -8,6 +8,13 @@ import (
 	"fallshadow/model"
 )
 
+// By how much μ from the radii may differ from μ_TF(N0), in part and in its errors: over
+// condensates whose N0 a/ā is above LeastParameter Thomas-Fermi is good to less than that.
+const (
+	MuOff    = 0.05
+	MuErrors = 3
+)
+
 // MeanField is what the condensates of a night say of the interaction.
 type MeanField struct {
 	Slope Estimate // of ln μ against ln N0: 2/5 in Thomas-Fermi
@@ -48,7 +55,7 @@ func (n *Night) large() []*Point {
 	length := n.Gas.Trap.Length(n.Gas.Mass)
 	return n.pick(func(p *Point) bool {
 		return p.radii() && p.Shifted() && p.Cov[Condensate][Condensate] > 0 &&
-			p.Vector[Condensate]*n.Gas.ScatteringLength/length > leastParameter
+			p.Vector[Condensate]*n.Gas.ScatteringLength/length > LeastParameter
 	})
 }
 

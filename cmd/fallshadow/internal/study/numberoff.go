@@ -3,13 +3,8 @@ package study
 import (
 	"fmt"
 	"math"
-)
 
-// By how much mu from the radii may differ from mu from N0, in part and in its errors.
-// Thomas-Fermi is good to less than that for the condensates that take part.
-const (
-	muOff    = 0.05
-	muErrors = 3
+	"fallshadow/fit/curve"
 )
 
 // numberOff says that mu from the radii is not mu from N0 over the night, "" where it is.
@@ -22,7 +17,7 @@ func (a *Analysis) numberOff() string {
 		of = "statistical errors"
 	}
 	off := math.Abs(r.V-1) / r.Error()
-	if !(math.Abs(r.V-1) > muOff && off > muErrors) {
+	if !(math.Abs(r.V-1) > curve.MuOff && off > curve.MuErrors) {
 		return ""
 	}
 	return fmt.Sprintf("mu from the radii over mu from N0 is %.2g of its %s from 1: alpha, counts_per_isat, magnification, a trap frequency or the scattering length is off, and N, Tc0 and the laws with it; calibrate number says which factor would mend it", off, of)
